@@ -1,0 +1,62 @@
+"""Picks the coils and capacitors of tuned circuits from parts that can be had.
+
+The public names load what they need when they are first used, so that importing the package is cheap.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from partpick.catalogue import load_catalogue
+    from partpick.errors import PartpickError
+    from partpick.planfile import load_plan
+    from partpick.request import Request
+    from partpick.result import Result
+    from partpick.solve import solve
+
+    __version__: str
+
+__all__ = [
+    "PartpickError",
+    "Request",
+    "Result",
+    "__version__",
+    "load_catalogue",
+    "load_plan",
+    "solve",
+]
+
+_HOMES = {
+    "PartpickError": "partpick.errors",
+    "Request": "partpick.request",
+    "Result": "partpick.result",
+    "load_catalogue": "partpick.catalogue",
+    "load_plan": "partpick.planfile",
+    "solve": "partpick.solve",
+}
+
+
+def __getattr__(name: str) -> object:
+    if name == "__version__":
+        return _version()
+    if name not in _HOMES:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    value = getattr(import_module(_HOMES[name]), name)
+    globals()[name] = value  # `solve` is also the name of its module, which the import has just put here
+    return value
+
+
+def __dir__() -> list[str]:
+    return sorted({*globals(), *__all__})
+
+
+def _version() -> str:
+    """Return the installed version; "unknown" in a checkout that was never installed."""
+    from importlib.metadata import PackageNotFoundError, version
+
+    try:
+        return version("partpick")
+    except PackageNotFoundError:
+        return "unknown"

@@ -1,0 +1,280 @@
+"""Every coil that the stock can wind or buy, as arrays over (coil, band).
+
+`FORMS` is the table of winding forms: to add one, write its builder in `winding_forms.py` and put it
+here. Which coils are in play for a band is decided here alone.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from partpick.parts import Catalogue
+from partpick.physics.self_capacitance import self_resonance_frequency
+from partpick.quantities import format_quantity
+from partpick.request import CoilRules, Request
+from partpick.result import CoilFigures, PartLine
+from partpick.winding_forms import Block, Support, bought_block, measured_block, ring_block, solenoid_block
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+FORMS = {
+    "solenoid": solenoid_block,
+    "ring core": ring_block,
+    "bought": bought_block,
+}
+TAIL = 0.05  # m of wire left at each end of a winding; common practice, no source
+LIMIT_ROUNDING = 1e-9  # a coil exactly on a limit is inside it
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Coils:
+    """J coils at B frequencies; `support` tells which former, core or bought part each needs."""
+
+    frequency: Floats  # (B,) Hz
+    supports: tuple[Support, ...]
+    support: Ints  # (J,)
+    blocks: tuple[Block, ...]
+    turns: Ints  # (J,) 0 for a bought coil
+    inductance_dc: Floats  # (J,) H
+    inductance: Floats  # (J, B) H
+    q: Floats  # (J, B) nan: unknown
+    self_capacitance: Floats  # (J,) F
+    spread: Floats  # (J,) of the inductance, fraction: tolerances and model, uniform
+    tempco: Floats  # (J, B) 1/K, nan: unknown
+    tempco_spread: Floats  # (J,) 1/K
+    price: Floats  # (J,) nan: unknown
+    volume: Floats  # (J,) m3, 0 for a bought coil
+    wire_diameter: Floats  # (J,) m, 0 without wire
+    effort_form: Ints  # (J,) 0 bought, 1 ring, 2 tube, 3 other
+    rank: Ints  # (J,) place by content: form, former, wire, pitch, turns
+    in_play: NDArray[np.bool_]  # (J, B)
+
+    def __len__(self) -> int:
+        return len(self.turns)
+
+    def locate(self, coil: int) -> tuple[Block, int]:
+        """Return the block that a coil is in, and its place there."""
+        for block in self.blocks:
+            if coil < len(block.turns):
+                return block, coil
+            coil -= len(block.turns)
+        raise IndexError(coil)
+
+    def band_notes(self, coil: int, band: int) -> tuple[str, ...]:
+        """Return what must be said of this coil at this band."""
+        support = self.supports[int(self.support[coil])]
+        low, high = support.frequency_low, support.frequency_high
+        frequency = float(self.frequency[band])
+        if (low is not None and frequency < low) or (high is not None and frequency > high):
+            return (f"{support.name} is outside its useful range, {_range_words(low, high)}: Q unknown",)
+        return ()
+
+    def listed(self, inductance: float | None) -> Ints:
+        """Return the coils in play by content, or nearest to an inductance first."""
+        inside = np.flatnonzero(self.in_play.any(axis=1))
+        if inductance is None:
+            return inside[np.argsort(self.rank[inside], kind="stable")]
+        distance = np.abs(np.log(self.inductance[inside, 0] / inductance))
+        return inside[np.lexsort((self.rank[inside], np.rint(distance * 1e12)))]
+
+    def at_band(self, coil: int, band: int) -> dict[str, float | None]:
+        """Return Q and series resistance at a band, None where unknown."""
+        q = float(self.q[coil, band])
+        if not np.isfinite(q):
+            return {"q": None, "series_resistance_ohm": None}
+        reactance = 2 * np.pi * float(self.frequency[band]) * float(self.inductance[coil, band])
+        return {"q": q, "series_resistance_ohm": reactance / q}
+
+
+def _range_words(low: float | None, high: float | None) -> str:
+    ends = [format_quantity(end, "Hz") if end is not None else "any" for end in (low, high)]
+    return f"{ends[0]} to {ends[1]}"
+
+
+def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
+    """Return every coil of the catalogue, evaluated at each band's frequency.
+
+    Parameters
+    ----------
+    request : Request
+        Bands (their highest frequency is taken), coil rules and units.
+    catalogue : Catalogue
+        Formers, cores, wires and bought inductors in stock.
+    """
+    frequency = np.array([band.highest for band in request.bands])
+    if request.coil.measured is not None:
+        blocks = [measured_block(request.coil, frequency)]
+    else:
+        wanted = request.coil.forms or tuple(FORMS)
+        blocks = [FORMS[form](catalogue, frequency, request.units) for form in FORMS if form in wanted]
+        blocks = [block for block in blocks if len(block.turns)]
+    coils = _joined(frequency, blocks)
+    return replace(coils, in_play=_in_play(request, coils))
+
+
+def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
+    supports: list[Support] = []
+    support: list[Ints] = []
+    for block in blocks:
+        support.append(block.support + len(supports))
+        supports.extend(block.supports)
+
+    def column(name: str, width: int | None = None) -> NDArray[np.generic]:
+        parts = [getattr(block, name) for block in blocks]
+        empty = np.empty((0,) if width is None else (0, width))
+        return np.concatenate(parts) if parts else empty
+
+    bands = len(frequency)
+    whole = [np.empty(0, np.int64)]
+    return Coils(
+        frequency=frequency,
+        supports=tuple(supports),
+        support=np.concatenate(support or whole),
+        blocks=tuple(blocks),
+        turns=column("turns").astype(np.int64),
+        inductance_dc=column("inductance_dc").astype(float),
+        inductance=column("inductance", bands).astype(float),
+        q=column("q", bands).astype(float),
+        self_capacitance=column("self_capacitance").astype(float),
+        spread=column("spread").astype(float),
+        tempco=column("tempco", bands).astype(float),
+        tempco_spread=column("tempco_spread").astype(float),
+        price=column("price").astype(float),
+        volume=column("volume").astype(float),
+        wire_diameter=column("wire_diameter").astype(float),
+        effort_form=np.concatenate(
+            [np.full(len(b.turns), b.effort_form) for b in blocks] or whole
+        ).astype(np.int64),
+        rank=_content_rank(blocks),
+        in_play=np.ones((sum(len(b.turns) for b in blocks), bands), dtype=np.bool_),
+    )
+
+
+def _content_rank(blocks: list[Block]) -> Ints:
+    """Order coils by form, former, wire, pitch, turns and value; never by their row."""
+    if not blocks:
+        return np.empty(0, np.int64)
+    form = np.concatenate([np.full(len(b.turns), _place([x.form for x in blocks])[i]) for i, b in enumerate(blocks)])
+    names = [[support.name for support in block.supports] for block in blocks]
+    wires = [[wire.name for wire in block.wires] for block in blocks]
+    former = np.concatenate([_place(n)[b.support] for n, b in zip(names, blocks, strict=True)])
+    wire = np.concatenate(
+        [_place(["", *w])[b.wire + 1] for w, b in zip(wires, blocks, strict=True)]
+    )
+    turns = np.concatenate([b.turns for b in blocks])
+    pitch = np.concatenate([b.pitch for b in blocks])
+    order = np.lexsort((turns, pitch, wire, former, form))
+    rank = np.empty(len(order), dtype=np.int64)
+    rank[order] = np.arange(len(order))
+    return rank
+
+
+def _place(names: list[str]) -> Ints:
+    """Return each name's place among the different names, sorted."""
+    ordered = {name: place for place, name in enumerate(sorted(set(names)))}
+    return np.array([ordered[name] for name in names], dtype=np.int64)
+
+
+def _in_play(request: Request, coils: Coils) -> NDArray[np.bool_]:
+    """Return which coils are inside every limit on coils alone, (J, B)."""
+    rules = request.coil
+    inside = np.isfinite(coils.inductance) & (coils.inductance > 0)
+    inside &= _own_resonance_high_enough(rules, coils, request)
+    inside &= _within(coils.inductance, rules.inductance)
+    inside &= _within(2 * np.pi * coils.frequency[None, :] * coils.inductance, rules.reactance)
+    start = 0
+    for block in coils.blocks:
+        rows = slice(start, start + len(block.turns))
+        start += len(block.turns)
+        if rules.proportions is not None and block.proportions is not None:
+            inside[rows] &= _within(block.proportions, rules.proportions)[:, None]
+        for band_index, band in enumerate(request.bands):
+            if band.forms is not None and block.form not in (*band.forms, "measured"):
+                inside[rows, band_index] = False
+    for band_index, band in enumerate(request.bands):
+        if band.q:
+            inside[:, band_index] &= coils.q[:, band_index] >= band.q * (1 - LIMIT_ROUNDING)
+    return inside
+
+
+def _within(values: Floats, limits: tuple[float, float] | None) -> NDArray[np.bool_]:
+    if limits is None:
+        return np.ones(values.shape, dtype=np.bool_)
+    low, high = limits
+    return (values >= low * (1 - LIMIT_ROUNDING)) & (values <= high * (1 + LIMIT_ROUNDING))
+
+
+def _own_resonance_high_enough(rules: CoilRules, coils: Coils, request: Request) -> NDArray[np.bool_]:
+    if rules.self_resonance is None:
+        return np.ones(coils.inductance.shape, dtype=np.bool_)
+    with np.errstate(divide="ignore"):
+        own = self_resonance_frequency(coils.inductance, coils.self_capacitance[:, None])
+    times = np.full(len(coils), rules.self_resonance)
+    if not rules.self_resonance_stated:
+        eased = np.concatenate([np.full(len(b.turns), b.eased_resonance) for b in coils.blocks] or [np.empty(0)])
+        times = np.where(eased > 0, 2.0, times)
+    highest = np.array([band.highest for band in request.bands])
+    return own >= times[:, None] * highest[None, :] * (1 - LIMIT_ROUNDING)
+
+
+def coil_figures(coils: Coils, coil: int, band: int) -> CoilFigures:
+    """Return one coil's figures at a band, without its reference."""
+    block, row = coils.locate(coil)
+    support = coils.supports[int(coils.support[coil])]
+    wire = block.wires[block.wire[row]] if block.wire[row] >= 0 else None
+    length = float(block.winding_length[row])
+    wire_length = float(block.wire_length[row])
+    turns = int(block.turns[row])
+    return CoilFigures(
+        reference="",
+        form=block.form,
+        label=block.label(row),
+        turns=turns or None,
+        former=support.name if turns else None,
+        wire=wire.name if wire else None,
+        winding_length=length if length > 0 else None,
+        wire_length=wire_length + 2 * TAIL if wire_length > 0 else None,
+        inductance=float(coils.inductance[coil, band]),
+        inductance_dc=_known(coils.inductance_dc[coil]),
+        self_capacitance=_known(coils.self_capacitance[coil]),
+        pitch=_positive(block.pitch[row]),
+        mean_diameter=_positive(block.mean_diameter[row]),
+        extra={"spread": float(coils.spread[coil])},
+    )
+
+
+def coil_part_line(coils: Coils, coil: int, figures: CoilFigures, bands: tuple[str, ...]) -> PartLine:
+    """Return a coil as a piece to buy or wind."""
+    block, row = coils.locate(coil)
+    support = coils.supports[int(coils.support[coil])]
+    wire = block.wires[block.wire[row]] if block.wire[row] >= 0 else None
+    price = float(coils.price[coil])
+    return PartLine(
+        reference=figures.reference,
+        kind="coil",
+        value=figures.inductance,
+        unit="H",
+        label=figures.label,
+        description=figures.label,
+        grade=None,
+        tolerance=float(coils.spread[coil]),
+        tempco=_known(coils.tempco[coil, 0]),
+        bands=bands,
+        unit_price=None if np.isnan(price) else price,
+        source=support.source,
+        wire=wire.name if wire else None,
+        wire_length=figures.wire_length if wire else None,
+        wire_price_per_m=wire.price_per_m if wire else None,
+    )
+
+
+def _known(value: float) -> float | None:
+    return float(value) if np.isfinite(value) else None
+
+
+def _positive(value: float) -> float | None:
+    return float(value) if value > 0 else None

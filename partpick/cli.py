@@ -1,0 +1,351 @@
+"""The command line: options to a request, the request to a result, the result to text and files.
+
+Only this module prints, and only `main` turns errors into a line and an exit code: 0 found, 1 nothing
+fits, 2 not understood or not writable, 130 interrupted.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from partpick.errors import PartpickError, RequestError
+from partpick.jobs import Outputs, files_read, on_stdout, outputs_of_plans, plan_files
+from partpick.options import COIL_OPTIONS, PAIR_OPTIONS, band_of, option_name, plan_options, tables_of
+from partpick.report.files import write_outputs
+from partpick.terminal import Terminal
+
+if TYPE_CHECKING:
+    from partpick.parts import Catalogue
+    from partpick.request import Request
+    from partpick.result import Result
+
+FOUND, NOTHING_FITS, NOT_UNDERSTOOD, INTERRUPTED = 0, 1, 2, 130
+LEAST_SECONDS, MOST_SECONDS = 0.001, 1e6  # of a time limit
+TOO_SHORT_TO_TELL = 1.0  # s; a run below it says nothing about its time
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run the command line and return its exit code; every expected failure is one line on stderr."""
+    try:
+        code = cli.main(args=arguments, prog_name="partpick", standalone_mode=False)
+        return code if isinstance(code, int) else FOUND
+    except (KeyboardInterrupt, click.Abort):
+        _complain("interrupted; nothing was written")
+        return INTERRUPTED
+    except click.ClickException as error:
+        _complain(_usage(error))
+        return NOT_UNDERSTOOD
+    except PartpickError as error:
+        _complain(str(error))
+        return error.exit_code
+    except BrokenPipeError:
+        return NOT_UNDERSTOOD
+
+
+def _complain(text: str) -> None:
+    """Write one line to stderr, whatever a file name or a plan has put into it."""
+    line = " ".join(text.split())
+    line = "".join(letter if letter.isprintable() else "\ufffd" for letter in line)
+    click.echo(f"partpick: {line}", err=True)
+
+
+def _usage(error: click.ClickException) -> str:
+    text = error.format_message().rstrip(".")
+    if isinstance(error, click.NoSuchOption) and re.match(r"-[0-9.]", error.option_name):
+        return f"{error.option_name}... is no option; a frequency or an inductance is above zero"
+    context = getattr(error, "ctx", None)
+    return f"{text}; see {context.command_path} --help" if context is not None else text
+
+
+# ---------------------------------------------------------------- options that commands share
+
+
+class _InOrder(click.Group):
+    """A group that lists its commands in the order in which a job meets them."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        return list(self.commands)
+
+
+def _show_version(context: click.Context, parameter: click.Parameter, wanted: bool) -> None:
+    if wanted and not context.resilient_parsing:
+        import partpick
+
+        click.echo(f"partpick {partpick.__version__}")
+        context.exit()
+
+
+def _seconds(context: click.Context, parameter: click.Parameter, given: str | None) -> float | None:
+    if given is None:
+        return None
+    from partpick.quantities import parse_number
+
+    seconds = given.strip().removesuffix("s")
+    return _named("--time-limit", lambda: parse_number(seconds, LEAST_SECONDS, MOST_SECONDS))
+
+
+def _named(name: str, read: Callable[[], float]) -> float:
+    """Return what is read, or refuse it with the name of what was typed in front."""
+    from partpick.errors import QuantityError
+
+    try:
+        return read()
+    except QuantityError as error:
+        raise RequestError(f"{name}: {error}") from None
+
+
+_TOP = click.option(
+    "--top",
+    type=click.IntRange(min=1),
+    default=10,
+    metavar="N",
+    help="Show and write so many at most (10).",
+)
+_JSON = click.option("--json", "json_path", metavar="FILE", help="Write the result as JSON; - is stdout.")
+_BOM = click.option("--bom", "bom_path", metavar="FILE", help="Write the bill of material (CSV) likewise.")
+_DRAWER = click.option("--drawer", metavar="FOLDER", help="Your own parts, in CSV files as in data/.")
+_LIMIT = click.option("--time-limit", callback=_seconds, metavar="SECONDS", help="Stop then, keep the best.")
+_FORCE = click.option("--force", is_flag=True, help="Replace an output file that is there already.")
+_BY = click.option(
+    "--by",
+    type=click.Choice(("build", "error", "price")),
+    default="build",
+    help="Rank by ease of building (build), by error or by price.",
+)
+_ALL = click.option(
+    "--all-windings", is_flag=True, help="Rank every winding, not only the best on each former."
+)
+
+
+def _common(command: Any) -> Any:
+    """Add the options of every command that ranks candidates."""
+    for add in (
+        _ALL,
+        _BY,
+        _FORCE,
+        _LIMIT,
+        _DRAWER,
+        _BOM,
+        _JSON,
+        _TOP,
+    ):  # the last one stands first in the help
+        command = add(command)
+    return command
+
+
+# ---------------------------------------------------------------- commands
+
+
+@click.group(
+    cls=_InOrder, invoke_without_command=True, context_settings={"help_option_names": ["-h", "--help"]}
+)
+@click.option(
+    "--version",
+    is_flag=True,
+    is_eager=True,
+    expose_value=False,
+    callback=_show_version,
+    help="Show the version.",
+)
+@click.pass_context
+def cli(context: click.Context) -> int:
+    """Pick the coil and the capacitors of tuned circuits from parts that can be had.
+
+    \b
+    partpick pair 7.1MHz                      one frequency, ranked choices
+    partpick bands plan.toml --bom parts.csv  switched tanks for all bands of a plan
+    """
+    if context.invoked_subcommand is None:
+        click.echo(context.get_help())
+    return FOUND
+
+
+@cli.command()
+@click.argument("frequency")
+@plan_options(PAIR_OPTIONS)
+@_common
+def pair(frequency: str, top: int, drawer: str | None, by: str, all_windings: bool, **given: Any) -> int:
+    """Rank coil and capacitor choices for one FREQUENCY, or for a range with --tuning.
+
+    Lists are comma-separated; none as a value removes a limit.
+
+    \b
+    partpick pair 7.1MHz --parts 2 --error 0.1% --bom parts.csv
+    partpick pair 455kHz --forms "ring core,bought" --connect any
+    partpick pair 7.0MHz..7.3MHz --tuning "variable capacitor:12pF..150pF"
+    """
+    from partpick.planfile import request_from_tables
+
+    outputs = Outputs(
+        {"json": given["json_path"], "bom": given["bom_path"]}, given["force"], files_read(drawer)
+    )
+    tables = {**tables_of(PAIR_OPTIONS, given), "band": [band_of(frequency)]}
+    request = request_from_tables(tables, "pair", option_name, by=by, all_windings=all_windings)
+    outputs.check()
+    return _solve_and_write(request, _catalogue(drawer), outputs, top, given["time_limit"])
+
+
+@cli.command()
+@click.argument("plans", metavar="PLAN...", nargs=-1, required=True)
+@_common
+def bands(
+    plans: tuple[str, ...], top: int, drawer: str | None, by: str, all_windings: bool, **given: Any
+) -> int:
+    """Plan switched tanks for all bands of a PLAN file (TOML; - reads stdin).
+
+    Of several plans, or a folder of them, each is solved on its own; --json and --bom then name a folder
+    that takes one file a plan.
+
+    \b
+    partpick bands plan.toml --json result.json --bom parts.csv
+    partpick bands plan.toml --drawer my-parts --by price
+    """
+    from partpick.planfile import load_plan
+
+    every = plan_files(plans)
+    jobs = list(zip(every, outputs_of_plans(every, drawer, given), strict=True))
+    for _, outputs in jobs:
+        outputs.check()
+    catalogue = None
+    codes = [FOUND]
+    for plan, outputs in jobs:
+        try:
+            request = load_plan(plan, by=by, all_windings=all_windings)
+            catalogue = _catalogue(drawer) if catalogue is None else catalogue
+            codes.append(_solve_and_write(request, catalogue, outputs, top, given["time_limit"]))
+        except PartpickError as error:
+            if len(jobs) == 1:
+                raise
+            text = str(error)
+            _complain(text if plan in text else f"{plan}: {text}")
+            codes.append(error.exit_code)
+        if codes[-1] == INTERRUPTED:
+            break
+    return max(codes)
+
+
+@cli.command()
+@click.argument("inductance", required=False)
+@click.option("--at", "frequency", metavar="FREQUENCY", help="Adds Q and series resistance there.")
+@plan_options(COIL_OPTIONS)
+@_TOP
+@_JSON
+@_DRAWER
+@_FORCE
+def windings(
+    inductance: str | None,
+    frequency: str | None,
+    top: int,
+    json_path: str | None,
+    drawer: str | None,
+    force: bool,
+    **given: Any,
+) -> int:
+    """List every coil that the stock can wind or buy, nearest first to a wanted INDUCTANCE.
+
+    \b
+    partpick windings 4.05uH --at 7.1MHz
+    partpick windings --forms "ring core" --json windings.json
+    """
+    from partpick.quantities import parse_frequency, parse_inductance
+
+    wanted = None if inductance is None else _named("INDUCTANCE", lambda: parse_inductance(inductance))
+    at = None if frequency is None else _named("--at", lambda: parse_frequency(frequency))
+    request = _windings_request(tables_of(COIL_OPTIONS, given), at)
+    outputs = Outputs({"json": json_path}, force, files_read(drawer))
+    outputs.check()
+    catalogue = _catalogue(drawer)
+    from partpick.report.result_json import windings_json
+    from partpick.report.windings_table import windings_table
+    from partpick.solve import windings as find_windings
+
+    coils = find_windings(request, catalogue, inductance=wanted, at=at)
+    outputs.write(
+        table=lambda: windings_table(coils, inductance=wanted, at=at, top=top),
+        json=lambda: windings_json(coils),
+    )
+    return FOUND if coils else NOTHING_FITS
+
+
+@cli.command()
+@_DRAWER
+def parts(drawer: str | None) -> int:
+    """List and check the parts in use: the shipped ones, or your drawer's in their place.
+
+    \b
+    partpick parts --drawer my-parts
+    """
+    from partpick.report.parts_table import parts_table
+
+    _print(parts_table(_catalogue(drawer)))
+    return FOUND
+
+
+@cli.command()
+@click.argument("directory")
+@_FORCE
+def starter(directory: str, force: bool) -> int:
+    """Write a plan and a drawer to begin from into DIRECTORY.
+
+    \b
+    partpick starter my-tanks
+    """
+    from partpick.starter import write_starter
+
+    write_starter(directory, force)
+    _print(f"A plan and a drawer to begin from are in {directory}\n")
+    return FOUND
+
+
+# ---------------------------------------------------------------- from a request to its files
+
+
+def _solve_and_write(
+    request: Request, catalogue: Catalogue, outputs: Outputs, top: int, time_limit: float | None
+) -> int:
+    """Solve one request and write its outputs; nothing is left half written by a signal."""
+    from partpick.report.bom import bom_csv
+    from partpick.report.result_json import result_json
+    from partpick.report.table import result_table
+    from partpick.solve import solve
+
+    with Terminal(time_limit) as monitor:
+        result = solve(request, catalogue, top=top, monitor=monitor)
+        monitor.writing()
+        outputs.write(
+            table=lambda: result_table(result), json=lambda: result_json(result), bom=lambda: bom_csv(result)
+        )
+    if monitor.elapsed >= TOO_SHORT_TO_TELL:
+        click.echo(f"took {monitor.elapsed:.1f} s", err=True)
+    return _exit_code(result, monitor)
+
+
+def _exit_code(result: Result, monitor: Terminal) -> int:
+    if monitor.interrupted:
+        return INTERRUPTED
+    return FOUND if result.candidates else NOTHING_FITS
+
+
+def _windings_request(tables: dict[str, Any], at: float | None) -> Request:
+    """Return a request for coils alone: no band, unless Q is asked for at a frequency."""
+    from dataclasses import replace
+
+    from partpick.planfile import request_from_tables
+
+    placeholder = {"at": 1e6 if at is None else at}  # a request is read with a band
+    request = request_from_tables({**tables, "band": [placeholder]}, "pair", option_name)
+    return request if at is not None else replace(request, bands=())
+
+
+def _catalogue(drawer: str | None) -> Catalogue:
+    from partpick.catalogue import load_catalogue
+
+    return load_catalogue(drawer)
+
+
+def _print(text: str) -> None:
+    write_outputs([on_stdout(text)], force=False)

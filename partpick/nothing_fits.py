@@ -1,0 +1,175 @@
+"""Nothing fits: which single limit, relaxed, would let a plan through, and what it would have to be."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, replace
+
+from partpick.parts import Catalogue
+from partpick.progress import Monitor
+from partpick.request import Request
+from partpick.result import Candidate, RuledOut
+
+Again = Callable[[Request, Catalogue, Monitor], Candidate | None]
+
+
+@dataclass(frozen=True)
+class _Trial:
+    """One limit: the request without it, and how to read what it would have to be."""
+
+    limit: str
+    relaxed: Request
+    needed: Callable[[Candidate], float | int | str | None]
+    words: Callable[[Candidate], str]
+    catalogue: Callable[[Catalogue], Catalogue] = lambda catalogue: catalogue
+
+
+def explain(
+    request: Request, catalogue: Catalogue, again: Again, monitor: Monitor
+) -> tuple[Candidate | None, RuledOut | None]:
+    """Return the nearest miss and the first limit which alone rules everything out.
+
+    Each limit in force is lifted by itself, all others kept; the first one under which a plan exists is
+    named with the value that this plan needs. For the error limit that value is the least possible.
+    """
+    for trial in _trials(request):
+        if monitor.stopped() is not None:
+            return None, None
+        monitor.report(f"whether a plan exists without {trial.limit}")
+        candidate = again(trial.relaxed, trial.catalogue(catalogue), monitor)
+        if candidate is not None:
+            text = f"{trial.limit} rules out every choice; {trial.words(candidate)}"
+            return candidate, RuledOut(limit=trial.limit, needed=trial.needed(candidate), text=text)
+    text = "no single limit rules it out: two or more together do, or there is no coil for these bands at all"
+    return None, RuledOut(limit="several", needed=None, text=text)
+
+
+def _trials(request: Request) -> Iterator[_Trial]:
+    limits = request.limits
+    if limits.error is not None:
+        # A default limit is off where a trimmer stands; a very wide one keeps the rest comparable.
+        wide = replace(request, by="error", limits=replace(limits, error=0.9, error_stated=True))
+        yield _Trial("error", wide, lambda c: c.worst_error, _error_words)
+    yield from _count_trials(request)
+    yield from _quality_trials(request)
+    yield from _coil_trials(request)
+    yield _Trial("quantity", replace(request, units=1), lambda _: "as many as wanted", _stock_words, _in_plenty)
+
+
+def _count_trials(request: Request) -> Iterator[_Trial]:
+    limits = request.limits
+    most = 3 if request.capacitors.connect == "any" else 6
+    if limits.parts_per_band < most:
+        more = replace(request, limits=replace(limits, parts_per_band=min(most, limits.parts_per_band + 2)))
+        yield _Trial("parts_per_band", more, _most_in_a_band, lambda c: f"{_most_in_a_band(c)} would do")
+    if limits.inductors < 2 and len(request.bands) > 1:
+        two = replace(request, limits=replace(limits, inductors=2))
+        yield _Trial("inductors", two, lambda c: c.inductor_count, lambda c: f"{c.inductor_count} would do")
+    if limits.parts is not None:
+        free = replace(request, limits=replace(limits, parts=None))
+        yield _Trial("parts", free, lambda c: c.part_count, lambda c: f"{c.part_count} would do")
+    if limits.values is not None:
+        free = replace(request, limits=replace(limits, values=None))
+        yield _Trial("values", free, lambda c: c.value_count, lambda c: f"{c.value_count} would do")
+
+
+def _quality_trials(request: Request) -> Iterator[_Trial]:
+    limits = request.limits
+    if any(band.q for band in request.bands):
+        free = replace(
+            request,
+            limits=replace(limits, q=None),
+            bands=tuple(replace(band, q=None) for band in request.bands),
+        )
+        yield _Trial("q", free, _worst_q, _q_words)
+    if limits.drift is not None:
+        free = replace(request, limits=replace(limits, drift=1.0))
+        yield _Trial("drift", free, _worst_drift, _drift_words)
+    if limits.price is not None:
+        free = replace(request, by="price", limits=replace(limits, price=None))
+        yield _Trial("price", free, lambda c: c.price, _price_words)
+    if request.stray.share is not None:
+        free = replace(request, stray=replace(request.stray, share=None))
+        yield _Trial("share", free, _worst_share, lambda c: f"{100 * _worst_share(c):.3g} % would do")
+
+
+def _coil_trials(request: Request) -> Iterator[_Trial]:
+    rules = request.coil
+    lifted = (
+        ("self_resonance", rules.self_resonance, replace(rules, self_resonance=None)),
+        ("reactance", rules.reactance, replace(rules, reactance=None)),
+        ("inductance", rules.inductance, replace(rules, inductance=None)),
+        ("proportions", rules.proportions, replace(rules, proportions=None)),
+    )
+    for name, value, without in lifted:
+        if value is not None:
+            yield _Trial(name, replace(request, coil=without), lambda _: None, _coil_words)
+    if rules.forms is not None:
+        free = replace(rules, forms=None)
+        yield _Trial("forms", replace(request, coil=free), lambda c: c.coils[0].form, _coil_words)
+
+
+def _error_words(candidate: Candidate) -> str:
+    assert candidate.worst_error is not None
+    return f"the least that these parts reach is {100 * candidate.worst_error:.3g} %"
+
+
+def _stock_words(candidate: Candidate) -> str:
+    wanted = ", ".join(dict.fromkeys(line.label for line in candidate.parts))
+    return f"with more in stock these would do: {wanted}"
+
+
+def _coil_words(candidate: Candidate) -> str:
+    coils = "; ".join(coil.label for coil in candidate.coils)
+    return f"without it: {coils}"
+
+
+def _price_words(candidate: Candidate) -> str:
+    return "no choice has a price" if candidate.price is None else f"{candidate.price:.2f} would do"
+
+
+def _most_in_a_band(candidate: Candidate) -> int:
+    return max(len(band.capacitors) for band in candidate.bands)
+
+
+def _worst_q(candidate: Candidate) -> float | None:
+    known = [band.q for band in candidate.bands if band.q is not None]
+    return min(known) if len(known) == len(candidate.bands) else None
+
+
+def _q_words(candidate: Candidate) -> str:
+    q = _worst_q(candidate)
+    return "no choice has a known Q" if q is None else f"{q:.3g} would do"
+
+
+def _worst_drift(candidate: Candidate) -> float | None:
+    drifts = [
+        abs(band.drift) + (band.drift_spread or 0.0) for band in candidate.bands if band.drift is not None
+    ]
+    return max(drifts) if drifts else None
+
+
+def _drift_words(candidate: Candidate) -> str:
+    drift = _worst_drift(candidate)
+    return "no choice has a known drift" if drift is None else f"{drift * 1e6:.3g} ppm per kelvin would do"
+
+
+def _worst_share(candidate: Candidate) -> float:
+    shares = [
+        (band.stray + band.self_capacitance) / band.capacitance
+        for band in candidate.bands
+        if band.capacitance and band.capacitors
+    ]
+    return max(shares, default=0.0)
+
+
+def _in_plenty(catalogue: Catalogue) -> Catalogue:
+    return replace(
+        catalogue,
+        capacitors=tuple(replace(part, quantity=None) for part in catalogue.capacitors),
+        inductors=tuple(replace(part, quantity=None) for part in catalogue.inductors),
+        formers=tuple(replace(part, quantity=None) for part in catalogue.formers),
+        cores=tuple(replace(part, quantity=None) for part in catalogue.cores),
+    )
+
+

@@ -1,0 +1,212 @@
+"""The order, the floor and the limits, as numbers that the search takes.
+
+Here every figure by which candidates are compared is defined once; `search/` only minimises them.
+Rules marked "common practice" have no source.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from partpick.candidates import Coils
+from partpick.parts import Capacitor
+from partpick.physics.resonance import effective_capacitance
+from partpick.preferred import commonness
+from partpick.request import Band, Request
+from partpick.search.problem import NEVER, PLENTY, Floats, Ints, Problem
+
+LEAST_FLOOR = 0.001
+TRIMMER_Q = 400.0  # film and ceramic trimmers, common practice, no source
+NEAR_OWN_RESONANCE = 0.25  # of 1 in w^2 Ls C: nobody counts on a capacitor within half of it
+
+# Enough unloaded Q and the usual reactance by frequency, from the highest down; common practice.
+ENOUGH_Q = ((1e6, 150.0), (200e3, 80.0), (0.0, 60.0))
+USUAL_REACTANCE = (
+    (30e6, (30.0, 150.0)),
+    (1e6, (60.0, 400.0)),
+    (300e3, (200.0, 1500.0)),
+    (0.0, (500.0, 5000.0)),
+)
+
+
+def enough_q(frequency: float, limit: float | None) -> float:
+    """Return the unloaded Q that is enough at a frequency: the limit where one is set. [-]"""
+    if limit:
+        return limit
+    return next(q for above, q in ENOUGH_Q if frequency > above or above == 0.0)
+
+
+def usual_reactance(frequency: float) -> tuple[float, float]:
+    """Return the usual window of tank reactance at a frequency. [ohm]"""
+    for lowest, window in USUAL_REACTANCE:
+        if frequency > lowest if lowest == 30e6 else frequency >= lowest:
+            return window
+    raise AssertionError("the last window starts at 0 Hz")
+
+
+def reactance_class(reactance: Floats, frequency: float) -> Ints:
+    """Return the octaves, begun ones counted, by which a reactance is outside the usual window. [-]"""
+    low, high = usual_reactance(frequency)
+    with np.errstate(divide="ignore"):
+        octaves = np.maximum(np.log2(low / reactance), np.log2(reactance / high))
+    return np.ceil(np.clip(octaves, 0.0, 50.0) - 1e-12).astype(np.int64)
+
+
+def effort(coils: Coils) -> Ints:
+    """Return what winding takes, (J, 3): class of form, wire outside 0.3 to 1.0 mm, volume in 25 % steps."""
+    turns = coils.turns
+    form = np.select(
+        [coils.effort_form == 0, (coils.effort_form == 1) & (turns <= 30), (coils.effort_form == 2) & (turns <= 40)],
+        [0, 1, 2],
+        3,
+    )
+    wound = coils.wire_diameter > 0
+    unusual = wound & ((coils.wire_diameter < 0.3e-3 * (1 - 1e-9)) | (coils.wire_diameter > 1.0e-3 * (1 + 1e-9)))
+    cubic_mm = np.maximum(coils.volume * 1e9, 1.0)
+    steps = np.rint(np.log(cubic_mm) / np.log(1.25))
+    return np.stack([form, unusual.astype(np.int64), steps.astype(np.int64)], axis=1).astype(np.int64)
+
+
+def tolerance_floor(coils: Coils, capacitors: tuple[Capacitor, ...], error_limit: float | None) -> float:
+    """Return the error below which differences are noise, one number a request. [fraction of f]
+
+    Half the standard uncertainty of the frequency with the closest coil and capacitors in play, at
+    least 0.1 %, at most the error limit. A tolerance is taken as uniform: standard uncertainty is
+    tolerance / sqrt(3) (JCGM 100:2008, 4.3.7); f goes with 1/sqrt(LC).
+    """
+    inside = coils.in_play.any(axis=1) if coils.in_play.size else np.zeros(0, dtype=bool)
+    coil = float(coils.spread[inside].min()) if inside.any() else 0.0
+    capacitor = min((part.tolerance for part in capacitors), default=0.0)
+    frequency = 0.5 * float(np.hypot(coil, capacitor)) / np.sqrt(3.0)
+    floor = max(LEAST_FLOOR, 0.5 * frequency)
+    return float(floor if error_limit is None else min(floor, error_limit))
+
+
+def _hundredths(price: float | None) -> int:
+    return NEVER if price is None else round(price * 100)
+
+
+def _stock(quantity: int | None, units: int) -> int:
+    return PLENTY if quantity is None else quantity // units
+
+
+def _error_limit(request: Request, band: Band) -> float:
+    limits = request.limits
+    if limits.error is None or (band.trimmer is not None and not limits.error_stated):
+        return float("inf")
+    return limits.error
+
+
+def _species(capacitors: tuple[Capacitor, ...]) -> tuple[list[tuple[int, ...]], list[Capacitor]]:
+    """Group parts that act alike at every frequency: same capacitance, same series inductance."""
+    groups: dict[tuple[object, float], list[int]] = {}
+    for index, part in enumerate(capacitors):
+        groups.setdefault((part.exact, part.series_inductance or 0.0), []).append(index)
+    ordered = sorted(groups.items(), key=lambda item: item[0])  # type: ignore[arg-type]
+    return [tuple(members) for _, members in ordered], [capacitors[members[0]] for _, members in ordered]
+
+
+def _part_rank(capacitors: tuple[Capacitor, ...]) -> Ints:
+    """Return each part's place by content: value, grade, tolerance, label."""
+    order = sorted(
+        range(len(capacitors)),
+        key=lambda i: (capacitors[i].exact, capacitors[i].grade, capacitors[i].tolerance, capacitors[i].label),
+    )
+    rank = np.empty(len(order), dtype=np.int64)
+    rank[order] = np.arange(len(order))
+    return rank
+
+
+def _nan(value: float | None) -> float:
+    return float("nan") if value is None else value
+
+
+def _part_loss(part: Capacitor, frequency: float) -> float:
+    known = part.q is not None and (part.q_below is None or frequency <= part.q_below)
+    return 1.0 / part.q if known and part.q else float("nan")
+
+
+def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], floor: float) -> Problem:
+    """Return the request as the arrays of one search.
+
+    Parameters
+    ----------
+    request : Request
+        Fixed bands only.
+    coils : Coils
+        Every coil in play.
+    capacitors : tuple of Capacitor
+        Every capacitor in play.
+    floor : float
+        The tolerance floor. [fraction of f]
+    """
+    bands, limits, stray = request.bands, request.limits, request.stray
+    frequency = np.array([band.highest for band in bands])
+    groups, first = _species(capacitors)
+    species = np.array([_effective(first, float(f)) for f in frequency]).reshape(len(bands), len(first))
+    omega = 2 * np.pi * frequency
+    trimmers = [band.trimmer for band in bands]
+    drift_set = limits.drift is not None
+    return Problem(
+        frequency=frequency,
+        error_limit=np.array([_error_limit(request, band) for band in bands]),
+        q_limit=np.array([band.q or 0.0 for band in bands]),
+        q_enough=np.array([enough_q(band.highest, band.q) for band in bands]),
+        stray=np.array([band.stray for band in bands]),
+        trimmer_low=np.array([t.low if t else 0.0 for t in trimmers]),
+        trimmer_high=np.array([t.high if t else 0.0 for t in trimmers]),
+        trimmer_loss=np.array([1.0 / (t.q or TRIMMER_Q) if t else 0.0 for t in trimmers]),
+        trimmer_tempco=np.array([_nan(t.tempco) if t else 0.0 for t in trimmers]),
+        wanted=1.0 / (omega[None, :] ** 2 * coils.inductance),
+        self_capacitance=coils.self_capacitance,
+        in_play=coils.in_play,
+        coil_loss=1.0 / coils.q,
+        reactance_class=np.stack(
+            [reactance_class(omega[b] * coils.inductance[:, b], frequency[b]) for b in range(len(bands))], axis=1
+        ).reshape(coils.inductance.shape),
+        effort=effort(coils),
+        coil_price=np.array([NEVER if np.isnan(p) else round(p * 100) for p in coils.price], dtype=np.int64),
+        support=coils.support,
+        support_stock=np.array([_stock(s.quantity, request.units) for s in coils.supports], dtype=np.int64),
+        coil_rank=coils.rank,
+        coil_tempco=coils.tempco,
+        coil_tempco_spread=coils.tempco_spread,
+        species=species,
+        commonness=commonness([part.value for part in first]).astype(np.int64),
+        options=tuple(groups),
+        part_loss=np.array([[_part_loss(c, float(f)) for c in capacitors] for f in frequency]).reshape(
+            len(bands), len(capacitors)
+        ),
+        part_tempco=np.array([_nan(c.tempco) for c in capacitors]),
+        part_tempco_spread=np.array([c.tempco_tolerance or 0.0 for c in capacitors]),
+        part_price=np.array([_hundredths(c.unit_price) for c in capacitors], dtype=np.int64),
+        part_stock=np.array([_stock(c.quantity, request.units) for c in capacitors], dtype=np.int64),
+        part_rank=_part_rank(capacitors),
+        part_value=tuple(c.exact for c in capacitors),
+        least_parts=1 if request.command == "pair" else 0,
+        most_parts=limits.parts_per_band,
+        connect_any=request.capacitors.connect == "any",
+        lead_inductance=stray.inductance,
+        share=float("inf") if stray.share is None else stray.share,
+        stray_tempco=stray.tempco,
+        drift_limit=limits.drift if drift_set and limits.drift is not None else float("inf"),
+        parts_limit=NEVER if limits.parts is None else limits.parts,
+        values_limit=NEVER if limits.values is None else limits.values,
+        price_limit=NEVER if limits.price is None else int(np.floor(limits.price * 100 + 1e-6)),
+        inductors=limits.inductors,
+        floor=floor,
+        by=request.by,
+    )
+
+
+def _effective(parts: list[Capacitor], frequency: float) -> list[float]:
+    """Return how each capacitor acts at a frequency; inf where it is near its own resonance. [F]"""
+    acting = []
+    for part in parts:
+        inductance = part.series_inductance or 0.0
+        near = (2 * np.pi * frequency) ** 2 * inductance * part.value
+        if near > NEAR_OWN_RESONANCE:
+            acting.append(float("inf"))
+        else:
+            acting.append(float(effective_capacitance(part.value, inductance, frequency)))
+    return acting

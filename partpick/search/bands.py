@@ -1,0 +1,250 @@
+"""Fixed bands with their own capacitors: the best plans over all coils, first by bound, then exactly.
+
+Coils (or pairs of them) are taken in the order of a lower bound on their place; each is settled
+exactly; the search ends when the last plan wanted ranks before the next bound. Nothing left out can
+then rank before anything shown.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from partpick.progress import Monitor
+from partpick.search.bounds import Bounds, packed_key
+from partpick.search.choose import ORDERS, Choice, Stopped
+from partpick.search.columns import ColumnSource, fine_error
+from partpick.search.evaluate import Evaluator
+from partpick.search.pairs import PairBounds
+from partpick.search.problem import NEVER, Problem
+
+_LAST = np.iinfo(np.int64).max
+
+
+@dataclass
+class Found:
+    """What a search brought home."""
+
+    choices: list[Choice] = field(default_factory=list)  # best first, one a set of supports
+    front: list[Choice] = field(default_factory=list)  # fewest pieces first
+    stopped_by: str | None = None
+    settled: bool = False  # the choices are certain, whatever became of the front
+    next_bound: int = _LAST  # packed, of the first plan not settled
+
+
+class _Ranking:
+    """The best choice of each set of supports, and when enough of them are certain."""
+
+    def __init__(self, problem: Problem, wanted: int, all_windings: bool) -> None:
+        self.problem = problem
+        self.wanted = wanted
+        self.all_windings = all_windings
+        self.best: dict[tuple[int, ...], tuple[int, Choice]] = {}
+        self.by = problem.by
+
+    def group(self, coils: tuple[int, ...]) -> tuple[int, ...]:
+        """Return the row that a set of coils belongs to."""
+        if self.all_windings:
+            return tuple(sorted(coils))
+        return tuple(sorted(int(self.problem.support[coil]) for coil in coils))
+
+    def worth_it(self, coils: tuple[int, ...], bound: int) -> bool:
+        """Whether these coils might still improve their row."""
+        known = self.best.get(self.group(coils))
+        return known is None or bound <= known[0]
+
+    def add(self, choice: Choice) -> None:
+        """Keep a choice if it is the first of its row."""
+        packed = packed_key(choice, self.by, ORDERS[self.by])
+        group = self.group(choice.coils)
+        known = self.best.get(group)
+        if known is None or choice.key < known[1].key:
+            self.best[group] = (packed, choice)
+
+    def settled(self, bound: int) -> bool:
+        """Whether the wanted rows all rank before anything with this bound or a later one."""
+        if len(self.best) < self.wanted:
+            return False
+        return sorted(packed for packed, _ in self.best.values())[self.wanted - 1] < bound
+
+    def rows(self) -> list[Choice]:
+        """Return the rows wanted, best first."""
+        return sorted((choice for _, choice in self.best.values()), key=lambda c: c.key)[: self.wanted]
+
+
+def search_bands(
+    problem: Problem,
+    source: ColumnSource,
+    *,
+    wanted: int,
+    all_windings: bool,
+    monitor: Monitor,
+    front: bool = True,
+) -> Found:
+    """Return the first `wanted` plans in the order of the request, and the front of error against pieces.
+
+    Parameters
+    ----------
+    problem : Problem
+        The arrays of the request.
+    source : ColumnSource
+        Its columns.
+    wanted : int
+        How many rows. [-]
+    all_windings : bool
+        One row a winding instead of one a former, core or bought inductor. [-]
+    monitor : Monitor
+        Hears of progress, says when to stop.
+    front : bool
+        Whether the front is wanted too. [-]
+    """
+    found = Found()
+    bounds = Bounds(problem, source)
+    evaluator = Evaluator(problem, source, monitor)
+    ranking = _Ranking(problem, wanted, all_windings)
+    try:
+        for bound, coils in _in_order(problem, bounds, ranking, monitor):
+            found.next_bound = bound
+            reason = monitor.stopped()
+            if reason is not None:
+                raise Stopped(reason)
+            monitor.report("the best plans", f"{len(ranking.best)} found")
+            if ranking.worth_it(coils, bound):
+                choice = evaluator.best(coils, problem.by)
+                if choice is not None:
+                    ranking.add(choice)
+        found.settled = True
+    except Stopped as stop:
+        found.stopped_by = stop.reason
+    found.choices = ranking.rows()
+    if front and found.choices and found.settled:
+        _add_front(problem, bounds, evaluator, found, monitor)
+    return found
+
+
+def _in_order(
+    problem: Problem, bounds: Bounds, ranking: _Ranking, monitor: Monitor
+) -> Iterator[tuple[int, tuple[int, ...]]]:
+    """Yield coils and pairs of coils by rising bound until the ranking is settled."""
+    single = bounds.alone(problem.by)
+    order = np.argsort(single, kind="stable")
+    singles = ((int(single[j]), (int(j),)) for j in order if single[j] < _LAST)
+    streams: list[Iterable[tuple[int, tuple[int, ...]]]] = [singles]
+    if problem.inductors >= 2 and problem.bands >= 2:
+        streams.append(PairBounds(problem, bounds, monitor).in_order())
+    heads: list[tuple[tuple[int, tuple[int, ...]], Iterator[tuple[int, tuple[int, ...]]]]] = []
+    for stream in streams:
+        iterator = iter(stream)
+        head = next(iterator, None)
+        if head is not None:
+            heads.append((head, iterator))
+    while heads:
+        place = min(range(len(heads)), key=lambda i: heads[i][0][0])
+        (bound, coils), iterator = heads[place]
+        if ranking.settled(bound):
+            return
+        yield bound, coils
+        following = next(iterator, None)
+        if following is None:
+            heads.pop(place)
+        else:
+            heads[place] = (following, iterator)
+
+
+def _add_front(
+    problem: Problem, bounds: Bounds, evaluator: Evaluator, found: Found, monitor: Monitor
+) -> None:
+    """Add the least worst error for each number of pieces, where it falls by more than 1e-9."""
+    try:
+        if problem.inductors >= 2 and problem.bands >= 2:
+            pairs = PairBounds(problem, bounds, monitor)
+        else:
+            pairs = None
+        for choice in _front(problem, bounds, pairs, evaluator, monitor):
+            found.front.append(choice)
+    except Stopped as stop:
+        found.stopped_by = stop.reason
+
+
+def _front(
+    problem: Problem, bounds: Bounds, pairs: PairBounds | None, evaluator: Evaluator, monitor: Monitor
+) -> Iterator[Choice]:
+    last = np.inf
+    cap = 1 + problem.bands * problem.least_parts
+    most = problem.inductors + problem.bands * problem.most_parts
+    most = min(most, problem.inductors + problem.parts_limit)
+    least = _least_possible(bounds, problem)
+    while cap <= most and last > least + 1e-9:
+        monitor.report(f"the least error with {cap} pieces")
+        choice = _least_error(problem, bounds, pairs, evaluator, cap, monitor, last - 1e-9)
+        if choice is not None:
+            error = max(float(abs(columns.error[0])) for columns in choice.columns)
+            if error < last - 1e-9:
+                last = error
+                yield choice
+        cap += 1
+
+
+def _least_possible(bounds: Bounds, problem: Problem) -> float:
+    """Return an error below which no choice can get, however many pieces it has. [-]"""
+    if problem.inductors >= 2:
+        return float(bounds.least_error.min(axis=0).max()) if len(bounds.least_error) else np.inf
+    return float(bounds.least_error.max(axis=1).min()) if len(bounds.least_error) else np.inf
+
+
+def _least_error(
+    problem: Problem,
+    bounds: Bounds,
+    pairs: PairBounds | None,
+    evaluator: Evaluator,
+    cap: int,
+    monitor: Monitor,
+    below: float,
+) -> Choice | None:
+    """Return the choice of least worst error with at most `cap` pieces, if that is below `below`."""
+    best: Choice | None = None
+    for error, coils in _by_error(bounds, pairs, cap, below):
+        reason = monitor.stopped()
+        if reason is not None:
+            raise Stopped(reason)
+        if best is not None and _fine(error) > best.key[0]:  # type: ignore[operator]
+            break
+        choice = evaluator.least_error(coils, cap)
+        if choice is not None and (best is None or choice.key < best.key):
+            best = choice
+    return best
+
+
+def _fine(error: float) -> int:
+    return int(fine_error(np.array([error]))[0]) - 1  # one step of slack for rounding
+
+
+def _by_error(
+    bounds: Bounds, pairs: PairBounds | None, cap: int, below: float
+) -> Iterator[tuple[float, tuple[int, ...]]]:
+    """Yield coils and pairs by rising least error with at most `cap` pieces."""
+    alone = bounds.staircase(cap - 1)
+    order = np.argsort(alone, kind="stable")
+    singles = iter([(float(alone[j]), (int(j),)) for j in order[: np.count_nonzero(alone < below)]])
+    if pairs is None:
+        yield from singles
+        return
+    both = pairs.by_error(cap - 2, below)
+    one, two = next(singles, None), next(both, None)
+    while one is not None or two is not None:
+        if two is None or (one is not None and one[0] <= two[0]):
+            assert one is not None
+            yield one
+            one = next(singles, None)
+        else:
+            yield two
+            two = next(both, None)
+
+
+def pieces_of_bound(bound: int, by: str) -> int | None:
+    """Return the number of pieces that a packed bound of `build` states, None for other orders. [-]"""
+    if by != "build" or bound == _LAST:
+        return None
+    return bound >> 53 if bound < NEVER << 53 else None

@@ -1,0 +1,168 @@
+"""The best columns for a given set of coils, in the order of the request.
+
+Bands are independent unless a shared limit binds, and each step of the order is a sum over bands or
+the worst of them. So the exact choice comes stage by stage: a sum is least where every band's share
+is, a worst value where no band exceeds the largest of the bands' least values. Where stock or another
+shared limit rules that choice out, `cpsat.py` settles it.
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from dataclasses import dataclass
+from fractions import Fraction
+
+import numpy as np
+
+from partpick.progress import Monitor
+from partpick.search.columns import Columns
+from partpick.search.problem import NEVER, Ints, Problem
+
+SUMS = frozenset({"pieces", "commonness", "price"})
+_REST = ("error_class", "q_class", "stray_class", "reactance_class", "effort", "commonness", "error_rank")
+ORDERS = {
+    "build": ("pieces", *_REST, "price"),
+    "error": ("fine_error", "pieces", *_REST, "price"),
+    "price": ("price", "pieces", *_REST),
+}
+
+Key = tuple[int | tuple[object, ...], ...]
+
+
+@dataclass(frozen=True)
+class Choice:
+    """One network a band: its figures in order, and the column taken at each band."""
+
+    key: Key
+    coils: tuple[int, ...]
+    columns: tuple[Columns, ...]  # one row each
+
+
+@dataclass(frozen=True)
+class Stopped(Exception):
+    """A shared-limit choice that ran out of time."""
+
+    reason: str
+
+
+def column_content(problem: Problem, columns: Columns, row: int) -> tuple[object, ...]:
+    """Return what orders equal columns: values, connection, grades, coil; never row numbers."""
+    used = [int(part) for part in columns.parts[row] if part >= 0]
+    values: tuple[Fraction, ...] = tuple(sorted(problem.part_value[part] for part in used))
+    ranks = tuple(int(problem.part_rank[part]) for part in used)
+    return values, int(columns.shape[row]), ranks, int(problem.coil_rank[columns.coil[row]])
+
+
+def plan_effort(problem: Problem, coils: tuple[int, ...]) -> tuple[int, ...]:
+    """Return the effort of winding a set of coils: form classes, unusual wires, volume steps. [-]"""
+    return tuple(int(total) for total in problem.effort[list(coils)].sum(axis=0))
+
+
+def plan_price(problem: Problem, coils: tuple[int, ...]) -> int:
+    """Return the price of a set of coils in hundredths, NEVER where one is unknown. [-]"""
+    return min(int(problem.coil_price[list(coils)].sum()), NEVER)
+
+
+def choose(
+    problem: Problem, bands: list[Columns], coils: tuple[int, ...], order: tuple[str, ...], monitor: Monitor
+) -> Choice | None:
+    """Return the first choice in the order for these coils, each used at least once; None if there is none."""
+    if any(len(columns) == 0 for columns in bands):
+        return None
+    best: Choice | None = None
+    for restricted in _each_coil_used(bands, coils):
+        choice = _uncoupled(problem, restricted, coils, order)
+        if choice is not None and (best is None or choice.key < best.key):
+            best = choice
+    if best is None or _inside_shared_limits(problem, best):
+        return best
+    from partpick.search.cpsat import choose_coupled
+
+    return choose_coupled(problem, bands, coils, order, monitor)
+
+
+def _each_coil_used(bands: list[Columns], coils: tuple[int, ...]) -> list[list[Columns]]:
+    """Return restrictions of the bands which together cover every way to use all the coils."""
+    if len(coils) == 1:
+        return [bands]
+    ways = [bands]
+    for coil in coils:
+        grown = []
+        for way in ways:
+            for band, columns in enumerate(way):
+                own = columns.take(columns.coil == coil)
+                if len(own):
+                    grown.append([*way[:band], own, *way[band + 1 :]])
+        ways = _without_repeats(grown)
+    return ways
+
+
+def _without_repeats(ways: list[list[Columns]]) -> list[list[Columns]]:
+    seen: set[tuple[tuple[int, ...], ...]] = set()
+    kept = []
+    for way in ways:
+        signature = tuple(tuple(np.unique(columns.coil)) for columns in way)
+        if signature not in seen:
+            seen.add(signature)
+            kept.append(way)
+    return kept
+
+
+def _uncoupled(
+    problem: Problem, bands: list[Columns], coils: tuple[int, ...], order: tuple[str, ...]
+) -> Choice | None:
+    key: list[int | tuple[object, ...]] = []
+    for name in order:
+        if name == "effort":
+            key.append(plan_effort(problem, coils))
+        elif name in SUMS:
+            total, bands = _least_sum(problem, bands, coils, name)
+            key.append(total)
+        else:
+            worst = max(int(getattr(columns, name).min()) for columns in bands)
+            bands = [columns.take(getattr(columns, name) <= worst) for columns in bands]
+            key.append(worst)
+    taken = tuple(_first_by_content(problem, columns) for columns in bands)
+    key.append(plan_content(problem, coils, taken))
+    return Choice(tuple(key), coils, taken)
+
+
+def _least_sum(
+    problem: Problem, bands: list[Columns], coils: tuple[int, ...], name: str
+) -> tuple[int, list[Columns]]:
+    least = [int(getattr(columns, name).min()) for columns in bands]
+    own = {"pieces": len(coils), "price": plan_price(problem, coils)}.get(name, 0)
+    total = sum(least) + own
+    if name == "price" and total >= NEVER:
+        return NEVER, bands
+    pairs = zip(bands, least, strict=True)
+    return total, [columns.take(getattr(columns, name) == value) for columns, value in pairs]
+
+
+def _first_by_content(problem: Problem, columns: Columns) -> Columns:
+    row = min(range(len(columns)), key=lambda r: column_content(problem, columns, r))
+    return columns.take(np.array([row]))
+
+
+def plan_content(problem: Problem, coils: tuple[int, ...], taken: tuple[Columns, ...]) -> tuple[object, ...]:
+    """Return the last step of the order: the coils, then each band's network, bands by frequency."""
+    ranks = tuple(sorted(int(problem.coil_rank[coil]) for coil in coils))
+    by_frequency = np.argsort(problem.frequency, kind="stable")
+    return ranks, tuple(column_content(problem, taken[band], 0) for band in by_frequency)
+
+
+def _inside_shared_limits(problem: Problem, choice: Choice) -> bool:
+    used = Counter(int(part) for columns in choice.columns for part in columns.parts[0] if part >= 0)
+    if any(count > problem.part_stock[part] for part, count in used.items()):
+        return False
+    if used.total() > problem.parts_limit:
+        return False
+    if len({problem.part_value[part] for part in used}) > problem.values_limit:
+        return False
+    price = sum(int(columns.price[0]) for columns in choice.columns) + plan_price(problem, choice.coils)
+    return problem.price_limit >= NEVER or price <= problem.price_limit
+
+
+def used_parts(choice: Choice) -> list[Ints]:
+    """Return the parts of each band of a choice, in network order. [-]"""
+    return [columns.parts[0][columns.parts[0] >= 0] for columns in choice.columns]

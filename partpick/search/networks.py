@@ -1,0 +1,246 @@
+"""Capacitances reachable with k parts, as sorted tables.
+
+A network is a shape and the species (distinct capacitances) in it:
+
+======== ============ ==================================
+shape    written      species order
+======== ============ ==================================
+PARALLEL a | b | c    ascending
+SERIES   a + b + c    ascending
+SHUNTED  a | (b + c)  a, then b <= c
+CHAINED  a + (b | c)  a, then b <= c
+======== ============ ==================================
+
+Up to `LARGEST_TABLE` networks a table is built and sorted; beyond, the networks of k parts are
+looked up as one part more on the table of k - 1, so that memory stays small.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+PARALLEL, SERIES, SHUNTED, CHAINED = range(4)
+LARGEST_TABLE = 3_000_000
+
+
+@dataclass(frozen=True, eq=False)
+class Rows:
+    """Some networks of k parts: capacitance (m,) in farad, species (m, k), shape (m,)."""
+
+    value: Floats
+    species: NDArray[np.int16]
+    shape: NDArray[np.int8]
+
+    def take(self, chosen: NDArray[np.generic] | slice) -> Rows:
+        """Return the rows chosen by a mask, an index array or a slice."""
+        return Rows(self.value[chosen], self.species[chosen], self.shape[chosen])
+
+    @staticmethod
+    def join(blocks: list[Rows], parts: int) -> Rows:
+        """Return the rows of several blocks of networks of `parts` parts."""
+        if not blocks:
+            return Rows(np.empty(0), np.empty((0, parts), np.int16), np.empty(0, np.int8))
+        return Rows(
+            np.concatenate([b.value for b in blocks]),
+            np.concatenate([b.species for b in blocks]),
+            np.concatenate([b.shape for b in blocks]),
+        )
+
+
+class Table:
+    """All networks of k parts, sorted by capacitance."""
+
+    def __init__(self, rows: Rows) -> None:
+        self.rows = rows.take(np.argsort(rows.value, kind="stable"))
+        self.value = self.rows.value
+        self.parts = self.rows.species.shape[1]
+
+    def counts(self, low: Floats, high: Floats) -> Ints:
+        """Return how many networks lie in each closed interval [low, high]. [-]"""
+        first = np.searchsorted(self.value, low, side="left")
+        last = np.searchsorted(self.value, high, side="right")
+        return np.maximum(last - first, 0)
+
+    def neighbours(self, wanted: Floats) -> tuple[Floats, Floats]:
+        """Return the capacitances next at or below, and next above, each wanted one; -inf, inf at the ends."""
+        padded = np.concatenate([[-np.inf], self.value, [np.inf]])
+        place = np.searchsorted(self.value, wanted, side="right")
+        return padded[place], padded[place + 1]
+
+    def inside(self, low: float, high: float) -> Rows:
+        """Return the networks in the closed interval [low, high]."""
+        first = int(np.searchsorted(self.value, low, side="left"))
+        last = int(np.searchsorted(self.value, high, side="right"))
+        return self.rows.take(slice(first, max(first, last)))
+
+
+class Stream:
+    """All networks of k parts as one part `a` joined to the table of k - 1, never stored."""
+
+    def __init__(self, values: Floats, inner: Table | Stream, connect_any: bool) -> None:
+        self.single = values
+        self.inner = inner
+        self.connect_any = connect_any
+        self.parts = inner.parts + 1
+
+    def counts(self, low: Floats, high: Floats) -> Ints:
+        """Return 1 or more where a network lies in the closed interval, else 0. [-]"""
+        found = np.zeros(low.shape, dtype=np.int64)
+        for _, below, above in self._inner_intervals(low, high):
+            found += self.inner.counts(below, above)
+        return found
+
+    def neighbours(self, wanted: Floats) -> tuple[Floats, Floats]:
+        """Return the capacitances next at or below, and next above, each wanted one."""
+        flat = np.ravel(wanted)
+        below, above = np.full(flat.shape, -np.inf), np.full(flat.shape, np.inf)
+        for a in self.single:
+            for join, part in self._joins(a, flat):
+                low, high = self.inner.neighbours(part)
+                for inner in (low, high):
+                    ok = np.isfinite(inner)
+                    whole = join(inner[ok])
+                    short = whole <= flat[ok]
+                    below[ok] = np.maximum(below[ok], np.where(short, whole, -np.inf))
+                    above[ok] = np.minimum(above[ok], np.where(short, np.inf, whole))
+        return below.reshape(wanted.shape), above.reshape(wanted.shape)
+
+    def inside(self, low: float, high: float) -> Rows:
+        """Return the networks in the closed interval [low, high]."""
+        blocks = []
+        for index, a in enumerate(self.single):
+            for in_series in (False, True) if self.connect_any else (False,):
+                lower, upper = self._inner_interval(a, low, high, in_series)
+                rows = self._joined(index, a, self.inner.inside(lower, upper), in_series)
+                blocks.append(rows.take((rows.value >= low) & (rows.value <= high)))
+        return Rows.join(blocks, self.parts)
+
+    def _joins(self, a: float, wanted: Floats) -> Iterator[tuple[Callable[[Floats], Floats], Floats]]:
+        yield (lambda inner: a + inner), wanted - a
+        if self.connect_any:
+            yield (lambda inner: a * inner / (a + inner)), _series_rest(a, wanted)
+
+    def _inner_intervals(self, low: Floats, high: Floats) -> Iterator[tuple[float, Floats, Floats]]:
+        for a in self.single:
+            yield a, low - a, high - a
+            if self.connect_any:
+                yield a, _series_rest(a, low), _series_rest(a, high)
+
+    @staticmethod
+    def _inner_interval(a: float, low: float, high: float, in_series: bool) -> tuple[float, float]:
+        slack = 1e-12 * max(abs(low), abs(high), a)  # rounding; exact test follows
+        if not in_series:
+            return low - a - slack, high - a + slack
+        lower, upper = _series_rest(a, np.array([low - slack, high + slack]))
+        return float(lower), float(upper)
+
+    def _joined(self, index: int, a: float, rows: Rows, in_series: bool) -> Rows:
+        last = rows.species[:, -1]
+        plain = rows.shape == (SERIES if in_series else PARALLEL)
+        if rows.species.shape[1] == 1:
+            plain[:] = True
+        keep = ~plain | (last <= index)  # one spelling of each network: ascending species
+        rows = rows.take(keep)
+        plain = plain[keep]
+        value = a * rows.value / (a + rows.value) if in_series else a + rows.value
+        own = np.full((len(value), 1), index, dtype=np.int16)
+        ascending = np.concatenate([rows.species, own], axis=1)
+        mixed = np.concatenate([own, rows.species], axis=1)
+        species = np.where(plain[:, None], ascending, mixed)
+        shape = np.where(plain, SERIES if in_series else PARALLEL, CHAINED if in_series else SHUNTED)
+        return Rows(value, species, shape.astype(np.int8))
+
+
+def _series_rest(a: float, wanted: Floats) -> Floats:
+    """Return what in series with `a` gives each wanted capacitance; inf where `a` is too small."""
+    possible = wanted < a
+    return np.where(possible, a * wanted / np.where(possible, a - wanted, 1.0), np.inf)
+
+
+def _multisets(count: int, parts: int) -> NDArray[np.int16]:
+    """Return every ascending choice of `parts` out of `count` with repetition, (m, parts)."""
+    chosen = np.arange(count, dtype=np.int16)[:, None]
+    for _ in range(parts - 1):
+        last = chosen[:, -1].astype(np.int64)
+        times = count - last
+        start = np.repeat(last - np.concatenate([[0], np.cumsum(times)[:-1]]), times)
+        added = (np.arange(int(times.sum())) + start).astype(np.int16)
+        chosen = np.concatenate([np.repeat(chosen, times, axis=0), added[:, None]], axis=1)
+    return chosen
+
+
+def _multiset_count(count: int, parts: int) -> int:
+    total = 1
+    for step in range(parts):
+        total = total * (count + step) // (step + 1)
+    return total
+
+
+def _shaped(values: Floats, species: NDArray[np.int16], shape: int) -> Rows:
+    part = values[species]
+    if shape == PARALLEL:
+        value = part[:, 0].copy()
+        for column in range(1, part.shape[1]):
+            value += part[:, column]
+    elif shape == SERIES:
+        value = 1.0 / np.sum(1.0 / part, axis=1)
+    elif shape == SHUNTED:
+        value = part[:, 0] + part[:, 1] * part[:, 2] / (part[:, 1] + part[:, 2])
+    else:
+        pair = part[:, 1] + part[:, 2]
+        value = part[:, 0] * pair / (part[:, 0] + pair)
+    return Rows(value, species, np.full(len(value), shape, np.int8))
+
+
+def _all_networks(values: Floats, parts: int, connect_any: bool) -> Rows:
+    sets = _multisets(len(values), parts)
+    blocks = [_shaped(values, sets, PARALLEL)]
+    if connect_any and parts > 1:
+        blocks.append(_shaped(values, sets, SERIES))
+    if connect_any and parts == 3:
+        pairs = _multisets(len(values), 2)
+        first = np.repeat(np.arange(len(values), dtype=np.int16), len(pairs))[:, None]
+        mixed = np.concatenate([first, np.tile(pairs, (len(values), 1))], axis=1)
+        blocks += [_shaped(values, mixed, SHUNTED), _shaped(values, mixed, CHAINED)]
+    return Rows.join(blocks, parts)
+
+
+def network_tables(values: Floats, most: int, connect_any: bool) -> list[Table | Stream]:
+    """Return the tables of 0, 1, ... `most` parts over the species `values`.
+
+    Parameters
+    ----------
+    values : (n,) array
+        Capacitance of each species, any order, all above zero. [F]
+    most : int
+        Most parts in one network; at most 3 with `connect_any`. [-]
+    connect_any : bool
+        Series and mixed networks too. [-]
+
+    Returns
+    -------
+    tables : list
+        One table for each number of parts, 0 first (its one network is 0 F).
+    """
+    if connect_any and most > 3:
+        raise ValueError("series and mixed networks are built of at most 3 parts")
+    tables: list[Table | Stream] = [
+        Table(Rows(np.zeros(1), np.empty((1, 0), np.int16), np.zeros(1, np.int8)))
+    ]
+    for parts in range(1, most + 1):
+        size = _multiset_count(len(values), parts)
+        if connect_any:
+            size = 2 * size + (2 * len(values) * _multiset_count(len(values), 2) if parts == 3 else 0)
+        inner = tables[-1]
+        if size <= LARGEST_TABLE or parts == 1:
+            tables.append(Table(_all_networks(values, parts, connect_any)))
+        else:
+            tables.append(Stream(values, inner, connect_any))
+    return tables

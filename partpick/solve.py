@@ -1,0 +1,185 @@
+"""The whole run on one page: request and catalogue in, result out."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from partpick.assessment import Design, Network, assess, recheck
+from partpick.candidates import Coils, coil_figures, realisable_coils
+from partpick.catalogue import select_capacitors
+from partpick.errors import RequestError
+from partpick.nothing_fits import explain
+from partpick.objective import build_problem, tolerance_floor
+from partpick.parts import Capacitor, Catalogue
+from partpick.progress import Monitor, Quiet
+from partpick.request import Request
+from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
+from partpick.search.bands import Found, pieces_of_bound, search_bands
+from partpick.search.choose import Choice
+from partpick.search.columns import ColumnSource
+from partpick.search.problem import Problem
+
+
+def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Monitor | None = None) -> Result:
+    """Return the ranked choices for a request, the front, and how far both are proven.
+
+    Parameters
+    ----------
+    request : Request
+        What is asked for, from `load_plan` or built by hand.
+    catalogue : Catalogue
+        The parts in use, from `load_catalogue`.
+    top : int
+        How many candidates. [-]
+    monitor : Monitor, optional
+        Hears of progress and says when to stop; by default nobody does.
+
+    Raises
+    ------
+    RequestError
+        The request asks for something that this version does not plan.
+    """
+    monitor = monitor or Quiet()
+    _refuse_unplanned(request)
+    monitor.report("every coil that the stock can wind")
+    coils = realisable_coils(request, catalogue)
+    capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
+    floor = tolerance_floor(coils, capacitors, request.limits.error)
+    problem = build_problem(request, coils, capacitors, floor)
+    source = ColumnSource(problem)
+    found = search_bands(problem, source, wanted=top, all_windings=request.all_windings, monitor=monitor)
+    result = _result(request, coils, capacitors, problem, found)
+    if result.candidates or found.stopped_by is not None:
+        return result
+    nearest, ruled_out = explain(request, catalogue, _again, monitor)
+    return replace(result, nearest_miss=nearest, ruled_out_by=ruled_out)
+
+
+def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidate | None:
+    """Return the first candidate of a request with other limits; None where nothing fits."""
+    coils = realisable_coils(request, catalogue)
+    capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
+    floor = tolerance_floor(coils, capacitors, request.limits.error)
+    problem = build_problem(request, coils, capacitors, floor)
+    found = search_bands(
+        problem, ColumnSource(problem), wanted=1, all_windings=False, monitor=monitor, front=False
+    )
+    return _candidate(request, coils, capacitors, found.choices[0]) if found.choices else None
+
+
+def windings(
+    request: Request, catalogue: Catalogue, *, inductance: float | None = None, at: float | None = None
+) -> tuple[CoilFigures, ...]:
+    """Return every coil that the stock can wind or buy, nearest to `inductance` first where one is given.
+
+    Parameters
+    ----------
+    request : Request
+        Its coil rules say which forms and proportions are in play.
+    catalogue : Catalogue
+        The parts in use.
+    inductance : float, optional
+        Wanted inductance. [H]
+    at : float, optional
+        Frequency at which inductance, Q and series resistance are taken; low frequency otherwise. [Hz]
+    """
+    coils = realisable_coils(request, catalogue)
+    chosen = coils.listed(inductance)
+    figures = []
+    for coil in chosen:
+        figure = coil_figures(coils, int(coil), 0)
+        if at is None:
+            figure = replace(figure, inductance=figure.inductance_dc or figure.inductance)
+        else:
+            figure = replace(figure, extra={**figure.extra, **coils.at_band(int(coil), 0)})
+        figures.append(figure)
+    return tuple(figures)
+
+
+def _refuse_unplanned(request: Request) -> None:
+    """Say plainly what is read but not planned yet."""
+    swept = [band.name for band in request.bands if band.swept]
+    unplanned = [
+        (bool(swept), "bands with from/to (swept)"),
+        (request.switching != "separate", f'switching = "{request.switching}"'),
+        (request.coil.taps, "coil.taps = true"),
+        (request.limits.alignable is not None, "limits.alignable"),
+        (request.limits.inductors > 2, "limits.inductors above 2"),
+        *((True, f"the table [{name}]") for name, _ in request.extra),
+    ]
+    for asked, what in unplanned:
+        if asked:
+            raise RequestError(f"{what}: read and understood, but this version does not plan it yet")
+
+
+def _result(
+    request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], problem: Problem, found: Found
+) -> Result:
+    ranked = [_candidate(request, coils, capacitors, choice) for choice in found.choices]
+    contents = [choice.key[-1] for choice in found.choices]
+    on_front = {choice.key[-1] for choice in found.front}
+    candidates = tuple(
+        replace(candidate, rank=place, on_front=content in on_front)
+        for place, (candidate, content) in enumerate(zip(ranked, contents, strict=True), 1)
+    )
+    front = tuple(
+        candidates[contents.index(choice.key[-1])]
+        if choice.key[-1] in contents
+        else replace(_candidate(request, coils, capacitors, choice), on_front=True)
+        for choice in found.front
+    )
+    return Result(
+        request=request,
+        floor=problem.floor,
+        proof=_proof(problem, found, candidates),
+        candidates=candidates,
+        front=front,
+    )
+
+
+def _candidate(
+    request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], choice: Choice
+) -> Candidate:
+    networks = tuple(
+        Network(parts=tuple(int(i) for i in columns.parts[0] if i >= 0), shape=int(columns.shape[0]))
+        for columns in choice.columns
+    )
+    design = Design(coils=tuple(int(columns.coil[0]) for columns in choice.columns), networks=networks)
+    candidate = assess(request, coils, capacitors, design)
+    recheck(candidate, max(abs(float(columns.error[0])) for columns in choice.columns))
+    return candidate
+
+
+def _proof(problem: Problem, found: Found, candidates: tuple[Candidate, ...]) -> Proof:
+    searched = (
+        f"every one of {problem.coils} coils with every network of {problem.least_parts} to "
+        f"{problem.most_parts} capacitors a band, for nominal values"
+    )
+    if problem.inductors > 1 and problem.bands > 1:
+        searched = searched.replace("coils with", f"coils, alone and up to {problem.inductors} together, with")
+    if found.stopped_by is None:
+        status = "optimal" if candidates else "infeasible"
+    else:
+        status = "feasible" if candidates else "unknown"
+    stages: list[Stage] = []
+    if candidates:
+        stages = _stages(problem, found, candidates[0])
+    return Proof(status=status, searched=searched, stages=tuple(stages), stopped_by=found.stopped_by)
+
+
+def _stages(problem: Problem, found: Found, first: Candidate) -> list[Stage]:
+    """Value and bound of each objective in the order's sequence; a bound is proven, or null."""
+    proven = found.stopped_by is None or found.settled
+    pieces = first.piece_count
+    bound = pieces if proven else pieces_of_bound(found.next_bound, problem.by)
+    bound = None if bound is None else min(bound, pieces)
+    error = max(first.worst_error or 0.0, problem.floor if problem.by != "error" else 1e-9)
+    stages = [
+        Stage(objective="pieces", value=pieces, bound=bound),
+        Stage(objective="worst_error", value=error, bound=error if proven else None),
+    ]
+    if problem.by == "error":
+        stages.reverse()
+    if problem.by == "price":
+        stages.insert(0, Stage(objective="price", value=first.price, bound=first.price if proven else None))
+    return stages

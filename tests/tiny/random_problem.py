@@ -1,0 +1,83 @@
+"""Random problems of a few coils and a few capacitors, on purpose full of ties and tight limits."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+
+import numpy as np
+
+from partpick.search.problem import NEVER, PLENTY, Problem
+
+
+def random_problem(seed: int, *, bands: int, inductors: int = 1, coupled: bool = False) -> Problem:
+    """Return a problem that depends on the seed alone."""
+    rng = np.random.default_rng(seed)
+    coils = int(rng.integers(1, 5))
+    supports = int(rng.integers(1, coils + 1))
+    values = [Fraction(int(v), 10**12) for v in sorted(rng.choice([10, 12, 15, 22, 27, 33, 47, 68, 100], rng.integers(2, 5), False))]
+    grades = [int(rng.integers(1, 3)) for _ in values]
+    options, part = [], 0
+    for count in grades:
+        options.append(tuple(range(part, part + count)))
+        part += count
+    of_part = [s for s, o in enumerate(options) for _ in o]
+    any_connection = bool(rng.integers(0, 2))
+    most = int(rng.integers(1, 3 if bands > 1 else 4))
+    frequency = np.sort(rng.uniform(3e6, 9e6, bands))
+    plain = np.array([float(v) for v in values])
+    target_total = rng.uniform(25e-12, 160e-12, (coils, bands))
+    if rng.random() < 0.5:  # on the spot: ties and zero errors
+        target_total = rng.choice(plain, (coils, bands)) * rng.integers(1, 3, (coils, bands)) + 4e-12
+    if bands > 1 and rng.random() < 0.3:  # a coil whose wanted capacitance is slightly negative in one band
+        target_total[0, -1] = 3.95e-12
+    trimmer = np.where(rng.random(bands) < 0.2, 10e-12, 0.0)
+    pick = lambda *choices: choices[int(rng.integers(0, len(choices)))]  # noqa: E731
+    limit = pick(0.02, 0.05, 0.1)
+    price = rng.integers(1, 6, part) * 5
+    price[rng.random(part) < 0.2] = NEVER
+    return Problem(
+        frequency=frequency,
+        error_limit=np.where(trimmer > 0, np.inf, limit),
+        q_limit=np.full(bands, pick(0.0, 0.0, 90.0)),
+        q_enough=np.full(bands, 150.0),
+        stray=np.full(bands, 3e-12),
+        trimmer_low=np.where(trimmer > 0, 2e-12, 0.0),
+        trimmer_high=trimmer,
+        trimmer_loss=np.where(trimmer > 0, 1 / 400, 0.0),
+        trimmer_tempco=np.where(trimmer > 0, -200e-6, 0.0),
+        wanted=target_total,
+        self_capacitance=np.full(coils, 1e-12),
+        in_play=rng.random((coils, bands)) < 0.9,
+        coil_loss=np.where(rng.random((coils, bands)) < 0.1, np.nan, 1 / rng.choice([60.0, 110.0, 160.0, 250.0], (coils, bands))),
+        reactance_class=rng.integers(0, 2, (coils, bands)),
+        effort=rng.integers(0, 2, (coils, 3)),
+        coil_price=np.where(rng.random(coils) < 0.1, NEVER, rng.integers(1, 4, coils) * 10),
+        support=rng.permutation(np.arange(coils) % supports),
+        support_stock=np.where(rng.random(supports) < 0.3, 1, PLENTY),
+        coil_rank=rng.permutation(coils),
+        coil_tempco=np.full((coils, bands), 40e-6),
+        coil_tempco_spread=np.full(coils, 10e-6),
+        species=np.tile(plain, (bands, 1)),
+        commonness=rng.integers(0, 3, len(values)),
+        options=tuple(options),
+        part_loss=np.tile(1 / rng.choice([300.0, 1000.0], part), (bands, 1)),
+        part_tempco=rng.choice([0.0, -750e-6, -150e-6], part),
+        part_tempco_spread=rng.choice([0.0, 30e-6], part),
+        part_price=price,
+        part_stock=np.where(rng.random(part) < (0.6 if coupled else 0.2), rng.integers(1, 3, part), PLENTY),
+        part_rank=np.arange(part),
+        part_value=tuple(values[s] for s in of_part),
+        least_parts=1 if bands == 1 else 0,
+        most_parts=most,
+        connect_any=any_connection,
+        lead_inductance=0.0,
+        share=pick(float("inf"), 0.2, 0.12),
+        stray_tempco=100e-6,
+        drift_limit=pick(float("inf"), float("inf"), 80e-6, 40e-6),
+        parts_limit=int(rng.integers(1, 5)) if coupled and rng.random() < 0.3 else NEVER,
+        values_limit=int(rng.integers(1, 3)) if coupled and rng.random() < 0.5 else NEVER,
+        price_limit=int(rng.integers(20, 60)) if coupled and rng.random() < 0.4 else NEVER,
+        inductors=inductors,
+        floor=pick(0.001, 0.01),
+        by=pick("build", "error", "price"),
+    )
