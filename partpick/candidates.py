@@ -16,7 +16,7 @@ from partpick.physics.self_capacitance import self_resonance_frequency
 from partpick.quantities import format_quantity
 from partpick.request import CoilRules, Request
 from partpick.result import CoilFigures, PartLine
-from partpick.winding_forms import Block, Support, bought_block, measured_block, ring_block, solenoid_block
+from partpick.winding_forms import TAIL, Block, Support, bought_block, measured_block, ring_block, solenoid_block
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -26,7 +26,6 @@ FORMS = {
     "ring core": ring_block,
     "bought": bought_block,
 }
-TAIL = 0.05  # m of wire left at each end of a winding; common practice, no source
 LIMIT_ROUNDING = 1e-9  # a coil exactly on a limit is inside it
 
 

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Sequence
+from inspect import cleandoc
 from typing import TYPE_CHECKING, Any
 
 import click
@@ -28,22 +29,25 @@ LEAST_SECONDS, MOST_SECONDS = 0.001, 1e6  # of a time limit
 TOO_SHORT_TO_TELL = 1.0  # s; a run below it says nothing about its time
 
 
+class _InterruptedError(PartpickError):
+    """A command was left before it had anything to write."""
+
+    exit_code = INTERRUPTED
+
+
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command line and return its exit code; every expected failure is one line on stderr."""
     try:
         code = cli.main(args=arguments, prog_name="partpick", standalone_mode=False)
         return code if isinstance(code, int) else FOUND
-    except (KeyboardInterrupt, click.Abort):
-        _complain("interrupted; nothing was written")
-        return INTERRUPTED
     except click.ClickException as error:
         _complain(_usage(error))
         return NOT_UNDERSTOOD
     except PartpickError as error:
         _complain(str(error))
         return error.exit_code
-    except BrokenPipeError:
-        return NOT_UNDERSTOOD
+    except click.Abort:  # interrupted before a command had begun
+        return INTERRUPTED
 
 
 def _complain(text: str) -> None:
@@ -61,13 +65,32 @@ def _usage(error: click.ClickException) -> str:
     return f"{text}; see {context.command_path} --help" if context is not None else text
 
 
-# ---------------------------------------------------------------- options that commands share
+# ---------------------------------------------------------------- what commands share
+
+
+def _examples(*lines: str) -> Callable[[Any], Any]:
+    """Return a decorator that adds examples to the help of a command, one a line."""
+
+    def decorate(command: Any) -> Any:
+        keep_lines = "\b"  # read by click
+        command.__doc__ = "\n".join((cleandoc(command.__doc__), "", keep_lines, *lines))
+        return command
+
+    return decorate
 
 
 class _InOrder(click.Group):
     """A group that lists its commands in the order in which a job meets them."""
 
+    def invoke(self, ctx: click.Context) -> Any:
+        """Run the command; click itself would answer Ctrl-C with an empty line."""
+        try:
+            return super().invoke(ctx)
+        except KeyboardInterrupt:
+            raise _InterruptedError("interrupted; nothing was written") from None
+
     def list_commands(self, ctx: click.Context) -> list[str]:
+        """Return the names of the commands as they were added."""
         return list(self.commands)
 
 
@@ -123,16 +146,7 @@ _ALL = click.option(
 
 def _common(command: Any) -> Any:
     """Add the options of every command that ranks candidates."""
-    for add in (
-        _ALL,
-        _BY,
-        _FORCE,
-        _LIMIT,
-        _DRAWER,
-        _BOM,
-        _JSON,
-        _TOP,
-    ):  # the last one stands first in the help
+    for add in reversed((_TOP, _JSON, _BOM, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
         command = add(command)
     return command
 
@@ -152,13 +166,12 @@ def _common(command: Any) -> Any:
     help="Show the version.",
 )
 @click.pass_context
+@_examples(
+    "partpick pair 7.1MHz                      one frequency, ranked choices",
+    "partpick bands plan.toml --bom parts.csv  switched tanks for all bands of a plan",
+)
 def cli(context: click.Context) -> int:
-    """Pick the coil and the capacitors of tuned circuits from parts that can be had.
-
-    \b
-    partpick pair 7.1MHz                      one frequency, ranked choices
-    partpick bands plan.toml --bom parts.csv  switched tanks for all bands of a plan
-    """
+    """Pick the coil and the capacitors of tuned circuits from parts that can be had."""
     if context.invoked_subcommand is None:
         click.echo(context.get_help())
     return FOUND
@@ -168,15 +181,15 @@ def cli(context: click.Context) -> int:
 @click.argument("frequency")
 @plan_options(PAIR_OPTIONS)
 @_common
+@_examples(
+    "partpick pair 7.1MHz --parts 2 --error 0.1% --bom parts.csv",
+    'partpick pair 455kHz --forms "ring core,bought" --connect any',
+    'partpick pair 7.0MHz..7.3MHz --tuning "variable capacitor:12pF..150pF"',
+)
 def pair(frequency: str, top: int, drawer: str | None, by: str, all_windings: bool, **given: Any) -> int:
     """Rank coil and capacitor choices for one FREQUENCY, or for a range with --tuning.
 
     Lists are comma-separated; none as a value removes a limit.
-
-    \b
-    partpick pair 7.1MHz --parts 2 --error 0.1% --bom parts.csv
-    partpick pair 455kHz --forms "ring core,bought" --connect any
-    partpick pair 7.0MHz..7.3MHz --tuning "variable capacitor:12pF..150pF"
     """
     from partpick.planfile import request_from_tables
 
@@ -192,6 +205,10 @@ def pair(frequency: str, top: int, drawer: str | None, by: str, all_windings: bo
 @cli.command()
 @click.argument("plans", metavar="PLAN...", nargs=-1, required=True)
 @_common
+@_examples(
+    "partpick bands plan.toml --json result.json --bom parts.csv",
+    "partpick bands plan.toml --drawer my-parts --by price",
+)
 def bands(
     plans: tuple[str, ...], top: int, drawer: str | None, by: str, all_windings: bool, **given: Any
 ) -> int:
@@ -199,10 +216,6 @@ def bands(
 
     Of several plans, or a folder of them, each is solved on its own; --json and --bom then name a folder
     that takes one file a plan.
-
-    \b
-    partpick bands plan.toml --json result.json --bom parts.csv
-    partpick bands plan.toml --drawer my-parts --by price
     """
     from partpick.planfile import load_plan
 
@@ -236,6 +249,10 @@ def bands(
 @_JSON
 @_DRAWER
 @_FORCE
+@_examples(
+    "partpick windings 4.05uH --at 7.1MHz",
+    'partpick windings --forms "ring core" --json windings.json',
+)
 def windings(
     inductance: str | None,
     frequency: str | None,
@@ -245,12 +262,7 @@ def windings(
     force: bool,
     **given: Any,
 ) -> int:
-    """List every coil that the stock can wind or buy, nearest first to a wanted INDUCTANCE.
-
-    \b
-    partpick windings 4.05uH --at 7.1MHz
-    partpick windings --forms "ring core" --json windings.json
-    """
+    """List every coil that the stock can wind or buy, nearest first to a wanted INDUCTANCE."""
     from partpick.quantities import parse_frequency, parse_inductance
 
     wanted = None if inductance is None else _named("INDUCTANCE", lambda: parse_inductance(inductance))
@@ -264,21 +276,22 @@ def windings(
     from partpick.solve import windings as find_windings
 
     coils = find_windings(request, catalogue, inductance=wanted, at=at)
-    outputs.write(
-        table=lambda: windings_table(coils, inductance=wanted, at=at, top=top),
-        json=lambda: windings_json(coils),
-    )
+    with Terminal() as monitor:
+        monitor.writing()
+        outputs.write(
+            table=lambda: windings_table(coils, inductance=wanted, at=at, top=top),
+            json=lambda: windings_json(coils),
+        )
     return FOUND if coils else NOTHING_FITS
 
 
 @cli.command()
 @_DRAWER
+@_examples(
+    "partpick parts --drawer my-parts",
+)
 def parts(drawer: str | None) -> int:
-    """List and check the parts in use: the shipped ones, or your drawer's in their place.
-
-    \b
-    partpick parts --drawer my-parts
-    """
+    """List and check the parts in use: the shipped ones, or your drawer's in their place."""
     from partpick.report.parts_table import parts_table
 
     _print(parts_table(_catalogue(drawer)))
@@ -288,12 +301,11 @@ def parts(drawer: str | None) -> int:
 @cli.command()
 @click.argument("directory")
 @_FORCE
+@_examples(
+    "partpick starter my-tanks",
+)
 def starter(directory: str, force: bool) -> int:
-    """Write a plan and a drawer to begin from into DIRECTORY.
-
-    \b
-    partpick starter my-tanks
-    """
+    """Write a plan and a drawer to begin from into DIRECTORY."""
     from partpick.starter import write_starter
 
     write_starter(directory, force)

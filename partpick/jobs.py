@@ -12,23 +12,24 @@ from partpick.report.files import STDOUT, Output, check_outputs, write_outputs
 
 
 class Outputs:
-    """Where the outputs of one job go.
-
-    Parameters
-    ----------
-    paths : mapping
-        Name of the output ("json", "bom") to its file, "-" or None where it is not wanted.
-    force : bool
-        Whether files that are there already are replaced.
-    inputs : sequence of str
-        Files that the command reads; an output never replaces one.
-    headline : str
-        Stands above the table, to tell several plans apart.
-    """
+    """Where the outputs of one job go."""
 
     def __init__(
         self, paths: Mapping[str, str | None], force: bool, inputs: Sequence[str] = (), headline: str = ""
     ) -> None:
+        """Keep where outputs go.
+
+        Parameters
+        ----------
+        paths : mapping
+            Name of the output ("json", "bom") to its file, "-" for stdout; None where it is not wanted.
+        force : bool
+            Whether files that are there already are replaced.
+        inputs : sequence of str
+            Files that the command reads; an output never replaces one.
+        headline : str
+            Stands above the table, to tell several plans apart.
+        """
         self.paths = {name: path for name, path in paths.items() if path is not None}
         self._force = force
         self._inputs = inputs

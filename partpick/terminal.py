@@ -28,17 +28,10 @@ TIME_LIMIT = "time limit"
 
 
 class Terminal:
-    """A `Monitor` to be used in a `with` statement around the search and the writing of its outputs.
-
-    Parameters
-    ----------
-    time_limit : float or None
-        When the search is asked to stop. [s]
-    stream : text file
-        Where progress goes; standard error where none is given.
-    """
+    """A `Monitor` to be used in a `with` statement around the search and the writing of its outputs."""
 
     def __init__(self, time_limit: float | None = None, stream: TextIO | None = None) -> None:
+        """Start the clock: `time_limit` in seconds, progress to `stream`, by default to standard error."""
         self._stream = stream if stream is not None else sys.stderr
         dumb = os.environ.get("TERM") == "dumb"
         self._rewrites = self._stream is not None and self._stream.isatty() and not dumb
@@ -96,7 +89,7 @@ class Terminal:
 
     @property
     def elapsed(self) -> float:
-        """Time since the monitor was made. [s]"""
+        """Seconds since the monitor was made."""
         return time.monotonic() - self._start
 
     @property

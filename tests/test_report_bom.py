@@ -66,6 +66,8 @@ def test_wire_is_a_row_with_its_length() -> None:
     assert (wire["reference"], wire["value"], wire["value_si"], wire["unit"]) == ("L1", "1.24 m", "1.24", "m")
     assert wire["description"] == "enamelled 0.5 mm"
     assert float(wire["line_price"]) == pytest.approx(1.24 * 0.05)
+    former = next(row for row in rows if row["kind"] == "coil")
+    assert former["unit_price"] == "0.8"  # 0.862 with its wire
 
 
 def test_line_prices_add_up_to_the_price_of_the_candidate() -> None:

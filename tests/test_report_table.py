@@ -91,14 +91,14 @@ def test_nothing_found_in_time_is_not_said_as_nothing_fits() -> None:
     """An unfinished search proves nothing."""
     text = result_table(_stopped("unknown"))
     assert "Nothing was found before the search stopped" in text
-    assert "Nothing fits." not in text
+    assert "Nothing fits" not in text
 
 
 def test_nothing_fits_names_the_limit_and_what_would_do() -> None:
-    """The way on is the limit that rules the nearest one out, in its own unit."""
+    """The way on is the limit that rules the nearest one out, and the figure that would let it through."""
     text = result_table(handmade.nothing())
-    assert "Nothing fits. The error of band beacon is too large." in text
-    assert "What would do: error = 0.83 %" in text
+    assert "Nothing fits: error rules out every choice; " in text
+    assert "the least that these parts reach is 0.83 %" in " ".join(text.split())
     assert "nearest miss" in text
 
 

@@ -29,7 +29,8 @@ def parallel_q(capacitances: ArrayLike, q: ArrayLike) -> FloatArray:
     """
     value = np.asarray(capacitances, float)
     with np.errstate(divide="ignore"):
-        return (value.sum(axis=-1) / (value / np.asarray(q, float)).sum(axis=-1))[()]
+        result: FloatArray = value.sum(axis=-1) / (value / np.asarray(q, float)).sum(axis=-1)
+        return result
 
 
 def series_q(capacitances: ArrayLike, q: ArrayLike) -> FloatArray:
@@ -53,7 +54,8 @@ def series_q(capacitances: ArrayLike, q: ArrayLike) -> FloatArray:
     """
     elastance = 1.0 / np.asarray(capacitances, float)
     with np.errstate(divide="ignore"):
-        return (elastance.sum(axis=-1) / (elastance / np.asarray(q, float)).sum(axis=-1))[()]
+        result: FloatArray = elastance.sum(axis=-1) / (elastance / np.asarray(q, float)).sum(axis=-1)
+        return result
 
 
 def loaded_q(unloaded_q: ArrayLike, reactance: ArrayLike, load_resistance: ArrayLike) -> FloatArray:
@@ -75,10 +77,12 @@ def loaded_q(unloaded_q: ArrayLike, reactance: ArrayLike, load_resistance: Array
 
     References
     ----------
-    F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 3; tests/published/loading_two_port.csv.
+    F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 3;
+    tests/published/loading_two_port.csv.
     """
     share = np.asarray(reactance, float) / np.asarray(load_resistance, float)
-    return (1.0 / (1.0 / np.asarray(unloaded_q, float) + share))[()]
+    result: FloatArray = 1.0 / (1.0 / np.asarray(unloaded_q, float) + share)
+    return result
 
 
 def damping_resistance(unloaded_q: ArrayLike, reactance: ArrayLike, wanted_q: ArrayLike) -> FloatArray:
@@ -130,7 +134,8 @@ def insertion_loss(unloaded_q: ArrayLike, loaded_q: ArrayLike) -> FloatArray:
     """
     with np.errstate(divide="ignore"):
         through = 1.0 - np.asarray(loaded_q, float) / np.asarray(unloaded_q, float)
-        return np.abs(-20.0 * np.log10(through))[()]
+        result: FloatArray = np.abs(-20.0 * np.log10(through))
+        return result
 
 
 def rejection(frequency: ArrayLike, resonance: ArrayLike, loaded_q: ArrayLike) -> FloatArray:
@@ -152,7 +157,7 @@ def rejection(frequency: ArrayLike, resonance: ArrayLike, loaded_q: ArrayLike) -
 
     Notes
     -----
-    For a loss that acts as a resistance across the tank: within 0.1 dB down to Q = 10 between half and twice
+    For a loss that acts as a resistance across the tank: within 0.1 dB down to Q = 15 between half and twice
     the resonance; far below it a coil's series resistance lifts the skirt.
 
     References
@@ -160,7 +165,8 @@ def rejection(frequency: ArrayLike, resonance: ArrayLike, loaded_q: ArrayLike) -
     F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 3 (universal resonance curve).
     """
     step = np.asarray(frequency, float) / np.asarray(resonance, float)
-    return (10.0 * np.log10(1.0 + (np.asarray(loaded_q, float) * (step - 1.0 / step)) ** 2))[()]
+    result: FloatArray = 10.0 * np.log10(1.0 + (np.asarray(loaded_q, float) * (step - 1.0 / step)) ** 2)
+    return result
 
 
 def efficiency(unloaded_q: ArrayLike, loaded_q: ArrayLike) -> FloatArray:
@@ -183,7 +189,8 @@ def efficiency(unloaded_q: ArrayLike, loaded_q: ArrayLike) -> FloatArray:
     F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 5 (tank circuits);
     tests/published/loading_stress.csv.
     """
-    return (1.0 - np.asarray(loaded_q, float) / np.asarray(unloaded_q, float))[()]
+    result: FloatArray = 1.0 - np.asarray(loaded_q, float) / np.asarray(unloaded_q, float)
+    return result
 
 
 def peak_voltage(power: ArrayLike, reactance: ArrayLike, q: ArrayLike) -> FloatArray:
@@ -213,7 +220,9 @@ def peak_voltage(power: ArrayLike, reactance: ArrayLike, q: ArrayLike) -> FloatA
     Definition of Q by energy: F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 5;
     tests/published/loading_stress.csv.
     """
-    return np.sqrt(2.0 * np.asarray(q, float) * np.asarray(power, float) * np.asarray(reactance, float))[()]
+    energy = np.asarray(q, float) * np.asarray(power, float)  # stored, times angular frequency
+    result: FloatArray = np.sqrt(2.0 * energy * np.asarray(reactance, float))
+    return result
 
 
 def circulating_current(peak_voltage: ArrayLike, reactance: ArrayLike) -> FloatArray:
@@ -235,4 +244,5 @@ def circulating_current(peak_voltage: ArrayLike, reactance: ArrayLike) -> FloatA
     ----------
     F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 5; tests/published/loading_stress.csv.
     """
-    return (np.asarray(peak_voltage, float) / np.asarray(reactance, float))[()]
+    result: FloatArray = np.asarray(peak_voltage, float) / np.asarray(reactance, float)
+    return result

@@ -16,7 +16,7 @@ from partpick.physics.skin import skin_ratio, transverse_loss_ratio
 
 FloatArray = NDArray[np.float64]
 
-# Measured Q lies 10 to 20 % below that of the copper alone (former, leads, oxide; common practice, no source).
+# Measured Q lies 10 to 20 % below the copper's alone: former, leads, oxide (common practice, no source).
 LARGEST_Q_SHORTFALL: Final = 0.20
 # Stranded wire: lay, broken strands and fabric leave the formula by about this (common practice, no source).
 STRANDED_RESISTANCE_SPREAD: Final = 0.25
@@ -40,7 +40,7 @@ class CopperLoss(NamedTuple):
 
     @property
     def total(self) -> FloatArray:
-        """Series resistance of the copper. [ohm]"""
+        """Series resistance of the copper, in ohm."""
         return self.skin + self.proximity
 
 
@@ -130,7 +130,8 @@ def ring_pitch(
     inverse_square = (side / inner**2 + side / outer**2 + 2.0 * face / (inner * outer)) / (
         2.0 * (side + face)
     )
-    return (np.deg2rad(arc) / np.asarray(turns, float) / np.sqrt(inverse_square))[()]
+    result: FloatArray = np.deg2rad(arc) / np.asarray(turns, float) / np.sqrt(inverse_square)
+    return result
 
 
 def ring_resistance(dc_resistance: ArrayLike, a_over_delta: ArrayLike, d_over_s: ArrayLike) -> CopperLoss:
@@ -153,7 +154,7 @@ def ring_resistance(dc_resistance: ArrayLike, a_over_delta: ArrayLike, d_over_s:
     Notes
     -----
     As `solenoid_resistance`, with the factor of an endless solenoid: a ring winding has no ends. The core's
-    own loss is apart; combine with `combined_q`. Within about 15 % of the copper loss up to d/s = 0.6.
+    own loss is apart; combine with `combined_q`. Perhaps 15 % up to d/s = 0.6 (estimate, no source).
 
     References
     ----------

@@ -53,7 +53,8 @@ def resonance_frequency(inductance: ArrayLike, capacitance: ArrayLike) -> FloatA
     """
     with np.errstate(divide="ignore", invalid="ignore"):
         root = np.sqrt(np.asarray(inductance, float) * np.asarray(capacitance, float))
-        return (1.0 / (2.0 * np.pi * root))[()]
+        result: FloatArray = 1.0 / (2.0 * np.pi * root)
+        return result
 
 
 def capacitance_for(frequency: ArrayLike, inductance: ArrayLike) -> FloatArray:
@@ -75,7 +76,9 @@ def capacitance_for(frequency: ArrayLike, inductance: ArrayLike) -> FloatArray:
     ----------
     W. Thomson, On transient electric currents, Philosophical Magazine 5 (1853) 393-405.
     """
-    return (1.0 / ((2.0 * np.pi * np.asarray(frequency, float)) ** 2 * np.asarray(inductance, float)))[()]
+    omega = 2.0 * np.pi * np.asarray(frequency, float)
+    result: FloatArray = 1.0 / (omega**2 * np.asarray(inductance, float))
+    return result
 
 
 def inductance_for(frequency: ArrayLike, capacitance: ArrayLike) -> FloatArray:
@@ -119,7 +122,8 @@ def reactance(inductance: ArrayLike, capacitance: ArrayLike) -> FloatArray:
     ----------
     F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 3 (resonant circuits).
     """
-    return np.sqrt(np.asarray(inductance, float) / np.asarray(capacitance, float))[()]
+    result: FloatArray = np.sqrt(np.asarray(inductance, float) / np.asarray(capacitance, float))
+    return result
 
 
 def hertz_per_farad(inductance: ArrayLike, capacitance: ArrayLike) -> FloatArray:
@@ -200,7 +204,8 @@ def tank_impedance(
     """
     s = 2j * np.pi * np.asarray(frequency, float)
     coil = np.asarray(series_resistance, float) + s * np.asarray(inductance, float)
-    return (coil / (1.0 + s * np.asarray(capacitance, float) * coil))[()]
+    result: NDArray[np.complex128] = coil / (1.0 + s * np.asarray(capacitance, float) * coil)
+    return result
 
 
 def lossy_resonances(
@@ -352,12 +357,11 @@ def ringing_time_constant(inductance: ArrayLike, series_resistance: ArrayLike) -
     W. Thomson, On transient electric currents, Philosophical Magazine 5 (1853) 393-405.
     """
     with np.errstate(divide="ignore"):
-        return (2.0 * np.asarray(inductance, float) / np.asarray(series_resistance, float))[()]
+        result: FloatArray = 2.0 * np.asarray(inductance, float) / np.asarray(series_resistance, float)
+        return result
 
 
-def ringing_cycles(
-    inductance: ArrayLike, capacitance: ArrayLike, series_resistance: ArrayLike
-) -> FloatArray:
+def ringing_cycles(inductance: ArrayLike, capacitance: ArrayLike, series_resistance: ArrayLike) -> FloatArray:
     """Return the number of cycles that a tank rings while its voltage falls to 1/e.
 
     Parameters
@@ -383,13 +387,14 @@ def ringing_cycles(
 
 
 def _loss_square(inductance: ArrayLike, capacitance: ArrayLike, series_resistance: ArrayLike) -> FloatArray:
-    """Return q = r^2 C/L = 1/Q^2. [-]"""
+    """Return q = r^2 C/L = 1/Q^2."""
     resistance = np.asarray(series_resistance, float)
-    return resistance**2 * np.asarray(capacitance, float) / np.asarray(inductance, float)
+    result: FloatArray = resistance**2 * np.asarray(capacitance, float) / np.asarray(inductance, float)
+    return result
 
 
 def _peak_square(q: FloatArray) -> FloatArray:
-    """Return the greatest |Z|^2 over L/C, in a form that keeps its digits at high Q. [-]"""
+    """Return the greatest |Z|^2 over L/C, in a form that keeps its digits at high Q."""
     root = np.sqrt(1.0 + 2.0 * q)
     with np.errstate(divide="ignore", invalid="ignore"):
         peak = (root + 1.0) / (q * (3.0 - root))

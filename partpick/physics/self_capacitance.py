@@ -61,7 +61,8 @@ def solenoid_self_capacitance(mean_diameter: ArrayLike, l_over_d: ArrayLike) -> 
     ratio = np.asarray(l_over_d, float)
     good = ratio > 0.0
     safe = np.where(good, ratio, 1.0)
-    departure = np.interp(np.log(safe), np.log(_LENGTH_RATIO), _PICOFARAD_PER_CM / _closed_form(_LENGTH_RATIO))
+    known = _PICOFARAD_PER_CM / _closed_form(_LENGTH_RATIO)
+    departure = np.interp(np.log(safe), np.log(_LENGTH_RATIO), known)
     per_metre = 1e-10 * departure * _closed_form(safe)  # pF/cm
     return np.where(good, per_metre * np.asarray(mean_diameter, float), np.nan)[()]
 
@@ -155,8 +156,8 @@ def layered_self_capacitance(
 
     Notes
     -----
-    C = 4 (n - 1)/(3 n^2) C1, with C1 that of two neighbouring layers as plates; every layer wound in the same
-    sense, far ends joined. Within 50 % (`LAYERED_SPREAD`); one chamber a section lowers it much.
+    C = 4 (n - 1)/(3 n^2) C1, with C1 that of two neighbouring layers as plates, wound back and forth.
+    Within 50 % (`LAYERED_SPREAD`); dividing the winding into sections lowers it much.
 
     References
     ----------
@@ -202,5 +203,5 @@ def self_resonance_frequency(inductance: ArrayLike, self_capacitance: ArrayLike)
 
 
 def _closed_form(l_over_d: FloatArray) -> FloatArray:
-    """Return the closed form that the table's author gives for H. [pF/cm]"""
+    """Return the closed form that the table's author gives for H, in pF/cm."""
     return 0.1126 * l_over_d + 0.08 + 0.27 / np.sqrt(l_over_d)

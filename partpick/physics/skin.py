@@ -20,7 +20,7 @@ COPPER_RESISTIVITY: Final = 1.0 / 58e6  # ohm m at 20 degC; IEC 60028:1925, from
 COPPER_TEMPERATURE_COEFFICIENT: Final = 0.00393  # 1/K at 20 degC, constant mass; IEC 60028, from memory
 
 _SERIES_BELOW: Final = 0.05  # radius / skin depth under which the power series are exact to 1e-11
-_ASYMPTOTIC_ABOVE: Final = 1000.0  # and over which the asymptotic ones are better than 1e-6
+_ASYMPTOTIC_ABOVE: Final = 1000.0  # and over which the asymptotic ones are better than 1e-9
 
 
 def copper_resistivity(temperature: ArrayLike = 20.0) -> FloatArray:
@@ -96,7 +96,8 @@ def wire_resistance(
     IEC 60028:1925; from memory.
     """
     section = np.asarray(strands, float) * np.pi * np.asarray(diameter, float) ** 2 / 4.0
-    return (copper_resistivity(temperature) * np.asarray(length, float) / section)[()]
+    result: FloatArray = copper_resistivity(temperature) * np.asarray(length, float) / section
+    return result
 
 
 def skin_ratio(a_over_delta: ArrayLike) -> FloatArray:
@@ -144,7 +145,8 @@ def internal_inductance_ratio(a_over_delta: ArrayLike) -> FloatArray:
 
     References
     ----------
-    F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 2; tests/published/loss_skin_effect.csv.
+    F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 2;
+    tests/published/loss_skin_effect.csv.
     """
     return _per_distinct(_internal_inductance_ratio, a_over_delta)
 
@@ -187,7 +189,7 @@ def _per_distinct(function: Callable[[FloatArray], FloatArray], argument: ArrayL
 def _bessel_quotient(x: FloatArray) -> NDArray[np.complex128]:
     """Return J0(z)/J1(z) for z = (1 - j) x, x within the range of neither series; the scalings cancel."""
     z = (1.0 - 1.0j) * np.clip(np.nan_to_num(x), _SERIES_BELOW, _ASYMPTOTIC_ABOVE)
-    return jve(0, z) / jve(1, z)
+    return np.asarray(jve(0, z) / jve(1, z), complex)
 
 
 def _choose(x: FloatArray, small: FloatArray, exact: FloatArray, large: FloatArray) -> FloatArray:
@@ -198,20 +200,16 @@ def _choose(x: FloatArray, small: FloatArray, exact: FloatArray, large: FloatArr
 
 def _skin_ratio(x: FloatArray) -> FloatArray:
     exact = np.real((0.5 - 0.5j) * x * _bessel_quotient(x))
-    with np.errstate(divide="ignore"):
-        large = x / 2.0 + 0.25 + 3.0 / (32.0 * x)
-    return _choose(x, 1.0 + x**4 / 48.0, exact, large)
+    return _choose(x, 1.0 + x**4 / 48.0, exact, x / 2.0 + 0.25 + 3.0 / (32.0 * np.maximum(x, 1.0)))
 
 
 def _internal_inductance_ratio(x: FloatArray) -> FloatArray:
-    with np.errstate(divide="ignore", invalid="ignore"):
-        exact = np.imag((0.5 - 0.5j) * x * _bessel_quotient(x)) / (x**2 / 4.0)
-        large = 2.0 / x
-    return _choose(x, 1.0 - x**4 / 96.0, exact, large)
+    above = np.maximum(x, _SERIES_BELOW)
+    exact = np.imag((0.5 - 0.5j) * above * _bessel_quotient(x)) / (above**2 / 4.0)
+    return _choose(x, 1.0 - x**4 / 96.0, exact, 2.0 / above - 0.375 / above**3)
 
 
 def _transverse_loss_ratio(x: FloatArray) -> FloatArray:
     exact = np.abs(np.real((1.0 - 1.0j) * x / _bessel_quotient(x))) / 2.0
-    with np.errstate(divide="ignore"):
-        large = x / 2.0 - 0.25 - 1.0 / (32.0 * x)
-    return _choose(x, x**4 / 8.0 - 11.0 * x**8 / 768.0, exact, large)
+    small = x**4 / 8.0 - 11.0 * x**8 / 768.0
+    return _choose(x, small, exact, x / 2.0 - 0.25 - 1.0 / (32.0 * np.maximum(x, 1.0)))

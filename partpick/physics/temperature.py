@@ -114,7 +114,8 @@ def parallel_tempco(capacitances: ArrayLike, tempcos: ArrayLike) -> FloatArray:
     Derivative of the sum; tests/published/temperature_drift.csv.
     """
     value = np.asarray(capacitances, float)
-    return ((value * np.asarray(tempcos, float)).sum(axis=-1) / value.sum(axis=-1))[()]
+    result: FloatArray = (value * np.asarray(tempcos, float)).sum(axis=-1) / value.sum(axis=-1)
+    return result
 
 
 def series_tempco(capacitances: ArrayLike, tempcos: ArrayLike) -> FloatArray:
@@ -137,7 +138,8 @@ def series_tempco(capacitances: ArrayLike, tempcos: ArrayLike) -> FloatArray:
     Derivative of the series formula; tests/published/temperature_drift.csv.
     """
     elastance = 1.0 / np.asarray(capacitances, float)
-    return ((elastance * np.asarray(tempcos, float)).sum(axis=-1) / elastance.sum(axis=-1))[()]
+    result: FloatArray = (elastance * np.asarray(tempcos, float)).sum(axis=-1) / elastance.sum(axis=-1)
+    return result
 
 
 def frequency_drift(inductance_tempco: ArrayLike, capacitance_tempco: ArrayLike) -> FloatArray:
@@ -159,7 +161,8 @@ def frequency_drift(inductance_tempco: ArrayLike, capacitance_tempco: ArrayLike)
     ----------
     Logarithmic derivative of 1/(2 pi sqrt(L C)); tests/published/temperature_drift.csv.
     """
-    return (-(np.asarray(inductance_tempco, float) + np.asarray(capacitance_tempco, float)) / 2.0)[()]
+    result: FloatArray = -(np.asarray(inductance_tempco, float) + np.asarray(capacitance_tempco, float)) / 2.0
+    return result
 
 
 def drift_spread(inductance_spread: ArrayLike, capacitance_spread: ArrayLike) -> FloatArray:
@@ -182,7 +185,8 @@ def drift_spread(inductance_spread: ArrayLike, capacitance_spread: ArrayLike) ->
     Logarithmic derivative of 1/(2 pi sqrt(L C)), worst case.
     """
     sizes = np.abs(np.asarray(inductance_spread, float)) + np.abs(np.asarray(capacitance_spread, float))
-    return (sizes / 2.0)[()]
+    result: FloatArray = sizes / 2.0
+    return result
 
 
 def compensating_share(
@@ -210,5 +214,6 @@ def compensating_share(
     """
     main = np.asarray(main_tempco, float)
     with np.errstate(divide="ignore", invalid="ignore"):
-        share = (np.asarray(inductance_tempco, float) + main) / (main - np.asarray(compensating_tempco, float))
+        need = np.asarray(inductance_tempco, float) + main
+        share = need / (main - np.asarray(compensating_tempco, float))
         return np.where((share >= 0.0) & (share <= 1.0), share, np.nan)[()]

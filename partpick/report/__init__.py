@@ -1,0 +1,1 @@
+"""One module a form of output; they read a result and compute nothing new."""

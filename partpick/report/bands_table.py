@@ -34,14 +34,14 @@ def bands_in_full(candidate: Candidate) -> list[str]:
 
 
 def share_of_strays(band: BandFigures) -> float | None:
-    """Return wiring and self-capacitance as a fraction of all capacitance in circuit. [-]"""
+    """Return wiring and self-capacitance as a fraction of all capacitance in circuit."""
     if band.capacitance is None or band.capacitance <= 0:
         return None
     return (band.stray + band.self_capacitance) / band.capacitance
 
 
 def worst_q(candidate: Candidate) -> float | None:
-    """Return the least unloaded Q of all bands; None where one is unknown. [-]"""
+    """Return the least unloaded Q of all bands; None where one is unknown."""
     figures = [band.q for band in candidate.bands]
     known = [q for q in figures if q is not None]
     return min(known) if known and len(known) == len(figures) else None

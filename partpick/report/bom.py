@@ -1,6 +1,7 @@
 """The bill of material as CSV (RFC 4180): what to buy, pull or wind, every candidate in rank order.
 
-Figures are for one unit. Wire is a row of its own: its value is the length of one piece.
+Figures are for one unit. Wire is a row of its own: its value is the length of one piece, and its price is
+taken out of the price of the coil that it is wound into, so that the column adds up.
 """
 
 from __future__ import annotations
@@ -63,25 +64,38 @@ def _line(part: PartLine) -> _Line:
         unit=part.unit,
         tolerance=part.tolerance,
         description=part.description,
-        unit_price=part.unit_price,
+        unit_price=_without_wire(part),
         source=part.source,
         told_apart=(part.label, part.grade, part.tempco, part.wire, part.wire_length),
     )
 
 
+def _wire_price(part: PartLine) -> float | None:
+    if part.wire_length is None or part.wire_price_per_m is None:
+        return None
+    return part.wire_length * part.wire_price_per_m
+
+
+def _without_wire(part: PartLine) -> float | None:
+    """Return the price of a piece, of a wound coil that of its former or core alone."""
+    wire = _wire_price(part)
+    if part.unit_price is None or wire is None:
+        return part.unit_price
+    return max(part.unit_price - wire, 0.0)
+
+
 def _wire_line(part: PartLine) -> _Line | None:
     if part.wire is None or part.wire_length is None:
         return None
-    price = part.wire_price_per_m
     return _Line(
         kind="wire",
         value=part.wire_length,
         unit="m",
         tolerance=None,
         description=part.wire,
-        unit_price=None if price is None else price * part.wire_length,
+        unit_price=_wire_price(part),
         source="",
-        told_apart=(price,),
+        told_apart=(part.wire_price_per_m,),
     )
 
 
@@ -110,7 +124,7 @@ def _in_order(names: Iterable[str]) -> list[str]:
 
 
 def _money(price: float | None) -> str:
-    """Return a price without the tail of binary fractions."""
+    """Return a price without the tail of binary fractions, which no price list has."""
     return "" if price is None else f"{float(price):.10g}"
 
 

@@ -19,11 +19,10 @@ from partpick.report.text import (
     wrapped,
 )
 from partpick.request import Request
-from partpick.result import Candidate, CoilFigures, PartLine, Proof, Result, RuledOut
+from partpick.result import Candidate, CoilFigures, PartLine, Proof, Result
 
 MOST_WARNINGS = 10
 _ORDERS = {"build": "easiest to build first", "error": "least error first", "price": "cheapest first"}
-_FRACTIONS = ("error", "excess", "margin", "share", "stray-share")
 
 
 def result_table(result: Result) -> str:
@@ -225,24 +224,8 @@ def _nothing(result: Result) -> list[str]:
         return wrapped(
             "Nothing was found before the search stopped; that does not say that nothing fits.", 0, 2
         )
-    if result.ruled_out_by is None:
-        return wrapped("Nothing fits.")
-    lines = wrapped(f"Nothing fits. {result.ruled_out_by.text}", 0, 2)
-    needed = _needed(result.ruled_out_by)
-    return lines + wrapped(f"What would do: {needed}", 0, 2) if needed else lines
-
-
-def _needed(ruled_out: RuledOut) -> str:
-    needed, limit = ruled_out.needed, ruled_out.limit
-    if needed is None:
-        return ""
-    if isinstance(needed, str):
-        return f"{limit} = {needed}"
-    if limit in _FRACTIONS:
-        return f"{limit} = {format_percent(needed)}"
-    if limit == "drift":
-        return f"{limit} = {figure(needed * 1e6)} ppm"
-    return f"{limit} = {figure(needed, 6)}"
+    reason = "" if result.ruled_out_by is None else f": {result.ruled_out_by.text.rstrip('.')}"
+    return wrapped(f"Nothing fits{reason}.", 0, 2)
 
 
 def _proof(result: Result) -> list[str]:

@@ -18,7 +18,7 @@ def clean(text: str) -> str:
 
 
 def columns_of(text: str) -> int:
-    """Return how many columns of a terminal a text takes. [-]"""
+    """Return how many columns of a terminal a text takes."""
     return sum(
         0 if unicodedata.combining(letter) else 2 if unicodedata.east_asian_width(letter) in "WF" else 1
         for letter in text

@@ -28,7 +28,7 @@ def windings_table(
     if not coils:
         return "\n".join(wrapped("Nothing in stock gives such a coil.")) + "\n"
     shown = coils[:top]
-    lines = wrapped(_heading(len(coils), len(shown), inductance, at)) + [""]
+    lines = [*wrapped(_heading(len(coils), len(shown), inductance, at)), ""]
     head = ["inductance"]
     head += ["off by"] if inductance is not None else []
     head += ["Q", "resistance"] if at is not None else []

@@ -1,4 +1,4 @@
-"""Fixed bands with their own capacitors: the best plans over all coils, first by bound, then exactly.
+"""Bands with their own capacitors: the best plans over all coils, first by bound, then exactly.
 
 Coils (or pairs of them) are taken in the order of a lower bound on their place; each is settled
 exactly; the search ends when the last plan wanted ranks before the next bound. Nothing left out can
@@ -13,12 +13,13 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from partpick.progress import Monitor
-from partpick.search.bounds import Bounds, packed_key
-from partpick.search.choose import ORDERS, Choice, Stopped
-from partpick.search.columns import ColumnSource, fine_error
+from partpick.search.bounds import BELOW_PIECES, Bounds, packed_key
+from partpick.search.choose import Choice, Stopped
+from partpick.search.columns import ColumnSource
+from partpick.search.figures import fine_error, whole_excess
 from partpick.search.evaluate import Evaluator
 from partpick.search.pairs import PairBounds
-from partpick.search.problem import NEVER, Problem
+from partpick.search.problem import Problem
 
 _LAST = np.iinfo(np.int64).max
 
@@ -57,7 +58,7 @@ class _Ranking:
 
     def add(self, choice: Choice) -> None:
         """Keep a choice if it is the first of its row."""
-        packed = packed_key(choice, self.by, ORDERS[self.by])
+        packed = packed_key(choice, self.problem)
         group = self.group(choice.coils)
         known = self.best.get(group)
         if known is None or choice.key < known[1].key:
@@ -85,6 +86,8 @@ def search_bands(
 ) -> Found:
     """Return the first `wanted` plans in the order of the request, and the front of error against pieces.
 
+    Where every band is swept the front is that of the worst excess.
+
     Parameters
     ----------
     problem : Problem
@@ -102,7 +105,7 @@ def search_bands(
     """
     found = Found()
     bounds = Bounds(problem, source)
-    evaluator = Evaluator(problem, source, monitor)
+    evaluator = Evaluator(problem, source, monitor, bounds.least_leading)
     ranking = _Ranking(problem, wanted, all_windings)
     try:
         for bound, coils in _in_order(problem, bounds, ranking, monitor):
@@ -188,10 +191,11 @@ def _front(
 
 
 def _least_possible(bounds: Bounds, problem: Problem) -> float:
-    """Return an error below which no choice can get, however many pieces it has. [-]"""
-    if problem.inductors >= 2:
-        return float(bounds.least_error.min(axis=0).max()) if len(bounds.least_error) else np.inf
-    return float(bounds.least_error.max(axis=1).min()) if len(bounds.least_error) else np.inf
+    """Return a worst error or excess below which no choice can get, however many pieces it has. [-]"""
+    least = bounds.least_leading
+    if not len(least):
+        return np.inf
+    return float(least.min(axis=0).max() if problem.inductors >= 2 else least.max(axis=1).min())
 
 
 def _least_error(
@@ -209,22 +213,24 @@ def _least_error(
         reason = monitor.stopped()
         if reason is not None:
             raise Stopped(reason)
-        if best is not None and _fine(error) > best.key[0]:  # type: ignore[operator]
+        if best is not None and _fine(problem, error) > best.key[evaluator.leading_place]:  # type: ignore[operator]
             break
-        choice = evaluator.least_error(coils, cap)
+        choice = evaluator.least_error(coils, cap, error)
         if choice is not None and (best is None or choice.key < best.key):
             best = choice
     return best
 
 
-def _fine(error: float) -> int:
-    return int(fine_error(np.array([error]))[0]) - 1  # one step of slack for rounding
+def _fine(problem: Problem, leading: float) -> int:
+    """Return the whole number that leads the order for an error or an excess, less a step for rounding."""
+    figure = np.array([leading])
+    return int((whole_excess(figure, 1e-12) if problem.led_by_excess else fine_error(figure))[0]) - 1
 
 
 def _by_error(
     bounds: Bounds, pairs: PairBounds | None, cap: int, below: float
 ) -> Iterator[tuple[float, tuple[int, ...]]]:
-    """Yield coils and pairs by rising least error with at most `cap` pieces."""
+    """Yield coils and pairs by rising least error (or excess) with at most `cap` pieces."""
     alone = bounds.staircase(cap - 1)
     order = np.argsort(alone, kind="stable")
     singles = iter([(float(alone[j]), (int(j),)) for j in order[: np.count_nonzero(alone < below)]])
@@ -245,6 +251,11 @@ def _by_error(
 
 def pieces_of_bound(bound: int, by: str) -> int | None:
     """Return the number of pieces that a packed bound of `build` states, None for other orders. [-]"""
-    if by != "build" or bound == _LAST:
-        return None
-    return bound >> 53 if bound < NEVER << 53 else None
+    return bound >> BELOW_PIECES if by == "build" and bound != _LAST else None
+
+
+def leading_figure(problem: Problem, choice: Choice) -> float:
+    """Return the worst error of a choice, or its worst excess where every band is swept. [-]"""
+    if problem.led_by_excess:
+        return max(float(columns.excess[0]) for columns in choice.columns)
+    return max(abs(float(columns.error[0])) for columns in choice.columns)

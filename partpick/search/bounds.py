@@ -8,8 +8,9 @@ from __future__ import annotations
 
 import numpy as np
 
-from partpick.search.choose import Choice
-from partpick.search.columns import ColumnSource, coarse_error, fine_error, quality_class, stray_class
+from partpick.search.choose import ORDERS, Choice
+from partpick.search.columns import ColumnSource
+from partpick.search.figures import coarse_error, fine_error, quality_class, stray_class, whole_excess
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 
 IMPOSSIBLE = 1000  # fewest parts where a coil cannot serve a band
@@ -18,6 +19,9 @@ _BITS = {
     "pieces": 9,
     "error_class": 27,
     "fine_error": 36,
+    "excess_class": 37,
+    "fine_excess": 44,
+    "coarse_excess": 27,  # in steps of 1e-6, so nothing may follow it
     "q_class": 3,
     "stray_class": 2,
     "reactance_class": 4,
@@ -26,12 +30,30 @@ _BITS = {
     "wires": 3,
     "volume": 10,
 }
-_TAIL = ("q_class", "stray_class", "reactance_class")
-FIELDS = {
-    "build": ("pieces", "error_class", *_TAIL, "forms", "wires", "volume"),
-    "error": ("fine_error", "pieces", *_TAIL, "forms", "wires"),
+_TAIL = ("q_class", "stray_class", "reactance_class", "forms", "wires")
+_FIXED = {
+    "build": ("pieces", "error_class", *_TAIL, "volume"),
+    "error": ("fine_error", "pieces", *_TAIL),
     "price": ("price", "pieces", "error_class"),
 }
+_SWEPT = {
+    "build": ("pieces", "excess_class", *_TAIL),
+    "error": ("fine_excess", "pieces", *_TAIL),
+    "price": ("price", "pieces", "coarse_excess"),
+}
+_MIXED = {
+    "build": ("pieces", "error_class", "coarse_excess"),
+    "error": ("fine_error", "coarse_excess"),
+    "price": ("price", "pieces", "error_class"),
+}
+_COARSE = 10**6  # of fine_excess
+BELOW_PIECES = 54  # bits of a bound of `build` after its pieces, the same for all kinds
+
+
+def packed_fields(problem: Problem, by: str) -> tuple[str, ...]:
+    """Return the steps of the order that a packed bound holds; they fit into 63 bits."""
+    kind = _SWEPT if problem.led_by_excess else _MIXED if problem.mixed else _FIXED
+    return kind[by]
 
 
 class Bounds:
@@ -40,43 +62,55 @@ class Bounds:
     def __init__(self, problem: Problem, source: ColumnSource) -> None:
         self.problem = problem
         self.errors = [np.full(problem.wanted.shape, np.inf)] * problem.least_parts
+        excesses = list(self.errors)
         for parts in range(problem.least_parts, problem.most_parts + 1):
             self.errors.append(source.least_errors(parts))
+            excesses.append(source.least_excesses(parts))
         finite = np.array([np.isfinite(errors) for errors in self.errors])
         self.possible = finite.any(axis=0)
         self.fewest = np.where(self.possible, finite.argmax(axis=0), IMPOSSIBLE).astype(np.int64)
-        stacked = np.array(self.errors)
-        self.error_at_fewest = np.take_along_axis(
-            stacked, np.minimum(self.fewest, len(stacked) - 1)[None], axis=0
-        )[0]
-        self.least_error = stacked.min(axis=0)
-        self.q_class = quality_class(problem.coil_loss, problem.q_enough[None, :])
+        self.error_at_fewest, self.least_error = self._at_fewest_and_least(self.errors)
+        self.excess_at_fewest, self.least_excess = self._at_fewest_and_least(excesses)
+        # what leads by error and on the front, by number of parts
+        self.leading = excesses if problem.led_by_excess else self.errors
+        self.least_leading = self.least_excess if problem.led_by_excess else self.least_error
+        loss = np.where(problem.swept[None, :], np.maximum(problem.coil_loss, problem.coil_loss_low), problem.coil_loss)
+        self.q_class = quality_class(loss, problem.q_enough[None, :])
         self.stray_class = self._least_stray_class()
+
+    def _at_fewest_and_least(self, levels: list[Floats]) -> tuple[Floats, Floats]:
+        stacked = np.array(levels)
+        fewest = np.minimum(self.fewest, len(stacked) - 1)[None]
+        at_fewest = np.take_along_axis(stacked, fewest, axis=0)[0]
+        return at_fewest, np.where(self.possible, stacked.min(axis=0), np.inf)
 
     def _least_stray_class(self) -> Ints:
         p = self.problem
         error = np.minimum(p.error_limit, 0.999)[None, :]
-        most = p.wanted / (1 - error) ** 2
+        most = np.where(p.swept[None, :], p.most_at_high_end, p.wanted / (1 - error) ** 2)
         strays = p.self_capacitance[:, None] + p.stray[None, :]
         return stray_class(strays / most)
 
     def classes(self, by: str) -> dict[str, Ints]:
         """Return the per-band figures that enter the bound, (J, B) each."""
         p = self.problem
-        if by == "error":
-            first = {"fine_error": _whole(fine_error, self.least_error), "pieces": self.fewest}
-        elif by == "price":
-            coarse = _whole(lambda error: coarse_error(error, p.floor), self.least_error)
-            first = {"price": self._least_price(), "pieces": self.fewest, "error_class": coarse}
-        else:
-            coarse = _whole(lambda error: coarse_error(error, p.floor), self.error_at_fewest)
-            first = {"pieces": self.fewest, "error_class": coarse}
-        return {
-            **first,
+        error, excess = self.least_error, self.least_excess
+        if by == "build":
+            error, excess = self.error_at_fewest, self.excess_at_fewest
+        figures = {
+            "pieces": self.fewest,
+            "error_class": _whole(lambda some: coarse_error(some, p.floor), error),
+            "fine_error": _whole(fine_error, error),
+            "excess_class": _whole(lambda some: whole_excess(some, 1e-9), excess),
+            "fine_excess": _whole(lambda some: whole_excess(some, 1e-12), excess),
+            "coarse_excess": _whole(lambda some: whole_excess(some, 1e-12) // _COARSE, excess),
             "q_class": self.q_class,
             "stray_class": self.stray_class,
             "reactance_class": p.reactance_class,
+            "price": self._least_price(),
         }
+        fields = packed_fields(p, by)
+        return {name: figure for name, figure in figures.items() if name in fields or name == "pieces"}
 
     def _least_price(self) -> Ints:
         p = self.problem
@@ -85,8 +119,11 @@ class Bounds:
         return np.where(self.fewest == 0, 0, np.minimum(self.fewest * least, NEVER))
 
     def staircase(self, cap: int) -> Floats:
-        """Return the least worst error of each coil alone with at most `cap` capacitors, (J,); inf: none. [-]"""
-        best = np.minimum.accumulate(np.array(self.errors), axis=0)
+        """Return the least worst error of each coil alone with at most `cap` capacitors, (J,); inf: none.
+
+        The excess where every band is swept. [-]
+        """
+        best = np.minimum.accumulate(np.array(self.leading), axis=0)
         rows = np.flatnonzero(self.possible.all(axis=1))
         worst = np.full(self.problem.coils, np.inf)
         if not len(rows):
@@ -114,7 +151,7 @@ class Bounds:
         if "price" in figures:
             figures["price"] = np.minimum(figures["price"] + p.coil_price, NEVER)
         figures |= dict(zip(("forms", "wires", "volume"), p.effort.T, strict=True))
-        packed = pack(figures, by)
+        packed = pack(figures, packed_fields(p, by))
         return np.where(self.possible.all(axis=1), packed, np.iinfo(np.int64).max)
 
 
@@ -124,7 +161,7 @@ def _whole(rule: object, error: Floats) -> Ints:
     return np.where(finite, rule(np.where(finite, error, 0.0)), NEVER).astype(np.int64)
 
 
-def pack(figures: dict[str, Ints], by: str, *, after_full: int = 0) -> Ints:
+def pack(figures: dict[str, Ints], fields: tuple[str, ...], *, after_full: int = 0) -> Ints:
     """Return the leading steps of the order in one whole number each.
 
     A figure too wide for its field fills it; what follows it then says nothing, so it is set to the
@@ -132,7 +169,7 @@ def pack(figures: dict[str, Ints], by: str, *, after_full: int = 0) -> Ints:
     """
     packed = np.zeros_like(next(iter(figures.values())))
     full = np.zeros(packed.shape, dtype=np.bool_)
-    for name in FIELDS[by]:
+    for name in fields:
         width = _BITS[name]
         most = (1 << width) - 1
         value = np.where(full, after_full * most, np.clip(figures[name], 0, most))
@@ -141,12 +178,14 @@ def pack(figures: dict[str, Ints], by: str, *, after_full: int = 0) -> Ints:
     return packed
 
 
-def packed_key(choice: Choice, by: str, order: tuple[str, ...]) -> int:
+def packed_key(choice: Choice, problem: Problem) -> int:
     """Return the same whole number for a choice that was made: comparable with any bound. [-]"""
     figures: dict[str, Ints] = {}
-    for name, value in zip(order, choice.key, strict=False):
+    for name, value in zip(ORDERS[problem.by], choice.key, strict=False):
         if isinstance(value, tuple):
             figures |= {n: np.array([v]) for n, v in zip(("forms", "wires", "volume"), value, strict=True)}
         else:
             figures[name] = np.array([value])
-    return int(pack(figures, by, after_full=1)[0])
+    worst = max(int(columns.fine_excess[0]) for columns in choice.columns)
+    figures["coarse_excess"] = np.array([worst // _COARSE])
+    return int(pack(figures, packed_fields(problem, problem.by), after_full=1)[0])

@@ -15,14 +15,23 @@ from fractions import Fraction
 import numpy as np
 
 from partpick.progress import Monitor
-from partpick.search.columns import Columns
+from partpick.search.figures import Columns
 from partpick.search.problem import NEVER, Ints, Problem
 
 SUMS = frozenset({"pieces", "commonness", "price"})
-_REST = ("error_class", "q_class", "stray_class", "reactance_class", "effort", "commonness", "error_rank")
+_REST = (
+    "error_class",
+    "excess_class",
+    "q_class",
+    "stray_class",
+    "reactance_class",
+    "effort",
+    "commonness",
+    "error_rank",
+)
 ORDERS = {
     "build": ("pieces", *_REST, "price"),
-    "error": ("fine_error", "pieces", *_REST, "price"),
+    "error": ("fine_error", "fine_excess", "pieces", *_REST, "price"),
     "price": ("price", "pieces", *_REST),
 }
 
@@ -46,11 +55,17 @@ class Stopped(Exception):
 
 
 def column_content(problem: Problem, columns: Columns, row: int) -> tuple[object, ...]:
-    """Return what orders equal columns: values, connection, grades, coil; never row numbers."""
+    """Return what orders equal columns: values, connection, grades, coil; never row numbers.
+
+    The connection is the shape of the network, then the place by content of the series padder, -1 for none.
+    """
     used = [int(part) for part in columns.parts[row] if part >= 0]
     values: tuple[Fraction, ...] = tuple(sorted(problem.part_value[part] for part in used))
     ranks = tuple(int(problem.part_rank[part]) for part in used)
-    return values, int(columns.shape[row]), ranks, int(problem.coil_rank[columns.coil[row]])
+    padder = columns.series_padder(row)
+    in_series = -1 if padder is None else int(problem.part_rank[padder])
+    connection = int(columns.shape[row]), in_series
+    return values, connection, ranks, int(problem.coil_rank[columns.coil[row]])
 
 
 def plan_effort(problem: Problem, coils: tuple[int, ...]) -> tuple[int, ...]:
@@ -69,16 +84,24 @@ def choose(
     """Return the first choice in the order for these coils, each used at least once; None if there is none."""
     if any(len(columns) == 0 for columns in bands):
         return None
+    best = first_without_shared_limits(problem, bands, coils, order)
+    if best is None or inside_shared_limits(problem, best):
+        return best
+    from partpick.search.cpsat import choose_coupled
+
+    return choose_coupled(problem, bands, coils, order, monitor)
+
+
+def first_without_shared_limits(
+    problem: Problem, bands: list[Columns], coils: tuple[int, ...], order: tuple[str, ...]
+) -> Choice | None:
+    """Return the first choice in the order with each coil used, stock and limits in common left aside."""
     best: Choice | None = None
     for restricted in _each_coil_used(bands, coils):
         choice = _uncoupled(problem, restricted, coils, order)
         if choice is not None and (best is None or choice.key < best.key):
             best = choice
-    if best is None or _inside_shared_limits(problem, best):
-        return best
-    from partpick.search.cpsat import choose_coupled
-
-    return choose_coupled(problem, bands, coils, order, monitor)
+    return best
 
 
 def _each_coil_used(bands: list[Columns], coils: tuple[int, ...]) -> list[list[Columns]]:
@@ -151,7 +174,8 @@ def plan_content(problem: Problem, coils: tuple[int, ...], taken: tuple[Columns,
     return ranks, tuple(column_content(problem, taken[band], 0) for band in by_frequency)
 
 
-def _inside_shared_limits(problem: Problem, choice: Choice) -> bool:
+def inside_shared_limits(problem: Problem, choice: Choice) -> bool:
+    """Whether a choice keeps to stock, parts, values and price of the whole plan."""
     used = Counter(int(part) for columns in choice.columns for part in columns.parts[0] if part >= 0)
     if any(count > problem.part_stock[part] for part, count in used.items()):
         return False
@@ -164,5 +188,5 @@ def _inside_shared_limits(problem: Problem, choice: Choice) -> bool:
 
 
 def used_parts(choice: Choice) -> list[Ints]:
-    """Return the parts of each band of a choice, in network order. [-]"""
+    """Return the parts of each band of a choice, in network order, a series padder last. [-]"""
     return [columns.parts[0][columns.parts[0] >= 0] for columns in choice.columns]

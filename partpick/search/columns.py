@@ -6,101 +6,22 @@ prefer (same figures, later in the order of content, never scarcer) are dropped 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
-from numpy.typing import NDArray
 
-from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED, Rows, Stream, Table, network_tables
-from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
-
-
-@dataclass(frozen=True, eq=False)
-class Columns:
-    """Networks of known grades for one (coil, band), (m,) each; `parts` is padded with -1."""
-
-    coil: Ints
-    parts: Ints  # (m, most parts)
-    shape: NDArray[np.int8]
-    network: Floats  # F, effective
-    error: Floats  # signed fraction
-    pieces: Ints
-    error_class: Ints  # round(max(|error|, floor) 1e9)
-    fine_error: Ints  # round(max(|error|, 1e-9) 1e12)
-    q_class: Ints
-    stray_class: Ints
-    reactance_class: Ints
-    commonness: Ints
-    error_rank: Ints  # round(|error| 1e9)
-    price: Ints
-
-    def __len__(self) -> int:
-        return len(self.network)
-
-    def take(self, chosen: NDArray[np.generic]) -> Columns:
-        """Return the columns chosen by a mask or an index array."""
-        return Columns(*(getattr(self, name)[chosen] for name in self.__dataclass_fields__))
-
-    @staticmethod
-    def join(blocks: list[Columns]) -> Columns:
-        """Return all columns of several blocks."""
-        names = Columns.__dataclass_fields__
-        return Columns(*(np.concatenate([getattr(b, name) for b in blocks]) for name in names))
-
-
-def quality_class(loss: Floats, enough: Floats | float) -> Ints:
-    """Return the steps of 25 % by which Q is below enough, 0 to 4; 5 where it is unknown.
-
-    Parameters
-    ----------
-    loss : array
-        1/Q, nan where unknown. [-]
-    enough : array or float
-        The Q that is enough. [-]
-    """
-    with np.errstate(divide="ignore", invalid="ignore"):
-        below = 1.0 - 1.0 / (loss * enough)
-    steps = np.ceil(np.clip(below, 0.0, 1.0) / 0.25 - 1e-9)
-    return np.where(np.isnan(loss), 5, np.nan_to_num(steps)).astype(np.int64)
-
-
-def stray_class(share: Floats) -> Ints:
-    """Return 0 up to 10 % of strays in the capacitance in circuit, 1 up to 20 %, else 2. [-]"""
-    return np.where(share <= 0.1 * (1 + 1e-12), 0, np.where(share <= 0.2 * (1 + 1e-12), 1, 2)).astype(np.int64)
-
-
-def coarse_error(error: Floats, floor: float) -> Ints:
-    """Return the error class round(max(|error|, floor) 1e9). [-]"""
-    return np.rint(np.maximum(np.abs(error), floor) * 1e9).astype(np.int64)
-
-
-def fine_error(error: Floats) -> Ints:
-    """Return round(max(|error|, 1e-9) 1e12); below 1e-9 all are equal. [-]"""
-    return np.rint(np.maximum(np.abs(error), 1e-9) * 1e12).astype(np.int64)
-
-
-def network_weights(part: Floats, shape: NDArray[np.int8], network: Floats) -> Floats:
-    """Return d ln(network) / d ln(part), (m, k): how much each part weighs in its network. [-]"""
-    weights = np.zeros_like(part)
-    for kind in (PARALLEL, SERIES, SHUNTED, CHAINED):
-        rows = shape == kind
-        if not rows.any():
-            continue
-        c, net = part[rows], network[rows, None]
-        if kind == PARALLEL:
-            weights[rows] = c / net
-        elif kind == SERIES:
-            with np.errstate(divide="ignore", invalid="ignore"):
-                weights[rows] = np.where(c > 0, net / c, 0.0)
-        elif kind == SHUNTED:
-            pair = c[:, 1:2] * c[:, 2:3] / (c[:, 1:2] + c[:, 2:3])
-            weights[rows, :3] = np.concatenate([c[:, :1], pair**2 / c[:, 1:2], pair**2 / c[:, 2:3]], 1) / net
-        else:
-            pair = c[:, 1:2] + c[:, 2:3]
-            weights[rows, :3] = np.concatenate(
-                [net / c[:, :1], net * c[:, 1:2] / pair**2, net * c[:, 2:3] / pair**2], 1
-            )
-    return weights
+from partpick.search.coverage import LeastExcess
+from partpick.search.figures import (
+    Columns,
+    coarse_error,
+    fine_error,
+    network_weights,
+    padded,
+    quality_class,
+    stray_class,
+)
+from partpick.search.grades import Grades
+from partpick.search.networks import Rows, Stream, Table, network_tables
+from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
+from partpick.search.swept import SweptColumns
 
 
 class ColumnSource:
@@ -121,7 +42,9 @@ class ColumnSource:
         self.levels = [
             problem.windows(parts) for parts in (0, 1)
         ]  # windows differ only by the share limit, which a band without capacitors is spared
-        self._lists = self._option_arrays()
+        self.grades = Grades(problem)
+        self._swept = SweptColumns(problem, self.tables, self.valid, self.grades)
+        self._least_excess = LeastExcess(problem, self.tables, self.valid)
 
     def _same_as_before(self, band: int) -> int | None:
         for earlier in range(band):
@@ -129,49 +52,20 @@ class ColumnSource:
                 return earlier
         return None
 
-    def _option_arrays(self) -> tuple[Ints, Ints]:
-        """Return the useful parts of all species end to end, and where each species starts."""
-        useful = [self._useful(options) for options in self.problem.options]
-        starts = np.concatenate([[0], np.cumsum([len(o) for o in useful])]).astype(np.int64)
-        return np.array([p for o in useful for p in o], dtype=np.int64), starts
-
-    def _useful(self, options: tuple[int, ...]) -> tuple[int, ...]:
-        """Drop a part that another in plenty equals in every figure and precedes in content."""
-        p = self.problem
-        kept: list[int] = []
-        seen: set[tuple[object, ...]] = set()
-        for part in sorted(options, key=lambda i: int(p.part_rank[i])):
-            if p.part_stock[part] < 1:
-                continue
-            figures = (
-                tuple(np.nan_to_num(p.part_loss[:, part], nan=-1.0)),
-                float(np.nan_to_num(p.part_tempco[part], nan=9.0)) if np.isfinite(p.drift_limit) else 0.0,
-                float(p.part_tempco_spread[part]) if np.isfinite(p.drift_limit) else 0.0,
-                int(p.part_price[part]),
-            )
-            if figures in seen:
-                continue
-            if p.part_stock[part] >= PLENTY:
-                seen.add(figures)
-            kept.append(part)
-        return tuple(kept)
-
-    def counts(self, parts: int) -> Ints:
-        """Return how many networks of `parts` parts lie in each window, (J, B); streams tell 0 from some."""
-        low, high = self.levels[min(parts, 1)]
-        found = np.zeros(low.shape, dtype=np.int64)
-        for band, tables in enumerate(self.tables):
-            if parts < len(tables):
-                found[:, band] = tables[parts].counts(low[:, band], high[:, band])
-        return found
-
     def least_errors(self, parts: int) -> Floats:
-        """Return the least size of error with exactly `parts` parts, (J, B); inf where none is inside. [-]"""
+        """Return the least size of error with exactly `parts` parts, (J, B); inf where none is inside.
+
+        A swept band has no error: 0 where `parts` or fewer parts cover it. [-]
+        """
         p = self.problem
         low, high = self.levels[min(parts, 1)]
         fixed = p.fixed_capacitance()
         best = np.full(low.shape, np.inf)
         for band, tables in enumerate(self.tables):
+            if p.swept[band]:
+                covered = np.isfinite(self.least_excesses(parts)[:, band])
+                best[covered, band] = 0.0
+                continue
             if parts >= len(tables):
                 continue
             rows = np.flatnonzero(low[:, band] <= high[:, band])
@@ -189,27 +83,37 @@ class ColumnSource:
                 best[rows[inside], band] = np.minimum(best[rows[inside], band], error)
         return best
 
-    def columns(self, coil: int, band: int, parts: int, error: float | None = None) -> Columns:
+    def least_excesses(self, parts: int) -> Floats:
+        """Return a lower bound of the excess with at most `parts` parts, (J, B); inf where none covers.
+
+        0 for fixed bands; the least excess itself where no capacitor has series inductance. [-]
+        """
+        return self._least_excess.level(parts)
+
+    def columns(self, coil: int, band: int, parts: int, lead: float | None = None) -> Columns:
         """Return every column of `parts` parts inside all limits of one band.
 
         Parameters
         ----------
         coil, band, parts : int
             Which coil and band, and how many capacitors. [-]
-        error : float or None
-            Keep to networks with at most this size of error (fraction of f); None: the limit's. [-]
+        lead : float or None
+            Keep to networks with at most this size of error (fraction of f), or at most this excess
+            where every band is swept; None: the limit's. [-]
         """
         p = self.problem
+        if p.swept[band]:
+            return self._swept.columns(coil, band, parts, lead if p.led_by_excess else None)
         low, high = (float(side[coil, band]) for side in self.levels[min(parts, 1)])
         tables = self.tables[band]
         if low > high or parts >= len(tables):
-            return self._empty()
-        if error is not None:
-            low, high = self._narrow(coil, band, low, high, error)
+            return Columns.empty(p.most_parts)
+        if lead is not None:
+            low, high = self._narrow(coil, band, low, high, lead)
         rows = tables[parts].inside(low, high)
         rows = Rows(rows.value, self.valid[band][rows.species].astype(np.int16), rows.shape)
-        rows, chosen = self._grades(rows)
-        columns, keep = self._figures(coil, band, rows, chosen)
+        origin, chosen = self.grades.expand(rows)
+        columns, keep = self._figures(coil, band, rows.take(origin), chosen)
         return columns.take(keep)
 
     def _narrow(self, coil: int, band: int, low: float, high: float, error: float) -> tuple[float, float]:
@@ -223,46 +127,6 @@ class ColumnSource:
             squared = (2 * np.pi * p.frequency[band]) ** 2 * p.lead_inductance
             least, most = (c / (1 + squared * c) if c > 0 else c for c in (least, most))
         return max(low, least), min(high, most)
-
-    def _empty(self) -> Columns:
-        most = max(1, self.problem.most_parts)
-        whole = np.empty(0, np.int64)
-        return Columns(
-            whole, np.empty((0, most), np.int64), np.empty(0, np.int8), np.empty(0), np.empty(0),
-            *([whole] * 9),
-        )  # fmt: skip
-
-    def _grades(self, rows: Rows) -> tuple[Rows, Ints]:
-        """Return each network once for every choice of grades, and the parts chosen, (m, k)."""
-        flat, starts = self._lists
-        count = starts[1:] - starts[:-1]
-        chosen = np.empty((len(rows.value), 0), dtype=np.int64)
-        for place in range(rows.species.shape[1]):
-            times = count[rows.species[:, place]]
-            first = np.cumsum(times) - times
-            origin = np.repeat(np.arange(len(times)), times)
-            offset = np.arange(int(times.sum())) - first[origin]
-            rows, chosen = rows.take(origin), chosen[origin]
-            part = flat[starts[rows.species[:, place]] + offset]
-            chosen = np.concatenate([chosen, part[:, None]], axis=1)
-            keep = self._one_spelling(rows, chosen, place) & self._in_stock(chosen)
-            rows, chosen = rows.take(keep), chosen[keep]
-        return rows, chosen
-
-    def _one_spelling(self, rows: Rows, chosen: Ints, place: int) -> Bools:
-        """Equal species in interchangeable places: only the order of content."""
-        if place == 0:
-            return np.ones(len(chosen), dtype=np.bool_)
-        twins = rows.species[:, place] == rows.species[:, place - 1]
-        if place == 1:
-            twins &= (rows.shape == PARALLEL) | (rows.shape == SERIES)
-        rank = self.problem.part_rank
-        return ~twins | (rank[chosen[:, place]] >= rank[chosen[:, place - 1]])
-
-    def _in_stock(self, chosen: Ints) -> Bools:
-        last = chosen[:, -1]
-        used = (chosen == last[:, None]).sum(axis=1)
-        return used <= self.problem.part_stock[last]
 
     def _figures(self, coil: int, band: int, rows: Rows, chosen: Ints) -> tuple[Columns, Bools]:
         p = self.problem
@@ -281,17 +145,16 @@ class ColumnSource:
         if np.isfinite(p.drift_limit):
             nominal, spread = self.drift(coil, band, chosen, share_of_parts, network)
             keep &= np.abs(nominal) + spread <= p.drift_limit * (1 + 1e-12)
-        k = chosen.shape[1]
-        padded = np.full((len(chosen), max(1, p.most_parts)), -1, dtype=np.int64)
-        padded[:, :k] = chosen
-        whole = np.full(len(chosen), 0, dtype=np.int64)
+        whole = np.zeros(len(chosen), dtype=np.int64)
         columns = Columns(
             coil=whole + coil,
-            parts=padded,
+            parts=padded(chosen, p.most_parts),
+            series=whole - 1,
             shape=rows.shape,
             network=network,
             error=error,
-            pieces=whole + k,
+            excess=np.zeros(len(chosen)),
+            pieces=whole + chosen.shape[1],
             error_class=coarse_error(error, p.floor),
             fine_error=fine_error(error),
             q_class=quality_class(loss, p.q_enough[band]),
@@ -300,6 +163,8 @@ class ColumnSource:
             commonness=p.commonness[rows.species].sum(axis=1),
             error_rank=np.rint(np.abs(error) * 1e9).astype(np.int64),
             price=np.minimum(p.part_price[chosen].sum(axis=1), NEVER),
+            excess_class=whole,
+            fine_excess=whole,
         )
         return columns, keep
 

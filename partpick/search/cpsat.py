@@ -21,7 +21,7 @@ from partpick.search.choose import (
     plan_effort,
     plan_price,
 )
-from partpick.search.columns import Columns
+from partpick.search.figures import Columns
 from partpick.search.problem import NEVER, Problem
 
 SEED = 1

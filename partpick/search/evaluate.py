@@ -7,18 +7,30 @@ from dataclasses import replace
 import numpy as np
 
 from partpick.progress import Monitor
-from partpick.search.choose import ORDERS, Choice, choose
-from partpick.search.columns import Columns, ColumnSource
-from partpick.search.problem import NEVER, Problem
+from partpick.search.choose import (
+    ORDERS,
+    Choice,
+    choose,
+    first_without_shared_limits,
+    inside_shared_limits,
+)
+from partpick.search.columns import ColumnSource
+from partpick.search.figures import Columns, fine_error, whole_excess
+from partpick.search.problem import NEVER, Floats, Ints, Problem
 
 
 class Evaluator:
     """Turns a set of coils into its best choice; exact under every limit of the problem."""
 
-    def __init__(self, problem: Problem, source: ColumnSource, monitor: Monitor) -> None:
+    def __init__(
+        self, problem: Problem, source: ColumnSource, monitor: Monitor, least: Floats | None = None
+    ) -> None:
         self.problem = problem
         self.source = source
         self.monitor = monitor
+        self.least = least  # (J, B) least error, or excess where all bands are swept, if known
+        self.leading = "fine_excess" if problem.led_by_excess else "fine_error"
+        self.leading_place = ORDERS["error"].index(self.leading)
 
     def best(self, coils: tuple[int, ...], by: str) -> Choice | None:
         """Return the first choice for these coils, each used at least once, or None.
@@ -36,13 +48,55 @@ class Evaluator:
             return self._by_error(coils)
         return choose(self.problem, self._all_columns(coils), coils, ORDERS[by], self.monitor)
 
-    def least_error(self, coils: tuple[int, ...], pieces: int) -> Choice | None:
-        """Return the choice of least worst error with at most `pieces` pieces in all, or None."""
+    def least_error(self, coils: tuple[int, ...], pieces: int, least: float = 0.0) -> Choice | None:
+        """Return the choice of least worst error (or excess) with at most `pieces` pieces in all, or None.
+
+        Parameters
+        ----------
+        coils : tuple of int
+            Each is used at least once. [-]
+        pieces : int
+            Capacitors and coils, at most. [-]
+        least : float
+            A proven lower bound of the worst error or excess; where a choice reaches it, no more
+            columns are looked at. [-]
+        """
         if not self._supports_in_stock(coils):
             return None
         capped = min(self.problem.parts_limit, pieces - len(coils))
-        inner = Evaluator(replace(self.problem, parts_limit=capped), self.source, self.monitor)
-        return inner._by_error(coils)
+        problem = replace(self.problem, parts_limit=capped)
+        inner = Evaluator(problem, self.source, self.monitor, self.least)
+        return inner._at_bound(coils, least) or inner._by_error(coils)
+
+    def _at_bound(self, coils: tuple[int, ...], least: float) -> Choice | None:
+        """Return the choice with this least error or excess and the fewest parts, None where it is missed."""
+        figure = np.array([least])
+        whole = int((whole_excess(figure, 1e-12) if self.problem.led_by_excess else fine_error(figure))[0])
+        for limit in (whole - 1, whole, whole + 1):  # the bound's own rounding
+            bands: list[Columns] = []
+            for band in range(self.problem.bands):
+                columns = self._fewest_inside(coils, band, max(least, 1e-9) + 5e-12, limit)
+                if columns is None:
+                    break
+                bands.append(columns)
+            if len(bands) < self.problem.bands:
+                continue
+            if sum(int(columns.pieces.min()) for columns in bands) > self.problem.parts_limit:
+                continue
+            choice = first_without_shared_limits(self.problem, bands, coils, ORDERS["error"])
+            if choice is None or choice.key[self.leading_place] != limit:
+                return None  # a coil would be left out
+            return choice if inside_shared_limits(self.problem, choice) else None
+        return None
+
+    def _fewest_inside(self, coils: tuple[int, ...], band: int, lead: float, limit: int) -> Columns | None:
+        """Return a band's columns of the fewest parts with a leading figure up to `limit`."""
+        for parts in range(self.problem.least_parts, self.problem.most_parts + 1):
+            columns = Columns.join([self.source.columns(coil, band, parts, lead) for coil in coils])
+            columns = columns.take(getattr(columns, self.leading) <= limit)
+            if len(columns):
+                return columns
+        return None
 
     def _supports_in_stock(self, coils: tuple[int, ...]) -> bool:
         problem = self.problem
@@ -97,61 +151,75 @@ class Evaluator:
                 found.append(columns)
         return found
 
-    def _all_columns(self, coils: tuple[int, ...], error: float | None = None) -> list[Columns]:
+    def _all_columns(self, coils: tuple[int, ...], lead: float | None = None) -> list[Columns]:
         levels = range(self.problem.least_parts, self.problem.most_parts + 1)
         return [
-            Columns.join([self.source.columns(coil, band, k, error) for coil in coils for k in levels])
+            Columns.join([self.source.columns(coil, band, k, lead) for coil in coils for k in levels])
             for band in range(self.problem.bands)
         ]
 
     def _by_error(self, coils: tuple[int, ...]) -> Choice | None:
         """Least error first: columns up to a trial error, which grows until a choice lies inside it."""
-        limit = float(np.max(self.problem.error_limit))
         trial = 1e-9
-        while True:
-            trial = min(trial, limit)
+        if self.least is not None:
+            trial = max(trial, float(self.least[list(coils)].min(axis=0).max()) * (1 + 1e-9) + 2e-12)
+        limit = self._largest()
+        while trial < limit:
             choice = self._inside(coils, trial)
-            if choice is not None or trial >= limit or trial > 1e3:
+            if choice is not None:
                 return choice
             trial *= 8.0
+        return self._inside(coils, None)
 
-    def _inside(self, coils: tuple[int, ...], trial: float) -> Choice | None:
-        bands = self._all_columns(coils, trial * (1 + 1e-9))
+    def _largest(self) -> float:
+        """Return an error or excess at which a trial is worth no more than the limit itself. [-]"""
+        problem = self.problem
+        if problem.led_by_excess:
+            return min(problem.excess_limit, 1e3)
+        return min(float(np.max(problem.error_limit[~problem.swept])), 1e3)
+
+    def _inside(self, coils: tuple[int, ...], trial: float | None) -> Choice | None:
+        bands = self._all_columns(coils, trial if trial is None else trial * (1 + 1e-9))
         if any(len(columns) == 0 for columns in bands):
             return None
         if self.problem.parts_limit < NEVER:
-            few = self._few_enough(bands, coils)
+            few = self._few_enough(bands, "fine_error")
             if few is None:
                 return None
-            choice = choose(self.problem, few, coils, ("pieces", *ORDERS["build"][1:]), self.monitor)
+            few = self._few_enough(few, "fine_excess")
+            assert few is not None
+            choice = choose(self.problem, few, coils, ORDERS["error"][2:], self.monitor)
             if choice is not None:
-                return self._with_error_first(choice)
+                return self._with_leading_figures(choice)
         return choose(self.problem, bands, coils, ORDERS["error"], self.monitor)
 
-    def _few_enough(self, bands: list[Columns], coils: tuple[int, ...]) -> list[Columns] | None:
-        """Keep the columns up to the least worst error that the limit on parts leaves possible; else None."""
+    def _few_enough(self, bands: list[Columns], name: str) -> list[Columns] | None:
+        """Keep the columns up to the least worst figure that the limit on parts leaves possible; else None."""
         cap = self.problem.parts_limit
-        errors = np.unique(np.concatenate([columns.fine_error for columns in bands]))
-        low, high = 0, len(errors) - 1
-        if self._fewest(bands, int(errors[high])) > cap:
+        figures = [getattr(columns, name) for columns in bands]
+        steps = np.unique(np.concatenate(figures))
+        low, high = 0, len(steps) - 1
+        if _fewest(bands, figures, int(steps[high])) > cap:
             return None
         while low < high:
             middle = (low + high) // 2
-            if self._fewest(bands, int(errors[middle])) <= cap:
+            if _fewest(bands, figures, int(steps[middle])) <= cap:
                 high = middle
             else:
                 low = middle + 1
-        return [columns.take(columns.fine_error <= errors[high]) for columns in bands]
+        return [columns.take(figure <= steps[high]) for columns, figure in zip(bands, figures, strict=True)]
 
     @staticmethod
-    def _fewest(bands: list[Columns], fine_error: int) -> int:
-        total = 0
-        for columns in bands:
-            inside = columns.pieces[columns.fine_error <= fine_error]
-            total += int(inside.min()) if len(inside) else NEVER
-        return total
+    def _with_leading_figures(choice: Choice) -> Choice:
+        error = max(int(columns.fine_error[0]) for columns in choice.columns)
+        excess = max(int(columns.fine_excess[0]) for columns in choice.columns)
+        return replace(choice, key=(error, excess, *choice.key))
 
-    @staticmethod
-    def _with_error_first(choice: Choice) -> Choice:
-        worst = max(int(columns.fine_error[0]) for columns in choice.columns)
-        return replace(choice, key=(worst, *choice.key))
+
+def _fewest(bands: list[Columns], figures: list[Ints], most: int) -> int:
+    """Return the fewest parts in all with every figure up to `most`. [-]"""
+    total = 0
+    for columns, figure in zip(bands, figures, strict=True):
+        inside = columns.pieces[figure <= most]
+        total += int(inside.min()) if len(inside) else NEVER
+    return total

@@ -80,6 +80,14 @@ class Table:
         last = int(np.searchsorted(self.value, high, side="right"))
         return self.rows.take(slice(first, max(first, last)))
 
+    def inside_each(self, low: Floats, high: Floats) -> tuple[Rows, Ints]:
+        """Return the networks in each of several closed intervals, end to end, and the interval of each."""
+        first = np.searchsorted(self.value, low, side="left")
+        times = np.maximum(np.searchsorted(self.value, high, side="right") - first, 0)
+        which = np.repeat(np.arange(len(first)), times)
+        start = first - (np.cumsum(times) - times)
+        return self.rows.take(np.arange(len(which)) + start[which]), which
+
 
 class Stream:
     """All networks of k parts as one part `a` joined to the table of k - 1, never stored."""
@@ -121,6 +129,12 @@ class Stream:
                 rows = self._joined(index, a, self.inner.inside(lower, upper), in_series)
                 blocks.append(rows.take((rows.value >= low) & (rows.value <= high)))
         return Rows.join(blocks, self.parts)
+
+    def inside_each(self, low: Floats, high: Floats) -> tuple[Rows, Ints]:
+        """Return the networks in each of several closed intervals, end to end, and the interval of each."""
+        blocks = [self.inside(a, b) for a, b in zip(low.tolist(), high.tolist(), strict=True)]
+        sizes = [len(block.value) for block in blocks]
+        return Rows.join(blocks, self.parts), np.repeat(np.arange(len(blocks)), sizes)
 
     def _joins(self, a: float, wanted: Floats) -> Iterator[tuple[Callable[[Floats], Floats], Floats]]:
         yield (lambda inner: a + inner), wanted - a
@@ -184,19 +198,35 @@ def _multiset_count(count: int, parts: int) -> int:
 
 
 def _shaped(values: Floats, species: NDArray[np.int16], shape: int) -> Rows:
-    part = values[species]
+    value = _value_of(values[species], shape)
+    return Rows(value, species, np.full(len(value), shape, np.int8))
+
+
+def _value_of(part: Floats, shape: int) -> Floats:
+    """Return the capacitance of networks of one shape, (m,), from that of their parts, (m, k). [F]"""
     if shape == PARALLEL:
         value = part[:, 0].copy()
         for column in range(1, part.shape[1]):
             value += part[:, column]
-    elif shape == SERIES:
-        value = 1.0 / np.sum(1.0 / part, axis=1)
-    elif shape == SHUNTED:
-        value = part[:, 0] + part[:, 1] * part[:, 2] / (part[:, 1] + part[:, 2])
-    else:
-        pair = part[:, 1] + part[:, 2]
-        value = part[:, 0] * pair / (part[:, 0] + pair)
-    return Rows(value, species, np.full(len(value), shape, np.int8))
+        return value
+    if shape == SERIES:
+        return np.asarray(1.0 / np.sum(1.0 / part, axis=1))
+    if shape == SHUNTED:
+        return np.asarray(part[:, 0] + part[:, 1] * part[:, 2] / (part[:, 1] + part[:, 2]))
+    pair = part[:, 1] + part[:, 2]
+    return np.asarray(part[:, 0] * pair / (part[:, 0] + pair))
+
+
+def network_values(part: Floats, shape: NDArray[np.int8]) -> Floats:
+    """Return the capacitance of networks of known shapes, (m,), from that of their parts, (m, k). [F]"""
+    value = np.zeros(len(part))
+    if part.shape[1] == 0:
+        return value
+    for kind in (PARALLEL, SERIES, SHUNTED, CHAINED):
+        rows = np.flatnonzero(shape == kind)
+        if len(rows):
+            value[rows] = _value_of(part[rows], kind)
+    return value
 
 
 def _all_networks(values: Floats, parts: int, connect_any: bool) -> Rows:

@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from partpick.progress import Monitor
-from partpick.search.bounds import IMPOSSIBLE, Bounds, pack
+from partpick.search.bounds import IMPOSSIBLE, Bounds, pack, packed_fields
 from partpick.search.choose import Stopped
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 
@@ -137,11 +137,11 @@ class PairBounds:
             totals["price"] = np.minimum(totals["price"] + own, NEVER)
         effort = problem.effort[coils[first]] + problem.effort[coils[second]]
         totals |= dict(zip(("forms", "wires", "volume"), effort.T, strict=True))
-        return pack(totals, by)
+        return pack(totals, packed_fields(problem, by))
 
     def _by_worst(self, figures: dict[str, Ints]) -> Iterator[tuple[int, tuple[int, ...]]]:
-        """Waves by the worst error: pairs that stay inside a growing threshold."""
-        rank = figures["fine_error"]
+        """Waves by the worst error or excess: pairs that stay inside a growing threshold."""
+        rank = figures[packed_fields(self.problem, "error")[0]]
         levels = np.unique(rank[rank < NEVER])
         done = -1
         step = 1
@@ -169,8 +169,8 @@ class PairBounds:
             step *= 2
 
     def by_error(self, cap: int, below: float) -> Iterator[tuple[float, tuple[int, ...]]]:
-        """Yield (least worst error, pair) by rising error, for pairs that need at most `cap` capacitors."""
-        errors = np.array(self.bounds.errors)[:, self.useful, :]
+        """Yield (least worst error or excess, pair), rising, for pairs that need at most `cap` capacitors."""
+        errors = np.array(self.bounds.leading)[:, self.useful, :]
         levels = np.unique(errors[np.isfinite(errors)])
         levels = levels[levels < below]
         low, high = 0, len(levels)

@@ -1,4 +1,4 @@
-"""One fixed-frequency problem as arrays: what the search may know, and nothing else.
+"""One problem as arrays: what the search may know, and nothing else.
 
 J coils, B bands, n species (distinct capacitances as they act at each band), P parts (a species in
 one grade). Whole numbers stand where the order or a limit needs them; `NEVER` is "unknown, last".
@@ -6,7 +6,7 @@ one grade). Whole numbers stand where the order or a limit needs them; `NEVER` i
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from fractions import Fraction
 
 import numpy as np
@@ -18,6 +18,10 @@ Bools = NDArray[np.bool_]
 
 NEVER = 10**12
 PLENTY = 10**9
+
+
+def _unset() -> Floats:
+    return np.empty(0)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -72,6 +76,64 @@ class Problem:
     inductors: int
     floor: float
     by: str
+    # swept bands, (B,); for a fixed band none of this is read
+    swept: Bools = field(default_factory=lambda: np.empty(0, np.bool_))
+    low_end: Floats = field(default_factory=_unset)  # Hz, lower end as asked for
+    tuning_low: Floats = field(default_factory=_unset)  # F, the element's own ends
+    tuning_high: Floats = field(default_factory=_unset)
+    tuning_loss: Floats = field(default_factory=_unset)  # 1/Q, nan: unknown
+    tuning_tempco: Floats = field(default_factory=_unset)  # 1/K, nan: unknown
+    inductance_low: Floats = field(default_factory=_unset)  # (J, B) H, at the lower end
+    coil_loss_low: Floats = field(default_factory=_unset)  # (J, B) 1/Q
+    species_low: Floats = field(default_factory=_unset)  # (B, n) F
+    part_loss_low: Floats = field(default_factory=_unset)  # (B, P) 1/Q
+    margin: float = 0.0  # coverage beyond each end, fraction of f
+    excess_limit: float = float("inf")
+
+    def __post_init__(self) -> None:
+        """Fill what a problem of fixed bands leaves out."""
+        nothing = np.zeros(len(self.frequency))
+        defaults = {
+            "swept": nothing.astype(np.bool_),
+            "low_end": self.frequency,
+            "tuning_low": nothing,
+            "tuning_high": nothing,
+            "tuning_loss": nothing,
+            "tuning_tempco": nothing,
+            "inductance_low": self.inductance_high,
+            "coil_loss_low": self.coil_loss,
+            "species_low": self.species,
+            "part_loss_low": self.part_loss,
+        }
+        for name, value in defaults.items():
+            if getattr(self, name).size == 0:
+                object.__setattr__(self, name, value)
+
+    @property
+    def inductance_high(self) -> Floats:
+        """Inductance at the target, the upper end of a swept band, (J, B). [H]"""
+        return 1.0 / ((2 * np.pi * self.frequency[None, :]) ** 2 * self.wanted)
+
+    @property
+    def most_at_high_end(self) -> Floats:
+        """Most capacitance in circuit with which a swept band reaches its widened upper end, (J, B). [F]"""
+        return self.wanted / (1.0 + self.margin) ** 2
+
+    @property
+    def least_at_low_end(self) -> Floats:
+        """Least capacitance in circuit with which a swept band reaches its widened lower end, (J, B). [F]"""
+        omega = 2 * np.pi * self.low_end * (1.0 - self.margin)
+        return 1.0 / (omega[None, :] ** 2 * self.inductance_low)
+
+    @property
+    def led_by_excess(self) -> bool:
+        """Whether the worst excess, not the worst error, leads: every band is swept."""
+        return bool(self.swept.all())
+
+    @property
+    def mixed(self) -> bool:
+        """Whether some bands are swept and some are fixed."""
+        return bool(self.swept.any()) and not self.led_by_excess
 
     @property
     def bands(self) -> int:
@@ -96,7 +158,7 @@ class Problem:
     def windows(self, parts: int) -> tuple[Floats, Floats]:
         """Return the closed interval of network capacitance inside the error and share limits, (J, B).
 
-        Empty intervals (low above high) stand where the coil is not in play. [F]
+        Empty intervals (low above high) stand where the coil is not in play or the band is swept. [F]
         """
         fixed = self.fixed_capacitance()
         limit = np.minimum(self.error_limit, 1.0 - 1e-9)[None, :]
@@ -113,8 +175,9 @@ class Problem:
             low = np.maximum(low, strays / self.share - fixed)
         grain = 1e-12 * self.wanted  # rounding of the limits themselves
         low, high = low - grain, high + grain
-        low = np.where(self.in_play, low, np.inf)
-        high = np.where(self.in_play, high, -np.inf)
+        in_play = self.in_play & ~self.swept[None, :]  # swept.py has its own intervals
+        low = np.where(in_play, low, np.inf)
+        high = np.where(in_play, high, -np.inf)
         if self.lead_inductance > 0:
             low, high = self._before_leads(low), self._before_leads(high)
         return low, high
@@ -126,7 +189,7 @@ class Problem:
         inside = network / (1.0 + squared * self.lead_inductance * np.where(finite, network, 0.0))
         return np.where(finite, inside, network)
 
-    def behind_leads(self, network: Floats, band: int) -> Floats:
-        """Return how a network acts at a band behind the leads' inductance. [F]"""
-        squared = (2 * np.pi * self.frequency[band]) ** 2
+    def behind_leads(self, network: Floats, band: int, *, low_end: bool = False) -> Floats:
+        """Return how a network acts at a band, or its lower end, behind the leads' inductance. [F]"""
+        squared = (2 * np.pi * (self.low_end if low_end else self.frequency)[band]) ** 2
         return network / (1.0 - squared * self.lead_inductance * network)

@@ -17,14 +17,14 @@ from partpick.search.problem import NEVER, Problem
 ROUNDING = 1e-11  # a design exactly on a limit is inside it
 
 
-def networks(problem: Problem, band: int):
+def networks(problem: Problem, band: int, fewest: int, most: int):
     """Yield (parts, shape, capacitance) of every network of a band, each spelled once."""
     values = problem.species[band]
     of_part = {part: s for s, options in enumerate(problem.options) for part in options}
     parts = sorted(of_part, key=lambda p: int(problem.part_rank[p]))
     c = {part: values[of_part[part]] for part in parts}
     usable = [part for part in parts if math.isfinite(c[part])]
-    for k in range(problem.least_parts, problem.most_parts + 1):
+    for k in range(fewest, most + 1):
         for chosen in itertools.combinations_with_replacement(usable, k):
             # the shape lists a network's species in rising order of capacitance
             if k == 0:
@@ -40,25 +40,31 @@ def networks(problem: Problem, band: int):
                     yield (a, b, d), 3, c[a] * (c[b] + c[d]) / (c[a] + c[b] + c[d])
 
 
+def value(shape, v):
+    """Return the capacitance of a network of known parts."""
+    if shape == 0:
+        return sum(v)
+    if shape == 1:
+        return 1 / sum(1 / x for x in v)
+    if shape == 2:
+        return v[0] + v[1] * v[2] / (v[1] + v[2])
+    return v[0] * (v[1] + v[2]) / sum(v)
+
+
+def acting(problem: Problem, network, frequency):
+    """Return a network behind the leads' inductance."""
+    return network / (1 - (2 * math.pi * frequency) ** 2 * problem.lead_inductance * network)
+
+
 def weights(parts, shape, c, net):
     """Return d ln(net) / d ln(part) by a numerical derivative: nothing shared with the search."""
-
-    def value(v):
-        if shape == 0:
-            return sum(v)
-        if shape == 1:
-            return 1 / sum(1 / x for x in v)
-        if shape == 2:
-            return v[0] + v[1] * v[2] / (v[1] + v[2])
-        return v[0] * (v[1] + v[2]) / sum(v)
-
     out = []
     for i in range(len(parts)):
         step = 1e-6
         up, down = list(c), list(c)
         up[i] *= 1 + step
         down[i] *= 1 - step
-        out.append((math.log(value(up)) - math.log(value(down))) / (math.log1p(step) - math.log1p(-step)))
+        out.append((math.log(value(shape, up)) - math.log(value(shape, down))) / (math.log1p(step) - math.log1p(-step)))
     return out
 
 
@@ -67,11 +73,14 @@ def band_columns(problem: Problem, coil: int, band: int):
     found = []
     if not problem.in_play[coil, band]:
         return found
+    if problem.swept[band]:
+        return swept_columns(problem, coil, band)
     of_part = {part: s for s, options in enumerate(problem.options) for part in options}
     middle = (problem.trimmer_low[band] + problem.trimmer_high[band]) / 2
     strays = problem.self_capacitance[coil] + problem.stray[band]
     wanted = problem.wanted[coil, band]
-    for parts, shape, net in networks(problem, band):
+    for parts, shape, raw in networks(problem, band, problem.least_parts, problem.most_parts):
+        net = acting(problem, raw, problem.frequency[band])
         total = net + strays + middle
         error = math.sqrt(wanted / total) - 1
         if abs(error) > problem.error_limit[band] * (1 + ROUNDING):
@@ -86,7 +95,7 @@ def band_columns(problem: Problem, coil: int, band: int):
         if any(count > problem.part_stock[p] for p, count in Counter(parts).items()):
             continue
         c = [problem.species[band][of_part[p]] for p in parts]
-        w = weights(parts, shape, c, net)
+        w = weights(parts, shape, c, raw)
         loss = problem.coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
         loss += sum(x * net / total * problem.part_loss[band][p] for x, p in zip(w, parts, strict=True))
         if problem.q_limit[band] > 0 and not 1 / loss >= problem.q_limit[band]:
@@ -102,19 +111,16 @@ def band_columns(problem: Problem, coil: int, band: int):
             size = abs(problem.coil_tempco[coil, band] + tempco) / 2 + spread / 2
             if not size <= problem.drift_limit:
                 continue
-        q = 1 / loss if math.isfinite(loss) else None
-        if q is None:
-            q_class = 5
-        else:
-            q_class = max(0, math.ceil((1 - q / problem.q_enough[band]) / 0.25 - 1e-9))
         share = strays / total
         found.append(
             {
                 "parts": parts,
                 "shape": shape,
+                "series": None,
                 "coil": coil,
                 "error": error,
-                "q_class": q_class,
+                "excess": 0.0,
+                "q_class": q_class_of(problem, band, loss),
                 "stray_class": 0 if share <= 0.1 else 1 if share <= 0.2 else 2,
                 "reactance_class": int(problem.reactance_class[coil, band]),
                 "commonness": sum(int(problem.commonness[of_part[p]]) for p in parts),
@@ -122,6 +128,100 @@ def band_columns(problem: Problem, coil: int, band: int):
             }
         )
     return found
+
+
+def q_class_of(problem: Problem, band: int, loss):
+    """Return the steps of 25 % below enough Q; 5 where it is unknown."""
+    if not math.isfinite(loss):
+        return 5
+    return max(0, math.ceil((1 - 1 / loss / problem.q_enough[band]) / 0.25 - 1e-9))
+
+
+def swept_columns(problem: Problem, coil: int, band: int):
+    """Return every series padder, or none, with every network that covers a swept band."""
+    of_part = {part: s for s, options in enumerate(problem.options) for part in options}
+    padders = [None, *(p for p in of_part if math.isfinite(problem.species[band][of_part[p]]))]
+    found = []
+    for padder in padders:
+        taken = 0 if padder is None else 1
+        if problem.most_parts - taken < 0:
+            continue
+        for across, shape, _ in networks(
+            problem, band, max(0, problem.least_parts - taken), problem.most_parts - taken
+        ):
+            column = swept_column(problem, coil, band, of_part, padder, across, shape)
+            if column is not None:
+                found.append(column)
+    return found
+
+
+def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across, shape):
+    """Return the figures of one choice for a swept band, None where a limit rules it out."""
+    asked_low, asked_high, margin = problem.low_end[band], problem.frequency[band], problem.margin
+    middle = (problem.trimmer_low[band] + problem.trimmer_high[band]) / 2
+    strays = problem.self_capacitance[coil] + problem.stray[band]
+    parts = across if padder is None else (*across, padder)
+    if any(count > problem.part_stock[p] for p, count in Counter(parts).items()):
+        return None
+    inductance_high = 1 / ((2 * math.pi * asked_high) ** 2 * problem.wanted[coil, band])
+    ends = (
+        (problem.tuning_high, problem.species_low, problem.inductance_low[coil, band], asked_low),
+        (problem.tuning_low, problem.species, inductance_high, asked_high),
+    )
+    losses = (
+        (problem.coil_loss_low, problem.part_loss_low),
+        (problem.coil_loss, problem.part_loss),
+    )
+    tuned_to, loss = [], 0.0
+    for (element, species, inductance, frequency), (coil_loss, part_loss) in zip(ends, losses, strict=True):
+        c = [species[band][of_part[p]] for p in across]
+        raw = value(shape, c) if c else 0.0
+        net = acting(problem, raw, frequency)
+        tuned = t = element[band]
+        share = {}
+        if padder is not None:
+            s = species[band][of_part[padder]]
+            tuned = 1 / (1 / t + 1 / s)
+        total = tuned + net + strays + middle
+        tuned_to.append(1 / (2 * math.pi * math.sqrt(inductance * total)))
+        share = [(p, w * net / total) for p, w in zip(across, weights(across, shape, c, raw), strict=True)]
+        if padder is not None:
+            share.append((padder, tuned / s * tuned / total))
+        of_element = tuned / t * tuned / total
+        own = coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
+        own += of_element * problem.tuning_loss[band] + sum(x * part_loss[band][p] for p, x in share)
+        loss = math.nan if math.isnan(own) or math.isnan(loss) else max(loss, own)
+    if tuned_to[0] > asked_low * (1 - margin) * (1 + ROUNDING):
+        return None
+    if tuned_to[1] < asked_high * (1 + margin) * (1 - ROUNDING):
+        return None
+    excess = max(asked_low - tuned_to[0], tuned_to[1] - asked_high) / (asked_high - asked_low)
+    if excess > problem.excess_limit * (1 + ROUNDING):
+        return None
+    stray_share = strays / total  # at the high end, which came last
+    if parts and stray_share > problem.share * (1 + ROUNDING):
+        return None
+    if problem.q_limit[band] > 0 and not 1 / loss >= problem.q_limit[band]:
+        return None
+    if math.isfinite(problem.drift_limit):
+        tempco = sum(x * problem.part_tempco[p] for p, x in share) + of_element * problem.tuning_tempco[band]
+        tempco += (strays * problem.stray_tempco + middle * problem.trimmer_tempco[band]) / total
+        spread = problem.coil_tempco_spread[coil] + sum(x * problem.part_tempco_spread[p] for p, x in share)
+        if not abs(problem.coil_tempco[coil, band] + tempco) / 2 + spread / 2 <= problem.drift_limit:
+            return None
+    return {
+        "parts": parts,
+        "shape": shape,
+        "series": padder,
+        "coil": coil,
+        "error": 0.0,
+        "excess": excess,
+        "q_class": q_class_of(problem, band, loss),
+        "stray_class": 0 if stray_share <= 0.1 else 1 if stray_share <= 0.2 else 2,
+        "reactance_class": int(problem.reactance_class[coil, band]),
+        "commonness": sum(int(problem.commonness[of_part[p]]) for p in parts),
+        "price": sum(int(problem.part_price[p]) for p in parts),
+    }
 
 
 def plan_key(problem: Problem, coils, columns, by):
@@ -138,9 +238,11 @@ def plan_key(problem: Problem, coils, columns, by):
     if problem.price_limit < NEVER and price > problem.price_limit:
         return None
     worst = max(abs(column["error"]) for column in columns)
+    excess = max(column["excess"] for column in columns)
     pieces = used.total() + len(coils)
     rest = (
         round(max(worst, problem.floor) * 1e9),
+        round(excess * 1e9),
         max(column["q_class"] for column in columns),
         max(column["stray_class"] for column in columns),
         max(column["reactance_class"] for column in columns),
@@ -154,22 +256,27 @@ def plan_key(problem: Problem, coils, columns, by):
         tuple(
             (
                 tuple(sorted((problem.part_value[p] for p in columns[b]["parts"]), key=Fraction)),
-                columns[b]["shape"],
+                (
+                    columns[b]["shape"],
+                    -1 if columns[b]["series"] is None else int(problem.part_rank[columns[b]["series"]]),
+                ),
                 tuple(int(problem.part_rank[p]) for p in columns[b]["parts"]),
                 int(problem.coil_rank[columns[b]["coil"]]),
             )
             for b in order
         ),
     )
+    lead = excess if all(problem.swept) else worst
     if by == "build":
-        return (pieces, *rest, price, content), worst
+        return (pieces, *rest, price, content), lead
     if by == "error":
-        return (round(max(worst, 1e-9) * 1e12), pieces, *rest, price, content), worst
-    return (price, pieces, *rest, content), worst
+        fine = round(max(worst, 1e-9) * 1e12), round(excess * 1e12)
+        return (*fine, pieces, *rest, price, content), lead
+    return (price, pieces, *rest, content), lead
 
 
 def all_plans(problem: Problem):
-    """Yield (key, supports, pieces, worst error) of every admissible plan."""
+    """Yield (key, supports, pieces, worst error or excess) of every admissible plan."""
     count = problem.coils
     for size in range(1, min(problem.inductors, problem.bands) + 1):
         for coils in itertools.combinations(range(count), size):
@@ -189,7 +296,7 @@ def all_plans(problem: Problem):
 
 
 def ranking(problem: Problem):
-    """Return the best key of each set of supports, best first, and the front of error against pieces."""
+    """Return the best key of each set of supports, best first, and the front against pieces."""
     best: dict[tuple[int, ...], tuple] = {}
     least: dict[int, float] = {}
     for key, supports, pieces, worst in all_plans(problem):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from fractions import Fraction
 
 import numpy as np
@@ -80,4 +81,54 @@ def random_problem(seed: int, *, bands: int, inductors: int = 1, coupled: bool =
         inductors=inductors,
         floor=pick(0.001, 0.01),
         by=pick("build", "error", "price"),
+    )
+
+
+def random_swept_problem(seed: int, *, bands: int, swept: int, **shape: object) -> Problem:
+    """Return a problem whose first `swept` bands are swept by one variable capacitor, by the seed alone.
+
+    Each coil is made for a design drawn at random, a little tighter or wider than it takes.
+    """
+    plain = random_problem(seed, bands=bands, **shape)
+    rng = np.random.default_rng(seed + 10**6)
+    pick = lambda *choices: choices[int(rng.integers(0, len(choices)))]  # noqa: E731
+    coils = plain.coils
+    tuning = pick((5e-12, 40e-12), (12e-12, 150e-12), (3e-12, 15e-12))
+    margin = pick(0.0, 0.01, 0.03)
+    lead_inductance = pick(0.0, 0.0, 30e-9)
+    low_end, wanted = plain.frequency.copy(), plain.wanted.copy()
+    inductance_low = plain.inductance_high.copy()
+    which = np.arange(bands) < swept
+    for band in np.flatnonzero(which):
+        values = plain.species[band]
+        fixed = plain.fixed_capacitance()[:, band]
+        for coil in rng.permutation(coils):
+            least, most = tuning
+            if plain.most_parts and rng.random() < 0.6:
+                padder = rng.choice(values)
+                least, most = (t * padder / (t + padder) for t in tuning)
+            across = rng.choice(values) * rng.integers(0, 2) + fixed[coil]
+            wanted[coil, band] = (least + across) * (1 + margin) ** 2 * rng.uniform(1.0, 1.08)
+            ratio = np.sqrt((most + across) / (least + across) * rng.uniform(0.75, 0.95))
+            low_end[band] = plain.frequency[band] * min(0.97, (1 + margin) / (1 - margin) / ratio)
+        inductance_low[:, band] = rng.uniform(1.0, 1.004, coils) / (
+            (2 * np.pi * plain.frequency[band]) ** 2 * wanted[:, band]
+        )
+    return replace(
+        plain,
+        wanted=wanted,
+        swept=which,
+        low_end=low_end,
+        margin=margin,
+        tuning_low=np.where(which, tuning[0], 0.0),
+        tuning_high=np.where(which, tuning[1], 0.0),
+        tuning_loss=np.full(bands, pick(0.0, 1 / 500, 1 / 500, 1 / 500, np.nan)),
+        tuning_tempco=np.full(bands, pick(0.0, 100e-6)),
+        inductance_low=inductance_low,
+        coil_loss_low=plain.coil_loss * rng.uniform(0.8, 1.2, plain.coil_loss.shape),
+        species_low=plain.species * pick(1.0, 1.0, 0.998),
+        part_loss_low=plain.part_loss * pick(1.0, 0.5),
+        excess_limit=pick(np.inf, np.inf, np.inf, 0.8),
+        lead_inductance=lead_inductance,
+        in_play=plain.in_play | which,
     )

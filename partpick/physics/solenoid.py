@@ -1,0 +1,180 @@
+"""Single-layer coils summed turn by turn, and what radio frequency leaves of their inductance.
+
+Coils of one family share wire, diameter and pitch and differ in turns alone: two cumulative sums over the
+mutual inductances of rings give all of them at once. `sheet.py` has the closed form.
+"""
+
+from __future__ import annotations
+
+from typing import Final
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+from scipy.special import jve
+
+from partpick.physics.filaments import loop_inductance, mutual_inductance
+from partpick.physics.skin import MU_0
+
+FloatArray = NDArray[np.float64]
+
+_ASYMPTOTIC_ABOVE: Final = 1000.0  # radius / skin depth from which 1 - 1/x is right to 1e-9
+
+
+def solenoid_family(max_turns: int, diameter: float, wire_diameter: float, pitch: float) -> FloatArray:
+    """Return the low-frequency inductance of a single-layer coil of 1, 2, ... turns.
+
+    Parameters
+    ----------
+    max_turns : int
+        Most turns, at least 0. [-]
+    diameter : float
+        Mean diameter, centre of wire to centre of wire. [m]
+    wire_diameter : float
+        Bare wire diameter. [m]
+    pitch : float
+        Distance of neighbouring turns, at least the wire diameter. [m]
+
+    Returns
+    -------
+    inductance : (max_turns,) array
+        Inductance of 1 ... `max_turns` turns. [H]
+
+    Notes
+    -----
+    As `solenoid_families`.
+
+    References
+    ----------
+    E. B. Rosa and F. W. Grover, Bull. Bur. Stand. 8 (1912) 1-237 (summation over coaxial rings);
+    tests/published/solenoid_round_wire.csv.
+    """
+    return solenoid_families([max_turns], [diameter], [wire_diameter], [pitch])
+
+
+def solenoid_families(
+    max_turns: ArrayLike, diameter: ArrayLike, wire_diameter: ArrayLike, pitch: ArrayLike
+) -> FloatArray:
+    """Return the low-frequency inductances of many families of single-layer coils, end to end.
+
+    Parameters
+    ----------
+    max_turns : (f,) array of int
+        Most turns of each family, at least 0. [-]
+    diameter : (f,) array
+        Mean diameter, centre of wire to centre of wire. [m]
+    wire_diameter : (f,) array
+        Bare wire diameter. [m]
+    pitch : (f,) array
+        Distance of neighbouring turns, at least the wire diameter. [m]
+
+    Returns
+    -------
+    inductance : (sum of max_turns,) array
+        Inductances of 1 ... max_turns[0] turns of the first family, then those of the second, ... [H]
+
+    Notes
+    -----
+    L(N) = N L_1 + 2 sum (N - m) M_m, with M_m of two rings m pitches apart and L_1 of one round turn. A figure
+    does not depend, to the last bit, on the other families computed with it. Reads up to 0.4 % above a true
+    helix where the coil is 10 wires wide or more (see `spread.solenoid_model_spread`); leads are not counted.
+
+    References
+    ----------
+    E. B. Rosa and F. W. Grover, Bull. Bur. Stand. 8 (1912) 1-237 (summation over coaxial rings);
+    tests/published/solenoid_round_wire.csv.
+    """
+    most = np.asarray(max_turns, np.intp)
+    ends = np.cumsum(most)
+    starts = ends - most
+    apart = np.arange(int(most.sum())) - np.repeat(starts, most)
+    radius = np.repeat(np.asarray(diameter, float) / 2.0, most)
+    # Twice the mutual inductance from each turn to one `apart` away; for apart = 0 half of this is taken below.
+    step = np.empty(len(apart))
+    near = apart > 0
+    step[near] = 2.0 * mutual_inductance(
+        radius[near], radius[near], apart[near] * np.repeat(np.asarray(pitch, float), most)[near]
+    )
+    own = loop_inductance(diameter, wire_diameter)
+    step[starts[most > 0]] = np.broadcast_to(own, most.shape)[most > 0]
+    # Turn N + 1 adds its own inductance and twice its mutual ones; sums stay inside a family, so that no
+    # figure carries the rounding of its neighbours.
+    for start, end in zip(starts.tolist(), ends.tolist(), strict=True):
+        piece = step[start:end]
+        np.cumsum(np.cumsum(piece), out=piece)
+    return step
+
+
+def high_frequency_inductance(
+    dc_inductance: ArrayLike,
+    turns: ArrayLike,
+    diameter: ArrayLike,
+    proximity_factor: ArrayLike,
+    a_over_delta: ArrayLike,
+    internal_ratio: ArrayLike,
+) -> FloatArray:
+    """Return the inductance of a single-layer coil at radio frequency, below its self-resonance.
+
+    Parameters
+    ----------
+    dc_inductance : float or (n,) array
+        Low-frequency inductance. [H]
+    turns : float or (n,) array
+        Number of turns. [-]
+    diameter : float or (n,) array
+        Mean diameter, centre of wire to centre of wire. [m]
+    proximity_factor : float or (n,) array
+        High-frequency proximity factor Phi of the winding, at least 1. [-]
+    a_over_delta : float or (n,) array
+        Wire radius over skin depth. [-]
+    internal_ratio : float or (n,) array
+        Internal inductance of the wire over its low-frequency value, 0 to 1. [-]
+
+    Returns
+    -------
+    inductance : float or (n,) array
+        Inductance at that frequency, self-capacitance left out. [H]
+
+    Notes
+    -----
+    L - mu0 N D [(1 - internal)/8 + s (Phi - 1)/4]: the current leaves the inside of the wire, and the wires
+    push back the field of their neighbours; s is `reaction_ratio`. Against boundary elements at vanishing skin
+    depth 0 to 2 % high (5 to 30 turns, d/s 0.2 to 0.8, l/D 0.5 to 4) when the factor is right.
+
+    References
+    ----------
+    Own derivation in the dipole limit; tests/published/high_frequency_inductance.csv.
+    """
+    internal = (1.0 - np.asarray(internal_ratio, float)) / 8.0
+    reaction = reaction_ratio(a_over_delta) * (np.asarray(proximity_factor, float) - 1.0) / 4.0
+    lost = MU_0 * np.asarray(turns, float) * np.asarray(diameter, float) * (internal + reaction)
+    return (np.asarray(dc_inductance, float) - lost)[()]
+
+
+def reaction_ratio(a_over_delta: ArrayLike) -> FloatArray:
+    """Return how strongly a round wire pushes back a transverse field, compared with a perfect conductor.
+
+    Parameters
+    ----------
+    a_over_delta : float or (n,) array
+        Wire radius over skin depth, from 0. [-]
+
+    Returns
+    -------
+    ratio : float or (n,) array
+        0 at low frequency to 1 where the skin is thin; nan below 0. [-]
+
+    Notes
+    -----
+    Re[-J2(z)/J0(z)] with z = (1 - j) a/delta. Tends to (a/delta)^4/12 and to 1 - delta/a.
+
+    References
+    ----------
+    W. R. Smythe, Static and Dynamic Electricity, McGraw-Hill 1950, chapter 11 (cylinder in a transverse
+    alternating field; from memory).
+    """
+    values = np.asarray(a_over_delta, float)
+    distinct, where = np.unique(values, return_inverse=True)  # thousands of windings share a few wires
+    z = (1.0 - 1.0j) * np.clip(np.nan_to_num(distinct), 0.0, _ASYMPTOTIC_ABOVE)
+    thick = np.maximum(distinct, 1.0)
+    ratio = np.where(distinct > _ASYMPTOTIC_ABOVE, 1.0 - 1.0 / thick, np.real(-jve(2, z) / jve(0, z)))
+    return np.where(distinct >= 0.0, ratio, np.nan)[where.reshape(values.shape)][()]

@@ -1,0 +1,82 @@
+"""From species to parts: every choice of grades for networks of known capacitances, spelled once."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from partpick.search.networks import PARALLEL, SERIES, Rows
+from partpick.search.problem import PLENTY, Bools, Ints, Problem
+
+
+class Grades:
+    """The parts of each species that may be worth taking."""
+
+    def __init__(self, problem: Problem) -> None:
+        self.problem = problem
+        useful = [self._useful(options) for options in problem.options]
+        self._starts = np.concatenate([[0], np.cumsum([len(o) for o in useful])]).astype(np.int64)
+        self._flat = np.array([p for o in useful for p in o], dtype=np.int64)
+
+    def _useful(self, options: tuple[int, ...]) -> tuple[int, ...]:
+        """Drop a part that another in plenty equals in every figure and precedes in content."""
+        p = self.problem
+        kept: list[int] = []
+        seen: set[tuple[object, ...]] = set()
+        for part in sorted(options, key=lambda i: int(p.part_rank[i])):
+            if p.part_stock[part] < 1:
+                continue
+            figures = (
+                tuple(np.nan_to_num(p.part_loss[:, part], nan=-1.0)),
+                tuple(np.nan_to_num(p.part_loss_low[:, part], nan=-1.0)),
+                float(np.nan_to_num(p.part_tempco[part], nan=9.0)) if np.isfinite(p.drift_limit) else 0.0,
+                float(p.part_tempco_spread[part]) if np.isfinite(p.drift_limit) else 0.0,
+                int(p.part_price[part]),
+            )
+            if figures in seen:
+                continue
+            if p.part_stock[part] >= PLENTY:
+                seen.add(figures)
+            kept.append(part)
+        return tuple(kept)
+
+    def expand(self, rows: Rows, *, last_apart: bool = False) -> tuple[Ints, Ints]:
+        """Return the row of each choice of grades, (m,), and the parts chosen, (m, k).
+
+        Parameters
+        ----------
+        rows : Rows
+            Networks of species. [-]
+        last_apart : bool
+            The last place is a series padder, which changes places with no other part. [-]
+        """
+        count = self._starts[1:] - self._starts[:-1]
+        places = rows.species.shape[1]
+        source = np.arange(len(rows.value))
+        chosen = np.empty((len(source), 0), dtype=np.int64)
+        for place in range(places):
+            species = rows.species[source, place]
+            times = count[species]
+            first = np.cumsum(times) - times
+            origin = np.repeat(np.arange(len(times)), times)
+            offset = np.arange(int(times.sum())) - first[origin]
+            source = source[origin]
+            part = self._flat[self._starts[species[origin]] + offset]
+            chosen = np.concatenate([chosen[origin], part[:, None]], axis=1)
+            keep = self._in_stock(chosen)
+            if place > 0 and not (last_apart and place == places - 1):
+                keep &= self._one_spelling(rows.take(source), chosen, place)
+            source, chosen = source[keep], chosen[keep]
+        return source, chosen
+
+    def _one_spelling(self, rows: Rows, chosen: Ints, place: int) -> Bools:
+        """Equal species in interchangeable places: only the order of content."""
+        twins = rows.species[:, place] == rows.species[:, place - 1]
+        if place == 1:
+            twins &= (rows.shape == PARALLEL) | (rows.shape == SERIES)
+        rank = self.problem.part_rank
+        return ~twins | (rank[chosen[:, place]] >= rank[chosen[:, place - 1]])
+
+    def _in_stock(self, chosen: Ints) -> Bools:
+        last = chosen[:, -1]
+        used = (chosen == last[:, None]).sum(axis=1)
+        return np.asarray(used <= self.problem.part_stock[last])
