@@ -352,8 +352,9 @@ def _warnings(
             for note in capacitors[index].notes:
                 found[f"{capacitors[index].label}: {note}"] = None
     for coil in dict.fromkeys(design.coils):
-        for note in coils.supports[int(coils.support[coil])].notes:
-            found[note] = None
+        support = coils.supports[int(coils.support[coil])]
+        for note in support.notes:
+            found[f"{support.name}: {note}"] = None
     for index, figures in enumerate(bands):
         if figures.q is None:
             found[f"{figures.name}: Q is unknown, a loss is not stated at this frequency"] = None

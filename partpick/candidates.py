@@ -72,12 +72,13 @@ class Coils:
             return (f"{support.name} is outside its useful range, {_range_words(low, high)}: Q unknown",)
         return ()
 
-    def listed(self, inductance: float | None) -> Ints:
+    def listed(self, inductance: float | None, *, low_frequency: bool) -> Ints:
         """Return the coils in play by content, or nearest to an inductance first."""
         inside = np.flatnonzero(self.in_play.any(axis=1))
         if inductance is None:
             return inside[np.argsort(self.rank[inside], kind="stable")]
-        distance = np.abs(np.log(self.inductance[inside, 0] / inductance))
+        values = self.inductance_dc if low_frequency else self.inductance[:, 0]
+        distance = np.abs(np.log(values[inside] / inductance))
         return inside[np.lexsort((self.rank[inside], np.rint(distance * 1e12)))]
 
     def at_band(self, coil: int, band: int) -> dict[str, float | None]:

@@ -12,12 +12,14 @@ from partpick.nothing_fits import explain
 from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet
-from partpick.request import Request
+from partpick.request import Band, Request
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
 from partpick.search.bands import Found, pieces_of_bound, search_bands
 from partpick.search.choose import Choice
 from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
+
+LOW_FREQUENCY = 1e3  # Hz
 
 
 def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Monitor | None = None) -> Result:
@@ -83,8 +85,10 @@ def windings(
     at : float, optional
         Frequency at which inductance, Q and series resistance are taken; low frequency otherwise. [Hz]
     """
+    if at is None:  # any low frequency will do: only low-frequency inductances are told
+        request = replace(request, bands=(Band(name="", at=LOW_FREQUENCY),))
     coils = realisable_coils(request, catalogue)
-    chosen = coils.listed(inductance)
+    chosen = coils.listed(inductance, low_frequency=at is None)
     figures = []
     for coil in chosen:
         figure = coil_figures(coils, int(coil), 0)

@@ -304,7 +304,7 @@ def bought_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     for part in parts:
         notes = part.notes
         if part.self_capacitance is None:
-            notes = (*notes, f"{part.label}: self-capacitance not stated, taken as 0")
+            notes = (*notes, "self-capacitance not stated, taken as 0")
         supports.append(Support(name=part.label, quantity=part.quantity, source=part.source, notes=notes))
 
     def label(row: int) -> str:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import math
+from itertools import pairwise
 from pathlib import Path
 
 import pytest
@@ -52,10 +53,8 @@ WIRES = {wire.name: wire for wire in PARTS.wires}
 def wire_of(name: str) -> Wire | None:
     if name.startswith("enamelled"):
         size = float(name.split(" ")[1])
-        matches = [
-            w for w in PARTS.wires if w.name.startswith("enam") and float(w.name.split(" ")[1]) == size
-        ]
-        return matches[0] if matches else None
+        enamelled = [wire for wire in PARTS.wires if wire.name.startswith("enamelled")]
+        return next((wire for wire in enamelled if float(wire.name.split(" ")[1]) == size), None)
     return WIRES.get(name)
 
 
@@ -89,7 +88,7 @@ def test_thicker_wire_has_a_thicker_and_relatively_thinner_covering() -> None:
         ratios = [overall / bare for bare, overall in sizes]
         assert increases == sorted(increases)
         # Rounding to the micrometre and to the next larger size leaves steps of under one per cent.
-        assert all(later <= earlier * 1.01 for earlier, later in zip(ratios, ratios[1:], strict=False))
+        assert all(later <= earlier * 1.01 for earlier, later in pairwise(ratios))
 
 
 def test_stranded_wire_has_room_for_its_strands() -> None:
@@ -127,10 +126,10 @@ def test_each_grade_covers_its_range(
     parts = [part for part in PARTS.capacitors if part.grade == grade]
     values = sorted({part.value for part in parts})
     assert (values[0], values[-1]) == (low, high)
-    step = 1.25 if per_decade == 12 else 1.14  # widest step of E12 (1.2 to 1.5) and E24, ends included
-    for first, second in zip(values, values[1:], strict=False):
-        assert second / first < (step if first >= 9.1e-12 else 1.251) * 1.01
-    assert {part.tempco for part in parts} == {pytest.approx(tempco * 1e-6)}
+    widest = {12: 15 / 12, 24: 15 / 13}  # IEC 60063; the small values of C0G are E12
+    for first, second in pairwise(values):
+        assert second / first <= widest[per_decade if first >= 10e-12 else 12] * (1 + 1e-9)
+    assert [part.tempco for part in parts] == pytest.approx([tempco * 1e-6] * len(parts))
     assert all(part.q is not None and part.voltage and part.rf_current for part in parts)
 
 

@@ -6,9 +6,9 @@ from pathlib import Path
 
 import pytest
 
+import partpick
 from partpick import load_catalogue, load_plan
 from partpick.errors import OutputError
-from partpick.solve import solve
 from partpick.starter import starter_files, write_starter
 
 
@@ -39,7 +39,8 @@ def test_the_plan_and_the_drawer_load(tmp_path: Path) -> None:
 def test_the_plan_is_solved_with_the_drawer(tmp_path: Path) -> None:
     """The first thing a new user runs must find something, within its own limits."""
     write_starter(tmp_path, force=False)
-    result = solve(load_plan(str(tmp_path / "plan.toml")), load_catalogue(tmp_path / "drawer"), top=1)
+    plan, parts = load_plan(str(tmp_path / "plan.toml")), load_catalogue(tmp_path / "drawer")
+    result = partpick.solve(plan, parts, top=1)
     (first,) = result.candidates
     assert result.proof.status == "optimal"
     assert first.worst_error is not None

@@ -22,11 +22,11 @@ from partpick.physics.skin import MU_0
 FloatArray = NDArray[np.float64]
 
 _GRADING: Final = 1.5  # panels shrink towards the edge of the rod, where its field is strongest
-_DISC_PANELS: Final = 12
-_SIDE_PANELS: Final = (12.0, 3.0)  # half a side has a + b length/diameter of them
-_POINTS: Final = 3  # Gauss points on a panel that receives
+_DISC_PANELS: Final = 16
+_SIDE_PANELS: Final = (16.0, 5.0)  # half a side has a + b length/diameter of them
+_POINTS: Final = 4  # Gauss points on a panel that receives
 _SOURCE_POINTS: Final = 8  # on a panel of an end face that sends
-_KNOT_DENSITY: Final = 12.0
+_KNOT_DENSITY: Final = 6.0  # knots while a coil's end moves by a gap, or by the coil's radius
 _REACH: Final = 40.0  # the table ends that many rod lengths and coil radii away
 _WEAKEST_MODE: Final = 1e-7
 

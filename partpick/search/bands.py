@@ -183,7 +183,7 @@ def _front(
         monitor.report(f"the least error with {cap} pieces")
         choice = _least_error(problem, bounds, pairs, evaluator, cap, monitor, last - 1e-9)
         if choice is not None:
-            error = max(float(abs(columns.error[0])) for columns in choice.columns)
+            error = leading_figure(problem, choice)
             if error < last - 1e-9:
                 last = error
                 yield choice
@@ -213,11 +213,12 @@ def _least_error(
         reason = monitor.stopped()
         if reason is not None:
             raise Stopped(reason)
-        if best is not None and _fine(problem, error) > best.key[evaluator.leading_place]:  # type: ignore[operator]
-            break
         choice = evaluator.least_error(coils, cap, error)
         if choice is not None and (best is None or choice.key < best.key):
             best = choice
+        # Equal errors stay in the order in which they come: the front promises the least error alone.
+        if best is not None and best.key[evaluator.leading_place] <= _fine(problem, error) + 2:  # type: ignore[operator]
+            break
     return best
 
 

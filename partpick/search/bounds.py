@@ -14,6 +14,7 @@ from partpick.search.figures import coarse_error, fine_error, quality_class, str
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 
 IMPOSSIBLE = 1000  # fewest parts where a coil cannot serve a band
+OUT_OF_REACH = 1 << 62  # its error or excess there, as a whole number
 
 _BITS = {
     "pieces": 9,
@@ -38,7 +39,7 @@ _FIXED = {
 }
 _SWEPT = {
     "build": ("pieces", "excess_class", *_TAIL),
-    "error": ("fine_excess", "pieces", *_TAIL),
+    "error": ("fine_excess", "pieces", "q_class", "stray_class", "reactance_class"),
     "price": ("price", "pieces", "coarse_excess"),
 }
 _MIXED = {
@@ -158,7 +159,7 @@ class Bounds:
 def _whole(rule: object, error: Floats) -> Ints:
     assert callable(rule)
     finite = np.isfinite(error)
-    return np.where(finite, rule(np.where(finite, error, 0.0)), NEVER).astype(np.int64)
+    return np.where(finite, rule(np.where(finite, error, 0.0)), OUT_OF_REACH).astype(np.int64)
 
 
 def pack(figures: dict[str, Ints], fields: tuple[str, ...], *, after_full: int = 0) -> Ints:

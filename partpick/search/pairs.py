@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from partpick.progress import Monitor
-from partpick.search.bounds import IMPOSSIBLE, Bounds, pack, packed_fields
+from partpick.search.bounds import IMPOSSIBLE, OUT_OF_REACH, Bounds, pack, packed_fields
 from partpick.search.choose import Stopped
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 
@@ -142,7 +142,7 @@ class PairBounds:
     def _by_worst(self, figures: dict[str, Ints]) -> Iterator[tuple[int, tuple[int, ...]]]:
         """Waves by the worst error or excess: pairs that stay inside a growing threshold."""
         rank = figures[packed_fields(self.problem, "error")[0]]
-        levels = np.unique(rank[rank < NEVER])
+        levels = np.unique(rank[rank < OUT_OF_REACH])
         done = -1
         step = 1
         place = _first_covering(rank, levels)
