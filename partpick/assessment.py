@@ -17,6 +17,7 @@ from partpick.errors import InternalError
 from partpick.objective import TRIMMER_Q
 from partpick.parts import Capacitor
 from partpick.physics.resonance import effective_capacitance, resonance_frequency
+from partpick.quantities import format_quantity
 from partpick.request import Band, Request
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
@@ -43,7 +44,11 @@ class Design:
 
 
 def assess(
-    request: Request, coils: Coils, capacitors: Sequence[Capacitor], design: Design, alternatives: int | None = None
+    request: Request,
+    coils: Coils,
+    capacitors: Sequence[Capacitor],
+    design: Design,
+    alternatives: int | None = None,
 ) -> Candidate:
     """Return every figure of one design; rank and front are filled in by the caller.
 
@@ -96,14 +101,17 @@ def recheck(candidate: Candidate, worst_error: float) -> None:
         )
 
 
-def network_capacitance(capacitors: Sequence[Capacitor], network: Network, frequency: float, leads: float) -> float:
+def network_capacitance(
+    capacitors: Sequence[Capacitor], network: Network, frequency: float, leads: float
+) -> float:
     """Return how a band's network acts at a frequency, series inductances included. [F]"""
     chosen = [capacitors[i] for i in network.parts]
     if not chosen:
         return 0.0
     if any(part.series_inductance for part in chosen):
         acting = [
-            float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency)) for part in chosen
+            float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency))
+            for part in chosen
         ]
         whole = _combine(acting, network.shape)
     else:
@@ -179,8 +187,6 @@ def _capacitor_lines(
 
 
 def _capacitor_line(reference: str, part: Capacitor, bands: tuple[str, ...]) -> PartLine:
-    from partpick.quantities import format_quantity
-
     value = format_quantity(part.value, "F", digits=4)
     return PartLine(
         reference=reference,
@@ -212,9 +218,7 @@ def _coil_lines(
 
 
 def _trimmer_lines(request: Request) -> list[PartLine]:
-    from partpick.quantities import format_quantity
-
-    lines = []
+    lines: list[PartLine] = []
     for band in request.bands:
         if band.trimmer is None:
             continue

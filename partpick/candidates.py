@@ -1,7 +1,7 @@
 """Every coil that the stock can wind or buy, as arrays over (coil, band).
 
-`FORMS` is the table of winding forms: to add one, write its builder in `winding_forms.py` and put it
-here. Which coils are in play for a band is decided here alone.
+`FORMS` is the table of winding forms: to add one, write its builder in `forms/` and put it here.
+Which coils are in play for a band is decided here alone.
 """
 
 from __future__ import annotations
@@ -11,12 +11,16 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from partpick.forms.block import TAIL, Block, Support
+from partpick.forms.bought import bought_block
+from partpick.forms.measured import measured_block
+from partpick.forms.ring import ring_block
+from partpick.forms.solenoid import solenoid_block
 from partpick.parts import Catalogue
 from partpick.physics.self_capacitance import self_resonance_frequency
 from partpick.quantities import format_quantity
 from partpick.request import CoilRules, Request
 from partpick.result import CoilFigures, PartLine
-from partpick.winding_forms import TAIL, Block, Support, bought_block, measured_block, ring_block, solenoid_block
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -146,9 +150,9 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
         price=column("price").astype(float),
         volume=column("volume").astype(float),
         wire_diameter=column("wire_diameter").astype(float),
-        effort_form=np.concatenate(
-            [np.full(len(b.turns), b.effort_form) for b in blocks] or whole
-        ).astype(np.int64),
+        effort_form=np.concatenate([np.full(len(b), b.effort_form) for b in blocks] or whole).astype(
+            np.int64
+        ),
         rank=_content_rank(blocks),
         in_play=np.ones((sum(len(b.turns) for b in blocks), bands), dtype=np.bool_),
     )
@@ -158,13 +162,12 @@ def _content_rank(blocks: list[Block]) -> Ints:
     """Order coils by form, former, wire, pitch, turns and value; never by their row."""
     if not blocks:
         return np.empty(0, np.int64)
-    form = np.concatenate([np.full(len(b.turns), _place([x.form for x in blocks])[i]) for i, b in enumerate(blocks)])
+    forms = _place([block.form for block in blocks])
+    form = np.concatenate([np.full(len(block), forms[i]) for i, block in enumerate(blocks)])
     names = [[support.name for support in block.supports] for block in blocks]
     wires = [[wire.name for wire in block.wires] for block in blocks]
     former = np.concatenate([_place(n)[b.support] for n, b in zip(names, blocks, strict=True)])
-    wire = np.concatenate(
-        [_place(["", *w])[b.wire + 1] for w, b in zip(wires, blocks, strict=True)]
-    )
+    wire = np.concatenate([_place(["", *w])[b.wire + 1] for w, b in zip(wires, blocks, strict=True)])
     turns = np.concatenate([b.turns for b in blocks])
     pitch = np.concatenate([b.pitch for b in blocks])
     order = np.lexsort((turns, pitch, wire, former, form))
@@ -215,10 +218,11 @@ def _own_resonance_high_enough(rules: CoilRules, coils: Coils, request: Request)
         own = self_resonance_frequency(coils.inductance, coils.self_capacitance[:, None])
     times = np.full(len(coils), rules.self_resonance)
     if not rules.self_resonance_stated:
-        eased = np.concatenate([np.full(len(b.turns), b.eased_resonance) for b in coils.blocks] or [np.empty(0)])
+        eased = np.concatenate([np.full(len(b), b.eased_resonance) for b in coils.blocks] or [np.empty(0)])
         times = np.where(eased > 0, 2.0, times)
     highest = np.array([band.highest for band in request.bands])
-    return own >= times[:, None] * highest[None, :] * (1 - LIMIT_ROUNDING)
+    enough: NDArray[np.bool_] = own >= times[:, None] * highest[None, :] * (1 - LIMIT_ROUNDING)
+    return enough
 
 
 def coil_figures(coils: Coils, coil: int, band: int) -> CoilFigures:

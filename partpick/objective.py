@@ -6,6 +6,8 @@ Rules marked "common practice" have no source.
 
 from __future__ import annotations
 
+from fractions import Fraction
+
 import numpy as np
 
 from partpick.candidates import Coils
@@ -56,12 +58,18 @@ def effort(coils: Coils) -> Ints:
     """Return what winding takes, (J, 3): class of form, wire outside 0.3 to 1.0 mm, volume in 25 % steps."""
     turns = coils.turns
     form = np.select(
-        [coils.effort_form == 0, (coils.effort_form == 1) & (turns <= 30), (coils.effort_form == 2) & (turns <= 40)],
+        [
+            coils.effort_form == 0,
+            (coils.effort_form == 1) & (turns <= 30),
+            (coils.effort_form == 2) & (turns <= 40),
+        ],
         [0, 1, 2],
         3,
     )
     wound = coils.wire_diameter > 0
-    unusual = wound & ((coils.wire_diameter < 0.3e-3 * (1 - 1e-9)) | (coils.wire_diameter > 1.0e-3 * (1 + 1e-9)))
+    unusual = wound & (
+        (coils.wire_diameter < 0.3e-3 * (1 - 1e-9)) | (coils.wire_diameter > 1.0e-3 * (1 + 1e-9))
+    )
     cubic_mm = np.maximum(coils.volume * 1e9, 1.0)
     steps = np.rint(np.log(cubic_mm) / np.log(1.25))
     return np.stack([form, unusual.astype(np.int64), steps.astype(np.int64)], axis=1).astype(np.int64)
@@ -99,10 +107,10 @@ def _error_limit(request: Request, band: Band) -> float:
 
 def _species(capacitors: tuple[Capacitor, ...]) -> tuple[list[tuple[int, ...]], list[Capacitor]]:
     """Group parts that act alike at every frequency: same capacitance, same series inductance."""
-    groups: dict[tuple[object, float], list[int]] = {}
+    groups: dict[tuple[Fraction, float], list[int]] = {}
     for index, part in enumerate(capacitors):
         groups.setdefault((part.exact, part.series_inductance or 0.0), []).append(index)
-    ordered = sorted(groups.items(), key=lambda item: item[0])  # type: ignore[arg-type]
+    ordered = sorted(groups.items(), key=lambda item: item[0])
     return [tuple(members) for _, members in ordered], [capacitors[members[0]] for _, members in ordered]
 
 
@@ -110,7 +118,12 @@ def _part_rank(capacitors: tuple[Capacitor, ...]) -> Ints:
     """Return each part's place by content: value, grade, tolerance, label."""
     order = sorted(
         range(len(capacitors)),
-        key=lambda i: (capacitors[i].exact, capacitors[i].grade, capacitors[i].tolerance, capacitors[i].label),
+        key=lambda i: (
+            capacitors[i].exact,
+            capacitors[i].grade,
+            capacitors[i].tolerance,
+            capacitors[i].label,
+        ),
     )
     rank = np.empty(len(order), dtype=np.int64)
     rank[order] = np.arange(len(order))
@@ -162,7 +175,8 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         in_play=coils.in_play,
         coil_loss=1.0 / coils.q,
         reactance_class=np.stack(
-            [reactance_class(omega[b] * coils.inductance[:, b], frequency[b]) for b in range(len(bands))], axis=1
+            [reactance_class(omega[b] * coils.inductance[:, b], frequency[b]) for b in range(len(bands))],
+            axis=1,
         ).reshape(coils.inductance.shape),
         effort=effort(coils),
         coil_price=np.array([NEVER if np.isnan(p) else round(p * 100) for p in coils.price], dtype=np.int64),

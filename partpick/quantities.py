@@ -36,8 +36,6 @@ __all__ = [
     "Tolerance",
     "format_percent",
     "format_quantity",
-    "refusal",
-    "shown",
     "parse_angle",
     "parse_bandwidth",
     "parse_capacitance",
@@ -57,6 +55,8 @@ __all__ = [
     "parse_tolerance",
     "parse_transconductance",
     "parse_voltage",
+    "refusal",
+    "shown",
 ]
 
 T = TypeVar("T")

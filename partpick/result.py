@@ -125,6 +125,7 @@ class RuledOut:
     limit: str  # key of the plan, "error", "parts_per_band", ...
     needed: float | int | str | None
     text: str  # one sentence for the bench
+    others: tuple[RuledOut, ...] = ()  # further limits, each of which alone would let a plan through
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -160,7 +160,9 @@ def _proof(problem: Problem, found: Found, candidates: tuple[Candidate, ...]) ->
         f"{problem.most_parts} capacitors a band, for nominal values"
     )
     if problem.inductors > 1 and problem.bands > 1:
-        searched = searched.replace("coils with", f"coils, alone and up to {problem.inductors} together, with")
+        searched = searched.replace(
+            "coils with", f"coils, alone and up to {problem.inductors} together, with"
+        )
     if found.stopped_by is None:
         status = "optimal" if candidates else "infeasible"
     else:

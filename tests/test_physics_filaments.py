@@ -35,7 +35,7 @@ def test_mutual_inductance_of_rings_is_the_published_one(row: dict[str, str]) ->
 
 @pytest.mark.parametrize("row", rows("maxwell_mutual.csv")[1:], ids=lambda r: r["axial_distance_m"])
 def test_mutual_inductance_is_the_flux_of_the_field(row: dict[str, str]) -> None:
-    """magpylib's ring field, integrated over the disc of the other ring, knows nothing of our formula."""
+    """The ring field of magpylib, integrated over the disc of the other ring, knows nothing of our formula."""
     radius, other, distance = size(row)
     nodes, weights = np.polynomial.legendre.leggauss(200)
     rho = (nodes + 1.0) / 2.0 * other
@@ -80,7 +80,7 @@ def test_rings_that_coincide_have_no_finite_mutual_inductance() -> None:
 
 
 def test_a_turn_of_round_wire_is_a_thin_ring_at_the_wire_s_mean_distance() -> None:
-    """Self-inductance is the mutual one at the geometric mean distance r exp(-1/4) (Maxwell 1873, sec. 692)."""
+    """Self-inductance is the mutual one at the geometric mean distance r exp(-1/4) (Maxwell 1873)."""
     for ratio, tolerance in ((0.1, 1e-3), (0.01, 1e-5), (0.001, 1e-7)):
         alike = mutual_inductance(0.5, 0.5, ratio / 2.0 * np.exp(-0.25))
         assert loop_inductance(1.0, ratio) == pytest.approx(alike, rel=tolerance)

@@ -48,13 +48,13 @@ def test_one_turn_is_a_loop() -> None:
 
 
 def test_a_very_long_coil_is_a_current_sheet() -> None:
-    """Turns and ends fade against a thousand turns, 2 m on 10 mm."""
-    n, d, w, p = 1000, 0.01, 1e-3, 2e-3
+    """The closed form's corrections fade: 4000 turns of fine wire, 1 m on 10 mm."""
+    n, d, w, p = 4000, 0.01, 2e-4, 2.5e-4
     summed = solenoid.solenoid_family(n, d, w, p)[-1]
     assert summed == pytest.approx(sheet.solenoid_inductance(n, d, w, p), rel=2e-4)
 
 
-@given(st.lists(families, max_size=5))
+@given(st.lists(families, min_size=1, max_size=5))
 def test_a_family_does_not_notice_its_neighbours(asked: list[tuple[int, float, float, float]]) -> None:
     """Bit for bit: the order of rows in a file must not change a rank."""
     each = [(n, d, min(w, d / 5), min(w, d / 5) * s) for n, d, w, s in asked]
@@ -70,8 +70,10 @@ def test_families_without_turns_take_no_place() -> None:
 
 
 @given(families)
-def test_more_turns_have_more_inductance_and_less_than_their_square(family: tuple[int, float, float, float]) -> None:
-    """Coupling lies between nothing and all: L grows faster than N and slower than N^2."""
+def test_inductance_grows_faster_than_turns_and_slower_than_their_square(
+    family: tuple[int, float, float, float],
+) -> None:
+    """Coupling lies between nothing and all."""
     n, d, w, spacing = family
     wire = min(w, d / 5)
     inductance = solenoid.solenoid_family(n + 2, d, wire, wire * spacing)
@@ -90,9 +92,7 @@ def test_wider_coils_have_more_inductance(family: tuple[int, float, float, float
 
 
 @given(families, st.floats(0.1, 10.0))
-def test_larger_coils_have_more_inductance_in_proportion(
-    family: tuple[int, float, float, float], k: float
-) -> None:
+def test_larger_coils_have_more_inductance_in_proportion(family: tuple[int, float, float, float], k: float) -> None:
     """Magnetostatics has no length of its own."""
     n, d, w, spacing = family
     wire = min(w, d / 5)
@@ -100,7 +100,7 @@ def test_larger_coils_have_more_inductance_in_proportion(
     assert large == pytest.approx(k * small, rel=1e-10)
 
 
-@pytest.mark.parametrize("row", rows("high_frequency_inductance.csv"), ids=lambda r: r["N"] + " " + r["d_over_s"])
+@pytest.mark.parametrize("row", rows("high_frequency_inductance.csv"), ids=lambda r: r["N"])
 def test_radio_frequency_takes_as_much_as_boundary_elements_say(row: dict[str, str]) -> None:
     """No internal inductance, the turns perfect conductors; any coil of these proportions."""
     n, ratio, proportion, factor = (float(row[key]) for key in ("N", "d_over_s", "l_over_D", "Phi_BEM"))
@@ -135,7 +135,7 @@ def test_inductance_falls_with_frequency(proportion: float, x: float, ratio: flo
 
 
 def test_reaction_follows_its_limits() -> None:
-    """x^4/12 for thin skin's opposite, a cylinder half a skin depth thinner for thin skin."""
+    """x^4/12 at low frequency; a cylinder half a skin depth thinner where the skin is thin."""
     assert solenoid.reaction_ratio([0.1, 0.2]) == pytest.approx([1e-4 / 12, 16e-4 / 12], rel=1e-3)
     assert solenoid.reaction_ratio([50.0, 500.0]) == pytest.approx([1 - 1 / 50, 1 - 1 / 500], rel=1e-3)
     assert solenoid.reaction_ratio([0.0, np.inf]).tolist() == [0.0, 1.0]
@@ -146,17 +146,20 @@ def test_reaction_follows_its_limits() -> None:
 
 
 def test_reaction_and_loss_are_one_response() -> None:
-    """Causality: the reaction follows from the loss at all frequencies (Kramers and Kronig).
+    """Causality (Kramers and Kronig): the reaction at one frequency follows from the loss at all of them.
 
-    The response of a wire is F(w) = J2(z)/J0(z), its loss part |Im F| = 4 g/x^2 with g of `transverse_loss_ratio`.
+    The loss is that of `skin.transverse_loss_ratio`, written from another formula: the response of a wire,
+    -J2(z)/J0(z), has the imaginary part 2 g/x^2, with x^2 proportional to frequency.
     """
-    frequency = np.geomspace(1e-7, 1e7, 200_001)  # w proportional to x^2
-    x = np.sqrt(frequency)
-    loss = 4.0 * transverse_loss_ratio(x) / x**2 / 2.0
-    for at in (0.7, 2.0, 5.0):
-        w = at**2
-        # principal value with the value at w taken out: its integral of 1/(w'^2 - w^2) is nought
-        own = np.interp(w, frequency, loss)
-        kernel = (loss - own) * frequency / (frequency**2 - w**2)
-        reaction = -2.0 / np.pi * np.trapezoid(kernel * 1.0, frequency)
-        del own, kernel, reaction
+    log = np.linspace(np.log(1e-8), np.log(1e12), 100_000)
+    frequency = np.exp(log)
+
+    def loss(w: np.ndarray) -> np.ndarray:
+        return 2.0 * transverse_loss_ratio(np.sqrt(w)) / w
+
+    for x in (0.5, 1.5, 3.0, 8.0):
+        w = x * x
+        # the singular part, whose principal value is nought, is taken off
+        numerator = frequency**2 * loss(frequency) - w * frequency * loss(np.array(w))
+        integral = np.sum(numerator / (frequency**2 - w**2)) * (log[1] - log[0])
+        assert solenoid.reaction_ratio(x) == pytest.approx(1.0 - 2.0 / np.pi * integral, abs=1e-4)

@@ -126,7 +126,8 @@ def core_inductance(al: ArrayLike, turns: ArrayLike) -> FloatArray:
     ----------
     IEC 60205 (definition of the inductance factor); tests/published/al_turns.csv.
     """
-    return (np.asarray(al, float) * np.asarray(turns, float) ** 2)[()]
+    result: FloatArray = (np.asarray(al, float) * np.asarray(turns, float) ** 2)[()]
+    return result
 
 
 def core_turns(al: ArrayLike, inductance: ArrayLike) -> IntArray:
@@ -152,12 +153,11 @@ def core_turns(al: ArrayLike, inductance: ArrayLike) -> IntArray:
     fewer = np.floor(exact)
     # Nearest in inductance, not in turns: halfway lies at the root mean square of the two counts.
     more = exact**2 > (fewer**2 + (fewer + 1.0) ** 2) / 2.0
-    return np.maximum(fewer + more, 1.0).astype(np.int64)[()]
+    result: IntArray = np.maximum(fewer + more, 1.0).astype(np.int64)[()]
+    return result
 
 
-def ring_turns_that_fit(
-    inner_diameter: ArrayLike, wire_diameter: ArrayLike, arc: ArrayLike = WINDING_ARC
-) -> IntArray:
+def ring_turns_that_fit(inner_diameter: ArrayLike, wire_diameter: ArrayLike, arc: ArrayLike = WINDING_ARC) -> IntArray:
     """Return how many turns lie side by side on the bore of a ring, in one layer.
 
     Parameters
@@ -225,12 +225,13 @@ def ring_leak(
 
     Notes
     -----
-    What the same winding has in air beyond mu0 N^2/C1, over the permeability: the space between wire and core,
-    the bare arc, the field close round each wire (mu0/2pi [ln(s/pi d) + 1/4] a metre, s its distance to the
-    next), and one turn along the ring. Nothing to speak of for ferrite, the better part of L for few turns on
+    What the same winding has in air beyond mu0 N^2/C1, over the permeability: the space between wire and
+    core, the bare arc, the field close round each wire (mu0/2pi [ln(s/pi d) + 1/4] a metre, s its distance to
+    the next), and one turn along the ring. Nothing to speak of for ferrite, the better part of L for few turns on
     a plastic ring. At permeability 1, against filaments summed (3 to 60 turns, over 330 or 165 degrees), the
-    whole inductance comes within 14 % on rings of 20 mm and more, within 25 % on smaller ones (wire thicker
-    than a quarter of the bore: 31 % short): half the leak is its uncertainty. At permeability 6 it gives the
+    whole inductance comes within 14 % on rings of 20 mm and more, within 25 % on smaller ones (31 % short
+    where the wire is thicker than an eighth of the bore): half the leak is its uncertainty, three quarters
+    there. At permeability 6 it gives the
     few to 20 % of common experience; there, take the leak itself as its uncertainty (estimate).
 
     References
@@ -248,8 +249,9 @@ def ring_leak(
     around = 2.0 * np.pi * share / n
     wires = n * sum(MU_0 / (2.0 * np.pi) * a * (np.log(around * r / (np.pi * wire)) + 0.25) for a, r in sides)
     hoop_radius = (rim + bore) / 2.0
-    # Radius of the round ring whose section has the outline of the winding's: the one turn made by going round.
+    # The turn made by going round the ring once, as a round wire with the outline of the winding's section.
     section = (rim - bore + h + wire) / np.pi
     hoop = MU_0 * hoop_radius * np.maximum(np.log(8.0 * hoop_radius / section) - 2.0, 0.0)
     leak = (sheet + wires + hoop - ideal) / (np.asarray(permeability, float) * ideal)
-    return np.maximum(leak, 0.0)[()]
+    result: FloatArray = np.maximum(leak, 0.0)[()]
+    return result

@@ -43,8 +43,8 @@ def demagnetising_factor(length_over_diameter: ArrayLike) -> FloatArray:
 
     References
     ----------
-    J. A. Osborn, Demagnetizing factors of the general ellipsoid, Phys. Rev. 67 (1945) 351; rods: R. M. Bozorth
-    and D. M. Chapin, J. Appl. Phys. 13 (1942) 320, from memory; tests/published/demagnetising.csv.
+    J. A. Osborn, Demagnetizing factors of the general ellipsoid, Phys. Rev. 67 (1945) 351; rods: R. M.
+    Bozorth and D. M. Chapin, J. Appl. Phys. 13 (1942) 320, from memory; tests/published/demagnetising.csv.
     """
     m = np.asarray(length_over_diameter, float)
     excess = np.where(m > 0.0, m * m - 1.0, np.nan)

@@ -15,7 +15,7 @@ from partpick.physics.skin import MU_0
 
 FloatArray = NDArray[np.float64]
 
-# Parameter m = k^2 under which the terms of the closed form cancel too far; the series is then exact to 1e-15.
+# Parameter m = k^2 under which the terms of the closed form cancel; the series is then exact to 1e-15.
 _SERIES_BELOW: Final = 0.04
 
 
@@ -64,7 +64,8 @@ def mutual_inductance(radius: ArrayLike, other_radius: ArrayLike, distance: Arra
     far = m < _SERIES_BELOW
     if np.any(far):
         shape = np.where(far, np.pi / 2.0 * m * m * np.polyval(_FAR[::-1], np.where(far, m, 0.0)), shape)
-    return (MU_0 / 2.0 * np.sqrt(far_side) * shape)[()]
+    result: FloatArray = (MU_0 / 2.0 * np.sqrt(far_side) * shape)[()]
+    return result
 
 
 def loop_inductance(diameter: ArrayLike, wire_diameter: ArrayLike) -> FloatArray:
@@ -97,4 +98,5 @@ def loop_inductance(diameter: ArrayLike, wire_diameter: ArrayLike) -> FloatArray
     log = np.log(8.0 / ratio)
     square = ratio * ratio
     shape = (1.0 + square / 8.0) * log - 1.75 + square / 24.0
-    return (MU_0 / 2.0 * np.asarray(diameter, float) * shape)[()]
+    result: FloatArray = (MU_0 / 2.0 * np.asarray(diameter, float) * shape)[()]
+    return result

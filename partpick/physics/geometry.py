@@ -32,7 +32,8 @@ def mean_diameter(former_diameter: ArrayLike, overall_diameter: ArrayLike) -> Fl
     ----------
     Geometry.
     """
-    return (np.asarray(former_diameter, float) + np.asarray(overall_diameter, float))[()]
+    result: FloatArray = (np.asarray(former_diameter, float) + np.asarray(overall_diameter, float))[()]
+    return result
 
 
 def solenoid_wire_length(turns: ArrayLike, diameter: ArrayLike, pitch: ArrayLike) -> FloatArray:
@@ -57,7 +58,8 @@ def solenoid_wire_length(turns: ArrayLike, diameter: ArrayLike, pitch: ArrayLike
     Geometry of the helix.
     """
     around = np.pi * np.asarray(diameter, float)
-    return (np.asarray(turns, float) * np.hypot(around, np.asarray(pitch, float)))[()]
+    result: FloatArray = (np.asarray(turns, float) * np.hypot(around, np.asarray(pitch, float)))[()]
+    return result
 
 
 def solenoid_turns_that_fit(winding_length: ArrayLike, pitch: ArrayLike) -> IntArray:
@@ -80,7 +82,8 @@ def solenoid_turns_that_fit(winding_length: ArrayLike, pitch: ArrayLike) -> IntA
     Geometry.
     """
     room = np.asarray(winding_length, float) / np.asarray(pitch, float)
-    return np.floor(room * (1.0 + _ROUNDING)).astype(np.int64)[()]
+    result: IntArray = np.floor(room * (1.0 + _ROUNDING)).astype(np.int64)[()]
+    return result
 
 
 def ring_wire_length(
@@ -120,7 +123,8 @@ def ring_wire_length(
     """
     section = np.asarray(outer_diameter, float) - np.asarray(inner_diameter, float)
     around = section + 2.0 * np.asarray(height, float) + np.pi * np.asarray(wire_diameter, float)
-    return (np.asarray(turns, float) * around)[()]
+    result: FloatArray = (np.asarray(turns, float) * around)[()]
+    return result
 
 
 def window_turns_that_fit(width: ArrayLike, depth: ArrayLike, wire_diameter: ArrayLike) -> IntArray:
@@ -151,7 +155,8 @@ def window_turns_that_fit(width: ArrayLike, depth: ArrayLike, wire_diameter: Arr
     wire = np.asarray(wire_diameter, float)
     side = np.floor(np.asarray(width, float) / wire * (1.0 + _ROUNDING))
     layers = np.floor(np.asarray(depth, float) / wire * (1.0 + _ROUNDING))
-    return (side * layers).astype(np.int64)[()]
+    result: IntArray = (side * layers).astype(np.int64)[()]
+    return result
 
 
 def layered_wire_length(turns: ArrayLike, inner_diameter: ArrayLike, depth: ArrayLike) -> FloatArray:
@@ -176,4 +181,5 @@ def layered_wire_length(turns: ArrayLike, inner_diameter: ArrayLike, depth: Arra
     Geometry.
     """
     mean = np.asarray(inner_diameter, float) + np.asarray(depth, float)
-    return (np.asarray(turns, float) * np.pi * mean)[()]
+    result: FloatArray = (np.asarray(turns, float) * np.pi * mean)[()]
+    return result

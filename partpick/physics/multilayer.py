@@ -14,9 +14,7 @@ FloatArray = NDArray[np.float64]
 _PER_METRE: Final = 0.8e-6 / 0.0254  # the published coefficient is for microhenry and inches
 
 
-def multilayer_inductance(
-    turns: ArrayLike, diameter: ArrayLike, length: ArrayLike, depth: ArrayLike
-) -> FloatArray:
+def multilayer_inductance(turns: ArrayLike, diameter: ArrayLike, length: ArrayLike, depth: ArrayLike) -> FloatArray:
     """Return the low-frequency inductance of a coil of many layers, in closed form.
 
     Parameters
@@ -46,7 +44,8 @@ def multilayer_inductance(
     """
     a = np.asarray(diameter, float) / 2.0
     denominator = np.sum(_terms(diameter, length, depth), axis=0)
-    return (_PER_METRE * (a * np.asarray(turns, float)) ** 2 / denominator)[()]
+    result: FloatArray = (_PER_METRE * (a * np.asarray(turns, float)) ** 2 / denominator)[()]
+    return result
 
 
 def multilayer_spread(diameter: ArrayLike, length: ArrayLike, depth: ArrayLike) -> FloatArray:

@@ -23,7 +23,7 @@ _LONG: Final = 10.0
 def _long_series(terms: int) -> FloatArray:
     """Return the coefficients in (d/l)^2 of 2F1(-1/2, 1/2; 2; -(d/l)^2)."""
     steps = [-(n - 0.5) * (n + 0.5) / ((n + 2.0) * (n + 1.0)) for n in range(terms - 1)]
-    return np.cumprod([1.0, *steps])
+    return np.cumprod(np.array([1.0, *steps]))
 
 
 _LONG_TERMS: Final = _long_series(9)
@@ -90,14 +90,15 @@ def sheet_inductance(turns: ArrayLike, diameter: ArrayLike, length: ArrayLike) -
 
     Notes
     -----
-    mu0 pi (D/2)^2 N^2 K/l. As a figure for a coil of round wire it is off by 6 % rms, up to 16 % with few turns.
+    mu0 pi (D/2)^2 N^2 K/l. As a figure for a coil of round wire it is off by 6 % rms, 16 % at worst.
 
     References
     ----------
     H. Nagaoka, J. Coll. Sci. Imp. Univ. Tokyo 27 (1909) art. 6; tests/published/solenoid_round_wire.csv.
     """
     n, d, axial = np.asarray(turns, float), np.asarray(diameter, float), np.asarray(length, float)
-    return (MU_0 * np.pi / 4.0 * d * d * n * n * nagaoka_coefficient(axial / d) / axial)[()]
+    result: FloatArray = (MU_0 * np.pi / 4.0 * d * d * n * n * nagaoka_coefficient(axial / d) / axial)[()]
+    return result
 
 
 def pitch_correction(wire_over_pitch: ArrayLike) -> FloatArray:
@@ -121,7 +122,8 @@ def pitch_correction(wire_over_pitch: ArrayLike) -> FloatArray:
     ----------
     E. B. Rosa and F. W. Grover, Bull. Bur. Stand. 8 (1912) 1-237, table VII; tests/published/rosa_pitch.csv.
     """
-    return (1.25 - np.log(2.0) + np.log(np.asarray(wire_over_pitch, float)))[()]
+    result: FloatArray = (1.25 - np.log(2.0) + np.log(np.asarray(wire_over_pitch, float)))[()]
+    return result
 
 
 def turns_correction(turns: ArrayLike) -> FloatArray:
@@ -189,7 +191,8 @@ def solenoid_inductance(
     """
     n, d, p = np.asarray(turns, float), np.asarray(diameter, float), np.asarray(pitch, float)
     correction = pitch_correction(np.asarray(wire_diameter, float) / p) + turns_correction(n)
-    return (sheet_inductance(n, d, n * p) - MU_0 / 2.0 * d * n * correction)[()]
+    result: FloatArray = (sheet_inductance(n, d, n * p) - MU_0 / 2.0 * d * n * correction)[()]
+    return result
 
 
 def inductance_sensitivities(length_over_diameter: ArrayLike) -> Sensitivities:
@@ -239,7 +242,8 @@ def _by_proportion(x: FloatArray, middle: FloatArray, order: int) -> FloatArray:
     if np.any(x > _LONG):
         inverse = 1.0 / np.maximum(x, _LONG)
         weights = _LONG_TERMS * (-2.0 * np.arange(len(_LONG_TERMS))) ** order
-        series = np.polyval(weights[::-1], inverse * inverse) - (-1.0) ** order * 4.0 / (3.0 * np.pi) * inverse
+        end = (-1.0) ** order * 4.0 / (3.0 * np.pi) * inverse
+        series = np.polyval(weights[::-1], inverse * inverse) - end
         result = np.where(x > _LONG, series, result)
     if not np.all(x >= _SHORT):
         result = np.where(x < _SHORT, _short(np.clip(x, 0.0, _SHORT), order), result)

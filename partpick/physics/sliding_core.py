@@ -138,9 +138,10 @@ def core_inductance_rise(
 
     Notes
     -----
-    Solid rod, uniform and lossless. The discretisation is within 0.1 % of the rise up to 3 diameters long,
-    0.3 % up to 20 diameters at a permeability of 1000 (checked by refinement). About 0.1 ms a position once
-    the rod is solved; for many coils take `core_modes`.
+    Solid rod, uniform and lossless. Checked by refinement for rods of 0.5 to 20 diameters, coils of 0.1 to 2
+    rod lengths and a permeability up to 1000: within 0.3 % of the greatest rise, 0.5 % for a coil of a tenth
+    of the rod's length that clears it by 5 %. It grows up to the centre, but for a ripple of 0.03 % where
+    such a short coil travels along the rod. 0.2 to 1 ms a position; for many coils take `core_modes`.
 
     References
     ----------
@@ -150,8 +151,9 @@ def core_inductance_rise(
     rod = _checked_rod(core_diameter, core_length, permeability, coil_diameter)
     shift = np.asarray(offset, float)
     low, high = (shift.ravel() + half for half in (coil_length / 2.0, -coil_length / 2.0))
-    field, flux = (np.subtract(*pair) for pair in zip(*(_linked(rod, coil_diameter, z) for z in (low, high))))
-    rise = np.einsum("np,pq,nq->n", flux, rod.answer, field)
+    from_low, from_high = (_linked(rod, coil_diameter, end) for end in (low, high))
+    field, flux = from_low[0] - from_high[0], from_low[1] - from_high[1]
+    rise = np.sum((flux @ rod.answer) * field, axis=1)
     return (MU_0 * (turns / coil_length) ** 2 * rise.reshape(shift.shape))[()]
 
 
@@ -185,7 +187,7 @@ def core_modes(
     Notes
     -----
     The rise is a quadratic form in what the two ends of the coil contribute, a form of low rank: its
-    eigenvectors are the modes. A few hundredths of a second a table.
+    eigenvectors are the modes. 15 to 100 ms a table, longest for a long rod in a close coil.
 
     References
     ----------
@@ -225,15 +227,18 @@ def tabulated_inductance_rise(
 
     Notes
     -----
-    Interpolation adds at most 0.1 % of the greatest rise to the error of `core_inductance_rise`.
+    Interpolation adds at most 0.04 % of the greatest rise to the error of `core_inductance_rise`. About 2
+    microseconds a coil and position.
 
     References
     ----------
     As `core_inductance_rise`.
     """
     length, shift = np.asarray(coil_length, float), np.asarray(offset, float)
-    ends = (modes.spline(np.clip(shift + half, -modes.reach, modes.reach)) for half in (length / 2, -length / 2))
-    linked = np.sum(np.subtract(*ends) ** 2, axis=-1)
+    low, high = (
+        modes.spline(np.clip(shift + half, -modes.reach, modes.reach)) for half in (length / 2, -length / 2)
+    )
+    linked = np.sum((low - high) ** 2, axis=-1)
     result: FloatArray = (np.asarray(turns, float) / length) ** 2 * linked
     return result
 
@@ -320,7 +325,8 @@ def _linked(rod: RodCore, coil_diameter: float, end: FloatArray) -> tuple[FloatA
 def _mirrored(rod: RodCore, upper: FloatArray) -> FloatArray:
     """Return rows for ends below the rod's middle too: the mirror image, with its sign."""
     sides, discs = len(rod.side) - 1, len(rod.disc) - 1
-    order = np.concatenate([np.arange(sides)[::-1], sides + discs + np.arange(discs), sides + np.arange(discs)])
+    face = sides + np.arange(discs)
+    order = np.concatenate([np.arange(sides)[::-1], face + discs, face])
     return np.concatenate([-upper[:0:-1, order], upper])
 
 
@@ -333,5 +339,6 @@ def _knots(rod: RodCore, coil_radius: float) -> FloatArray:
     half = rod.length / 2.0
     measure = np.arcsinh((trial - half) / gap) + np.arcsinh((trial + half) / gap)
     measure += np.minimum(trial, half) / coil_radius  # a short coil on a long rod needs the middle too
-    upper = np.interp(np.linspace(0.0, measure[-1], int(np.ceil(_KNOT_DENSITY * measure[-1]))), measure, trial)
+    even = np.linspace(0.0, measure[-1], int(np.ceil(_KNOT_DENSITY * measure[-1])))
+    upper = np.interp(even, measure, trial)
     return np.concatenate([-upper[:0:-1], upper])

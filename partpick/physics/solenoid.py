@@ -59,7 +59,7 @@ def solenoid_families(
     Parameters
     ----------
     max_turns : (f,) array of int
-        Most turns of each family, at least 0. [-]
+        Most turns of each family, at least 0; the sizes broadcast with it. [-]
     diameter : (f,) array
         Mean diameter, centre of wire to centre of wire. [m]
     wire_diameter : (f,) array
@@ -74,28 +74,26 @@ def solenoid_families(
 
     Notes
     -----
-    L(N) = N L_1 + 2 sum (N - m) M_m, with M_m of two rings m pitches apart and L_1 of one round turn. A figure
-    does not depend, to the last bit, on the other families computed with it. Reads up to 0.4 % above a true
-    helix where the coil is 10 wires wide or more (see `spread.solenoid_model_spread`); leads are not counted.
+    L(N) = N L_1 + 2 sum (N - m) M_m, with M_m of two rings m pitches apart and L_1 of one round turn. A
+    figure does not depend, to the last bit, on the other families computed with it. Five turns and more, ten wires
+    wide and more, read up to 0.4 % above a true helix (see `spread.solenoid_model_spread`); leads are not counted.
 
     References
     ----------
     E. B. Rosa and F. W. Grover, Bull. Bur. Stand. 8 (1912) 1-237 (summation over coaxial rings);
     tests/published/solenoid_round_wire.csv.
     """
-    most = np.asarray(max_turns, np.intp)
+    most, *sizes = np.broadcast_arrays(np.asarray(max_turns, np.intp), diameter, wire_diameter, pitch)
+    wide, wire, spacing = (np.asarray(size, float) for size in sizes)
     ends = np.cumsum(most)
     starts = ends - most
     apart = np.arange(int(most.sum())) - np.repeat(starts, most)
-    radius = np.repeat(np.asarray(diameter, float) / 2.0, most)
-    # Twice the mutual inductance from each turn to one `apart` away; for apart = 0 half of this is taken below.
+    # Twice the mutual inductance of two turns `apart` pitches from each other, or one turn's own inductance.
     step = np.empty(len(apart))
-    near = apart > 0
-    step[near] = 2.0 * mutual_inductance(
-        radius[near], radius[near], apart[near] * np.repeat(np.asarray(pitch, float), most)[near]
-    )
-    own = loop_inductance(diameter, wire_diameter)
-    step[starts[most > 0]] = np.broadcast_to(own, most.shape)[most > 0]
+    other = apart > 0
+    radius = np.repeat(wide / 2.0, most)[other]
+    step[other] = 2.0 * mutual_inductance(radius, radius, (apart * np.repeat(spacing, most))[other])
+    step[starts[most > 0]] = loop_inductance(wide, wire)[most > 0]
     # Turn N + 1 adds its own inductance and twice its mutual ones; sums stay inside a family, so that no
     # figure carries the rounding of its neighbours.
     for start, end in zip(starts.tolist(), ends.tolist(), strict=True):
@@ -137,8 +135,8 @@ def high_frequency_inductance(
     Notes
     -----
     L - mu0 N D [(1 - internal)/8 + s (Phi - 1)/4]: the current leaves the inside of the wire, and the wires
-    push back the field of their neighbours; s is `reaction_ratio`. Against boundary elements at vanishing skin
-    depth 0 to 2 % high (5 to 30 turns, d/s 0.2 to 0.8, l/D 0.5 to 4) when the factor is right.
+    push back the field of their neighbours; s is `reaction_ratio`. Against boundary elements at vanishing
+    skin depth 0 to 2 % high (5 to 30 turns, d/s 0.2 to 0.8, l/D 0.5 to 4) when the factor is right.
 
     References
     ----------
@@ -147,7 +145,8 @@ def high_frequency_inductance(
     internal = (1.0 - np.asarray(internal_ratio, float)) / 8.0
     reaction = reaction_ratio(a_over_delta) * (np.asarray(proximity_factor, float) - 1.0) / 4.0
     lost = MU_0 * np.asarray(turns, float) * np.asarray(diameter, float) * (internal + reaction)
-    return (np.asarray(dc_inductance, float) - lost)[()]
+    result: FloatArray = (np.asarray(dc_inductance, float) - lost)[()]
+    return result
 
 
 def reaction_ratio(a_over_delta: ArrayLike) -> FloatArray:

@@ -15,14 +15,12 @@ from partpick.physics.sheet import inductance_sensitivities
 
 FloatArray = NDArray[np.float64]
 
-# The dipole formula for the radio-frequency shift is up to 0.2 of the shift off against boundary elements, and
-# a proximity factor known to 10 % moves it by a quarter: a third of the shift covers both.
+# The dipole formula for the radio-frequency shift is up to 0.2 of the shift off against boundary elements,
+# and a proximity factor known to 10 % moves it by a quarter: a third of the shift covers both.
 _SHIFT_ERROR: Final = 1.0 / 3.0
 
 
-def solenoid_model_spread(
-    turns: ArrayLike, pitch_over_diameter: ArrayLike, shift: ArrayLike = 0.0
-) -> FloatArray:
+def solenoid_model_spread(turns: ArrayLike, pitch_over_diameter: ArrayLike, shift: ArrayLike = 0.0) -> FloatArray:
     """Return the model error of a single-layer coil's inductance.
 
     Parameters
@@ -53,7 +51,8 @@ def solenoid_model_spread(
     """
     ratio = np.asarray(pitch_over_diameter, float)
     rings = np.hypot(0.09 * ratio / np.asarray(turns, float), 0.03 * ratio**2)
-    return np.hypot(rings, _SHIFT_ERROR * np.abs(np.asarray(shift, float)))[()]
+    result: FloatArray = np.hypot(rings, _SHIFT_ERROR * np.abs(np.asarray(shift, float)))[()]
+    return result
 
 
 def solenoid_spread(
@@ -91,7 +90,8 @@ def solenoid_spread(
     by = inductance_sensitivities(length_over_diameter)
     diameter = by.diameter * np.asarray(diameter_tolerance, float)
     length = by.length * np.asarray(length_tolerance, float)
-    return np.sqrt(diameter**2 + length**2 + np.asarray(model_spread, float) ** 2)[()]
+    result: FloatArray = np.sqrt(diameter**2 + length**2 + np.asarray(model_spread, float) ** 2)[()]
+    return result
 
 
 def ring_spread(al_tolerance: ArrayLike, permeability: ArrayLike, leak: ArrayLike) -> FloatArray:
@@ -121,4 +121,5 @@ def ring_spread(al_tolerance: ArrayLike, permeability: ArrayLike, leak: ArrayLik
     """
     outside = np.asarray(leak, float)
     doubt = np.where(np.asarray(permeability, float) > 1.0, 1.0, 0.5) * outside
-    return (np.hypot(np.asarray(al_tolerance, float), doubt) / (1.0 + outside))[()]
+    result: FloatArray = (np.hypot(np.asarray(al_tolerance, float), doubt) / (1.0 + outside))[()]
+    return result

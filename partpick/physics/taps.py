@@ -32,20 +32,21 @@ class TappedSection(NamedTuple):
 
     @property
     def coupling(self) -> FloatArray:
-        """Coupling factor of section and rest, 0 where there is no rest. [-]"""
+        """Coupling factor of section and rest, 0 where there is no rest, without unit."""
         product = np.sqrt(self.section * self.rest)
         return np.divide(self.mutual, product, out=np.zeros_like(product), where=product > 0.0)[()]
 
     @property
     def rest_shorted(self) -> FloatArray:
-        """Inductance of the section with the other turns shorted on themselves. [H]"""
+        """Inductance of the section with the other turns shorted on themselves, in henry."""
         rest = np.asarray(self.rest, float)
         lost = np.divide(self.mutual**2, rest, out=np.zeros_like(rest), where=rest > 0.0)
-        return (self.section - lost)[()]
+        result: FloatArray = (self.section - lost)[()]
+        return result
 
     @property
     def voltage_ratio(self) -> FloatArray:
-        """Voltage over the section for one volt over the whole coil, nothing drawn at the tap. [-]"""
+        """Voltage over the section for one volt over the whole coil, nothing drawn at the tap, without unit."""
         return (self.section + self.mutual) / self.total
 
 

@@ -68,7 +68,8 @@ def _proof(proof: Proof) -> Entry:
 def _ruled_out(ruled_out: RuledOut | None) -> Entry | None:
     if ruled_out is None:
         return None
-    return {"limit": ruled_out.limit, "needed": ruled_out.needed, "text": ruled_out.text}
+    others = [_ruled_out(other) for other in ruled_out.others]
+    return {"limit": ruled_out.limit, "needed": ruled_out.needed, "text": ruled_out.text, "others": others}
 
 
 def _candidate(candidate: Candidate) -> Entry:

@@ -225,7 +225,10 @@ def _nothing(result: Result) -> list[str]:
             "Nothing was found before the search stopped; that does not say that nothing fits.", 0, 2
         )
     reason = "" if result.ruled_out_by is None else f": {result.ruled_out_by.text.rstrip('.')}"
-    return wrapped(f"Nothing fits{reason}.", 0, 2)
+    lines = wrapped(f"Nothing fits{reason}.", 0, 2)
+    for other in result.ruled_out_by.others if result.ruled_out_by else ():
+        lines += wrapped(f"Or: {other.text.rstrip('.')}.", 0, 2)
+    return lines
 
 
 def _proof(result: Result) -> list[str]:

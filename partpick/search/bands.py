@@ -16,8 +16,8 @@ from partpick.progress import Monitor
 from partpick.search.bounds import BELOW_PIECES, Bounds, packed_key
 from partpick.search.choose import Choice, Stopped
 from partpick.search.columns import ColumnSource
-from partpick.search.figures import fine_error, whole_excess
 from partpick.search.evaluate import Evaluator
+from partpick.search.figures import fine_error, whole_excess
 from partpick.search.pairs import PairBounds
 from partpick.search.problem import Problem
 
@@ -105,7 +105,7 @@ def search_bands(
     """
     found = Found()
     bounds = Bounds(problem, source)
-    evaluator = Evaluator(problem, source, monitor, bounds.least_leading)
+    evaluator = Evaluator(problem, source, monitor, bounds.leading)
     ranking = _Ranking(problem, wanted, all_windings)
     try:
         for bound, coils in _in_order(problem, bounds, ranking, monitor):

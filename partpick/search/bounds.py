@@ -6,6 +6,8 @@ so that no choice ever ranks before its bound.
 
 from __future__ import annotations
 
+from functools import cached_property
+
 import numpy as np
 
 from partpick.search.choose import ORDERS, Choice
@@ -119,13 +121,18 @@ class Bounds:
         least = int(known.min()) if len(known) else NEVER
         return np.where(self.fewest == 0, 0, np.minimum(self.fewest * least, NEVER))
 
+    @cached_property
+    def _stairs(self) -> tuple[Ints, Floats]:
+        """Return the coils that serve every band, and the least error of each with at most k parts."""
+        rows = np.flatnonzero(self.possible.all(axis=1))
+        return rows, np.minimum.accumulate(np.array([level[rows] for level in self.leading]), axis=0)
+
     def staircase(self, cap: int) -> Floats:
         """Return the least worst error of each coil alone with at most `cap` capacitors, (J,); inf: none.
 
         The excess where every band is swept. [-]
         """
-        best = np.minimum.accumulate(np.array(self.leading), axis=0)
-        rows = np.flatnonzero(self.possible.all(axis=1))
+        rows, best = self._stairs
         worst = np.full(self.problem.coils, np.inf)
         if not len(rows):
             return worst
@@ -133,7 +140,7 @@ class Bounds:
         every = np.arange(len(rows))
         bands = np.arange(self.problem.bands)
         while True:
-            now = best[level, rows[:, None], bands[None, :]]
+            now = best[level, every[:, None], bands[None, :]]
             inside = level.sum(axis=1) <= cap
             worst[rows] = np.where(inside, np.minimum(worst[rows], now.max(axis=1)), worst[rows])
             band = now.argmax(axis=1)

@@ -23,12 +23,12 @@ class Evaluator:
     """Turns a set of coils into its best choice; exact under every limit of the problem."""
 
     def __init__(
-        self, problem: Problem, source: ColumnSource, monitor: Monitor, least: Floats | None = None
+        self, problem: Problem, source: ColumnSource, monitor: Monitor, least: list[Floats] | None = None
     ) -> None:
         self.problem = problem
         self.source = source
         self.monitor = monitor
-        self.least = least  # (J, B) least error, or excess where all bands are swept, if known
+        self.least = least  # (J, B) of each number of parts: a bound of the error (or excess), if known
         self.leading = "fine_excess" if problem.led_by_excess else "fine_error"
         self.leading_place = ORDERS["error"].index(self.leading)
 
@@ -45,8 +45,11 @@ class Evaluator:
         if by == "build":
             return self._by_pieces(coils)
         if by == "error":
-            return self._by_error(coils)
-        return choose(self.problem, self._all_columns(coils), coils, ORDERS[by], self.monitor)
+            at_bound = None
+            if self.least is not None and not self.problem.mixed:  # a mixed plan has excess before pieces
+                at_bound = self._at_bound(coils, _least_worst(self.least, coils))
+            return at_bound or self._by_error(coils)
+        return self._by_price(coils)
 
     def least_error(self, coils: tuple[int, ...], pieces: int, least: float = 0.0) -> Choice | None:
         """Return the choice of least worst error (or excess) with at most `pieces` pieces in all, or None.
@@ -72,10 +75,12 @@ class Evaluator:
         """Return the choice with this least error or excess and the fewest parts, None where it is missed."""
         figure = np.array([least])
         whole = int((whole_excess(figure, 1e-12) if self.problem.led_by_excess else fine_error(figure))[0])
+        lead = max(least, 1e-9) + 5e-12
+        known: dict[tuple[int, int], Columns] = {}
         for limit in (whole - 1, whole, whole + 1):  # the bound's own rounding
             bands: list[Columns] = []
             for band in range(self.problem.bands):
-                columns = self._fewest_inside(coils, band, max(least, 1e-9) + 5e-12, limit)
+                columns = self._fewest_inside(coils, band, lead, limit, known)
                 if columns is None:
                     break
                 bands.append(columns)
@@ -89,10 +94,18 @@ class Evaluator:
             return choice if inside_shared_limits(self.problem, choice) else None
         return None
 
-    def _fewest_inside(self, coils: tuple[int, ...], band: int, lead: float, limit: int) -> Columns | None:
-        """Return a band's columns of the fewest parts with a leading figure up to `limit`."""
+    def _fewest_inside(
+        self, coils: tuple[int, ...], band: int, lead: float, limit: int, known: dict[tuple[int, int], Columns]
+    ) -> Columns | None:
+        """Return a band's columns of the fewest parts with a leading figure up to `limit`, at most `lead`."""
         for parts in range(self.problem.least_parts, self.problem.most_parts + 1):
-            columns = Columns.join([self.source.columns(coil, band, parts, lead) for coil in coils])
+            able = [c for c in coils if self.least is None or self.least[parts][c, band] <= lead]
+            if not able:
+                continue
+            if (band, parts) not in known:
+                found = [self.source.columns(coil, band, parts, lead) for coil in able]
+                known[band, parts] = Columns.join(found)
+            columns = known[band, parts]
             columns = columns.take(getattr(columns, self.leading) <= limit)
             if len(columns):
                 return columns
@@ -151,6 +164,33 @@ class Evaluator:
                 found.append(columns)
         return found
 
+    def _by_price(self, coils: tuple[int, ...]) -> Choice | None:
+        """Cheapest first; more parts a band only where they could cost less or a shared limit asks for them."""
+        bands: list[Columns] = []
+        for band in range(self.problem.bands):
+            blocks = [block for coil in coils for block in self._cheap_levels(coil, band)]
+            if not blocks:
+                return None
+            bands.append(Columns.join(blocks))
+        choice = first_without_shared_limits(self.problem, bands, coils, ORDERS["price"])
+        if choice is None or inside_shared_limits(self.problem, choice):
+            return choice
+        return choose(self.problem, self._all_columns(coils), coils, ORDERS["price"], self.monitor)
+
+    def _cheap_levels(self, coil: int, band: int) -> list[Columns]:
+        """Return a coil's columns from its fewest parts on, while more parts may be cheaper."""
+        found: list[Columns] = []
+        cheapest = NEVER
+        cheapest_part = int(self.problem.part_price.min(initial=NEVER))
+        for parts in range(self.problem.least_parts, self.problem.most_parts + 1):
+            if cheapest < NEVER and parts * cheapest_part >= cheapest:
+                break
+            columns = self.source.columns(coil, band, parts)
+            if len(columns):
+                found.append(columns)
+                cheapest = min(cheapest, int(columns.price.min()))
+        return found
+
     def _all_columns(self, coils: tuple[int, ...], lead: float | None = None) -> list[Columns]:
         levels = range(self.problem.least_parts, self.problem.most_parts + 1)
         return [
@@ -162,7 +202,8 @@ class Evaluator:
         """Least error first: columns up to a trial error, which grows until a choice lies inside it."""
         trial = 1e-9
         if self.least is not None:
-            trial = max(trial, float(self.least[list(coils)].min(axis=0).max()) * (1 + 1e-9) + 2e-12)
+            least = _least_worst(self.least, coils)
+            trial = max(trial, least * (1 + 1e-9) + 2e-12)
         limit = self._largest()
         while trial < limit:
             choice = self._inside(coils, trial)
@@ -214,6 +255,11 @@ class Evaluator:
         error = max(int(columns.fine_error[0]) for columns in choice.columns)
         excess = max(int(columns.fine_excess[0]) for columns in choice.columns)
         return replace(choice, key=(error, excess, *choice.key))
+
+
+def _least_worst(levels: list[Floats], coils: tuple[int, ...]) -> float:
+    """Return the worst band's least error (or excess) with any of the coils and any number of parts. [-]"""
+    return float(np.array([level[list(coils)].min(axis=0) for level in levels]).min(axis=0).max())
 
 
 def _fewest(bands: list[Columns], figures: list[Ints], most: int) -> int:

@@ -13,11 +13,11 @@ class Grades:
 
     def __init__(self, problem: Problem) -> None:
         self.problem = problem
-        useful = [self._useful(options) for options in problem.options]
+        useful = [self.useful(options) for options in problem.options]
         self._starts = np.concatenate([[0], np.cumsum([len(o) for o in useful])]).astype(np.int64)
         self._flat = np.array([p for o in useful for p in o], dtype=np.int64)
 
-    def _useful(self, options: tuple[int, ...]) -> tuple[int, ...]:
+    def useful(self, options: tuple[int, ...]) -> tuple[int, ...]:
         """Drop a part that another in plenty equals in every figure and precedes in content."""
         p = self.problem
         kept: list[int] = []
@@ -64,7 +64,7 @@ class Grades:
             chosen = np.concatenate([chosen[origin], part[:, None]], axis=1)
             keep = self._in_stock(chosen)
             if place > 0 and not (last_apart and place == places - 1):
-                keep &= self._one_spelling(rows.take(source), chosen, place)
+                keep = keep & self._one_spelling(rows.take(source), chosen, place)
             source, chosen = source[keep], chosen[keep]
         return source, chosen
 
@@ -74,7 +74,7 @@ class Grades:
         if place == 1:
             twins &= (rows.shape == PARALLEL) | (rows.shape == SERIES)
         rank = self.problem.part_rank
-        return ~twins | (rank[chosen[:, place]] >= rank[chosen[:, place - 1]])
+        return np.asarray(~twins | (rank[chosen[:, place]] >= rank[chosen[:, place - 1]]))
 
     def _in_stock(self, chosen: Ints) -> Bools:
         last = chosen[:, -1]

@@ -62,11 +62,13 @@ class Table:
         self.value = self.rows.value
         self.parts = self.rows.species.shape[1]
 
-    def counts(self, low: Floats, high: Floats) -> Ints:
-        """Return how many networks lie in each closed interval [low, high]. [-]"""
+    def any_inside(self, low: Floats, high: Floats) -> NDArray[np.bool_]:
+        """Whether some network lies in each closed interval [low, high]."""
+        if len(self.value) == 0:
+            return np.zeros(low.shape, dtype=np.bool_)
         first = np.searchsorted(self.value, low, side="left")
-        last = np.searchsorted(self.value, high, side="right")
-        return np.maximum(last - first, 0)
+        inside = first < len(self.value)
+        return np.asarray(inside & (self.value[np.where(inside, first, 0)] <= high))
 
     def neighbours(self, wanted: Floats) -> tuple[Floats, Floats]:
         """Return the capacitances next at or below, and next above, each wanted one; -inf, inf at the ends."""
@@ -81,7 +83,7 @@ class Table:
         return self.rows.take(slice(first, max(first, last)))
 
     def inside_each(self, low: Floats, high: Floats) -> tuple[Rows, Ints]:
-        """Return the networks in each of several closed intervals, end to end, and the interval of each."""
+        """Return the networks in each of several closed intervals, end to end, and whose they are."""
         first = np.searchsorted(self.value, low, side="left")
         times = np.maximum(np.searchsorted(self.value, high, side="right") - first, 0)
         which = np.repeat(np.arange(len(first)), times)
@@ -98,11 +100,12 @@ class Stream:
         self.connect_any = connect_any
         self.parts = inner.parts + 1
 
-    def counts(self, low: Floats, high: Floats) -> Ints:
-        """Return 1 or more where a network lies in the closed interval, else 0. [-]"""
-        found = np.zeros(low.shape, dtype=np.int64)
-        for _, below, above in self._inner_intervals(low, high):
-            found += self.inner.counts(below, above)
+    def any_inside(self, low: Floats, high: Floats) -> NDArray[np.bool_]:
+        """Whether some network lies in each closed interval [low, high]."""
+        found = np.zeros(low.shape, dtype=np.bool_)
+        for below, above in self._inner_intervals(low, high):
+            rest = np.flatnonzero(~found)
+            found[rest] = self.inner.any_inside(below[rest], above[rest])
         return found
 
     def neighbours(self, wanted: Floats) -> tuple[Floats, Floats]:
@@ -131,7 +134,7 @@ class Stream:
         return Rows.join(blocks, self.parts)
 
     def inside_each(self, low: Floats, high: Floats) -> tuple[Rows, Ints]:
-        """Return the networks in each of several closed intervals, end to end, and the interval of each."""
+        """Return the networks in each of several closed intervals, end to end, and whose they are."""
         blocks = [self.inside(a, b) for a, b in zip(low.tolist(), high.tolist(), strict=True)]
         sizes = [len(block.value) for block in blocks]
         return Rows.join(blocks, self.parts), np.repeat(np.arange(len(blocks)), sizes)
@@ -141,11 +144,12 @@ class Stream:
         if self.connect_any:
             yield (lambda inner: a * inner / (a + inner)), _series_rest(a, wanted)
 
-    def _inner_intervals(self, low: Floats, high: Floats) -> Iterator[tuple[float, Floats, Floats]]:
+    def _inner_intervals(self, low: Floats, high: Floats) -> Iterator[tuple[Floats, Floats]]:
         for a in self.single:
-            yield a, low - a, high - a
+            slack = 1e-12 * np.maximum(np.abs(high), a)
+            yield low - a - slack, high - a + slack
             if self.connect_any:
-                yield a, _series_rest(a, low), _series_rest(a, high)
+                yield _series_rest(a, low), _series_rest(a, high)
 
     @staticmethod
     def _inner_interval(a: float, low: float, high: float, in_series: bool) -> tuple[float, float]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from partpick.search.coverage import SeriesPadders, series_padders
 from partpick.search.figures import (
@@ -19,6 +20,7 @@ from partpick.search.grades import Grades
 from partpick.search.networks import Rows, Stream, Table, network_values
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 
+Species = NDArray[np.int16]
 _GRAIN = 1e-12  # a design exactly on a limit is inside it
 
 
@@ -52,7 +54,8 @@ class SweptColumns:
         p = self.problem
         padders = series_padders(p, band, self.valid[band])
         return SeriesPadders(
-            np.append(padders.at_low_end, p.tuning_high[band]), np.append(padders.at_high_end, p.tuning_low[band])
+            np.append(padders.at_low_end, p.tuning_high[band]),
+            np.append(padders.at_high_end, p.tuning_low[band]),
         )
 
     def columns(self, coil: int, band: int, parts: int, excess: float | None = None) -> Columns:
@@ -132,16 +135,16 @@ class SweptColumns:
         keep &= excess <= p.excess_limit * (1 + _GRAIN)
         if chosen.shape[1]:
             keep &= strays <= high_end.total * p.share * (1 + _GRAIN)
-        at_low, element_low = self._weights(band, rows.shape, across, chosen, behind, low_end, at_low_end=True)
-        at_high, element_high = self._weights(band, rows.shape, across, chosen, behind, high_end, at_low_end=False)
+        at_low = self._weights(band, rows, across, behind, low_end, at_low_end=True)
+        at_high = self._weights(band, rows, across, behind, high_end, at_low_end=False)
         loss = np.maximum(  # the worse end, unknown if either is
-            self._loss(band, p.coil_loss_low[coil, band], p.part_loss_low, chosen, at_low, element_low, low_end),
-            self._loss(band, p.coil_loss[coil, band], p.part_loss, chosen, at_high, element_high, high_end),
+            self._loss(band, p.coil_loss_low[coil, band], p.part_loss_low, chosen, at_low, low_end),
+            self._loss(band, p.coil_loss[coil, band], p.part_loss, chosen, at_high, high_end),
         )
         if p.q_limit[band] > 0:
             keep &= loss * p.q_limit[band] <= 1 + _GRAIN
         if np.isfinite(p.drift_limit):
-            nominal, spread = self._drift(coil, band, chosen, at_high, element_high, high_end)
+            nominal, spread = self._drift(coil, band, chosen, at_high, high_end)
             keep &= np.abs(nominal) + spread <= p.drift_limit * (1 + _GRAIN)
         whole, none = np.zeros(len(chosen), dtype=np.int64), np.zeros(len(chosen))
         columns = Columns(
@@ -166,7 +169,7 @@ class SweptColumns:
         )
         return columns, keep
 
-    def _ends(self, coil: int, band: int, rows: Rows, across: Ints, padder: Ints) -> tuple[_End, _End]:
+    def _ends(self, coil: int, band: int, rows: Rows, across: Species, padder: Ints) -> tuple[_End, _End]:
         """Return what is in circuit at the low end and at the high end."""
         p, padders, fixed = self.problem, self.padders[band], float(self.fixed[coil, band])
         high = p.behind_leads(rows.value, band)
@@ -180,14 +183,14 @@ class SweptColumns:
         )
 
     def _weights(
-        self, band: int, shape: Ints, across: Ints, chosen: Ints, behind: bool, end: _End, *, at_low_end: bool
+        self, band: int, rows: Rows, across: Species, behind: bool, end: _End, *, at_low_end: bool
     ) -> tuple[Floats, Floats]:
         """Return d ln(capacitance in circuit) / d ln of each part, (m, k), and of the element, (m,). [-]"""
         p = self.problem
         values = (p.species_low if at_low_end else p.species)[band]
         element = (p.tuning_high if at_low_end else p.tuning_low)[band]
-        own = np.maximum(network_values(values[across], shape), 1e-30)
-        weights = network_weights(values[across], shape, own) * (end.network / end.total)[:, None]
+        own = np.maximum(network_values(values[across], rows.shape), 1e-30)
+        weights = network_weights(values[across], rows.shape, own) * (end.network / end.total)[:, None]
         tuned = end.tuned / end.total
         if not behind:
             return weights, tuned
@@ -196,23 +199,25 @@ class SweptColumns:
         return weights, tuned * of_element
 
     def _loss(
-        self, band: int, coil_loss: float, part_loss: Floats, chosen: Ints, weights: Floats, element: Floats, end: _End
+        self, band: int, coil: float, part_loss: Floats, chosen: Ints, weights: tuple[Floats, Floats], end: _End
     ) -> Floats:
+        """Return 1/Q at one end from the coil's there and that of everything else in circuit. [-]"""
         p = self.problem
         middle = (p.trimmer_low[band] + p.trimmer_high[band]) / 2
-        parts = (weights * part_loss[band][chosen]).sum(axis=1)
+        parts = (weights[0] * part_loss[band][chosen]).sum(axis=1)
         trimmer = middle / end.total * p.trimmer_loss[band]
-        return np.asarray(coil_loss + parts + element * p.tuning_loss[band] + trimmer)
+        return np.asarray(coil + parts + weights[1] * p.tuning_loss[band] + trimmer)
 
     def _drift(
-        self, coil: int, band: int, chosen: Ints, weights: Floats, element: Floats, end: _End
+        self, coil: int, band: int, chosen: Ints, weights: tuple[Floats, Floats], end: _End
     ) -> tuple[Floats, Floats]:
         """Return df/f per kelvin at the high end, nominal (signed) and spread (size), (m,) each. [1/K]"""
         p = self.problem
         strays = p.self_capacitance[coil] + p.stray[band]
         middle = (p.trimmer_low[band] + p.trimmer_high[band]) / 2
         others = (strays * p.stray_tempco + middle * p.trimmer_tempco[band]) / end.total
-        capacitance = (weights * p.part_tempco[chosen]).sum(axis=1) + element * p.tuning_tempco[band] + others
+        capacitance = (weights[0] * p.part_tempco[chosen]).sum(axis=1) + others
+        capacitance += weights[1] * p.tuning_tempco[band]
         nominal = -0.5 * (p.coil_tempco[coil, band] + capacitance)
-        spread = (weights * p.part_tempco_spread[chosen]).sum(axis=1)
+        spread = (weights[0] * p.part_tempco_spread[chosen]).sum(axis=1)
         return nominal, np.asarray(0.5 * (p.coil_tempco_spread[coil] + spread))

@@ -64,7 +64,8 @@ def weights(parts, shape, c, net):
         up, down = list(c), list(c)
         up[i] *= 1 + step
         down[i] *= 1 - step
-        out.append((math.log(value(shape, up)) - math.log(value(shape, down))) / (math.log1p(step) - math.log1p(-step)))
+        rise = math.log(value(shape, up)) - math.log(value(shape, down))
+        out.append(rise / (math.log1p(step) - math.log1p(-step)))
     return out
 
 

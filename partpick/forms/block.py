@@ -1,0 +1,121 @@
+"""What every winding form hands over: its coils as arrays, and helpers that the forms share."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from partpick.parts import Wire
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+TAIL = 0.05  # m of wire left at each end of a winding; common practice, no source
+FIT_ROUNDING = 1e-9  # a winding that fits exactly fits
+
+BOUGHT, RING, TUBE, OTHER = range(4)  # classes of effort, easiest first; turns decide between the last two
+
+
+@dataclass(frozen=True, kw_only=True)
+class Support:
+    """What a coil is wound on, or the coil as bought."""
+
+    name: str
+    quantity: int | None
+    source: str
+    notes: tuple[str, ...] = ()
+    frequency_low: float | None = None  # Hz, useful range of a core
+    frequency_high: float | None = None
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Block:
+    """All J coils of one form; arrays are (J,), those by frequency (J, B)."""
+
+    form: str
+    effort_form: int  # BOUGHT, RING, TUBE or OTHER
+    eased_resonance: bool = False  # twice the highest frequency is enough unless the plan says more
+    supports: tuple[Support, ...]
+    wires: tuple[Wire, ...] = ()
+    support: Ints
+    wire: Ints  # -1: none
+    turns: Ints  # 0: bought
+    pitch: Floats  # m, 0: none
+    mean_diameter: Floats  # m, 0: none
+    winding_length: Floats  # m, 0: none
+    wire_length: Floats  # m in the winding, without tails
+    inductance_dc: Floats  # H
+    inductance: Floats  # H, (J, B)
+    q: Floats  # (J, B) nan: unknown
+    self_capacitance: Floats  # F
+    spread: Floats  # fraction of the inductance
+    tempco: Floats  # 1/K, (J, B) nan: unknown
+    tempco_spread: Floats  # 1/K
+    price: Floats  # nan: unknown
+    volume: Floats  # m3
+    wire_diameter: Floats  # m bare
+    proportions: Floats | None = None  # winding length / mean diameter, single layers only
+    label: Callable[[int], str] = field(repr=False)
+
+    def __len__(self) -> int:
+        return len(self.turns)
+
+
+@dataclass(frozen=True, eq=False)
+class Layouts:
+    """Ways to put a wire on a support, each good for 1 to `most` turns, and the coils that follow."""
+
+    support: Ints  # (F,)
+    wire: Ints  # (F,)
+    pitch: Floats  # (F,) m
+    most: Ints  # (F,)
+
+    @staticmethod
+    def of(rows: Sequence[tuple[int, int, float, int]]) -> Layouts:
+        """Return layouts from rows of (support, wire, pitch, most turns)."""
+        support, wire, pitch, most = zip(*rows, strict=True) if rows else ((), (), (), ())
+        return Layouts(
+            np.array(support, np.int64),
+            np.array(wire, np.int64),
+            np.array(pitch, float),
+            np.array(most, np.int64),
+        )
+
+    def coils(self) -> tuple[Ints, Ints]:
+        """Return the layout and the turns of every coil, (J,) each."""
+        layout = np.repeat(np.arange(len(self.most)), self.most)
+        first = np.repeat(np.cumsum(self.most) - self.most, self.most)
+        return layout, np.arange(len(layout)) - first + 1
+
+
+def enough(quantity: int | None, units: int) -> bool:
+    """Whether there is one for each unit that is built."""
+    return quantity is None or quantity >= units
+
+
+def column(values: Sequence[float | None]) -> Floats:
+    """Return values as an array, nan where not stated."""
+    return np.array([np.nan if value is None else value for value in values], dtype=float)
+
+
+def at_every(values: Floats, frequency: Floats) -> Floats:
+    """Return (J,) figures that do not depend on frequency as (J, B)."""
+    return np.repeat(values[:, None], len(frequency), axis=1)
+
+
+def stacked(per_band: Sequence[Floats], coils: int) -> Floats:
+    """Return a list of (J,) arrays, one a band, as (J, B)."""
+    return np.stack(per_band, axis=1) if per_band else np.empty((coils, 0))
+
+
+def wound_price(
+    unit_prices: Sequence[float | None], support: Ints, wires: Sequence[Wire], wire: Ints, length: Floats
+) -> Floats:
+    """Return the price of each wound coil, its wire with tails included; nan where either is unknown."""
+    per_metre = column([w.price_per_m for w in wires])
+    if not len(support):
+        return np.empty(0)
+    return column(unit_prices)[support] + per_metre[wire] * (length + 2 * TAIL)

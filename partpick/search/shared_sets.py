@@ -1,0 +1,256 @@
+"""Every set of capacitors of which each band can switch in a subset that puts it on frequency.
+
+Bands are taken from the highest frequency down. A set so far that can serve a band goes on as it is;
+one that cannot grows by every multiset that, with some subset of it, falls into the band's interval.
+All limits hold for a subset where they hold for the whole (fewer parts, values, pieces of one kind, a
+lower price), so every set that serves all bands contains one that is found here.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+
+from partpick.progress import Monitor
+from partpick.search.choose import Stopped
+from partpick.search.circuits import Circuits, distinct
+from partpick.search.grades import Grades
+from partpick.search.networks import Stream, Table, network_tables
+from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
+
+CHUNK = 1 << 19  # subset sums at one time
+WORK_LIMIT = 400_000_000  # subset sums of one request
+
+
+@dataclass(frozen=True, eq=False)
+class Letters:
+    """What a set is made of: species where grades do not matter to the limits, else parts."""
+
+    parts: tuple[tuple[int, ...], ...]  # the parts that a letter may stand for
+    acting: Floats  # (B, n) F
+    stock: Ints  # (n,)
+    price: Ints  # (n,) least, hundredths
+    value: Ints  # (n,) which written value
+
+    @staticmethod
+    def of(problem: Problem, circuits: Circuits, price_limit: int) -> Letters:
+        """Return the letters of a problem; parts whose price is unknown or above the limit are left out."""
+        grades = Grades(problem)
+        groups = []
+        by_part = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+        for options in problem.options:
+            useful = tuple(p for p in grades.useful(options) if problem.part_price[p] <= price_limit)
+            if price_limit < NEVER:
+                useful = tuple(p for p in useful if problem.part_price[p] < NEVER)
+            groups += [(part,) for part in useful] if by_part else [useful] if useful else []
+        first = [group[0] for group in groups]
+        values = sorted({problem.part_value[part] for part in first})
+        return Letters(
+            parts=tuple(groups),
+            acting=circuits.acting[:, first],
+            stock=np.array([min(int(problem.part_stock[list(g)].sum()), PLENTY) for g in groups], dtype=np.int64),
+            price=np.array([problem.part_price[list(g)].min() for g in groups], dtype=np.int64),
+            value=np.array([values.index(problem.part_value[part]) for part in first], dtype=np.int64),
+        )
+
+
+@dataclass(frozen=True, eq=False)
+class Sets:
+    """Some sets of equal size: coil (m,), letters (m, k) sorted in each row."""
+
+    coil: Ints
+    letters: Ints
+
+    def take(self, chosen: Ints | Bools | slice) -> Sets:
+        """Return the rows chosen by a mask, an index array or a slice."""
+        return Sets(self.coil[chosen], self.letters[chosen])
+
+    def __len__(self) -> int:
+        return len(self.coil)
+
+
+class SetSearch:
+    """Complete enumeration of the sets of a problem, depth first in blocks."""
+
+    def __init__(self, problem: Problem, circuits: Circuits, letters: Letters, monitor: Monitor) -> None:
+        self.problem = problem
+        self.circuits = circuits
+        self.letters = letters
+        self.monitor = monitor
+        self.order = np.argsort(-problem.frequency, kind="stable")
+        self.work = 0
+        self._sums: dict[tuple[int, int], Table | Stream] = {}
+        self._tables: list[list[Table | Stream]] = []
+        self._exact = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+        self.first_part = np.array([group[0] for group in letters.parts], dtype=np.int64)
+
+    def sets(
+        self, coils: Ints, most: int, windows: list[tuple[Floats, Floats]], price: Ints
+    ) -> Iterator[Sets]:
+        """Yield sets of at most `most` capacitors that serve every band, repeats possible.
+
+        Every such set contains one that is yielded. The windows may be tightened in place meanwhile.
+
+        Parameters
+        ----------
+        coils : (m,) array
+            Which coils. [-]
+        most : int
+            The most capacitors. [-]
+        windows : list
+            Intervals as from `Circuits.windows`. [F]
+        price : (J,) array
+            The most that a set may cost, NEVER: no limit. [hundredths]
+        """
+        stack: list[tuple[int, Sets]] = [(0, Sets(coils, np.empty((len(coils), 0), dtype=np.int64)))]
+        while stack:
+            depth, sets = stack.pop()
+            reason = self.monitor.stopped()
+            if reason is not None:
+                raise Stopped(reason)
+            if depth == len(self.order):
+                yield sets
+                continue
+            most_rows = max(1, CHUNK >> sets.letters.shape[1])
+            if len(sets) > most_rows:
+                stack.append((depth, sets.take(slice(most_rows, None))))
+                sets = sets.take(slice(0, most_rows))
+            self.work += len(sets) << sets.letters.shape[1]
+            if self.work > WORK_LIMIT:
+                raise Stopped("work limit")
+            for grown in self._next(sets, depth, most, windows, price):
+                if len(grown):
+                    stack.append((depth + 1, grown))
+
+    def _next(
+        self, sets: Sets, depth: int, most: int, windows: list[tuple[Floats, Floats]], price: Ints
+    ) -> list[Sets]:
+        """Return the sets that serve one band more, largest first."""
+        band = int(self.order[depth])
+        size = sets.letters.shape[1]
+        sums = self.subset_sums(sets.letters, band)
+        low, high = (side[sets.coil, band] for side in windows[1])
+        inside = (sums >= low[:, None]) & (sums <= high[:, None])
+        none_low, none_high = (side[sets.coil, band] for side in windows[0])
+        inside[:, 0] = (none_low <= 0) & (none_high >= 0)
+        served = self._served(sets, band, inside)
+        grown = [sets.take(served)]
+        short = np.flatnonzero(~served)
+        if len(short) and size < most:
+            rest, sums = sets.take(short), sums[short]
+            spare = most - size - self._needed(rest, depth, windows)
+            for added in range(1, int(spare.max(initial=0)) + 1):
+                grown.append(self._grow(rest, sums, spare >= added, added, band, windows, price))
+        return grown[::-1]
+
+    def subset_sums(self, letters: Ints, band: int) -> Floats:
+        """Return the capacitance of every subset of each set, (m, 2^k); bit i of the column is slot i. [F]"""
+        acting = self.letters.acting[band]
+        sums = np.zeros((len(letters), 1))
+        for column in letters.T:
+            sums = np.concatenate([sums, sums + acting[column][:, None]], axis=1)
+        return sums
+
+    def masked(self, letters: Ints, mask: Ints) -> Ints:
+        """Return the letters switched in by each mask, -1 elsewhere. [-]"""
+        bits = (mask[:, None] >> np.arange(letters.shape[1])[None, :]) & 1
+        return np.where(bits == 1, letters, -1)
+
+    def _served(self, sets: Sets, band: int, inside: Bools) -> Bools:
+        if not self._exact:
+            return np.asarray(inside.any(axis=1))
+        row, mask = np.nonzero(inside)
+        served = np.zeros(len(sets), dtype=np.bool_)
+        served[row[self._admissible(sets.coil[row], band, self.masked(sets.letters[row], mask))]] = True
+        return served
+
+    def _admissible(self, coil: Ints, band: int, letters: Ints) -> Bools:
+        """Whether rows of single-part letters are inside the limits on Q and drift at a band."""
+        parts = np.where(letters >= 0, self.first_part[letters], -1)
+        _, keep = self.circuits.columns(coil, np.full(len(coil), band), parts)
+        return keep
+
+    def _needed(self, sets: Sets, depth: int, windows: list[tuple[Floats, Floats]]) -> Ints:
+        """Return the least number of capacitors that the bands after this one add, (m,).
+
+        Parts served so far add up to a capacitance; a band that needs more must add one at least, and
+        then there is at most its own interval's end more.
+        """
+        band = int(self.order[depth])
+        acting = self.letters.acting.copy()
+        acting[~np.isfinite(acting)] = 0.0
+        total = acting[:, sets.letters].max(axis=0).sum(axis=1) if sets.letters.shape[1] else np.zeros(len(sets))
+        reach = np.maximum(windows[1][1][sets.coil, band], 0.0)
+        total = total + reach
+        needed = np.zeros(len(sets), dtype=np.int64)
+        for later in self.order[depth + 1 :]:
+            least = np.minimum(windows[1][0][sets.coil, later], _least_without(windows, sets.coil, int(later)))
+            reach = np.maximum(reach, windows[1][1][sets.coil, later])
+            forced = least > total * (1 + 1e-12)
+            needed += forced
+            total = np.where(forced, total + reach, total)
+        return needed
+
+    def _grow(
+        self,
+        sets: Sets,
+        sums: Floats,
+        allowed: Bools,
+        added: int,
+        band: int,
+        windows: list[tuple[Floats, Floats]],
+        price: Ints,
+    ) -> Sets:
+        """Return the sets grown by `added` letters so that some subset with all of those serves the band."""
+        low, high = (side[sets.coil, band][:, None] for side in windows[1])
+        table, valid = self._table(band, added)
+        smallest = added * float(self.letters.acting[band][valid].min()) if len(valid) else np.inf
+        query = allowed[:, None] & (high - sums >= smallest * (1 - 1e-12))
+        row, mask = np.nonzero(query)
+        rest = sums[row, mask]
+        found, which = table.inside_each(low[row, 0] - rest, high[row, 0] - rest)
+        self.work += len(which)
+        row, mask = row[which], mask[which]
+        new = valid[found.species.astype(np.int64)].reshape(len(row), added)
+        if self._exact:
+            keep = self._admissible(
+                sets.coil[row], band, np.concatenate([self.masked(sets.letters[row], mask), new], axis=1)
+            )
+            row, new = row[keep], new[keep]
+        grown = Sets(sets.coil[row], np.sort(np.concatenate([sets.letters[row], new], axis=1), axis=1))
+        first, _ = distinct(grown.coil, grown.letters, len(self.letters.stock))
+        return self._inside_shared_limits(grown.take(first), price)
+
+    def _inside_shared_limits(self, sets: Sets, price: Ints) -> Sets:
+        """Drop the sets beyond stock, number of values or price; each set that contains them is beyond too."""
+        letters, problem = self.letters, self.problem
+        scarce = letters.stock[sets.letters] < sets.letters.shape[1]
+        if scarce.any():
+            equal = sets.letters[:, :, None] == sets.letters[:, None, :]
+            sets = sets.take((equal.sum(axis=2) <= letters.stock[sets.letters]).all(axis=1))
+        if problem.values_limit < sets.letters.shape[1]:
+            values = np.sort(letters.value[sets.letters], axis=1)
+            sets = sets.take((np.diff(values, axis=1) != 0).sum(axis=1) + 1 <= problem.values_limit)
+        limit = price[sets.coil]
+        if (limit < NEVER).any():
+            cost = letters.price[sets.letters].sum(axis=1)
+            sets = sets.take((limit >= NEVER) | (cost <= limit))
+        return sets
+
+    def _table(self, band: int, added: int) -> tuple[Table | Stream, Ints]:
+        """Return the sums of `added` letters as they act at a band, and the letters that act there."""
+        acting = self.letters.acting
+        twin = next(b for b in range(band + 1) if np.array_equal(acting[b], acting[band]))
+        valid = np.flatnonzero(np.isfinite(acting[band]))
+        if (twin, added) not in self._sums:
+            for parts, table in enumerate(network_tables(acting[band][valid], added, False)):
+                self._sums[twin, parts] = table
+        return self._sums[twin, added], valid
+
+
+def _least_without(windows: list[tuple[Floats, Floats]], coil: Ints, band: int) -> Floats:
+    """Return 0 where a band may do without capacitors, else inf."""
+    low, high = (side[coil, band] for side in windows[0])
+    return np.where((low <= 0) & (high >= 0), 0.0, np.inf)
