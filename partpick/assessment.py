@@ -8,39 +8,21 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
-from fractions import Fraction
-from typing import TypeVar
+from dataclasses import replace
 
 from partpick.candidates import Coils, coil_figures, coil_part_line
+from partpick.circuit import Design, Network, Tank, connection_text
 from partpick.errors import InternalError
 from partpick.objective import TRIMMER_Q
 from partpick.parts import Capacitor
-from partpick.physics.resonance import effective_capacitance, resonance_frequency
+from partpick.physics.resonance import resonance_frequency
 from partpick.quantities import format_quantity
-from partpick.request import Band, Request
+from partpick.request import Request
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
-from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
+from partpick.search.networks import PARALLEL, SHUNTED
+from partpick.tuning import element_ends
 
-AGREEMENT = 1e-9  # of the frequency, between search and recheck
-
-T = TypeVar("T", float, Fraction)
-
-
-@dataclass(frozen=True, kw_only=True)
-class Network:
-    """The capacitors of one band: indices into the capacitors in play, in the order of the shape."""
-
-    parts: tuple[int, ...]
-    shape: int
-
-
-@dataclass(frozen=True, kw_only=True)
-class Design:
-    """What was picked: a coil and a network for each band, in plan order."""
-
-    coils: tuple[int, ...]  # (B,) index into Coils
-    networks: tuple[Network, ...]  # (B,)
+AGREEMENT = 1e-9  # of the frequency, or of the excess, between search and recheck
 
 
 def assess(
@@ -60,19 +42,21 @@ def assess(
     references = _coil_references(request, design)
     names, lines = _capacitor_lines(request, capacitors, design)
     bands = []
-    for index, band in enumerate(request.bands):
-        bands.append(_band_figures(request, coils, capacitors, design, index, band, references, names[index]))
+    for index in range(len(request.bands)):
+        tank = Tank(request=request, coils=coils, capacitors=capacitors, design=design, index=index)
+        bands.append(_band_figures(tank, references[tank.coil], names[index]))
     coil_list, coil_lines = _coil_lines(request, coils, design, references)
-    extras = _trimmer_lines(request)
+    extras = [*_trimmer_lines(request), *_tuning_lines(request)]
     parts = (*lines, *coil_lines, *extras)
-    used = [i for network in design.networks for i in network.parts]
+    used = [i for network in design.networks for i in network.pieces]
     errors = [abs(b.error) for b in bands if b.error is not None]
+    excesses = [band.extra["excess"] for band in bands if band.target is None]
     prices = [line.unit_price for line in (*lines, *coil_lines)]
     return Candidate(
         rank=None,
         on_front=False,
         worst_error=max(errors) if errors else None,
-        worst_excess=None,
+        worst_excess=max(excesses) if excesses else None,
         part_count=len(used),
         inductor_count=len(coil_list),
         piece_count=len(used) + len(coil_list),
@@ -86,80 +70,20 @@ def assess(
     )
 
 
-def recheck(candidate: Candidate, worst_error: float) -> None:
-    """Refuse a candidate whose worst error is not what the search ordered it by.
+def recheck(candidate: Candidate, worst_error: float, worst_excess: float) -> None:
+    """Refuse a candidate whose worst error or excess is not what the search ordered it by.
 
     Raises
     ------
     InternalError
         The two differ by more than rounding.
     """
-    if candidate.worst_error is None or abs(candidate.worst_error - worst_error) > AGREEMENT:
+    own_error, own_excess = candidate.worst_error or 0.0, candidate.worst_excess or 0.0
+    if abs(own_error - worst_error) > AGREEMENT or abs(own_excess - worst_excess) > AGREEMENT:
         raise InternalError(
-            f"internal error: the search ordered a candidate by an error of {worst_error:.9g}, "
-            f"its parts give {candidate.worst_error}; please report this plan"
+            f"internal error: the search ordered a candidate by error {worst_error:.9g} and excess "
+            f"{worst_excess:.9g}, its parts give {own_error:.9g} and {own_excess:.9g}; please report this plan"
         )
-
-
-def network_capacitance(
-    capacitors: Sequence[Capacitor], network: Network, frequency: float, leads: float
-) -> float:
-    """Return how a band's network acts at a frequency, series inductances included. [F]"""
-    chosen = [capacitors[i] for i in network.parts]
-    if not chosen:
-        return 0.0
-    if any(part.series_inductance for part in chosen):
-        acting = [
-            float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency))
-            for part in chosen
-        ]
-        whole = _combine(acting, network.shape)
-    else:
-        whole = float(_combine([part.exact for part in chosen], network.shape))
-    return float(effective_capacitance(whole, leads, frequency)) if leads else whole
-
-
-def _combine(c: list[T], shape: int) -> T:
-    if shape == PARALLEL or len(c) == 1:
-        total = c[0]
-        for value in c[1:]:
-            total = total + value
-        return total
-    if shape == SERIES:
-        total = c[0]
-        for value in c[1:]:
-            total = total * value / (total + value)
-        return total
-    if shape == SHUNTED:
-        return c[0] + c[1] * c[2] / (c[1] + c[2])
-    assert shape == CHAINED
-    pair = c[1] + c[2]
-    return c[0] * pair / (c[0] + pair)
-
-
-def network_shares(c: list[float], shape: int) -> list[float]:
-    """Return d ln(network) / d ln(part) of each part of a network of plain capacitances. [-]"""
-    net = _combine(c, shape) if c else 0.0
-    if shape == PARALLEL or len(c) == 1:
-        return [value / net for value in c]
-    if shape == SERIES:
-        return [net / value for value in c]
-    if shape == SHUNTED:
-        pair = c[1] * c[2] / (c[1] + c[2])
-        return [c[0] / net, pair**2 / c[1] / net, pair**2 / c[2] / net]
-    pair = c[1] + c[2]
-    return [net / c[0], net * c[1] / pair**2, net * c[2] / pair**2]
-
-
-def connection_text(names: Sequence[str], shape: int) -> str:
-    """Return a network in words of references: `C1 | (C2 + C3)`; parallel `|`, series `+`."""
-    if not names:
-        return ""
-    if shape == SHUNTED:
-        return f"{names[0]} | ({names[1]} + {names[2]})"
-    if shape == CHAINED:
-        return f"{names[0]} + ({names[1]} | {names[2]})"
-    return (" | " if shape == PARALLEL else " + ").join(names)
 
 
 def _coil_references(request: Request, design: Design) -> dict[int, str]:
@@ -178,7 +102,7 @@ def _capacitor_lines(
     lines: list[PartLine] = []
     for band, network in zip(request.bands, design.networks, strict=True):
         own = []
-        for index in network.parts:
+        for index in network.pieces:
             reference = f"C{len(lines) + 1}"
             own.append(reference)
             lines.append(_capacitor_line(reference, capacitors[index], (band.name,)))
@@ -201,6 +125,11 @@ def _capacitor_line(reference: str, part: Capacitor, bands: tuple[str, ...]) -> 
         bands=bands,
         unit_price=part.unit_price,
         source=part.source,
+        q=part.q,
+        q_below=part.q_below,
+        series_inductance=part.series_inductance,
+        voltage=part.voltage,
+        rf_current=part.rf_current,
     )
 
 
@@ -237,110 +166,101 @@ def _trimmer_lines(request: Request) -> list[PartLine]:
                 bands=(band.name,),
                 unit_price=0.0,
                 source="stated in the plan",
+                q=band.trimmer.q or TRIMMER_Q,
             )
         )
     return lines
 
 
-def _band_figures(
-    request: Request,
-    coils: Coils,
-    capacitors: Sequence[Capacitor],
-    design: Design,
-    index: int,
-    band: Band,
-    references: dict[int, str],
-    names: tuple[str, ...],
-) -> BandFigures:
-    coil, network = design.coils[index], design.networks[index]
-    target = band.highest
-    inductance = float(coils.inductance[coil, index])
-    self_capacitance = float(coils.self_capacitance[coil])
-    own = network_capacitance(capacitors, network, target, request.stray.inductance)
-    trimmer = band.trimmer.middle if band.trimmer else None
-    total = own + band.stray + self_capacitance + (trimmer or 0.0)
-    resonance = float(resonance_frequency(inductance, total))
+def _tuning_lines(request: Request) -> list[PartLine]:
+    swept = tuple(band.name for band in request.bands if band.swept)
+    if not swept:
+        return []
+    assert request.tuning is not None
+    element = element_ends(request.tuning)
+    label = f"{format_quantity(element.low, 'F')} to {format_quantity(element.high, 'F')}"
+    return [
+        PartLine(
+            reference="T",
+            kind="tuning",
+            value=element.high,
+            unit="F",
+            label=label,
+            description=f"{element.words}, {label}",
+            grade=None,
+            tolerance=None,
+            tempco=element.tempco,
+            bands=swept,
+            unit_price=0.0,
+            source="stated in the plan",
+            q=element.q,
+        )
+    ]
+
+
+def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFigures:
+    resonance = float(resonance_frequency(tank.inductance(), tank.total()))
     if not math.isfinite(resonance):
-        raise InternalError(f"internal error: band {band.name} has no resonance; please report this plan")
-    q = _tank_q(coils, capacitors, network, band, coil, index, own, total)
-    drift, spread = _drift(request, coils, capacitors, network, band, coil, index, own)
+        raise InternalError(f"internal error: band {tank.band.name} has no resonance; please report this plan")
+    band, network, q = tank.band, tank.network, tank.q()
+    drift, spread = tank.drift()
+    swept = band.swept
     return BandFigures(
         name=band.name,
-        target=target,
-        resonance=resonance,
-        error=(resonance - target) / target,
-        inductance=inductance,
-        capacitance=total,
-        network=own,
+        target=None if swept else band.highest,
+        resonance=None if swept else resonance,
+        error=None if swept else (resonance - band.highest) / band.highest,
+        inductance=tank.inductance(),
+        capacitance=None if swept else tank.total(),
+        network=None if swept else tank.across(),
         stray=band.stray,
-        self_capacitance=self_capacitance,
-        trimmer=trimmer,
-        coil=references[coil],
+        self_capacitance=float(tank.coils.self_capacitance[tank.coil]),
+        trimmer=tank.trimmer if band.trimmer else None,
+        coil=reference,
         tap_turns=None,
-        contacts=(f"S{index + 1}",) if len(request.bands) > 1 else (),
+        contacts=(f"S{tank.index + 1}",) if len(tank.request.bands) > 1 else (),
         capacitors=names,
-        connection=connection_text(names, network.shape),
-        reactance=2 * math.pi * target * inductance,
+        connection=_swept_connection(names, network) if swept else connection_text(names, network.shape),
+        reactance=2 * math.pi * band.highest * tank.inductance(),
         q=q,
-        bandwidth=None if q is None else resonance / q,
+        bandwidth=None if q is None else (band.highest if swept else resonance) / q,
         drift=drift,
         drift_spread=spread,
-        hertz_per_farad=-resonance / (2 * total),
-        extra={},
+        hertz_per_farad=-resonance / (2 * tank.total()),
+        coil_q=tank.coil_q(),
+        extra=_coverage(tank, resonance) if swept else {},
     )
 
 
-def _tank_q(
-    coils: Coils,
-    capacitors: Sequence[Capacitor],
-    network: Network,
-    band: Band,
-    coil: int,
-    index: int,
-    own: float,
-    total: float,
-) -> float | None:
-    """Return 1 / (coil loss + each capacitor's loss by its share); None where a loss is unknown. [-]"""
-    coil_q = float(coils.q[coil, index])
-    if not math.isfinite(coil_q):
-        return None
-    loss = 1.0 / coil_q
-    chosen = [capacitors[i] for i in network.parts]
-    for part, share in zip(chosen, network_shares([c.value for c in chosen], network.shape), strict=True):
-        if part.q is None or (part.q_below is not None and band.highest > part.q_below):
-            return None
-        loss += share * own / total / part.q
-    if band.trimmer:
-        loss += band.trimmer.middle / total / (band.trimmer.q or TRIMMER_Q)
-    return 1.0 / loss
+def _swept_connection(names: tuple[str, ...], network: Network) -> str:
+    """Return `(T + C3) | C1`: the element with its padder, then what is across the coil."""
+    across = names if network.series is None else names[:-1]
+    element = "T" if network.series is None else f"(T + {names[-1]})"
+    if not across:
+        return element
+    text = connection_text(across, network.shape)
+    return (
+        f"{element} | {text}" if network.shape in (PARALLEL, SHUNTED) or len(across) == 1 else f"{element} | ({text})"
+    )
 
 
-def _drift(
-    request: Request,
-    coils: Coils,
-    capacitors: Sequence[Capacitor],
-    network: Network,
-    band: Band,
-    coil: int,
-    index: int,
-    own: float,
-) -> tuple[float | None, float | None]:
-    """Return df/f per kelvin and its spread, trimmer set on frequency; None where a tempco is unknown. [1/K]"""
-    strays = band.stray + float(coils.self_capacitance[coil])
-    wanted = 1.0 / ((2 * math.pi * band.highest) ** 2 * float(coils.inductance[coil, index]))
-    trimmer, trimmer_tempco = 0.0, 0.0
-    if band.trimmer:
-        trimmer = min(max(wanted - own - strays, band.trimmer.low), band.trimmer.high)
-        trimmer_tempco = band.trimmer.tempco if band.trimmer.tempco is not None else math.nan
-    total = own + strays + trimmer
-    capacitance = (strays * request.stray.tempco + trimmer * trimmer_tempco) / total
-    spread = float(coils.tempco_spread[coil])
-    chosen = [capacitors[i] for i in network.parts]
-    for part, share in zip(chosen, network_shares([c.value for c in chosen], network.shape), strict=True):
-        capacitance += share * own / total * (math.nan if part.tempco is None else part.tempco)
-        spread += share * own / total * (part.tempco_tolerance or 0.0)
-    nominal = -0.5 * (float(coils.tempco[coil, index]) + capacitance)
-    return (nominal, 0.5 * spread) if math.isfinite(nominal) else (None, None)
+def _coverage(tank: Tank, tuned_high: float) -> dict[str, object]:
+    """Return the keys of a swept band: its ends as asked and as tuned, its padders and the element."""
+    band, network, element = tank.band, tank.network, tank.element()
+    assert element is not None and band.low is not None and band.high is not None
+    tuned_low = float(resonance_frequency(tank.inductance(low_end=True), tank.total(low_end=True)))
+    excess = max(band.low - tuned_low, tuned_high - band.high) / (band.high - band.low)
+    return {
+        "low_hz": band.low,
+        "high_hz": band.high,
+        "tuned_low_hz": tuned_low,
+        "tuned_high_hz": tuned_high,
+        "excess": excess,
+        "series_padder_f": None if network.series is None else tank.capacitors[network.series].value,
+        "parallel_padder_f": tank.across() if network.parts else None,
+        "tuning_low_f": element.low,
+        "tuning_high_f": element.high,
+    }
 
 
 def _warnings(
@@ -352,7 +272,7 @@ def _warnings(
 ) -> tuple[str, ...]:
     found: dict[str, None] = {}
     for network in design.networks:
-        for index in network.parts:
+        for index in network.pieces:
             for note in capacitors[index].notes:
                 found[f"{capacitors[index].label}: {note}"] = None
     for coil in dict.fromkeys(design.coils):

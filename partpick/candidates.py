@@ -43,8 +43,10 @@ class Coils:
     blocks: tuple[Block, ...]
     turns: Ints  # (J,) 0 for a bought coil
     inductance_dc: Floats  # (J,) H
-    inductance: Floats  # (J, B) H
+    inductance: Floats  # (J, B) H, at each band's frequency: the upper end of a swept band
     q: Floats  # (J, B) nan: unknown
+    inductance_low: Floats  # (J, B) H, at the lower end of a swept band
+    q_low: Floats  # (J, B)
     self_capacitance: Floats  # (J,) F
     spread: Floats  # (J,) of the inductance, fraction: tolerances and model, uniform
     tempco: Floats  # (J, B) 1/K, nan: unknown
@@ -110,11 +112,13 @@ def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
         Formers, cores, wires and bought inductors in stock.
     """
     frequency = np.array([band.highest for band in request.bands])
+    swept = any(band.swept for band in request.bands)
+    ends = np.concatenate([frequency, [band.lowest for band in request.bands]]) if swept else frequency
     if request.coil.measured is not None:
-        blocks = [measured_block(request.coil, frequency)]
+        blocks = [measured_block(request.coil, ends)]
     else:
         wanted = request.coil.forms or tuple(FORMS)
-        blocks = [FORMS[form](catalogue, frequency, request.units) for form in FORMS if form in wanted]
+        blocks = [FORMS[form](catalogue, ends, request.units) for form in FORMS if form in wanted]
         blocks = [block for block in blocks if len(block.turns)]
     coils = _joined(frequency, blocks)
     return replace(coils, in_play=_in_play(request, coils))
@@ -133,6 +137,9 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
         return np.concatenate(parts) if parts else empty
 
     bands = len(frequency)
+    evaluated = blocks[0].inductance.shape[1] if blocks else bands
+    high, low = slice(0, bands), slice(evaluated - bands, evaluated)
+    inductance, q = column("inductance", evaluated).astype(float), column("q", evaluated).astype(float)
     whole = [np.empty(0, np.int64)]
     return Coils(
         frequency=frequency,
@@ -141,11 +148,13 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
         blocks=tuple(blocks),
         turns=column("turns").astype(np.int64),
         inductance_dc=column("inductance_dc").astype(float),
-        inductance=column("inductance", bands).astype(float),
-        q=column("q", bands).astype(float),
+        inductance=inductance[:, high],
+        q=q[:, high],
+        inductance_low=inductance[:, low],
+        q_low=q[:, low],
         self_capacitance=column("self_capacitance").astype(float),
         spread=column("spread").astype(float),
-        tempco=column("tempco", bands).astype(float),
+        tempco=column("tempco", evaluated).astype(float)[:, high],
         tempco_spread=column("tempco_spread").astype(float),
         price=column("price").astype(float),
         volume=column("volume").astype(float),

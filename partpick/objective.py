@@ -7,6 +7,7 @@ Rules marked "common practice" have no source.
 from __future__ import annotations
 
 from fractions import Fraction
+from typing import Any
 
 import numpy as np
 
@@ -16,6 +17,7 @@ from partpick.physics.resonance import effective_capacitance
 from partpick.preferred import commonness
 from partpick.request import Band, Request
 from partpick.search.problem import NEVER, PLENTY, Floats, Ints, Problem
+from partpick.tuning import element_ends
 
 LEAST_FLOOR = 0.001
 TRIMMER_Q = 400.0  # film and ceramic trimmers, common practice, no source
@@ -67,9 +69,7 @@ def effort(coils: Coils) -> Ints:
         3,
     )
     wound = coils.wire_diameter > 0
-    unusual = wound & (
-        (coils.wire_diameter < 0.3e-3 * (1 - 1e-9)) | (coils.wire_diameter > 1.0e-3 * (1 + 1e-9))
-    )
+    unusual = wound & ((coils.wire_diameter < 0.3e-3 * (1 - 1e-9)) | (coils.wire_diameter > 1.0e-3 * (1 + 1e-9)))
     cubic_mm = np.maximum(coils.volume * 1e9, 1.0)
     steps = np.rint(np.log(cubic_mm) / np.log(1.25))
     return np.stack([form, unusual.astype(np.int64), steps.astype(np.int64)], axis=1).astype(np.int64)
@@ -210,7 +210,36 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         inductors=limits.inductors,
         floor=floor,
         by=request.by,
+        margin=limits.margin,
+        excess_limit=float("inf") if limits.excess is None else limits.excess,
+        **_swept_figures(request, coils, capacitors, first),
     )
+
+
+def _swept_figures(
+    request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], first: list[Capacitor]
+) -> dict[str, Any]:
+    """Return what the search needs of bands with a range; nothing where there are none."""
+    swept = np.array([band.swept for band in request.bands])
+    if not swept.any():
+        return {}
+    assert request.tuning is not None
+    element = element_ends(request.tuning)
+    low_end = np.array([band.lowest for band in request.bands])
+    return {
+        "swept": swept,
+        "low_end": low_end,
+        "tuning_low": np.where(swept, element.low, 0.0),
+        "tuning_high": np.where(swept, element.high, 0.0),
+        "tuning_loss": np.where(swept, 1.0 / element.q, 0.0),
+        "tuning_tempco": np.where(swept, _nan(element.tempco), 0.0),
+        "inductance_low": coils.inductance_low,
+        "coil_loss_low": 1.0 / coils.q_low,
+        "species_low": np.array([_effective(first, float(f)) for f in low_end]).reshape(len(low_end), len(first)),
+        "part_loss_low": np.array([[_part_loss(c, float(f)) for c in capacitors] for f in low_end]).reshape(
+            len(low_end), len(capacitors)
+        ),
+    }
 
 
 def _effective(parts: list[Capacitor], frequency: float) -> list[float]:

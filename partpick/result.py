@@ -35,6 +35,7 @@ class BandFigures:
     drift: float | None  # 1/K, signed df/f
     drift_spread: float | None  # 1/K, size, added to the nominal drift by size
     hertz_per_farad: float | None  # df/dC, negative
+    coil_q: float | None = None  # of the coil alone at this band; None: unknown
     extra: dict[str, object] = field(default_factory=dict)  # further JSON keys of this band
 
 
@@ -77,6 +78,11 @@ class PartLine:
     wire: str | None = None  # coils that are wound: the wire, and how much of it
     wire_length: float | None = None  # m
     wire_price_per_m: float | None = None
+    q: float | None = None  # capacitors: at every frequency up to q_below; None: unknown
+    q_below: float | None = None  # Hz
+    series_inductance: float | None = None  # H
+    voltage: float | None = None  # V, peak; None: not rated
+    rf_current: float | None = None  # A rms; None: not rated
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -97,6 +103,7 @@ class Candidate:
     coils: tuple[CoilFigures, ...]
     parts: tuple[PartLine, ...]
     warnings: tuple[str, ...]
+    order: tuple[tuple[str, object], ...] = ()  # steps of the order by name with this choice's figure
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from partpick.assessment import Design, Network, assess, recheck
+from partpick.assessment import assess, recheck
 from partpick.candidates import Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
+from partpick.circuit import Design, Network
 from partpick.errors import RequestError
 from partpick.nothing_fits import explain
 from partpick.objective import build_problem, tolerance_floor
@@ -15,7 +16,7 @@ from partpick.progress import Monitor, Quiet
 from partpick.request import Band, Request
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
 from partpick.search.bands import Found, pieces_of_bound, search_bands
-from partpick.search.choose import Choice
+from partpick.search.choose import ORDERS, Choice
 from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
 
@@ -63,9 +64,7 @@ def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidat
     capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
     floor = tolerance_floor(coils, capacitors, request.limits.error)
     problem = build_problem(request, coils, capacitors, floor)
-    found = search_bands(
-        problem, ColumnSource(problem), wanted=1, all_windings=False, monitor=monitor, front=False
-    )
+    found = search_bands(problem, ColumnSource(problem), wanted=1, all_windings=False, monitor=monitor, front=False)
     return _candidate(request, coils, capacitors, found.choices[0]) if found.choices else None
 
 
@@ -102,9 +101,7 @@ def windings(
 
 def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
-    swept = [band.name for band in request.bands if band.swept]
     unplanned = [
-        (bool(swept), "bands with from/to (swept)"),
         (request.switching != "separate", f'switching = "{request.switching}"'),
         (request.coil.taps, "coil.taps = true"),
         (request.limits.alignable is not None, "limits.alignable"),
@@ -123,8 +120,8 @@ def _result(
     contents = [choice.key[-1] for choice in found.choices]
     on_front = {choice.key[-1] for choice in found.front}
     candidates = tuple(
-        replace(candidate, rank=place, on_front=content in on_front)
-        for place, (candidate, content) in enumerate(zip(ranked, contents, strict=True), 1)
+        replace(candidate, rank=place, on_front=choice.key[-1] in on_front, order=_order(problem, choice))
+        for place, (candidate, choice) in enumerate(zip(ranked, found.choices, strict=True), 1)
     )
     front = tuple(
         candidates[contents.index(choice.key[-1])]
@@ -141,16 +138,21 @@ def _result(
     )
 
 
-def _candidate(
-    request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], choice: Choice
-) -> Candidate:
+def _order(problem: Problem, choice: Choice) -> tuple[tuple[str, object], ...]:
+    """Return the steps of the order by name with a choice's figures, all but the last, which is its content."""
+    return tuple(zip(ORDERS[problem.by], choice.key, strict=False))
+
+
+def _candidate(request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], choice: Choice) -> Candidate:
     networks = tuple(
-        Network(parts=tuple(int(i) for i in columns.parts[0] if i >= 0), shape=int(columns.shape[0]))
+        Network(parts=columns.network_parts(0), shape=int(columns.shape[0]), series=columns.series_padder(0))
         for columns in choice.columns
     )
     design = Design(coils=tuple(int(columns.coil[0]) for columns in choice.columns), networks=networks)
     candidate = assess(request, coils, capacitors, design)
-    recheck(candidate, max(abs(float(columns.error[0])) for columns in choice.columns))
+    worst_error = max(abs(float(columns.error[0])) for columns in choice.columns)
+    worst_excess = max(float(columns.excess[0]) for columns in choice.columns)
+    recheck(candidate, worst_error, worst_excess)
     return candidate
 
 
@@ -160,9 +162,7 @@ def _proof(problem: Problem, found: Found, candidates: tuple[Candidate, ...]) ->
         f"{problem.most_parts} capacitors a band, for nominal values"
     )
     if problem.inductors > 1 and problem.bands > 1:
-        searched = searched.replace(
-            "coils with", f"coils, alone and up to {problem.inductors} together, with"
-        )
+        searched = searched.replace("coils with", f"coils, alone and up to {problem.inductors} together, with")
     if found.stopped_by is None:
         status = "optimal" if candidates else "infeasible"
     else:
@@ -180,12 +180,14 @@ def _stages(problem: Problem, found: Found, first: Candidate) -> list[Stage]:
     bound = pieces if proven else pieces_of_bound(found.next_bound, problem.by)
     bound = None if bound is None else min(bound, pieces)
     error = max(first.worst_error or 0.0, problem.floor if problem.by != "error" else 1e-9)
-    stages = [
-        Stage(objective="pieces", value=pieces, bound=bound),
-        Stage(objective="worst_error", value=error, bound=error if proven else None),
-    ]
+    stages = [Stage(objective="pieces", value=pieces, bound=bound)]
+    if first.worst_error is not None:
+        stages.append(Stage(objective="worst_error", value=error, bound=error if proven else None))
+    if first.worst_excess is not None:
+        excess = first.worst_excess
+        stages.append(Stage(objective="worst_excess", value=excess, bound=excess if proven else None))
     if problem.by == "error":
-        stages.reverse()
+        stages = [*stages[1:], stages[0]]
     if problem.by == "price":
         stages.insert(0, Stage(objective="price", value=first.price, bound=first.price if proven else None))
     return stages

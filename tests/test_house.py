@@ -14,6 +14,7 @@ PACKAGE = ROOT / "partpick"
 STAGES = [
     {"errors", "units", "reading", "quantities", "preferred", "progress", "parts", "request", "result"},
     {"physics"},
+    {"tuning"},
     {"plankeys", "plantables", "planfile"},
     {"report.files"},  # whole files or none: outputs and the starter share it
     {"catalogue", "catalogue_cells", "catalogue_defaults", "catalogue_labels", "catalogue_rows", "catalogue_table"},
@@ -21,7 +22,7 @@ STAGES = [
     {"forms", "candidates"},
     {"search"},
     {"objective"},
-    {"assessment", "tank_figures", "nothing_fits"},
+    {"circuit", "assessment", "tank_figures", "nothing_fits"},
     {"solve"},
     {"report"},
     {"terminal", "options", "jobs", "cli", "__main__", "__init__"},

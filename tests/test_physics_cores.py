@@ -79,6 +79,15 @@ def test_no_other_number_of_turns_comes_nearer(al: float, inductance: float) -> 
     assert all(error <= abs(cores.core_inductance(al, n) - inductance) * (1 + 1e-9) for n in others)
 
 
+def test_halfway_between_two_numbers_of_turns_lies_halfway_in_inductance() -> None:
+    """n^2 + n + 1/2 is as far from n^2 as from (n + 1)^2."""
+    n = np.arange(1, 60)
+    halfway = n**2 + n + 0.5
+    assert cores.core_turns(1.0, halfway - 0.01).tolist() == n.tolist()
+    assert cores.core_turns(1.0, halfway + 0.01).tolist() == (n + 1).tolist()
+    assert cores.core_turns(1.0, 0.1) == 1
+
+
 @pytest.mark.parametrize("row", rows("ring_fit.csv"), ids=lambda r: r["ID_mm"] + "/" + r["wire_overall_d_mm"])
 def test_turns_on_the_bore_are_counted_exactly(row: dict[str, str]) -> None:
     """All round the bore, chords not arcs."""

@@ -63,12 +63,17 @@ def entries(lines: list[str]) -> dict[str, tuple[str, str]]:
     return found
 
 
+def has_unit(kind: str, text: str) -> bool:
+    """Whether a unit stands in brackets, or the type is one of ours, whose fields have theirs."""
+    return bool(UNIT.search(text)) or any(re.search(rf"\b{one.__name__}\b", kind) for one in own(inspect.isclass))
+
+
 @pytest.mark.parametrize("function", own(inspect.isfunction), ids=name_of)
 def test_every_parameter_is_documented_with_its_unit(function: Any) -> None:
     """A metre taken for a millimetre is the likeliest of all errors here."""
     documented = entries(sections(function).get("Parameters", []))
     assert list(documented) == list(inspect.signature(function).parameters)
-    without = [name for name, (_, text) in documented.items() if not UNIT.search(text)]
+    without = [name for name, (kind, text) in documented.items() if not has_unit(kind, text)]
     assert not without, "no unit in brackets"
     without = [name for name, (kind, _) in documented.items() if not kind.strip()]
     assert not without, "no type or shape"
@@ -79,7 +84,7 @@ def test_every_result_has_its_unit(function: Any) -> None:
     """What comes back is as much of a contract as what goes in."""
     returned = entries(sections(function).get("Returns", []))
     assert returned
-    assert all(UNIT.search(text) for _, text in returned.values())
+    assert all(has_unit(kind, text) for kind, text in returned.values())
 
 
 @pytest.mark.parametrize("function", own(inspect.isfunction), ids=name_of)

@@ -64,8 +64,9 @@ def section_inductance(family: ArrayLike, turns: ArrayLike, rest_shorted: bool =
 
     Notes
     -----
-    Exact for whole turns (coaxial rings). Between them a cubic spline through the exact values: within 0.2 % of a current sheet of that many turns from 3 turns on. Shorted
-    turns are taken as without resistance; real ones also lower the Q.
+    Exact for whole turns (coaxial rings). Between them a cubic spline through the exact values: within 0.2 %
+    of a current sheet of that many turns from 3 turns on. Shorted turns are taken as without resistance; real
+    ones also lower the Q.
 
     References
     ----------

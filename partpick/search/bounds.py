@@ -77,7 +77,8 @@ class Bounds:
         # what leads by error and on the front, by number of parts
         self.leading = excesses if problem.led_by_excess else self.errors
         self.least_leading = self.least_excess if problem.led_by_excess else self.least_error
-        loss = np.where(problem.swept[None, :], np.maximum(problem.coil_loss, problem.coil_loss_low), problem.coil_loss)
+        worse = np.maximum(problem.coil_loss, problem.coil_loss_low)  # of a swept band's two ends
+        loss = np.where(problem.swept[None, :], worse, problem.coil_loss)
         self.q_class = quality_class(loss, problem.q_enough[None, :])
         self.stray_class = self._least_stray_class()
 

@@ -96,18 +96,19 @@ def first_without_shared_limits(
     problem: Problem, bands: list[Columns], coils: tuple[int, ...], order: tuple[str, ...]
 ) -> Choice | None:
     """Return the first choice in the order with each coil used, stock and limits in common left aside."""
+    free = _uncoupled(problem, bands, coils, order)
+    if {int(columns.coil[0]) for columns in free.columns} == set(coils):
+        return free
     best: Choice | None = None
     for restricted in _each_coil_used(bands, coils):
         choice = _uncoupled(problem, restricted, coils, order)
-        if choice is not None and (best is None or choice.key < best.key):
+        if best is None or choice.key < best.key:
             best = choice
     return best
 
 
 def _each_coil_used(bands: list[Columns], coils: tuple[int, ...]) -> list[list[Columns]]:
     """Return restrictions of the bands which together cover every way to use all the coils."""
-    if len(coils) == 1:
-        return [bands]
     ways = [bands]
     for coil in coils:
         grown = []
@@ -133,38 +134,38 @@ def _without_repeats(ways: list[list[Columns]]) -> list[list[Columns]]:
 
 def _uncoupled(
     problem: Problem, bands: list[Columns], coils: tuple[int, ...], order: tuple[str, ...]
-) -> Choice | None:
+) -> Choice:
+    """Return the first choice in the order, each band for itself."""
     key: list[int | tuple[object, ...]] = []
+    rows = [np.arange(len(columns)) for columns in bands]  # still in the race
     for name in order:
         if name == "effort":
             key.append(plan_effort(problem, coils))
-        elif name in SUMS:
-            total, bands = _least_sum(problem, bands, coils, name)
-            key.append(total)
+            continue
+        figures = [getattr(columns, name)[row] for columns, row in zip(bands, rows, strict=True)]
+        least = [int(figure.min()) for figure in figures]
+        if name in SUMS:
+            own = {"pieces": len(coils), "price": plan_price(problem, coils)}.get(name, 0)
+            total = sum(least) + own
+            if name == "price" and total >= NEVER:
+                key.append(NEVER)
+                continue
         else:
-            worst = max(int(getattr(columns, name).min()) for columns in bands)
-            bands = [columns.take(getattr(columns, name) <= worst) for columns in bands]
-            key.append(worst)
-    taken = tuple(_first_by_content(problem, columns) for columns in bands)
+            total = max(least)
+            least = [total] * len(bands)
+        key.append(total)
+        rows = [row[figure <= most] for row, figure, most in zip(rows, figures, least, strict=True)]
+    pairs = zip(bands, rows, strict=True)
+    taken = tuple(columns.take(_first_by_content(problem, columns, row)) for columns, row in pairs)
     key.append(plan_content(problem, coils, taken))
     return Choice(tuple(key), coils, taken)
 
 
-def _least_sum(
-    problem: Problem, bands: list[Columns], coils: tuple[int, ...], name: str
-) -> tuple[int, list[Columns]]:
-    least = [int(getattr(columns, name).min()) for columns in bands]
-    own = {"pieces": len(coils), "price": plan_price(problem, coils)}.get(name, 0)
-    total = sum(least) + own
-    if name == "price" and total >= NEVER:
-        return NEVER, bands
-    pairs = zip(bands, least, strict=True)
-    return total, [columns.take(getattr(columns, name) == value) for columns, value in pairs]
-
-
-def _first_by_content(problem: Problem, columns: Columns) -> Columns:
-    row = min(range(len(columns)), key=lambda r: column_content(problem, columns, r))
-    return columns.take(np.array([row]))
+def _first_by_content(problem: Problem, columns: Columns, rows: Ints) -> Ints:
+    first = rows[0]
+    if len(rows) > 1:
+        first = min(rows.tolist(), key=lambda row: column_content(problem, columns, row))
+    return np.array([first])
 
 
 def plan_content(problem: Problem, coils: tuple[int, ...], taken: tuple[Columns, ...]) -> tuple[object, ...]:

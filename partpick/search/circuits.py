@@ -14,6 +14,8 @@ from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 
 _ROUNDING = 1e-12
 
+Windows = tuple[tuple[Floats, Floats], tuple[Floats, Floats]]
+
 
 def species_of_parts(problem: Problem) -> Ints:
     """Return the species of each part, (P,); -1 for a part that is in none. [-]"""
@@ -47,6 +49,7 @@ class Circuits:
         self._commonness = _with_blank(problem.commonness[species_of_parts(problem)], 0)
         self._price = _with_blank(problem.part_price, 0)
         self._middle = (problem.trimmer_low + problem.trimmer_high) / 2
+        self._fixed = problem.fixed_capacitance()
         self._limits = [problem.windows(parts) for parts in (0, 1)]
 
     def sums(self, band: int, parts: Ints) -> Floats:
@@ -62,28 +65,33 @@ class Circuits:
         """Return the price of each row of parts in hundredths, NEVER where one is unknown, (m,). [-]"""
         return np.minimum(self._price[parts].sum(axis=1), NEVER)
 
-    def windows(self, error: Floats) -> list[tuple[Floats, Floats]]:
+    def windows(self, error: Floats, coils: Ints | slice = slice(None)) -> Windows:
         """Return the intervals of the parts' capacitance inside all limits and an error of each coil.
 
         Parameters
         ----------
-        error : (J,) array
+        error : (m,) array
             Largest size of error; inf: the limits alone. [fraction of f]
+        coils : (m,) array, optional
+            Which coils; all by default. [-]
 
         Returns
         -------
-        intervals : list
-            (low, high), (J, B) each, first for a circuit without capacitors, then with some. [F]
+        intervals : tuple
+            (low, high), (m, B) each, first for a circuit without capacitors, then with some. [F]
         """
         p = self.problem
-        fixed = p.fixed_capacitance()
-        grain = _ROUNDING * p.wanted
-        low = p.wanted / (1 + error[:, None]) ** 2 - fixed - grain
-        high = p.wanted / np.maximum(1 - error[:, None], 1e-9) ** 2 - fixed + grain
+        fixed, wanted = self._fixed[coils], p.wanted[coils]
+        grain = _ROUNDING * wanted
+        low = wanted / (1 + error[:, None]) ** 2 - fixed - grain
+        high = wanted / np.maximum(1 - error[:, None], 1e-9) ** 2 - fixed + grain
         if p.lead_inductance > 0:
             squared = (2 * np.pi * p.frequency[None, :]) ** 2 * p.lead_inductance
             low, high = (np.where(c > 0, c / (1 + squared * np.maximum(c, 0)), c) for c in (low, high))
-        return [(np.maximum(low, least), np.minimum(high, most)) for least, most in self._limits]
+        none, some = (
+            (np.maximum(low, least[coils]), np.minimum(high, most[coils])) for least, most in self._limits
+        )
+        return none, some
 
     def columns(self, coil: Ints, band: Ints, parts: Ints) -> tuple[Columns, Bools]:
         """Return the figures of each row, and whether it is inside every limit of its band.

@@ -74,7 +74,7 @@ class _Rows:
         return np.where(reached, self.need * most, np.inf), np.asarray(self.most * least)
 
     def crossing(self, swing: Floats) -> Floats:
-        """Return the capacitance in circuit at the high end with least excess for a swing, any x allowed. [F]"""
+        """Return what is in circuit at the high end with least excess for a swing, any x allowed. [F]"""
         ends = self.low + self.high
         at_low = self.low * (1.0 - self.margin) * np.sqrt(self.need / self.most)
         at_high = self.high * (1.0 + self.margin)
@@ -160,13 +160,14 @@ class LeastExcess:
         return [(bands[0], self._rows(bands, inside)) for bands in self._alike()]
 
     def _coverable(self) -> Bools:
-        """Whether enough swing is left, alone or behind some padder, with as little in circuit as there can be."""
+        """Whether enough swing is left, alone or behind some padder, with nothing else in circuit."""
         p = self.problem
         inside = p.in_play & p.swept[None, :]
         fixed, most, need = p.fixed_capacitance(), p.most_at_high_end, p.least_at_low_end
         for band in np.flatnonzero(p.swept):
             padders = series_padders(p, int(band), self.valid[band])
-            swing = np.append(padders.at_low_end - padders.at_high_end, p.tuning_high[band] - p.tuning_low[band])
+            alone = p.tuning_high[band] - p.tuning_low[band]
+            swing = np.append(padders.at_low_end - padders.at_high_end, alone)
             at_high_end = np.append(padders.at_high_end, p.tuning_low[band])
             order = np.argsort(swing, kind="stable")
             later_least = np.append(np.minimum.accumulate(at_high_end[order][::-1])[::-1], np.inf)

@@ -95,7 +95,12 @@ class Evaluator:
         return None
 
     def _fewest_inside(
-        self, coils: tuple[int, ...], band: int, lead: float, limit: int, known: dict[tuple[int, int], Columns]
+        self,
+        coils: tuple[int, ...],
+        band: int,
+        lead: float,
+        limit: int,
+        known: dict[tuple[int, int], Columns],
     ) -> Columns | None:
         """Return a band's columns of the fewest parts with a leading figure up to `limit`, at most `lead`."""
         for parts in range(self.problem.least_parts, self.problem.most_parts + 1):
@@ -138,7 +143,7 @@ class Evaluator:
             extra = min(beyond, most)
 
     def _lowest_levels(self, coils: tuple[int, ...], extra: int) -> tuple[list[Columns], int | None]:
-        """Return each coil's columns from its fewest parts at each band up to `extra` more, and the least sum."""
+        """Return each coil's columns from its fewest parts up to `extra` more, and the least sum."""
         bands: list[Columns] = []
         least = 0
         for band in range(self.problem.bands):
@@ -159,6 +164,8 @@ class Evaluator:
         for parts in range(self.problem.least_parts, self.problem.most_parts + 1):
             if found and parts > int(found[0].pieces[0]) + extra:
                 break
+            if self.least is not None and not np.isfinite(self.least[parts][coil, band]):
+                continue
             columns = self.source.columns(coil, band, parts)
             if len(columns):
                 found.append(columns)
@@ -235,7 +242,7 @@ class Evaluator:
         return choose(self.problem, bands, coils, ORDERS["error"], self.monitor)
 
     def _few_enough(self, bands: list[Columns], name: str) -> list[Columns] | None:
-        """Keep the columns up to the least worst figure that the limit on parts leaves possible; else None."""
+        """Keep the columns up to the least worst figure that the limit on parts allows; else None."""
         cap = self.problem.parts_limit
         figures = [getattr(columns, name) for columns in bands]
         steps = np.unique(np.concatenate(figures))

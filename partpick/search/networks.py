@@ -146,14 +146,15 @@ class Stream:
 
     def _inner_intervals(self, low: Floats, high: Floats) -> Iterator[tuple[Floats, Floats]]:
         for a in self.single:
-            slack = 1e-12 * np.maximum(np.abs(high), a)
+            slack = 1e-12 * np.maximum(np.where(np.isfinite(high), np.abs(high), 0.0), a)
             yield low - a - slack, high - a + slack
             if self.connect_any:
                 yield _series_rest(a, low), _series_rest(a, high)
 
     @staticmethod
     def _inner_interval(a: float, low: float, high: float, in_series: bool) -> tuple[float, float]:
-        slack = 1e-12 * max(abs(low), abs(high), a)  # rounding; exact test follows
+        ends = [abs(end) for end in (low, high) if np.isfinite(end)]
+        slack = 1e-12 * max([a, *ends])  # rounding; exact test follows
         if not in_series:
             return low - a - slack, high - a + slack
         lower, upper = _series_rest(a, np.array([low - slack, high + slack]))
@@ -178,8 +179,9 @@ class Stream:
 
 def _series_rest(a: float, wanted: Floats) -> Floats:
     """Return what in series with `a` gives each wanted capacitance; inf where `a` is too small."""
-    possible = wanted < a
-    return np.where(possible, a * wanted / np.where(possible, a - wanted, 1.0), np.inf)
+    usual = (wanted < a) & np.isfinite(wanted)
+    rest = a * np.where(usual, wanted, 0.0) / np.where(usual, a - wanted, 1.0)
+    return np.where(usual, rest, np.where(wanted < a, -a, np.inf))
 
 
 def _multisets(count: int, parts: int) -> NDArray[np.int16]:

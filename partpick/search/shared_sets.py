@@ -15,10 +15,10 @@ import numpy as np
 
 from partpick.progress import Monitor
 from partpick.search.choose import Stopped
-from partpick.search.circuits import Circuits, distinct
+from partpick.search.circuits import Circuits, Windows, distinct
 from partpick.search.grades import Grades
-from partpick.search.networks import Stream, Table, network_tables
 from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
+from partpick.search.sum_tables import SumTables, TooMany
 
 CHUNK = 1 << 19  # subset sums at one time
 WORK_LIMIT = 400_000_000  # subset sums of one request
@@ -81,13 +81,14 @@ class SetSearch:
         self.monitor = monitor
         self.order = np.argsort(-problem.frequency, kind="stable")
         self.work = 0
-        self._sums: dict[tuple[int, int], Table | Stream] = {}
-        self._tables: list[list[Table | Stream]] = []
+        self.sums = SumTables(letters.acting, circuits.windows(np.full(problem.coils, np.inf))[1][1])
         self._exact = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+        self.single_parts = all(len(group) == 1 for group in letters.parts)
+        self._largest = np.where(np.isfinite(letters.acting), letters.acting, 0.0).max(axis=0, initial=0.0)
         self.first_part = np.array([group[0] for group in letters.parts], dtype=np.int64)
 
     def sets(
-        self, coils: Ints, most: int, windows: list[tuple[Floats, Floats]], price: Ints
+        self, coils: Ints, most: int, windows: Windows, price: Ints
     ) -> Iterator[Sets]:
         """Yield sets of at most `most` capacitors that serve every band, repeats possible.
 
@@ -125,7 +126,7 @@ class SetSearch:
                     stack.append((depth + 1, grown))
 
     def _next(
-        self, sets: Sets, depth: int, most: int, windows: list[tuple[Floats, Floats]], price: Ints
+        self, sets: Sets, depth: int, most: int, windows: Windows, price: Ints
     ) -> list[Sets]:
         """Return the sets that serve one band more, largest first."""
         band = int(self.order[depth])
@@ -142,7 +143,8 @@ class SetSearch:
             rest, sums = sets.take(short), sums[short]
             spare = most - size - self._needed(rest, depth, windows)
             for added in range(1, int(spare.max(initial=0)) + 1):
-                grown.append(self._grow(rest, sums, spare >= added, added, band, windows, price))
+                some = np.flatnonzero(spare >= added)
+                grown += self._grow(rest.take(some), sums[some], added, band, windows, price)
         return grown[::-1]
 
     def subset_sums(self, letters: Ints, band: int) -> Floats:
@@ -172,48 +174,57 @@ class SetSearch:
         _, keep = self.circuits.columns(coil, np.full(len(coil), band), parts)
         return keep
 
-    def _needed(self, sets: Sets, depth: int, windows: list[tuple[Floats, Floats]]) -> Ints:
-        """Return the least number of capacitors that the bands after this one add, (m,).
+    def least_pieces(self, windows: Windows) -> Ints:
+        """Return a number of capacitors below which no set serves every band, (J,). [-]"""
+        coils = np.arange(self.problem.coils)
+        return self._forced(coils, np.zeros(len(coils)), np.zeros(len(coils)), self.order, windows)
 
-        Parts served so far add up to a capacitance; a band that needs more must add one at least, and
-        then there is at most its own interval's end more.
-        """
+    def _needed(self, sets: Sets, depth: int, windows: Windows) -> Ints:
+        """Return the least number of capacitors that the bands after this one add, (m,)."""
         band = int(self.order[depth])
-        acting = self.letters.acting.copy()
-        acting[~np.isfinite(acting)] = 0.0
-        total = acting[:, sets.letters].max(axis=0).sum(axis=1) if sets.letters.shape[1] else np.zeros(len(sets))
+        total = self._largest[sets.letters].sum(axis=1)
         reach = np.maximum(windows[1][1][sets.coil, band], 0.0)
-        total = total + reach
-        needed = np.zeros(len(sets), dtype=np.int64)
-        for later in self.order[depth + 1 :]:
-            least = np.minimum(windows[1][0][sets.coil, later], _least_without(windows, sets.coil, int(later)))
-            reach = np.maximum(reach, windows[1][1][sets.coil, later])
-            forced = least > total * (1 + 1e-12)
-            needed += forced
-            total = np.where(forced, total + reach, total)
-        return needed
+        return self._forced(sets.coil, total + reach, reach, self.order[depth + 1 :], windows)
+
+    def _forced(self, coil: Ints, total: Floats, reach: Floats, later: Ints, windows: Windows) -> Ints:
+        """Count the bands that need more than `total`, which rises by at most the interval's end each time.
+
+        To add as late as possible adds most, so no other sequence needs fewer.
+        """
+        forced = np.zeros(len(coil), dtype=np.int64)
+        for band in later:
+            (none_low, none_high), (low, high) = ((a[coil, band], b[coil, band]) for a, b in windows)
+            least = np.where((none_low <= 0) & (none_high >= 0), 0.0, low)
+            reach = np.maximum(reach, high)
+            short = least > total * (1 + 1e-12)
+            forced += short
+            total = np.where(short, total + reach, total)
+        return forced
 
     def _grow(
         self,
         sets: Sets,
         sums: Floats,
-        allowed: Bools,
         added: int,
         band: int,
-        windows: list[tuple[Floats, Floats]],
+        windows: Windows,
         price: Ints,
-    ) -> Sets:
-        """Return the sets grown by `added` letters so that some subset with all of those serves the band."""
+    ) -> Iterator[Sets]:
+        """Yield the sets grown by `added` letters so that some subset with all of those serves the band."""
         low, high = (side[sets.coil, band][:, None] for side in windows[1])
-        table, valid = self._table(band, added)
-        smallest = added * float(self.letters.acting[band][valid].min()) if len(valid) else np.inf
-        query = allowed[:, None] & (high - sums >= smallest * (1 - 1e-12))
-        row, mask = np.nonzero(query)
+        row, mask = np.nonzero(high - sums >= added * self.sums.smallest(band) * (1 - 1e-12))
         rest = sums[row, mask]
-        found, which = table.inside_each(low[row, 0] - rest, high[row, 0] - rest)
+        try:
+            new, which = self.sums.inside(band, added, low[row, 0] - rest, high[row, 0] - rest)
+        except TooMany:
+            if len(sets) == 1:
+                raise Stopped("work limit") from None
+            half = len(sets) // 2
+            for part in (slice(0, half), slice(half, None)):
+                yield from self._grow(sets.take(part), sums[part], added, band, windows, price)
+            return
         self.work += len(which)
         row, mask = row[which], mask[which]
-        new = valid[found.species.astype(np.int64)].reshape(len(row), added)
         if self._exact:
             keep = self._admissible(
                 sets.coil[row], band, np.concatenate([self.masked(sets.letters[row], mask), new], axis=1)
@@ -221,7 +232,7 @@ class SetSearch:
             row, new = row[keep], new[keep]
         grown = Sets(sets.coil[row], np.sort(np.concatenate([sets.letters[row], new], axis=1), axis=1))
         first, _ = distinct(grown.coil, grown.letters, len(self.letters.stock))
-        return self._inside_shared_limits(grown.take(first), price)
+        yield self._inside_shared_limits(grown.take(first), price)
 
     def _inside_shared_limits(self, sets: Sets, price: Ints) -> Sets:
         """Drop the sets beyond stock, number of values or price; each set that contains them is beyond too."""
@@ -238,19 +249,3 @@ class SetSearch:
             cost = letters.price[sets.letters].sum(axis=1)
             sets = sets.take((limit >= NEVER) | (cost <= limit))
         return sets
-
-    def _table(self, band: int, added: int) -> tuple[Table | Stream, Ints]:
-        """Return the sums of `added` letters as they act at a band, and the letters that act there."""
-        acting = self.letters.acting
-        twin = next(b for b in range(band + 1) if np.array_equal(acting[b], acting[band]))
-        valid = np.flatnonzero(np.isfinite(acting[band]))
-        if (twin, added) not in self._sums:
-            for parts, table in enumerate(network_tables(acting[band][valid], added, False)):
-                self._sums[twin, parts] = table
-        return self._sums[twin, added], valid
-
-
-def _least_without(windows: list[tuple[Floats, Floats]], coil: Ints, band: int) -> Floats:
-    """Return 0 where a band may do without capacitors, else inf."""
-    low, high = (side[coil, band] for side in windows[0])
-    return np.where((low <= 0) & (high >= 0), 0.0, np.inf)

@@ -199,7 +199,13 @@ class SweptColumns:
         return weights, tuned * of_element
 
     def _loss(
-        self, band: int, coil: float, part_loss: Floats, chosen: Ints, weights: tuple[Floats, Floats], end: _End
+        self,
+        band: int,
+        coil: float,
+        part_loss: Floats,
+        chosen: Ints,
+        weights: tuple[Floats, Floats],
+        end: _End,
     ) -> Floats:
         """Return 1/Q at one end from the coil's there and that of everything else in circuit. [-]"""
         p = self.problem

@@ -1,0 +1,244 @@
+"""One band's tank from its parts alone: capacitance, Q and drift at a frequency, nothing taken from the search."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+from fractions import Fraction
+from typing import TypeVar
+
+from partpick.candidates import Coils
+from partpick.objective import TRIMMER_Q
+from partpick.parts import Capacitor
+from partpick.physics.resonance import effective_capacitance
+from partpick.request import Band, Request
+from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
+from partpick.tuning import ElementEnds, element_ends
+
+T = TypeVar("T", float, Fraction)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Network:
+    """The capacitors of one band across its coil: indices into the capacitors in play, in the order of the shape."""
+
+    parts: tuple[int, ...]
+    shape: int
+    series: int | None = None  # the padder in series with the tuning element of a swept band
+
+    @property
+    def pieces(self) -> tuple[int, ...]:
+        """All capacitors of the band, the series padder last."""
+        return self.parts if self.series is None else (*self.parts, self.series)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Design:
+    """What was picked: a coil and a network for each band, in plan order."""
+
+    coils: tuple[int, ...]  # (B,) index into Coils
+    networks: tuple[Network, ...]  # (B,)
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Tank:
+    """One band of a design with everything that is in circuit there."""
+
+    request: Request
+    coils: Coils
+    capacitors: Sequence[Capacitor]
+    design: Design
+    index: int  # of the band, in plan order
+
+    @property
+    def band(self) -> Band:
+        """The band as asked for."""
+        return self.request.bands[self.index]
+
+    @property
+    def coil(self) -> int:
+        """Index of its coil."""
+        return self.design.coils[self.index]
+
+    @property
+    def network(self) -> Network:
+        """Its capacitors."""
+        return self.design.networks[self.index]
+
+    @property
+    def strays(self) -> float:
+        """Wiring and self-capacitance. [F]"""
+        return self.band.stray + float(self.coils.self_capacitance[self.coil])
+
+    @property
+    def trimmer(self) -> float:
+        """The trimmer at the middle of its range, 0 without one. [F]"""
+        return self.band.trimmer.middle if self.band.trimmer else 0.0
+
+    def inductance(self, *, low_end: bool = False) -> float:
+        """Return the coil's inductance at the band, or at its lower end. [H]"""
+        values = self.coils.inductance_low if low_end else self.coils.inductance
+        return float(values[self.coil, self.index])
+
+    def frequency(self, *, low_end: bool = False) -> float:
+        """Return the frequency at which figures are taken: the target, or the lower end. [Hz]"""
+        return self.band.lowest if low_end else self.band.highest
+
+    def across(self, *, low_end: bool = False) -> float:
+        """Return what the band's capacitors across the coil act as. [F]"""
+        leads = self.request.stray.inductance
+        return network_capacitance(self.capacitors, self.network, self.frequency(low_end=low_end), leads)
+
+    def element(self) -> ElementEnds | None:
+        """Return the tuning element of a swept band, None for a fixed one."""
+        if not self.band.swept:
+            return None
+        assert self.request.tuning is not None
+        return element_ends(self.request.tuning)
+
+    def tuned(self, *, low_end: bool = False) -> float:
+        """Return the tuning element behind its padder, 0 in a fixed band. [F]"""
+        element = self.element()
+        if element is None:
+            return 0.0
+        own = element.high if low_end else element.low
+        if self.network.series is None:
+            return own
+        padder = self.capacitors[self.network.series]
+        frequency = self.frequency(low_end=low_end)
+        acting = float(effective_capacitance(padder.value, padder.series_inductance or 0.0, frequency))
+        return own * acting / (own + acting)
+
+    def total(self, *, low_end: bool = False) -> float:
+        """Return all capacitance in circuit. [F]"""
+        return self.across(low_end=low_end) + self.tuned(low_end=low_end) + self.strays + self.trimmer
+
+    def weights(self, total: float, *, low_end: bool = False) -> list[tuple[Capacitor, float]]:
+        """Return each capacitor with d ln(total) / d ln(its own), the series padder last."""
+        chosen = [self.capacitors[i] for i in self.network.parts]
+        shares = network_shares([part.value for part in chosen], self.network.shape)
+        across = self.across(low_end=low_end)
+        weighted = [(part, share * across / total) for part, share in zip(chosen, shares, strict=True)]
+        if self.network.series is not None:
+            padder, tuned = self.capacitors[self.network.series], self.tuned(low_end=low_end)
+            weighted.append((padder, tuned / padder.value * tuned / total))
+        return weighted
+
+    def element_weight(self, total: float, *, low_end: bool = False) -> float:
+        """Return d ln(total) / d ln(tuning element), 0 in a fixed band. [-]"""
+        element = self.element()
+        if element is None:
+            return 0.0
+        tuned = self.tuned(low_end=low_end)
+        return tuned / (element.high if low_end else element.low) * tuned / total
+
+    def coil_q(self, *, low_end: bool = False) -> float | None:
+        """Return the Q of the coil alone; None where its loss is unknown. [-]"""
+        q = float((self.coils.q_low if low_end else self.coils.q)[self.coil, self.index])
+        return q if math.isfinite(q) else None
+
+    def losses(self, *, low_end: bool = False) -> dict[str, float | None]:
+        """Return 1/Q by cause: coil, capacitors, trimmer, tuning element; None where a loss is unknown. [-]"""
+        total = self.total(low_end=low_end)
+        frequency = self.frequency(low_end=low_end)
+        coil_q = self.coil_q(low_end=low_end)
+        capacitors: float | None = 0.0
+        for part, weight in self.weights(total, low_end=low_end):
+            known = part.q is not None and (part.q_below is None or frequency <= part.q_below)
+            capacitors = None if capacitors is None or not known or not part.q else capacitors + weight / part.q
+        trimmer, element = self.band.trimmer, self.element()
+        return {
+            "coil": None if coil_q is None else 1.0 / coil_q,
+            "capacitors": capacitors,
+            "trimmer": self.trimmer / total / (trimmer.q or TRIMMER_Q) if trimmer else 0.0,
+            "tuning": self.element_weight(total, low_end=low_end) / element.q if element else 0.0,
+        }
+
+    def q(self) -> float | None:
+        """Return the unloaded Q, the worse end of a swept band; None where a loss is unknown. [-]"""
+        ends = [self.losses(), self.losses(low_end=True)] if self.band.swept else [self.losses()]
+        worst = 0.0
+        for end in ends:
+            known = [loss for loss in end.values() if loss is not None]
+            if len(known) < len(end):
+                return None
+            worst = max(worst, math.fsum(known))
+        return 1.0 / worst
+
+    def drift(self) -> tuple[float | None, float | None]:
+        """Return df/f per kelvin and its spread, trimmer set on frequency; None where a tempco is unknown. [1/K]"""
+        fixed = self.across() + self.tuned() + self.strays
+        trimmer, trimmer_tempco = 0.0, 0.0
+        if self.band.trimmer:
+            wanted = 1.0 / ((2 * math.pi * self.band.highest) ** 2 * self.inductance())
+            trimmer = min(max(wanted - fixed, self.band.trimmer.low), self.band.trimmer.high)
+            trimmer_tempco = math.nan if self.band.trimmer.tempco is None else self.band.trimmer.tempco
+        total = fixed + trimmer
+        capacitance = (self.strays * self.request.stray.tempco + trimmer * trimmer_tempco) / total
+        element = self.element()
+        if element:
+            own = math.nan if element.tempco is None else element.tempco
+            capacitance += self.element_weight(total) * own
+        spread = float(self.coils.tempco_spread[self.coil])
+        for part, weight in self.weights(total):
+            capacitance += weight * (math.nan if part.tempco is None else part.tempco)
+            spread += weight * (part.tempco_tolerance or 0.0)
+        nominal = -0.5 * (float(self.coils.tempco[self.coil, self.index]) + capacitance)
+        return (nominal, 0.5 * spread) if math.isfinite(nominal) else (None, None)
+
+
+def network_capacitance(capacitors: Sequence[Capacitor], network: Network, frequency: float, leads: float) -> float:
+    """Return how a band's network acts at a frequency, series inductances included. [F]"""
+    chosen = [capacitors[i] for i in network.parts]
+    if not chosen:
+        return 0.0
+    if any(part.series_inductance for part in chosen):
+        acting = [float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency)) for part in chosen]
+        whole = _combine(acting, network.shape)
+    else:
+        whole = float(_combine([part.exact for part in chosen], network.shape))
+    return float(effective_capacitance(whole, leads, frequency)) if leads else whole
+
+
+def _combine(c: list[T], shape: int) -> T:
+    if shape == PARALLEL or len(c) == 1:
+        total = c[0]
+        for value in c[1:]:
+            total = total + value
+        return total
+    if shape == SERIES:
+        total = c[0]
+        for value in c[1:]:
+            total = total * value / (total + value)
+        return total
+    if shape == SHUNTED:
+        return c[0] + c[1] * c[2] / (c[1] + c[2])
+    assert shape == CHAINED
+    pair = c[1] + c[2]
+    return c[0] * pair / (c[0] + pair)
+
+
+def network_shares(c: list[float], shape: int) -> list[float]:
+    """Return d ln(network) / d ln(part) of each part of a network of plain capacitances. [-]"""
+    net = _combine(c, shape) if c else 0.0
+    if shape == PARALLEL or len(c) == 1:
+        return [value / net for value in c]
+    if shape == SERIES:
+        return [net / value for value in c]
+    if shape == SHUNTED:
+        pair = c[1] * c[2] / (c[1] + c[2])
+        return [c[0] / net, pair**2 / c[1] / net, pair**2 / c[2] / net]
+    pair = c[1] + c[2]
+    return [net / c[0], net * c[1] / pair**2, net * c[2] / pair**2]
+
+
+def connection_text(names: Sequence[str], shape: int) -> str:
+    """Return a network in words of references: `C1 | (C2 + C3)`; parallel `|`, series `+`."""
+    if not names:
+        return ""
+    if shape == SHUNTED:
+        return f"{names[0]} | ({names[1]} + {names[2]})"
+    if shape == CHAINED:
+        return f"{names[0]} + ({names[1]} | {names[2]})"
+    return (" | " if shape == PARALLEL else " + ").join(names)

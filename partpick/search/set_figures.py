@@ -1,0 +1,215 @@
+"""The best way to switch each shared set, and the first set of each coil in the order of the request.
+
+A set fixes pieces, commonness and price; each band then takes the subset that ranks best, worst
+figures first, so a set's place in the order does not depend on any other set.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+import numpy as np
+
+from partpick.search.choose import ORDERS, Choice, column_content
+from partpick.search.circuits import Circuits, Windows
+from partpick.search.figures import Columns
+from partpick.search.grades import Grades
+from partpick.search.networks import PARALLEL, Rows
+from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
+from partpick.search.shared_sets import Sets, SetSearch
+
+BLOCK = 1 << 18  # subset sums at one time
+
+
+@dataclass(frozen=True)
+class SharedChoice(Choice):
+    """A choice of one set for all bands; `columns` name what is in circuit at each band."""
+
+    members: tuple[int, ...] = ()  # parts of the set, by content
+    closed: tuple[tuple[int, ...], ...] = ()  # (B, any) places in `members` that each band switches in
+
+
+@dataclass(frozen=True, eq=False)
+class _Ways:
+    """Admissible subsets of some sets, set by set and band by band."""
+
+    owner: Ints  # (m,) index of the set
+    band: Ints  # (m,)
+    mask: Ints  # (m,) bit i: slot i is in circuit
+    columns: Columns
+
+    def take(self, chosen: Ints | Bools) -> _Ways:
+        return _Ways(self.owner[chosen], self.band[chosen], self.mask[chosen], self.columns.take(chosen))
+
+
+class SetFigures:
+    """Places sets in the order of the request."""
+
+    def __init__(self, problem: Problem, circuits: Circuits, search: SetSearch) -> None:
+        self.problem = problem
+        self.circuits = circuits
+        self.search = search
+        self.grades = Grades(problem)
+        self.species = np.full(len(search.letters.parts), -1, dtype=np.int64)
+        for species, options in enumerate(problem.options):
+            for letter, group in enumerate(search.letters.parts):
+                if group[0] in options:
+                    self.species[letter] = species
+
+    def best(self, found: Iterable[Sets], windows: Windows, by: str) -> dict[int, SharedChoice]:
+        """Return the first choice of each coil among all sets found, each of them served inside `windows`."""
+        order = ORDERS[by]
+        kept: dict[int, tuple[tuple[int, ...], list[Ints]]] = {}
+        for sets in self._blocks(found):
+            parts, coil = self._graded(sets)
+            if not len(coil):
+                continue
+            keys, alive = self._keys(coil, parts, windows, order)
+            for place in _first_of_each(coil, keys, alive):
+                key, j = tuple(int(k) for k in keys[place]), int(coil[place])
+                if j not in kept or key < kept[j][0]:
+                    kept[j] = (key, [])
+                if key == kept[j][0]:
+                    kept[j][1].append(parts[place])
+        return {
+            j: min((self._choice(j, parts, windows, order) for parts in ties), key=lambda c: c.key)
+            for j, (_, ties) in kept.items()
+        }
+
+    def least_errors(self, sets: Sets, windows: Windows) -> Ints:
+        """Return the least worst error of each set as the whole number of the order, NEVER where it has none."""
+        parts, coil = self._graded(sets, expand=False)
+        keys, alive = self._keys(coil, parts, windows, ("fine_error",))
+        return np.where(alive, keys[:, 0], NEVER)
+
+    def _blocks(self, found: Iterable[Sets]) -> Iterable[Sets]:
+        for sets in found:
+            size = max(1, min(4096, BLOCK >> sets.letters.shape[1]))
+            for start in range(0, len(sets), size):
+                yield sets.take(slice(start, start + size))
+
+    def _graded(self, sets: Sets, expand: bool = True) -> tuple[Ints, Ints]:
+        """Return the parts of each set in each choice of grades inside stock and price, and its coil."""
+        search, problem = self.search, self.problem
+        if search.single_parts or not expand:
+            return search.first_part[sets.letters].reshape(sets.letters.shape), sets.coil
+        shape = np.full(len(sets), PARALLEL, np.int8)
+        rows = Rows(np.zeros(len(sets)), self.species[sets.letters].astype(np.int16), shape)
+        origin, parts = self.grades.expand(rows)
+        coil = sets.coil[origin]
+        if problem.price_limit < NEVER:
+            inside = self.circuits.price(parts) + problem.coil_price[coil] <= problem.price_limit
+            parts, coil = parts[inside], coil[inside]
+        return parts, coil
+
+    def _ways(self, coil: Ints, parts: Ints, windows: Windows) -> _Ways:
+        blocks = []
+        slots = np.arange(parts.shape[1])[None, :]
+        for band in range(self.problem.bands):
+            sums = np.zeros((len(parts), 1))
+            for column in parts.T:
+                sums = np.concatenate([sums, sums + self.circuits.acting[band][column][:, None]], axis=1)
+            low, high = (side[coil, band][:, None] for side in windows[1])
+            inside = (sums >= low) & (sums <= high)
+            inside[:, 0] = (windows[0][0][coil, band] <= 0) & (windows[0][1][coil, band] >= 0)
+            owner, mask = np.nonzero(inside)
+            taken = np.where((mask[:, None] >> slots) & 1 == 1, parts[owner], -1)
+            where = np.full(len(owner), band)
+            columns, keep = self.circuits.columns(coil[owner], where, taken)
+            blocks.append(_Ways(owner, where, mask, columns).take(keep))
+        ways = _Ways(
+            np.concatenate([w.owner for w in blocks]),
+            np.concatenate([w.band for w in blocks]),
+            np.concatenate([w.mask for w in blocks]),
+            Columns.join([w.columns for w in blocks]),
+        )
+        return ways.take(np.lexsort((ways.band, ways.owner)))
+
+    def _keys(
+        self, coil: Ints, parts: Ints, windows: Windows, order: tuple[str, ...]
+    ) -> tuple[Ints, Bools]:
+        """Return each set's figures in the order, (m, steps), effort as three; and whether all bands are served."""
+        ways = self._ways(coil, parts, windows)
+        bands = self.problem.bands
+        served = np.zeros((len(coil), bands), dtype=np.bool_)
+        served[ways.owner, ways.band] = True
+        alive = served.all(axis=1)
+        ways = ways.take(alive[ways.owner])
+        keys = []
+        for name in order:
+            if name == "effort":
+                keys += list(self.problem.effort[coil].T)
+            elif name == "pieces":
+                keys.append(np.full(len(coil), parts.shape[1] + 1))
+            elif name == "commonness":
+                keys.append(self.circuits.commonness(parts))
+            elif name == "price":
+                keys.append(np.minimum(self.circuits.price(parts) + self.problem.coil_price[coil], NEVER))
+            else:
+                worst, ways = _least_worst(ways, getattr(ways.columns, name), len(coil), bands)
+                keys.append(worst)
+        return np.stack(keys, axis=1), alive
+
+    def _choice(
+        self, coil: int, parts: Ints, windows: Windows, order: tuple[str, ...]
+    ) -> SharedChoice:
+        """Return the one choice of a set: equal subsets are settled by content."""
+        problem = self.problem
+        parts = parts[np.argsort(problem.part_rank[parts], kind="stable")]
+        ways = self._ways(np.array([coil]), parts[None, :], windows)
+        key: list[int | tuple[object, ...]] = []
+        for name in order:
+            if name == "effort":
+                key.append(tuple(int(e) for e in problem.effort[coil]))
+            elif name in ("pieces", "commonness", "price"):
+                figures, _ = self._keys(np.array([coil]), parts[None, :], windows, (name,))
+                key.append(int(figures[0, 0]))
+            else:
+                worst, ways = _least_worst(ways, getattr(ways.columns, name), 1, problem.bands)
+                key.append(int(worst[0]))
+        columns, closed = [], []
+        for band in range(problem.bands):
+            own = ways.take(ways.band == band)
+            row = min(
+                range(len(own.mask)), key=lambda r: (column_content(problem, own.columns, r), int(own.mask[r]))
+            )
+            columns.append(own.columns.take(np.array([row])))
+            closed.append(tuple(i for i in range(len(parts)) if int(own.mask[row]) >> i & 1))
+        members = tuple(int(part) for part in parts)
+        key.append(self._content(coil, members, tuple(columns)))
+        return SharedChoice(tuple(key), (coil,), tuple(columns), members, tuple(closed))
+
+    def _content(self, coil: int, members: tuple[int, ...], columns: tuple[Columns, ...]) -> tuple[object, ...]:
+        """Return the last step of the order: the coil, the set, then each band's subset by frequency."""
+        problem = self.problem
+        values = tuple(sorted(problem.part_value[part] for part in members))
+        ranks = tuple(int(problem.part_rank[part]) for part in members)
+        by_frequency = np.argsort(problem.frequency, kind="stable")
+        used = tuple(column_content(problem, columns[band], 0) for band in by_frequency)
+        return (int(problem.coil_rank[coil]),), values, ranks, used
+
+
+def _least_worst(ways: _Ways, figure: Ints, sets: int, bands: int) -> tuple[Ints, _Ways]:
+    """Return the worst over bands of the least figure of each set, NEVER for none, and the ways up to it."""
+    worst = np.full(sets, NEVER, dtype=np.int64)
+    if not len(figure):
+        return worst, ways
+    group = ways.owner * bands + ways.band
+    first = np.flatnonzero(np.diff(group, prepend=-1) != 0)
+    least = np.minimum.reduceat(figure, first)
+    owner = ways.owner[first]
+    start = np.flatnonzero(np.diff(owner, prepend=-1) != 0)
+    worst[owner[start]] = np.maximum.reduceat(least, start)
+    return worst, ways.take(figure <= worst[ways.owner])
+
+
+def _first_of_each(coil: Ints, keys: Ints, alive: Bools) -> list[int]:
+    """Return the rows that come first for their coil, all of those that tie."""
+    rows = np.flatnonzero(alive)
+    if not len(rows):
+        return []
+    order = rows[np.lexsort((*keys[rows].T[::-1], coil[rows]))]
+    new = np.concatenate([[True], coil[order[1:]] != coil[order[:-1]]])
+    leader = order[np.flatnonzero(new)[np.cumsum(new) - 1]]
+    return [int(row) for row in order[(keys[order] == keys[leader]).all(axis=1)]]
