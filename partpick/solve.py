@@ -105,7 +105,6 @@ def _refuse_unplanned(request: Request) -> None:
         (request.switching != "separate", f'switching = "{request.switching}"'),
         (request.coil.taps, "coil.taps = true"),
         (request.limits.alignable is not None, "limits.alignable"),
-        (request.limits.inductors > 2, "limits.inductors above 2"),
         *((True, f"the table [{name}]") for name, _ in request.extra),
     ]
     for asked, what in unplanned:

@@ -25,6 +25,7 @@ SHAPES = {
     "two coils": {"bands": 2, "inductors": 2},
     "two coils under shared limits": {"bands": 2, "inductors": 2, "coupled": True},
     "two coils for three bands": {"bands": 3, "inductors": 2},
+    "three coils for three bands": {"bands": 3, "inductors": 3},
 }
 
 SWEPT_SHAPES = {
@@ -189,8 +190,8 @@ def test_packed_bounds_fit_into_63_bits() -> None:
 
 def test_a_larger_stock_never_makes_the_first_plan_worse() -> None:
     """Lifting the stock can only add plans."""
-    for seed in range(60):
-        problem = random_problem(seed, bands=2, coupled=True)
+    fixed = [random_problem(seed, bands=2, coupled=True) for seed in range(60)]
+    for problem in [*fixed, *swept_problems(60)]:
         richer = replace(problem, part_stock=problem.part_stock * 0 + PLENTY)
         before, after = found_in(problem).choices, found_in(richer).choices
         if before:

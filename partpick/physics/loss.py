@@ -1,7 +1,7 @@
 """Loss of coils, kept apart by cause: skin effect, proximity of turns or strands, core.
 
 Skin effect from `skin.py`, the high-frequency proximity factor from `proximity.py`; here they become the
-resistance and Q of solenoids, rings, stranded wire and bought inductors.
+resistance and Q of solenoids, rings and bought inductors; stranded wire and layers stand in `stranded.py`.
 """
 
 from __future__ import annotations
@@ -11,17 +11,17 @@ from typing import Final, NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from partpick.physics.proximity import endless_proximity_factor, thin_wire_proximity
+from partpick.physics.proximity import endless_proximity_factor
 from partpick.physics.skin import skin_ratio, transverse_loss_ratio
 
 FloatArray = NDArray[np.float64]
 
 # Measured Q lies 10 to 20 % below the copper's alone: former, leads, oxide (common practice, no source).
 LARGEST_Q_SHORTFALL: Final = 0.20
-# Stranded wire: lay, broken strands and fabric leave the formula by about this (common practice, no source).
-STRANDED_RESISTANCE_SPREAD: Final = 0.25
 # Bought inductors: the Q of the data row is a working figure (common practice, no source).
 BOUGHT_Q_SPREAD: Final = 0.30
+# A material's reachable Q is a working figure too (common practice, no source).
+CORE_LOSS_SPREAD: Final = 0.30
 
 
 class CopperLoss(NamedTuple):
@@ -163,66 +163,6 @@ def ring_resistance(dc_resistance: ArrayLike, a_over_delta: ArrayLike, d_over_s:
     return solenoid_resistance(dc_resistance, a_over_delta, endless_proximity_factor(d_over_s))
 
 
-def stranded_resistance(
-    dc_resistance: ArrayLike,
-    a_over_delta: ArrayLike,
-    strands: ArrayLike,
-    strand_diameter: ArrayLike,
-    bundle_diameter: ArrayLike,
-    pitch: ArrayLike,
-    l_over_d: ArrayLike,
-    few_turns: ArrayLike = 1.0,
-) -> CopperLoss:
-    """Return the copper resistance of a single-layer coil of insulated, evenly laid strands, by cause.
-
-    Parameters
-    ----------
-    dc_resistance : float or (n,) array
-        Direct-current resistance of the winding, all strands together. [ohm]
-    a_over_delta : float or (n,) array
-        Strand radius over skin depth. [-]
-    strands : int or (n,) array
-        Number of strands. [-]
-    strand_diameter : float or (n,) array
-        Bare diameter of one strand. [m]
-    bundle_diameter : float or (n,) array
-        Diameter of the bundle, without its outer covering. [m]
-    pitch : float or (n,) array
-        Distance between turns; infinity for a straight wire. [m]
-    l_over_d : float or (n,) array
-        Winding length over mean diameter; infinity for a winding without ends. [-]
-    few_turns : float or (n,) array
-        Share of the many-turn field (`few_turns_factor`). [-]
-
-    Returns
-    -------
-    loss : CopperLoss
-        Skin part of the strands and proximity of strands and turns, each a float or (n,) array. [ohm]
-
-    Notes
-    -----
-    R_dc [H + g (n d)^2 (k/(2 D^2) + c/s^2)]: d strand, D bundle, s pitch, n strands, H and g of one strand,
-    k = 0, 1.55, 1.84, 1.92, 2 for 1, 3, 9, 27 and endlessly many strands, c of `thin_wire_proximity`. For
-    strands up to about one skin depth in radius and below some 3 MHz; at higher frequencies the capacitance
-    between strands undoes the lay. Within 25 % (`STRANDED_RESISTANCE_SPREAD`).
-
-    References
-    ----------
-    F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 2 (stranded wire), after
-    S. Butterworth, Experimental Wireless 3 (1926); from memory. Field of the coil: own sum.
-    """
-    dc = np.asarray(dc_resistance, float)
-    number = np.asarray(strands, float)
-    copper = number * np.asarray(strand_diameter, float)
-    crowding = np.interp(1.0 / number, [0.0, 1 / 27, 1 / 9, 1 / 3, 1.0], [2.0, 1.92, 1.84, 1.55, 0.0])
-    own = crowding / 2.0 / np.asarray(bundle_diameter, float) ** 2
-    coil = thin_wire_proximity(l_over_d) * np.asarray(few_turns, float) / np.asarray(pitch, float) ** 2
-    return CopperLoss(
-        skin=(dc * skin_ratio(a_over_delta))[()],
-        proximity=(dc * transverse_loss_ratio(a_over_delta) * copper**2 * (own + coil))[()],
-    )
-
-
 def combined_q(*q: ArrayLike) -> FloatArray:
     """Return the Q of losses that add up in one reactance, such as copper and core.
 
@@ -284,37 +224,41 @@ def bought_q(q: ArrayLike, q_frequency: ArrayLike | None, frequency: ArrayLike) 
     return np.where(everywhere, stated, np.where(known, scaled, np.nan))[()]
 
 
-def copper_q_bounds(
-    q: ArrayLike, loss: CopperLoss, proximity_spread: ArrayLike
+def q_bounds(
+    skin: ArrayLike, proximity: ArrayLike, core: ArrayLike, copper_spread: ArrayLike, core_spread: ArrayLike
 ) -> tuple[FloatArray, FloatArray]:
-    """Return the least and the greatest Q to expect of a coil with a computed copper Q.
+    """Return the least and the greatest Q to expect of a coil whose losses were computed by cause.
 
     Parameters
     ----------
-    q : float or (n,) array
-        Computed copper Q. [-]
-    loss : CopperLoss
-        Its resistance by cause. [ohm]
-    proximity_spread : float or (n,) array
-        Relative error of the proximity factor (`proximity_factor_spread`). [-]
+    skin : float or (n,) array
+        Loss of the wire pulled straight, as its share of 1/Q. [-]
+    proximity : float or (n,) array
+        What neighbouring turns, strands and layers add. [-]
+    core : float or (n,) array
+        Loss of the core; 0 for an air coil. [-]
+    copper_spread : float or (n,) array
+        Relative error of the copper resistance (`proximity_factor_spread`). [-]
+    core_spread : float or (n,) array
+        Relative error of the core's loss. [-]
 
     Returns
     -------
     bounds : tuple of two floats or (n,) arrays
-        Least and greatest Q. [-]
+        Least and greatest Q; nan where a loss is unknown. [-]
 
     Notes
     -----
-    An error e of Phi moves the total resistance by at most e, and never below the skin part. The lower bound
-    also has the shortfall of measured coils, 20 %.
+    An error e of the proximity factor moves the copper's resistance by at most e, and never below the skin
+    part. The lower bound also has the shortfall of measured coils, 20 % of the copper's Q. A core's Q is a
+    ceiling: its loss is at least the nominal.
 
     References
     ----------
     Common practice, no source, for the shortfall; the rest is propagation of error.
     """
-    nominal = np.asarray(q, float)
-    error = np.asarray(proximity_spread, float)
-    total = np.asarray(loss.total, float)
-    low = nominal * (1.0 - LARGEST_Q_SHORTFALL) / (1.0 + error)
-    high = nominal * total / np.maximum(total * (1.0 - error), loss.skin)
-    return low[()], high[()]
+    straight, heat = np.asarray(skin, float), np.asarray(core, float)
+    copper, error = straight + np.asarray(proximity, float), np.asarray(copper_spread, float)
+    most = copper * (1.0 + error) / (1.0 - LARGEST_Q_SHORTFALL) + heat * (1.0 + np.asarray(core_spread, float))
+    least = np.maximum(copper * (1.0 - error), straight) + heat
+    return (1.0 / most)[()], (1.0 / least)[()]

@@ -7,8 +7,9 @@ then rank before anything shown.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterator
 from dataclasses import dataclass, field
+from heapq import merge
 
 import numpy as np
 
@@ -20,6 +21,7 @@ from partpick.search.evaluate import Evaluator
 from partpick.search.figures import fine_error, whole_excess
 from partpick.search.pairs import PairBounds
 from partpick.search.problem import Problem
+from partpick.search.sets import SetBounds
 
 _LAST = np.iinfo(np.int64).max
 
@@ -107,9 +109,12 @@ def search_bands(
     bounds = Bounds(problem, source)
     evaluator = Evaluator(problem, source, monitor, bounds.leading)
     ranking = _Ranking(problem, wanted, all_windings)
+    together = _coils_together(problem, bounds, monitor)
     try:
-        for bound, coils in _in_order(problem, bounds, ranking, monitor):
+        for bound, coils in _in_order(problem, bounds, together):
             found.next_bound = bound
+            if ranking.settled(bound):
+                break
             reason = monitor.stopped()
             if reason is not None:
                 raise Stopped(reason)
@@ -123,56 +128,63 @@ def search_bands(
         found.stopped_by = stop.reason
     found.choices = ranking.rows()
     if front and found.choices and found.settled:
-        _add_front(problem, bounds, evaluator, found, monitor)
+        _add_front(problem, bounds, together, evaluator, found, monitor)
+    if not all(sets.complete for sets in together):
+        _own_up(problem, bounds, found)
     return found
 
 
+def _own_up(problem: Problem, bounds: Bounds, found: Found) -> None:
+    """Say that some sets of coils were not looked at, and how few pieces any of them could need."""
+    found.settled = False
+    found.stopped_by = found.stopped_by or "work limit"
+    least = int(bounds.fewest.min(axis=0).sum()) + 1
+    found.next_bound = min(found.next_bound, least << BELOW_PIECES)
+
+
+def _coils_together(problem: Problem, bounds: Bounds, monitor: Monitor) -> list[PairBounds | SetBounds]:
+    """Return the pairs and larger sets of coils that may share the bands."""
+    most = min(problem.inductors, problem.bands)
+    pairs: list[PairBounds | SetBounds] = [PairBounds(problem, bounds, monitor)] if most >= 2 else []
+    return pairs + [SetBounds(problem, bounds, size, monitor) for size in range(3, most + 1)]
+
+
 def _in_order(
-    problem: Problem, bounds: Bounds, ranking: _Ranking, monitor: Monitor
+    problem: Problem, bounds: Bounds, together: list[PairBounds | SetBounds]
 ) -> Iterator[tuple[int, tuple[int, ...]]]:
-    """Yield coils and pairs of coils by rising bound until the ranking is settled."""
+    """Yield single coils and sets of coils by rising bound."""
     single = bounds.alone(problem.by)
     order = np.argsort(single, kind="stable")
     singles = ((int(single[j]), (int(j),)) for j in order if single[j] < _LAST)
-    streams: list[Iterable[tuple[int, tuple[int, ...]]]] = [singles]
-    if problem.inductors >= 2 and problem.bands >= 2:
-        streams.append(PairBounds(problem, bounds, monitor).in_order())
-    heads: list[tuple[tuple[int, tuple[int, ...]], Iterator[tuple[int, tuple[int, ...]]]]] = []
-    for stream in streams:
-        iterator = iter(stream)
-        head = next(iterator, None)
-        if head is not None:
-            heads.append((head, iterator))
-    while heads:
-        place = min(range(len(heads)), key=lambda i: heads[i][0][0])
-        (bound, coils), iterator = heads[place]
-        if ranking.settled(bound):
-            return
-        yield bound, coils
-        following = next(iterator, None)
-        if following is None:
-            heads.pop(place)
-        else:
-            heads[place] = (following, iterator)
+    return merge(singles, *(sets.in_order() for sets in together), key=_bound_of)
+
+
+def _bound_of(entry: tuple[float, tuple[int, ...]]) -> float:
+    return entry[0]
 
 
 def _add_front(
-    problem: Problem, bounds: Bounds, evaluator: Evaluator, found: Found, monitor: Monitor
+    problem: Problem,
+    bounds: Bounds,
+    together: list[PairBounds | SetBounds],
+    evaluator: Evaluator,
+    found: Found,
+    monitor: Monitor,
 ) -> None:
     """Add the least worst error for each number of pieces, where it falls by more than 1e-9."""
     try:
-        if problem.inductors >= 2 and problem.bands >= 2:
-            pairs = PairBounds(problem, bounds, monitor)
-        else:
-            pairs = None
-        for choice in _front(problem, bounds, pairs, evaluator, monitor):
+        for choice in _front(problem, bounds, together, evaluator, monitor):
             found.front.append(choice)
     except Stopped as stop:
         found.stopped_by = stop.reason
 
 
 def _front(
-    problem: Problem, bounds: Bounds, pairs: PairBounds | None, evaluator: Evaluator, monitor: Monitor
+    problem: Problem,
+    bounds: Bounds,
+    together: list[PairBounds | SetBounds],
+    evaluator: Evaluator,
+    monitor: Monitor,
 ) -> Iterator[Choice]:
     last = np.inf
     cap = 1 + problem.bands * problem.least_parts
@@ -181,7 +193,7 @@ def _front(
     least = _least_possible(bounds, problem)
     while cap <= most and last > least + 1e-9:
         monitor.report(f"the least error with {cap} pieces")
-        choice = _least_error(problem, bounds, pairs, evaluator, cap, monitor, last - 1e-9)
+        choice = _least_error(problem, bounds, together, evaluator, cap, monitor, last - 1e-9)
         if choice is not None:
             error = leading_figure(problem, choice)
             if error < last - 1e-9:
@@ -201,7 +213,7 @@ def _least_possible(bounds: Bounds, problem: Problem) -> float:
 def _least_error(
     problem: Problem,
     bounds: Bounds,
-    pairs: PairBounds | None,
+    together: list[PairBounds | SetBounds],
     evaluator: Evaluator,
     cap: int,
     monitor: Monitor,
@@ -209,11 +221,11 @@ def _least_error(
 ) -> Choice | None:
     """Return the choice of least worst error with at most `cap` pieces, if that is below `below`."""
     best: Choice | None = None
-    for error, coils in _by_error(bounds, pairs, cap, below):
+    for error, coils in _by_error(bounds, together, cap, below):
         reason = monitor.stopped()
         if reason is not None:
             raise Stopped(reason)
-        choice = evaluator.least_error(coils, cap, error)
+        choice = evaluator.least_error(coils, cap)
         if choice is not None and (best is None or choice.key < best.key):
             best = choice
         # Equal errors stay in the order in which they come: the front promises the least error alone.
@@ -229,25 +241,14 @@ def _fine(problem: Problem, leading: float) -> int:
 
 
 def _by_error(
-    bounds: Bounds, pairs: PairBounds | None, cap: int, below: float
+    bounds: Bounds, together: list[PairBounds | SetBounds], cap: int, below: float
 ) -> Iterator[tuple[float, tuple[int, ...]]]:
-    """Yield coils and pairs by rising least error (or excess) with at most `cap` pieces."""
+    """Yield coils and sets of coils by rising least error (or excess) with at most `cap` pieces."""
     alone = bounds.staircase(cap - 1)
     order = np.argsort(alone, kind="stable")
-    singles = iter([(float(alone[j]), (int(j),)) for j in order[: np.count_nonzero(alone < below)]])
-    if pairs is None:
-        yield from singles
-        return
-    both = pairs.by_error(cap - 2, below)
-    one, two = next(singles, None), next(both, None)
-    while one is not None or two is not None:
-        if two is None or (one is not None and one[0] <= two[0]):
-            assert one is not None
-            yield one
-            one = next(singles, None)
-        else:
-            yield two
-            two = next(both, None)
+    singles = [(float(alone[j]), (int(j),)) for j in order[: np.count_nonzero(alone < below)]]
+    sets = (group.by_error(cap - group.size, below) for group in together)
+    return merge(singles, *sets, key=_bound_of)
 
 
 def pieces_of_bound(bound: int, by: str) -> int | None:

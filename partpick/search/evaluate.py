@@ -15,8 +15,10 @@ from partpick.search.choose import (
     inside_shared_limits,
 )
 from partpick.search.columns import ColumnSource
-from partpick.search.figures import Columns, fine_error, whole_excess
+from partpick.search.figures import Columns, fine_error
 from partpick.search.problem import NEVER, Floats, Ints, Problem
+
+NO_FIGURE = 1 << 62
 
 
 class Evaluator:
@@ -31,6 +33,8 @@ class Evaluator:
         self.least = least  # (J, B) of each number of parts: a bound of the error (or excess), if known
         self.leading = "fine_excess" if problem.led_by_excess else "fine_error"
         self.leading_place = ORDERS["error"].index(self.leading)
+        self.least_possible = 0 if problem.led_by_excess else int(fine_error(np.zeros(1))[0])
+        self.reached: dict[tuple[int, int], list[int]] = {}
 
     def best(self, coils: tuple[int, ...], by: str) -> Choice | None:
         """Return the first choice for these coils, each used at least once, or None.
@@ -45,76 +49,83 @@ class Evaluator:
         if by == "build":
             return self._by_pieces(coils)
         if by == "error":
-            at_bound = None
-            if self.least is not None and not self.problem.mixed:  # a mixed plan has excess before pieces
-                at_bound = self._at_bound(coils, _least_worst(self.least, coils))
-            return at_bound or self._by_error(coils)
+            return self._by_error(coils)
         return self._by_price(coils)
 
-    def least_error(self, coils: tuple[int, ...], pieces: int, least: float = 0.0) -> Choice | None:
-        """Return the choice of least worst error (or excess) with at most `pieces` pieces in all, or None.
-
-        Parameters
-        ----------
-        coils : tuple of int
-            Each is used at least once. [-]
-        pieces : int
-            Capacitors and coils, at most. [-]
-        least : float
-            A proven lower bound of the worst error or excess; where a choice reaches it, no more
-            columns are looked at. [-]
-        """
+    def least_error(self, coils: tuple[int, ...], pieces: int) -> Choice | None:
+        """Return the choice of least worst error (or excess) with at most `pieces` pieces in all, or None."""
         if not self._supports_in_stock(coils):
             return None
         capped = min(self.problem.parts_limit, pieces - len(coils))
-        problem = replace(self.problem, parts_limit=capped)
-        inner = Evaluator(problem, self.source, self.monitor, self.least)
-        return inner._at_bound(coils, least) or inner._by_error(coils)
+        inner = Evaluator(replace(self.problem, parts_limit=capped), self.source, self.monitor, self.least)
+        inner.reached = self.reached
+        # at the least error no fewer pieces will do, so a mixed plan too has its parts before its excess
+        return inner._by_error(coils, fewest_parts_first=True)
 
-    def _at_bound(self, coils: tuple[int, ...], least: float) -> Choice | None:
-        """Return the choice with this least error or excess and the fewest parts, None where it is missed."""
-        figure = np.array([least])
-        whole = int((whole_excess(figure, 1e-12) if self.problem.led_by_excess else fine_error(figure))[0])
-        lead = max(least, 1e-9) + 5e-12
-        known: dict[tuple[int, int], Columns] = {}
-        for limit in (whole - 1, whole, whole + 1):  # the bound's own rounding
-            bands: list[Columns] = []
-            for band in range(self.problem.bands):
-                columns = self._fewest_inside(coils, band, lead, limit, known)
-                if columns is None:
-                    break
-                bands.append(columns)
-            if len(bands) < self.problem.bands:
-                continue
-            if sum(int(columns.pieces.min()) for columns in bands) > self.problem.parts_limit:
-                continue
-            choice = first_without_shared_limits(self.problem, bands, coils, ORDERS["error"])
-            if choice is None or choice.key[self.leading_place] != limit:
-                return None  # a coil would be left out
-            return choice if inside_shared_limits(self.problem, choice) else None
-        return None
+    def _figure(self, coils: tuple[int, ...], band: int, parts: int) -> int:
+        """Return the least leading figure of the coils with at most `parts` parts inside the band's limits."""
+        least = NO_FIGURE
+        for coil in coils:
+            known = self.reached.setdefault((coil, band), [])
+            while len(known) <= parts:
+                best = known[-1] if known else NO_FIGURE
+                if len(known) >= self.problem.least_parts and best > self.least_possible:
+                    best = min(best, self._least_figure(coil, band, len(known), best))
+                known.append(best)
+            least = min(least, known[parts])
+        return least
 
-    def _fewest_inside(
-        self,
-        coils: tuple[int, ...],
-        band: int,
-        lead: float,
-        limit: int,
-        known: dict[tuple[int, int], Columns],
-    ) -> Columns | None:
-        """Return a band's columns of the fewest parts with a leading figure up to `limit`, at most `lead`."""
-        for parts in range(self.problem.least_parts, self.problem.most_parts + 1):
-            able = [c for c in coils if self.least is None or self.least[parts][c, band] <= lead]
-            if not able:
-                continue
-            if (band, parts) not in known:
-                found = [self.source.columns(coil, band, parts, lead) for coil in able]
-                known[band, parts] = Columns.join(found)
-            columns = known[band, parts]
-            columns = columns.take(getattr(columns, self.leading) <= limit)
+    def _least_figure(self, coil: int, band: int, parts: int, best: int) -> int:
+        """Return the least leading figure with exactly `parts` parts, NO_FIGURE where it is not below `best`."""
+        bound = 0.0 if self.least is None else float(self.least[parts][coil, band])
+        if not np.isfinite(bound):
+            return NO_FIGURE
+        for beyond in (1e-6, 1e-4, 1e-2, 1.0, None):
+            lead = None if beyond is None else bound * (1 + beyond) + 2e-9
+            columns = self.source.columns(coil, band, parts, lead)
             if len(columns):
-                return columns
-        return None
+                return int(getattr(columns, self.leading).min())
+            if lead is not None and lead * 1e12 > best:
+                break
+        return NO_FIGURE
+
+    def _least_worst(self, coils: tuple[int, ...]) -> tuple[int, list[int]] | None:
+        """Return the least worst figure inside the limit on parts, and the fewest parts of each band for it.
+
+        The other limits that the bands share are left aside; None where not even then a plan exists.
+        """
+        most = self.problem.most_parts
+        levels: list[int] = []
+        for band in range(self.problem.bands):
+            served = (k for k in range(most + 1) if self._figure(coils, band, k) < NO_FIGURE)
+            fewest = next(served, None)
+            if fewest is None:
+                return None
+            levels.append(fewest)
+        best: tuple[int, list[int]] | None = None
+        while sum(levels) <= self.problem.parts_limit:
+            figures = [self._figure(coils, band, parts) for band, parts in enumerate(levels)]
+            worst = max(figures)
+            best = worst, list(levels)
+            band = figures.index(worst)
+            better = (k for k in range(levels[band] + 1, most + 1) if self._figure(coils, band, k) < worst)
+            parts = next(better, None)
+            if parts is None:
+                break
+            levels[band] = parts
+        return best
+
+    def _at_least_worst(self, coils: tuple[int, ...], worst: int, parts: list[int]) -> Choice | None:
+        """Return the choice with this worst figure and these parts a band; None if a limit is in its way."""
+        bands = []
+        for band, count in enumerate(parts):
+            found = [self.source.columns(coil, band, count, (worst + 1) * 1e-12) for coil in coils]
+            columns = Columns.join(found)
+            bands.append(columns.take(getattr(columns, self.leading) <= worst))
+        choice = first_without_shared_limits(self.problem, bands, coils, ORDERS["error"])
+        if choice is None or choice.key[self.leading_place] != worst:
+            return None  # a coil would be left out
+        return choice if inside_shared_limits(self.problem, choice) else None
 
     def _supports_in_stock(self, coils: tuple[int, ...]) -> bool:
         problem = self.problem
@@ -205,12 +216,17 @@ class Evaluator:
             for band in range(self.problem.bands)
         ]
 
-    def _by_error(self, coils: tuple[int, ...]) -> Choice | None:
-        """Least error first: columns up to a trial error, which grows until a choice lies inside it."""
-        trial = 1e-9
-        if self.least is not None:
-            least = _least_worst(self.least, coils)
-            trial = max(trial, least * (1 + 1e-9) + 2e-12)
+    def _by_error(self, coils: tuple[int, ...], *, fewest_parts_first: bool = False) -> Choice | None:
+        """Least error first; where a shared limit is in the way, all columns up to a trial error that grows."""
+        least = self._least_worst(coils)
+        if least is None:
+            return None
+        worst, parts = least
+        if fewest_parts_first or not self.problem.mixed:
+            choice = self._at_least_worst(coils, worst, parts)
+            if choice is not None:
+                return choice
+        trial = (worst + 1) * 1e-12
         limit = self._largest()
         while trial < limit:
             choice = self._inside(coils, trial)
@@ -262,11 +278,6 @@ class Evaluator:
         error = max(int(columns.fine_error[0]) for columns in choice.columns)
         excess = max(int(columns.fine_excess[0]) for columns in choice.columns)
         return replace(choice, key=(error, excess, *choice.key))
-
-
-def _least_worst(levels: list[Floats], coils: tuple[int, ...]) -> float:
-    """Return the worst band's least error (or excess) with any of the coils and any number of parts. [-]"""
-    return float(np.array([level[list(coils)].min(axis=0) for level in levels]).min(axis=0).max())
 
 
 def _fewest(bands: list[Columns], figures: list[Ints], most: int) -> int:

@@ -27,6 +27,8 @@ class PairBounds:
         self.problem = problem
         self.bounds = bounds
         self.monitor = monitor
+        self.size = 2
+        self.complete = True
         self.useful = np.flatnonzero(bounds.possible.any(axis=1))
 
     def in_order(self) -> Iterator[tuple[int, tuple[int, ...]]]:

@@ -191,7 +191,7 @@ class SharedEngine:
         """Return the first choice by error of each coil, given its least fine error."""
         search, figures = self._all
         found: dict[int, SharedChoice] = {}
-        error = np.minimum(fine, NEVER) * 1e-12
+        error = (np.minimum(fine, NEVER) + 0.5) * 1e-12  # rounding
         left = coils[fine[coils] < NEVER]
         for size in range(int(self.least_pieces[coils].min(initial=0)), most + 1):
             if not len(left):

@@ -21,6 +21,7 @@ from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
 from partpick.search.sum_tables import SumTables, TooMany
 
 CHUNK = 1 << 19  # subset sums at one time
+LARGEST_SET = 20  # whose subsets are still written out
 WORK_LIMIT = 400_000_000  # subset sums of one request
 
 
@@ -105,6 +106,7 @@ class SetSearch:
         price : (J,) array
             The most that a set may cost, NEVER: no limit. [hundredths]
         """
+        coils = coils[price[coils] >= 0]
         stack: list[tuple[int, Sets]] = [(0, Sets(coils, np.empty((len(coils), 0), dtype=np.int64)))]
         while stack:
             depth, sets = stack.pop()
@@ -114,6 +116,8 @@ class SetSearch:
             if depth == len(self.order):
                 yield sets
                 continue
+            if sets.letters.shape[1] > LARGEST_SET:
+                raise Stopped("work limit")
             most_rows = max(1, CHUNK >> sets.letters.shape[1])
             if len(sets) > most_rows:
                 stack.append((depth, sets.take(slice(most_rows, None))))

@@ -1,0 +1,110 @@
+"""What each part does to each band, and the one part worth having closer."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from partpick.built.spread import slopes
+from partpick.built.variation import CAPACITOR, COIL, Variation
+
+BETTER = 0.01  # tolerance of a capacitor that is bought better or measured, of a coil measured after winding
+
+
+@dataclass(frozen=True, kw_only=True)
+class Contribution:
+    """One source on one band."""
+
+    reference: str
+    kind: str
+    band: str
+    tolerance: float  # of the source, a fraction
+    hertz_per_percent: float  # shift for one per cent more of it
+    largest_shift: float  # Hz, size, at the end of its tolerance
+    share_of_variance: float  # of the band's spread
+    drift: float | None  # 1/K of the frequency; None: its tempco is unknown
+    drift_spread: float  # 1/K, size
+
+
+@dataclass(frozen=True, kw_only=True)
+class WorthImproving:
+    """The part whose closer tolerance narrows the bands most."""
+
+    reference: str
+    label: str
+    kind: str
+    tolerance: float  # now
+    better: float  # then
+    band: str  # where it matters most
+    deviation: float  # standard deviation of that band now, a fraction of f
+    deviation_then: float
+
+
+def sensitivity(variation: Variation, deviation_per_size: float) -> tuple[Contribution, ...]:
+    """Return what every source contributes to every fixed band that it acts on, bands in plan order.
+
+    Parameters
+    ----------
+    variation : Variation
+        What varies.
+    deviation_per_size : float
+        Standard deviation over tolerance (`variation.deviation_of`); cancels in the shares. [-]
+    """
+    found = []
+    for tank in variation.tanks:
+        if tank is None:
+            continue
+        slope = slopes(variation, tank)
+        variance = (slope * variation.sizes * deviation_per_size) ** 2
+        whole = float(variance.sum()) or 1.0
+        for place in np.flatnonzero(slope):
+            source = variation.sources[int(place)]
+            tempco = tank.coil_tempco if source.kind == COIL else source.tempco
+            known = tempco is not None and math.isfinite(tempco)
+            found.append(
+                Contribution(
+                    reference=source.reference,
+                    kind=source.kind,
+                    band=tank.name,
+                    tolerance=source.size,
+                    hertz_per_percent=float(slope[place]) * tank.frequency * 0.01,
+                    largest_shift=abs(float(slope[place])) * tank.frequency * source.size,
+                    share_of_variance=float(variance[place]) / whole,
+                    drift=float(slope[place]) * tempco if known and tempco is not None else None,
+                    drift_spread=abs(float(slope[place])) * source.tempco_size,
+                )
+            )
+    return tuple(found)
+
+
+def worth_improving(variation: Variation, deviation_per_size: float) -> WorthImproving | None:
+    """Return the part that narrows the bands most when it is at 1 %; None where every part is.
+
+    The gain is the sum over bands of the variance that goes, each as a fraction of the band's own.
+    """
+    tanks = [tank for tank in variation.tanks if tank is not None]
+    if not tanks:
+        return None
+    variance = np.array([(slopes(variation, tank) * variation.sizes * deviation_per_size) ** 2 for tank in tanks])
+    whole = variance.sum(axis=1, keepdims=True)
+    left = np.minimum(BETTER / np.maximum(variation.sizes, BETTER), 1.0) ** 2
+    part = np.array([source.kind in (COIL, CAPACITOR) for source in variation.sources])
+    gain = np.where(part, variance * (1.0 - left), 0.0)
+    relative = (gain / np.where(whole > 0.0, whole, 1.0)).sum(axis=0)
+    best = int(relative.argmax())
+    if relative[best] <= 0.0:
+        return None
+    at = int(gain[:, best].argmax())
+    source = variation.sources[best]
+    return WorthImproving(
+        reference=source.reference,
+        label=source.label,
+        kind=source.kind,
+        tolerance=source.size,
+        better=BETTER,
+        band=tanks[at].name,
+        deviation=float(np.sqrt(whole[at, 0])),
+        deviation_then=float(np.sqrt(whole[at, 0] - gain[at, best])),
+    )
