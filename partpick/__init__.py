@@ -9,9 +9,10 @@ from importlib import import_module
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
+    from partpick import frames
     from partpick.catalogue import load_catalogue
     from partpick.errors import PartpickError
-    from partpick.planfile import load_plan
+    from partpick.planfile import load_plan, request_from_tables
     from partpick.request import Request
     from partpick.result import Result
     from partpick.solve import solve
@@ -23,8 +24,10 @@ __all__ = [
     "Request",
     "Result",
     "__version__",
+    "frames",
     "load_catalogue",
     "load_plan",
+    "request_from_tables",
     "solve",
 ]
 
@@ -34,6 +37,7 @@ _HOMES = {
     "Result": "partpick.result",
     "load_catalogue": "partpick.catalogue",
     "load_plan": "partpick.planfile",
+    "request_from_tables": "partpick.planfile",
     "solve": "partpick.solve",
 }
 
@@ -41,6 +45,8 @@ _HOMES = {
 def __getattr__(name: str) -> object:
     if name == "__version__":
         return _version()
+    if name == "frames":
+        return import_module("partpick.frames")
     if name not in _HOMES:
         raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
     value = getattr(import_module(_HOMES[name]), name)

@@ -20,6 +20,7 @@ from partpick.quantities import format_quantity
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 from partpick.search.networks import PARALLEL, SHUNTED
+from partpick.tank_figures import load_note, tank_bandwidth, tank_figures
 from partpick.tuning import element_ends
 
 AGREEMENT = 1e-9  # of the frequency, or of the excess, between search and recheck
@@ -214,21 +215,21 @@ def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFig
         capacitance=None if swept else tank.total(),
         network=None if swept else tank.across(),
         stray=band.stray,
-        self_capacitance=float(tank.coils.self_capacitance[tank.coil]),
+        self_capacitance=tank.self_capacitance,
         trimmer=tank.trimmer if band.trimmer else None,
         coil=reference,
-        tap_turns=None,
+        tap_turns=tank.tap_turns,
         contacts=(f"S{tank.index + 1}",) if len(tank.request.bands) > 1 else (),
         capacitors=names,
         connection=_swept_connection(names, network) if swept else connection_text(names, network.shape),
         reactance=2 * math.pi * band.highest * tank.inductance(),
         q=q,
-        bandwidth=None if q is None else (band.highest if swept else resonance) / q,
+        bandwidth=tank_bandwidth(tank, band.highest if swept else resonance),
         drift=drift,
         drift_spread=spread,
         hertz_per_farad=-resonance / (2 * tank.total()),
         coil_q=tank.coil_q(),
-        extra=_coverage(tank, resonance) if swept else {},
+        extra={**(_coverage(tank, resonance) if swept else {}), **tank_figures(tank, resonance)},
     )
 
 
@@ -282,6 +283,8 @@ def _warnings(
     for index, figures in enumerate(bands):
         if figures.q is None:
             found[f"{figures.name}: Q is unknown, a loss is not stated at this frequency"] = None
+        if said := load_note(figures.extra):
+            found[f"{figures.name}: {said}"] = None
         for note in coils.band_notes(design.coils[index], index):
             found[f"{figures.name}: {note}"] = None
     return tuple(found)

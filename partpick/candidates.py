@@ -14,7 +14,10 @@ from numpy.typing import NDArray
 from partpick.forms.block import TAIL, Block, Support
 from partpick.forms.bought import bought_block
 from partpick.forms.measured import measured_block
+from partpick.forms.multilayer import multilayer_block
+from partpick.forms.pot import pot_block
 from partpick.forms.ring import ring_block
+from partpick.forms.rod import rod_block
 from partpick.forms.solenoid import solenoid_block
 from partpick.parts import Catalogue
 from partpick.physics.self_capacitance import self_resonance_frequency
@@ -28,6 +31,9 @@ Ints = NDArray[np.int64]
 FORMS = {
     "solenoid": solenoid_block,
     "ring core": ring_block,
+    "pot core": pot_block,
+    "rod core": rod_block,
+    "multilayer": multilayer_block,
     "bought": bought_block,
 }
 LIMIT_ROUNDING = 1e-9  # a coil exactly on a limit is inside it
@@ -49,6 +55,8 @@ class Coils:
     q_low: Floats  # (J, B)
     self_capacitance: Floats  # (J,) F
     spread: Floats  # (J,) of the inductance, fraction: tolerances and model, uniform
+    q_spread: Floats  # (J, 2) fraction below and above, nan: unknown
+    self_capacitance_spread: Floats  # (J, 2) fraction below and above, nan: unknown
     tempco: Floats  # (J, B) 1/K, nan: unknown
     tempco_spread: Floats  # (J,) 1/K
     price: Floats  # (J,) nan: unknown
@@ -74,9 +82,18 @@ class Coils:
         support = self.supports[int(self.support[coil])]
         low, high = support.frequency_low, support.frequency_high
         frequency = float(self.frequency[band])
+        block, row = self.locate(coil)
+        said = block.cautions(row, frequency)
         if (low is not None and frequency < low) or (high is not None and frequency > high):
-            return (f"{support.name} is outside its useful range, {_range_words(low, high)}: Q unknown",)
-        return ()
+            said = (f"{support.name} is outside its useful range, {_range_words(low, high)}: Q unknown", *said)
+        return said
+
+    def loss_by_cause(self, coil: int, band: int) -> dict[str, float | None]:
+        """Return what each cause in the coil takes, as its share of 1/Q; None where unknown."""
+        block, row = self.locate(coil)
+        causes = {"skin": block.losses.skin, "proximity": block.losses.proximity, "core": block.losses.core}
+        # No figure of a former's own loss is at hand; its share is inside the spread of Q.
+        return {**{name: _known(loss[row, band]) for name, loss in causes.items()}, "former": None}
 
     def listed(self, inductance: float | None, *, low_frequency: bool) -> Ints:
         """Return the coils in play by content, or nearest to an inductance first."""
@@ -86,6 +103,22 @@ class Coils:
         values = self.inductance_dc if low_frequency else self.inductance[:, 0]
         distance = np.abs(np.log(values[inside] / inductance))
         return inside[np.lexsort((self.rank[inside], np.rint(distance * 1e12)))]
+
+    def section_row(self, coil: int, tap_turns: int | None) -> int:
+        """Return the coil of as many turns as are in circuit: the coil itself, or that of its tapped section."""
+        return coil if tap_turns is None else coil - (int(self.turns[coil]) - tap_turns)
+
+    def section_self_capacitance(self, coil: Ints | int, tap_turns: Ints | int) -> Floats:
+        """Return the self-capacitance that acts across a section from the earthed end, the rest open. [F]
+
+        The idle turns swing with (L_s + M)/L_s times the section's voltage, so the whole coil's
+        self-capacitance acts with the square of that across the section; M by the three inductances.
+        """
+        dc, turns = self.inductance_dc, self.turns[coil]
+        section, rest = dc[coil - (turns - tap_turns)], dc[coil - tap_turns]
+        mutual = (dc[coil] - section - rest) / 2.0
+        whole: Floats = self.self_capacitance[coil] * (1.0 + mutual / section) ** 2
+        return whole
 
     def at_band(self, coil: int, band: int) -> dict[str, float | None]:
         """Return Q and series resistance at a band, None where unknown."""
@@ -154,6 +187,8 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
         q_low=q[:, low],
         self_capacitance=column("self_capacitance").astype(float),
         spread=column("spread").astype(float),
+        q_spread=column("q_spread", 2).astype(float),
+        self_capacitance_spread=column("self_capacitance_spread", 2).astype(float),
         tempco=column("tempco", evaluated).astype(float)[:, high],
         tempco_spread=column("tempco_spread").astype(float),
         price=column("price").astype(float),
@@ -193,11 +228,15 @@ def _place(names: list[str]) -> Ints:
 
 def _in_play(request: Request, coils: Coils) -> NDArray[np.bool_]:
     """Return which coils are inside every limit on coils alone, (J, B)."""
+    inside = inside_as_wound(request, coils)
+    every = np.arange(len(coils))
+    return inside & inside_in_circuit(request, coils, every, every, coils.self_capacitance)
+
+
+def inside_as_wound(request: Request, coils: Coils) -> NDArray[np.bool_]:
+    """Return which coils are inside the limits on the winding itself: proportions, and form at each band, (J, B)."""
     rules = request.coil
-    inside = np.isfinite(coils.inductance) & (coils.inductance > 0)
-    inside &= _own_resonance_high_enough(rules, coils, request)
-    inside &= _within(coils.inductance, rules.inductance)
-    inside &= _within(2 * np.pi * coils.frequency[None, :] * coils.inductance, rules.reactance)
+    inside = np.ones(coils.inductance.shape, dtype=np.bool_)
     start = 0
     for block in coils.blocks:
         rows = slice(start, start + len(block.turns))
@@ -207,9 +246,39 @@ def _in_play(request: Request, coils: Coils) -> NDArray[np.bool_]:
         for band_index, band in enumerate(request.bands):
             if band.forms is not None and block.form not in (*band.forms, "measured"):
                 inside[rows, band_index] = False
+    return inside
+
+
+def inside_in_circuit(
+    request: Request, coils: Coils, whole: Ints, row: Ints, self_capacitance: Floats
+) -> NDArray[np.bool_]:
+    """Return which coils, or sections of them, are inside the limits on what is in circuit, (v, B).
+
+    Parameters
+    ----------
+    request : Request
+        Its coil rules and bands.
+    coils : Coils
+        Every coil.
+    whole : (v,) array of int
+        The coil. [-]
+    row : (v,) array of int
+        The coil of as many turns as are in circuit: the coil itself, or that of a section. [-]
+    self_capacitance : (v,) array
+        Across what is in circuit. [F]
+    """
+    rules, inductance = request.coil, coils.inductance[row]
+    inside = np.isfinite(inductance) & (inductance > 0)
+    inside &= _within(inductance, rules.inductance)
+    inside &= _within(2 * np.pi * coils.frequency[None, :] * inductance, rules.reactance)
+    if rules.self_resonance is not None:
+        with np.errstate(divide="ignore"):
+            own = self_resonance_frequency(inductance, self_capacitance[:, None])
+        highest = np.array([band.highest for band in request.bands])
+        inside &= own >= _resonance_times(rules, coils)[whole, None] * highest[None, :] * (1 - LIMIT_ROUNDING)
     for band_index, band in enumerate(request.bands):
         if band.q:
-            inside[:, band_index] &= coils.q[:, band_index] >= band.q * (1 - LIMIT_ROUNDING)
+            inside[:, band_index] &= coils.q[row, band_index] >= band.q * (1 - LIMIT_ROUNDING)
     return inside
 
 
@@ -220,18 +289,13 @@ def _within(values: Floats, limits: tuple[float, float] | None) -> NDArray[np.bo
     return (values >= low * (1 - LIMIT_ROUNDING)) & (values <= high * (1 + LIMIT_ROUNDING))
 
 
-def _own_resonance_high_enough(rules: CoilRules, coils: Coils, request: Request) -> NDArray[np.bool_]:
-    if rules.self_resonance is None:
-        return np.ones(coils.inductance.shape, dtype=np.bool_)
-    with np.errstate(divide="ignore"):
-        own = self_resonance_frequency(coils.inductance, coils.self_capacitance[:, None])
-    times = np.full(len(coils), rules.self_resonance)
+def _resonance_times(rules: CoilRules, coils: Coils) -> Floats:
+    """Return how many times a band's highest frequency each coil's own resonance must be, (J,)."""
+    times = np.full(len(coils), rules.self_resonance, dtype=float)
     if not rules.self_resonance_stated:
         eased = np.concatenate([np.full(len(b), b.eased_resonance) for b in coils.blocks] or [np.empty(0)])
         times = np.where(eased > 0, 2.0, times)
-    highest = np.array([band.highest for band in request.bands])
-    enough: NDArray[np.bool_] = own >= times[:, None] * highest[None, :] * (1 - LIMIT_ROUNDING)
-    return enough
+    return times
 
 
 def coil_figures(coils: Coils, coil: int, band: int) -> CoilFigures:
@@ -256,7 +320,12 @@ def coil_figures(coils: Coils, coil: int, band: int) -> CoilFigures:
         self_capacitance=_known(coils.self_capacitance[coil]),
         pitch=_positive(block.pitch[row]),
         mean_diameter=_positive(block.mean_diameter[row]),
-        extra={"spread": float(coils.spread[coil])},
+        extra={
+            "inductance_spread": float(coils.spread[coil]),
+            "q_spread": _below_and_above(coils.q_spread[coil]),
+            "self_capacitance_spread": _below_and_above(coils.self_capacitance_spread[coil]),
+            "adjust": support.adjust,
+        },
     )
 
 
@@ -283,6 +352,10 @@ def coil_part_line(coils: Coils, coil: int, figures: CoilFigures, bands: tuple[s
         wire_length=figures.wire_length if wire else None,
         wire_price_per_m=wire.price_per_m if wire else None,
     )
+
+
+def _below_and_above(spread: Floats) -> dict[str, float | None]:
+    return {"below": _known(spread[0]), "above": _known(spread[1])}
 
 
 def _known(value: float) -> float | None:

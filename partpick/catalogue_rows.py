@@ -56,6 +56,7 @@ FORMER_SIZES = (("name", "diameter", "winding_length"),)
 CORE_SIZES = (("name", "outer_diameter"),)
 SUPPORTS = ("tube", "ribbed", "mandrel")
 SHAPES = ("ring", "pot", "rod")
+_HEIGHT_OF = {"pot": "of both halves together", "rod": "its length"}
 
 Named = TypeVar("Named", Wire, Former, Core)
 
@@ -257,6 +258,8 @@ def _core(row: Row) -> Core:
     if permeability is not None and permeability < 1:
         raise row.wrong("permeability", "below 1, which no core has; 1 is a plastic ring")
     al = row.read("al", parse_inductance)
+    if al is None and shape == "pot":
+        raise row.wrong("al", "empty, but needed for a pot")
     if al is None and permeability is None:
         raise row.wrong("permeability", "empty, and al as well; one of them is needed")
     low, high = row.read("frequency_low", parse_frequency), row.read("frequency_high", parse_frequency)
@@ -301,6 +304,8 @@ def _core_sizes(row: Row, shape: str) -> tuple[float, float | None, float | None
     inner, height = read("inner_diameter", parse_length), read("height", parse_length)
     if inner is not None and inner >= outer:
         raise row.wrong("inner_diameter", "the hole is not smaller than the core (outer_diameter)")
+    if shape != "ring" and height is None:
+        raise row.wrong("height", f"empty, but needed for a {shape} ({_HEIGHT_OF[shape]})")
     return outer, inner, height
 
 

@@ -39,6 +39,7 @@ class Design:
 
     coils: tuple[int, ...]  # (B,) index into Coils
     networks: tuple[Network, ...]  # (B,)
+    taps: tuple[int | None, ...] = ()  # (B,) turns of the section in use, None: the whole coil; (): no taps
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -62,6 +63,23 @@ class Tank:
         return self.design.coils[self.index]
 
     @property
+    def tap_turns(self) -> int | None:
+        """Turns of the section in use, None for the whole coil."""
+        return self.design.taps[self.index] if self.design.taps else None
+
+    @property
+    def row(self) -> int:
+        """Index of the coil of as many turns as are in circuit."""
+        return self.coils.section_row(self.coil, self.tap_turns)
+
+    @property
+    def self_capacitance(self) -> float:
+        """Across what is in circuit. [F]"""
+        if self.tap_turns is None:
+            return float(self.coils.self_capacitance[self.coil])
+        return float(self.coils.section_self_capacitance(self.coil, self.tap_turns))
+
+    @property
     def network(self) -> Network:
         """Its capacitors."""
         return self.design.networks[self.index]
@@ -69,7 +87,7 @@ class Tank:
     @property
     def strays(self) -> float:
         """Wiring and self-capacitance. [F]"""
-        return self.band.stray + float(self.coils.self_capacitance[self.coil])
+        return self.band.stray + self.self_capacitance
 
     @property
     def trimmer(self) -> float:
@@ -79,7 +97,7 @@ class Tank:
     def inductance(self, *, low_end: bool = False) -> float:
         """Return the coil's inductance at the band, or at its lower end. [H]"""
         values = self.coils.inductance_low if low_end else self.coils.inductance
-        return float(values[self.coil, self.index])
+        return float(values[self.row, self.index])
 
     def frequency(self, *, low_end: bool = False) -> float:
         """Return the frequency at which figures are taken: the target, or the lower end. [Hz]"""
@@ -135,7 +153,7 @@ class Tank:
 
     def coil_q(self, *, low_end: bool = False) -> float | None:
         """Return the Q of the coil alone; None where its loss is unknown. [-]"""
-        q = float((self.coils.q_low if low_end else self.coils.q)[self.coil, self.index])
+        q = float((self.coils.q_low if low_end else self.coils.q)[self.row, self.index])
         return q if math.isfinite(q) else None
 
     def losses(self, *, low_end: bool = False) -> dict[str, float | None]:
@@ -184,7 +202,7 @@ class Tank:
         for part, weight in self.weights(total):
             capacitance += weight * (math.nan if part.tempco is None else part.tempco)
             spread += weight * (part.tempco_tolerance or 0.0)
-        nominal = -0.5 * (float(self.coils.tempco[self.coil, self.index]) + capacitance)
+        nominal = -0.5 * (float(self.coils.tempco[self.row, self.index]) + capacitance)
         return (nominal, 0.5 * spread) if math.isfinite(nominal) else (None, None)
 
 

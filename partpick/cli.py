@@ -7,14 +7,14 @@ fits, 2 not understood or not writable, 130 interrupted.
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from inspect import cleandoc
 from typing import TYPE_CHECKING, Any
 
 import click
 
 from partpick.errors import PartpickError, RequestError
-from partpick.jobs import Outputs, files_read, on_stdout, outputs_of_plans, plan_files
+from partpick.jobs import Outputs, files_read, on_stdout, outputs_of_plans, paths_of, plan_files
 from partpick.options import COIL_OPTIONS, PAIR_OPTIONS, band_of, option_name, plan_options, tables_of
 from partpick.report.files import write_outputs
 from partpick.terminal import Terminal
@@ -121,6 +121,7 @@ def _named(name: str, read: Callable[[], float]) -> float:
         raise RequestError(f"{name}: {error}") from None
 
 
+_PATH = click.Path(readable=False)  # completed as a file by a shell; who reads or writes it says what is wrong
 _TOP = click.option(
     "--top",
     type=click.IntRange(min=1),
@@ -128,9 +129,18 @@ _TOP = click.option(
     metavar="N",
     help="Show and write so many at most (10).",
 )
-_JSON = click.option("--json", "json_path", metavar="FILE", help="Write the result as JSON; - is stdout.")
-_BOM = click.option("--bom", "bom_path", metavar="FILE", help="Write the bill of material (CSV) likewise.")
-_DRAWER = click.option("--drawer", metavar="FOLDER", help="Your own parts, in CSV files as in data/.")
+_JSON = click.option("--json", "json_path", type=_PATH, metavar="FILE", help="Write the result as JSON; - is stdout.")
+_BOM = click.option("--bom", "bom_path", type=_PATH, metavar="FILE", help="Write the bill of material (CSV) likewise.")
+_SHEET = click.option(
+    "--sheet", "sheet_path", type=_PATH, metavar="FILE", help="Write the build sheet of rank 1 (HTML)."
+)
+_NETLIST = click.option(
+    "--netlist", "netlist_path", type=_PATH, metavar="FILE", help="Write its tanks as a SPICE deck."
+)
+_WHY = click.option(
+    "--why", type=click.IntRange(min=1), metavar="RANK", help="Say why the candidate of a rank stands there."
+)
+_DRAWER = click.option("--drawer", type=_PATH, metavar="FOLDER", help="Your own parts, in CSV files as in data/.")
 _LIMIT = click.option("--time-limit", callback=_seconds, metavar="SECONDS", help="Stop then, keep the best.")
 _FORCE = click.option("--force", is_flag=True, help="Replace an output file that is there already.")
 _BY = click.option(
@@ -139,14 +149,12 @@ _BY = click.option(
     default="build",
     help="Rank by ease of building (build), by error or by price.",
 )
-_ALL = click.option(
-    "--all-windings", is_flag=True, help="Rank every winding, not only the best on each former."
-)
+_ALL = click.option("--all-windings", is_flag=True, help="Rank every winding, not only the best on each former.")
 
 
 def _common(command: Any) -> Any:
     """Add the options of every command that ranks candidates."""
-    for add in reversed((_TOP, _JSON, _BOM, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
+    for add in reversed((_TOP, _JSON, _BOM, _SHEET, _NETLIST, _WHY, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
         command = add(command)
     return command
 
@@ -154,9 +162,7 @@ def _common(command: Any) -> Any:
 # ---------------------------------------------------------------- commands
 
 
-@click.group(
-    cls=_InOrder, invoke_without_command=True, context_settings={"help_option_names": ["-h", "--help"]}
-)
+@click.group(cls=_InOrder, invoke_without_command=True, context_settings={"help_option_names": ["-h", "--help"]})
 @click.option(
     "--version",
     is_flag=True,
@@ -168,7 +174,7 @@ def _common(command: Any) -> Any:
 @click.pass_context
 @_examples(
     "partpick pair 7.1MHz                      one frequency, ranked choices",
-    "partpick bands plan.toml --bom parts.csv  switched tanks for all bands of a plan",
+    "partpick bands plan.toml --bom parts.csv  tanks for all bands of a plan",
 )
 def cli(context: click.Context) -> int:
     """Pick the coil and the capacitors of tuned circuits from parts that can be had."""
@@ -193,29 +199,26 @@ def pair(frequency: str, top: int, drawer: str | None, by: str, all_windings: bo
     """
     from partpick.planfile import request_from_tables
 
-    outputs = Outputs(
-        {"json": given["json_path"], "bom": given["bom_path"]}, given["force"], files_read(drawer)
-    )
+    outputs = Outputs(paths_of(given), given["force"], files_read(drawer))
     tables = {**tables_of(PAIR_OPTIONS, given), "band": [band_of(frequency)]}
     request = request_from_tables(tables, "pair", option_name, by=by, all_windings=all_windings)
     outputs.check()
-    return _solve_and_write(request, _catalogue(drawer), outputs, top, given["time_limit"])
+    return _solve_and_write(request, _catalogue(drawer), outputs, top, given)
 
 
 @cli.command()
-@click.argument("plans", metavar="PLAN...", nargs=-1, required=True)
+@click.argument("plans", type=_PATH, metavar="PLAN...", nargs=-1, required=True)
 @_common
 @_examples(
     "partpick bands plan.toml --json result.json --bom parts.csv",
     "partpick bands plan.toml --drawer my-parts --by price",
+    "partpick bands plan.toml --sheet sheet.html --netlist tanks.cir --why 2",
 )
-def bands(
-    plans: tuple[str, ...], top: int, drawer: str | None, by: str, all_windings: bool, **given: Any
-) -> int:
+def bands(plans: tuple[str, ...], top: int, drawer: str | None, by: str, all_windings: bool, **given: Any) -> int:
     """Plan switched tanks for all bands of a PLAN file (TOML; - reads stdin).
 
-    Of several plans, or a folder of them, each is solved on its own; --json and --bom then name a folder
-    that takes one file a plan.
+    Of several plans, or a folder of them, each is solved on its own; --json, --bom, --sheet and --netlist
+    then name a folder that takes one file a plan.
     """
     from partpick.planfile import load_plan
 
@@ -229,7 +232,7 @@ def bands(
         try:
             request = load_plan(plan, by=by, all_windings=all_windings)
             catalogue = _catalogue(drawer) if catalogue is None else catalogue
-            codes.append(_solve_and_write(request, catalogue, outputs, top, given["time_limit"]))
+            codes.append(_solve_and_write(request, catalogue, outputs, top, given))
         except PartpickError as error:
             if len(jobs) == 1:
                 raise
@@ -299,7 +302,7 @@ def parts(drawer: str | None) -> int:
 
 
 @cli.command()
-@click.argument("directory")
+@click.argument("directory", type=_PATH)
 @_FORCE
 @_examples(
     "partpick starter my-tanks",
@@ -317,23 +320,38 @@ def starter(directory: str, force: bool) -> int:
 
 
 def _solve_and_write(
-    request: Request, catalogue: Catalogue, outputs: Outputs, top: int, time_limit: float | None
+    request: Request, catalogue: Catalogue, outputs: Outputs, top: int, given: Mapping[str, Any]
 ) -> int:
     """Solve one request and write its outputs; nothing is left half written by a signal."""
-    from partpick.report.bom import bom_csv
-    from partpick.report.result_json import result_json
-    from partpick.report.table import result_table
     from partpick.solve import solve
 
-    with Terminal(time_limit) as monitor:
-        result = solve(request, catalogue, top=top, monitor=monitor)
+    why = given["why"]
+    if why is not None and not outputs.shows_table:
+        raise RequestError("--why is told below the table, and stdout (-) is taken by another output")
+    with Terminal(given["time_limit"]) as monitor:
+        result = solve(request, catalogue, top=max(top, why or 0), monitor=monitor)
         monitor.writing()
-        outputs.write(
-            table=lambda: result_table(result), json=lambda: result_json(result), bom=lambda: bom_csv(result)
-        )
+        outputs.write(**_renderers(result, why))
     if monitor.elapsed >= TOO_SHORT_TO_TELL:
         click.echo(f"took {monitor.elapsed:.1f} s", err=True)
     return _exit_code(result, monitor)
+
+
+def _renderers(result: Result, why: int | None) -> dict[str, Callable[[], str]]:
+    """Return what writes each output; those that are not wanted are never called."""
+    from partpick.report import bom, netlist, reasons, result_json, sheet, table
+
+    def shown() -> str:
+        told = "" if why is None or not result.candidates else "\n" + reasons.reasons(result, why)
+        return table.result_table(result) + told
+
+    return {
+        "table": shown,
+        "json": lambda: result_json.result_json(result),
+        "bom": lambda: bom.bom_csv(result),
+        "sheet": lambda: sheet.sheet(result),
+        "netlist": lambda: netlist.netlist(result),
+    }
 
 
 def _exit_code(result: Result, monitor: Terminal) -> int:

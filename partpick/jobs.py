@@ -10,6 +10,8 @@ from typing import Any
 from partpick.errors import RequestError
 from partpick.report.files import STDOUT, Output, check_outputs, write_outputs
 
+_ENDINGS = {"json": ".json", "bom": ".csv", "sheet": ".html", "netlist": ".cir"}
+
 
 class Outputs:
     """Where the outputs of one job go."""
@@ -22,7 +24,7 @@ class Outputs:
         Parameters
         ----------
         paths : mapping
-            Name of the output ("json", "bom") to its file, "-" for stdout; None where it is not wanted.
+            Name of the output ("json", "bom", "sheet" ...) to its file, "-" for stdout; None where it is not wanted.
         force : bool
             Whether files that are there already are replaced.
         inputs : sequence of str
@@ -35,6 +37,11 @@ class Outputs:
         self._inputs = inputs
         self._headline = headline
 
+    @property
+    def shows_table(self) -> bool:
+        """Whether stdout is free for the table."""
+        return STDOUT not in self.paths.values()
+
     def check(self) -> None:
         """Refuse what could not be written, before anything is solved."""
         check_outputs(self.paths.values(), self._force, self._inputs)
@@ -42,7 +49,7 @@ class Outputs:
     def write(self, table: Callable[[], str], **renderers: Callable[[], str]) -> None:
         """Write what was asked for, all of it or nothing; the table too if stdout is free."""
         outputs = [Output(path, renderers[name]().encode()) for name, path in self.paths.items()]
-        if STDOUT not in self.paths.values():
+        if self.shows_table:
             outputs.append(on_stdout(self._headline + table()))
         write_outputs(outputs, self._force)
 
@@ -69,6 +76,11 @@ def plan_files(plans: Sequence[str]) -> list[str]:
     return every
 
 
+def paths_of(given: Mapping[str, Any]) -> dict[str, str | None]:
+    """Return where each output of a ranking command goes, from its options."""
+    return {name: given[f"{name}_path"] for name in _ENDINGS}
+
+
 def outputs_of_plans(plans: Sequence[str], drawer: str | None, given: Mapping[str, Any]) -> list[Outputs]:
     """Return where each plan's outputs go: of several plans, one file each in the folder that is named.
 
@@ -77,7 +89,7 @@ def outputs_of_plans(plans: Sequence[str], drawer: str | None, given: Mapping[st
     RequestError
         Several plans, and no folder is named; or two of them would write one file.
     """
-    paths = {"json": given["json_path"], "bom": given["bom_path"]}
+    paths = paths_of(given)
     if len(plans) == 1:
         return [Outputs(paths, given["force"], files_read(drawer, plans[0]))]
     for name, folder in paths.items():
@@ -93,9 +105,6 @@ def outputs_of_plans(plans: Sequence[str], drawer: str | None, given: Mapping[st
         files = {name: _in_folder(paths[name], stem + ending) for name, ending in _ENDINGS.items()}
         outputs.append(Outputs(files, given["force"], files_read(drawer, plan), f"== {plan}\n\n"))
     return outputs
-
-
-_ENDINGS = {"json": ".json", "bom": ".csv"}
 
 
 def _in_folder(folder: str | None, name: str) -> str | None:

@@ -16,7 +16,7 @@ from partpick.parts import Capacitor
 from partpick.physics.resonance import effective_capacitance
 from partpick.preferred import commonness
 from partpick.request import Band, Request
-from partpick.search.problem import NEVER, PLENTY, Floats, Ints, Problem
+from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
 from partpick.tuning import element_ends
 
 LEAST_FLOOR = 0.001
@@ -94,6 +94,27 @@ def _hundredths(price: float | None) -> int:
     return NEVER if price is None else round(price * 100)
 
 
+def _price_limit(request: Request) -> int:
+    limit = request.limits.price
+    return NEVER if limit is None else int(np.floor(limit * 100 + 1e-6))
+
+
+def _affordable(request: Request, coil_price: Ints, part_price: Ints) -> Bools:
+    """Return which coils leave enough of the price limit for the cheapest capacitor where one is needed, (J,)."""
+    limit = _price_limit(request)
+    if limit >= NEVER:
+        return np.ones(len(coil_price), dtype=np.bool_)
+    cheapest = int(part_price.min(initial=NEVER)) if request.command == "pair" else 0
+    return coil_price <= limit - cheapest
+
+
+def _search_order(request: Request, coil_price: Ints, part_price: Ints) -> str:
+    """Return the order of the search: where no plan has a price, by price is by build, which is bounded better."""
+    no_coil = bool((coil_price >= NEVER).all())
+    no_part = request.command == "pair" and bool((part_price >= NEVER).all())
+    return "build" if request.by == "price" and (no_coil or no_part) else request.by
+
+
 def _stock(quantity: int | None, units: int) -> int:
     return PLENTY if quantity is None else quantity // units
 
@@ -160,6 +181,8 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
     omega = 2 * np.pi * frequency
     trimmers = [band.trimmer for band in bands]
     drift_set = limits.drift is not None
+    coil_price = np.array([NEVER if np.isnan(p) else round(p * 100) for p in coils.price], dtype=np.int64)
+    part_price = np.array([_hundredths(c.unit_price) for c in capacitors], dtype=np.int64)
     return Problem(
         frequency=frequency,
         error_limit=np.array([_error_limit(request, band) for band in bands]),
@@ -172,14 +195,14 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         trimmer_tempco=np.array([_nan(t.tempco) if t else 0.0 for t in trimmers]),
         wanted=1.0 / (omega[None, :] ** 2 * coils.inductance),
         self_capacitance=coils.self_capacitance,
-        in_play=coils.in_play,
+        in_play=coils.in_play & _affordable(request, coil_price, part_price)[:, None],
         coil_loss=1.0 / coils.q,
         reactance_class=np.stack(
             [reactance_class(omega[b] * coils.inductance[:, b], frequency[b]) for b in range(len(bands))],
             axis=1,
         ).reshape(coils.inductance.shape),
         effort=effort(coils),
-        coil_price=np.array([NEVER if np.isnan(p) else round(p * 100) for p in coils.price], dtype=np.int64),
+        coil_price=coil_price,
         support=coils.support,
         support_stock=np.array([_stock(s.quantity, request.units) for s in coils.supports], dtype=np.int64),
         coil_rank=coils.rank,
@@ -193,7 +216,7 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         ),
         part_tempco=np.array([_nan(c.tempco) for c in capacitors]),
         part_tempco_spread=np.array([c.tempco_tolerance or 0.0 for c in capacitors]),
-        part_price=np.array([_hundredths(c.unit_price) for c in capacitors], dtype=np.int64),
+        part_price=part_price,
         part_stock=np.array([_stock(c.quantity, request.units) for c in capacitors], dtype=np.int64),
         part_rank=_part_rank(capacitors),
         part_value=tuple(c.exact for c in capacitors),
@@ -206,10 +229,10 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         drift_limit=limits.drift if drift_set and limits.drift is not None else float("inf"),
         parts_limit=NEVER if limits.parts is None else limits.parts,
         values_limit=NEVER if limits.values is None else limits.values,
-        price_limit=NEVER if limits.price is None else int(np.floor(limits.price * 100 + 1e-6)),
+        price_limit=_price_limit(request),
         inductors=limits.inductors,
         floor=floor,
-        by=request.by,
+        by=_search_order(request, coil_price, part_price),
         margin=limits.margin,
         excess_limit=float("inf") if limits.excess is None else limits.excess,
         **_swept_figures(request, coils, capacitors, first),

@@ -36,12 +36,13 @@ from partpick.quantities import (
 
 Read = Callable[[object], object]
 
-FORMS = ("solenoid", "ring core", "bought")  # grows with the table of winding forms in candidates.py
+FORMS = ("solenoid", "ring core", "pot core", "rod core", "multilayer", "bought")  # grows with the table of winding forms in candidates.py
 ORDERS = ("build", "error", "price")
 MOST_BANDS = 64
 MOST_PARTS_PER_BAND = 6
 MOST_PARTS_IN_NETWORK = 3  # with `connect = "any"`
 MOST_UNITS = 1_000_000
+MOST_BUILDS = 200_000
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -192,6 +193,7 @@ LOAD = {
     "resistance": Key(read=parse_resistance),
     "loaded_q": Key(read=_QUALITY),
     "bandwidth": Key(read=parse_bandwidth),
+    "offset": Key(read=parse_bandwidth),
     "connection": Key(read=_choice("across", "tap", "link", "divider"), default="across"),
 }
 BAND = {
@@ -299,10 +301,12 @@ TUNING: dict[str, dict[str, Key]] = {
 }
 FURTHER: dict[str, dict[str, Key]] = {
     "drive": {
-        "power": Key(read=parse_power),
-        "voltage": Key(read=parse_voltage),
-        "current": Key(read=parse_current),
+        "power": Key(read=parse_power),  # into tank and load, of the carrier
+        "voltage": Key(read=parse_voltage),  # peak, held across the tank
+        "current": Key(read=parse_current),  # peak of the fundamental into the tank
         "supply": Key(read=parse_voltage),
+        "class": Key(read=_choice("A", "B", "C", "E"), default="C"),
+        "modulation": Key(read=_fraction(), default=0.0),  # depth of amplitude modulation
     },
     "oscillator": {
         "circuit": Key(read=_choice("colpitts", "clapp", "hartley"), required=True),
@@ -318,6 +322,13 @@ FURTHER: dict[str, dict[str, Key]] = {
     "temperature": {
         "from": Key(read=parse_temperature, required=True),  # degrees Celsius
         "to": Key(read=parse_temperature, required=True),
+        "measured_drift": Key(read=parse_tempco),  # of the frequency, on the bench
+    },
+    "spread": {
+        "builds": Key(read=_count(100, MOST_BUILDS)),
+        "seed": Key(read=_count(0, 2**32 - 1), default=1),
+        "parts": Key(read=_choice("uniform", "normal"), default="uniform"),
+        "batch": Key(read=_fraction(), default=0.0),  # correlation of capacitors of one value and grade
     },
     "cover": {
         "from": Key(read=parse_frequency, required=True),

@@ -175,8 +175,8 @@ def read_load(reader: TableReader, raw: object, path: str) -> Load | None:
     stated = reader.complete(raw, plankeys.LOAD, path)
     if stated["loaded_q"] is not None and stated["bandwidth"] is not None:
         raise reader.fail(f"{path}.bandwidth", f"goes without {reader.name(path + '.loaded_q')}; state one")
-    if stated["resistance"] is stated["loaded_q"] is stated["bandwidth"] is None:
-        raise reader.fail(path, "states nothing; resistance, loaded_q or bandwidth is wanted")
+    if all(stated[key] is None for key in ("resistance", "loaded_q", "bandwidth", "offset")):
+        raise reader.fail(path, "states nothing; resistance, loaded_q, bandwidth or offset is wanted")
     return Load(**stated)
 
 

@@ -94,6 +94,7 @@ class Load:
     resistance: float | None = None  # ohm
     loaded_q: float | None = None
     bandwidth: float | None = None  # Hz
+    offset: float | None = None  # Hz, of a neighbour whose rejection is told
     connection: str = "across"  # "tap", "link", "divider"
 
 

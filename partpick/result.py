@@ -104,6 +104,7 @@ class Candidate:
     parts: tuple[PartLine, ...]
     warnings: tuple[str, ...]
     order: tuple[tuple[str, object], ...] = ()  # steps of the order by name with this choice's figure
+    extra: dict[str, object] = field(default_factory=dict)  # further JSON keys: spread, alignment ...
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from partpick.assessment import assess, recheck
+from partpick.built.outlook import outlook, with_outlook
 from partpick.candidates import Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
 from partpick.circuit import Design, Network
@@ -17,10 +18,12 @@ from partpick.request import Band, Request
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
 from partpick.search.bands import Found, pieces_of_bound, search_bands
 from partpick.search.choose import ORDERS, Choice
-from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
+from partpick.stress import with_stress
+from partpick.tapping import column_source
 
 LOW_FREQUENCY = 1e3  # Hz
+PLANNED_TABLES = ("temperature", "spread", "drive")  # of the further tables of a plan
 
 
 def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Monitor | None = None) -> Result:
@@ -49,9 +52,10 @@ def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Mon
     capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
     floor = tolerance_floor(coils, capacitors, request.limits.error)
     problem = build_problem(request, coils, capacitors, floor)
-    source = ColumnSource(problem)
+    source = column_source(request, coils, problem)
     found = search_bands(problem, source, wanted=top, all_windings=request.all_windings, monitor=monitor)
-    result = _result(request, coils, capacitors, problem, found)
+    pool = _refit_pool(request, catalogue)
+    result = _result(request, coils, capacitors, problem, found, pool)
     if result.candidates or found.stopped_by is not None:
         return result
     nearest, ruled_out = explain(request, catalogue, _again, monitor)
@@ -64,7 +68,8 @@ def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidat
     capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
     floor = tolerance_floor(coils, capacitors, request.limits.error)
     problem = build_problem(request, coils, capacitors, floor)
-    found = search_bands(problem, ColumnSource(problem), wanted=1, all_windings=False, monitor=monitor, front=False)
+    source = column_source(request, coils, problem)
+    found = search_bands(problem, source, wanted=1, all_windings=False, monitor=monitor, front=False)
     return _candidate(request, coils, capacitors, found.choices[0]) if found.choices else None
 
 
@@ -103,19 +108,34 @@ def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
     unplanned = [
         (request.switching != "separate", f'switching = "{request.switching}"'),
-        (request.coil.taps, "coil.taps = true"),
+        (request.coil.taps and request.switching != "separate", "coil.taps with this switching"),
         (request.limits.alignable is not None, "limits.alignable"),
-        *((True, f"the table [{name}]") for name, _ in request.extra),
+        *((True, f"the table [{name}]") for name, _ in request.extra if name not in PLANNED_TABLES),
     ]
     for asked, what in unplanned:
         if asked:
             raise RequestError(f"{what}: read and understood, but this version does not plan it yet")
 
 
+def _refit_pool(request: Request, catalogue: Catalogue) -> tuple[Capacitor, ...]:
+    """Return the capacitors that a refit from a measured drift may choose from: every grade."""
+    if dict(dict(request.extra).get("temperature", ())).get("measured_drift") is None:
+        return ()
+    return select_capacitors(catalogue, replace(request.capacitors, grades=None), True)
+
+
 def _result(
-    request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], problem: Problem, found: Found
+    request: Request,
+    coils: Coils,
+    capacitors: tuple[Capacitor, ...],
+    problem: Problem,
+    found: Found,
+    pool: tuple[Capacitor, ...],
 ) -> Result:
-    ranked = [_candidate(request, coils, capacitors, choice) for choice in found.choices]
+    ranked = [
+        _candidate(request, coils, capacitors, choice, first=place == 0, pool=pool)
+        for place, choice in enumerate(found.choices)
+    ]
     contents = [choice.key[-1] for choice in found.choices]
     on_front = {choice.key[-1] for choice in found.front}
     candidates = tuple(
@@ -125,7 +145,7 @@ def _result(
     front = tuple(
         candidates[contents.index(choice.key[-1])]
         if choice.key[-1] in contents
-        else replace(_candidate(request, coils, capacitors, choice), on_front=True)
+        else replace(_candidate(request, coils, capacitors, choice, pool=pool), on_front=True)
         for choice in found.front
     )
     return Result(
@@ -142,17 +162,27 @@ def _order(problem: Problem, choice: Choice) -> tuple[tuple[str, object], ...]:
     return tuple(zip(ORDERS[problem.by], choice.key, strict=False))
 
 
-def _candidate(request: Request, coils: Coils, capacitors: tuple[Capacitor, ...], choice: Choice) -> Candidate:
+def _candidate(
+    request: Request,
+    coils: Coils,
+    capacitors: tuple[Capacitor, ...],
+    choice: Choice,
+    *,
+    first: bool = False,
+    pool: tuple[Capacitor, ...] = (),
+) -> Candidate:
     networks = tuple(
         Network(parts=columns.network_parts(0), shape=int(columns.shape[0]), series=columns.series_padder(0))
         for columns in choice.columns
     )
-    design = Design(coils=tuple(int(columns.coil[0]) for columns in choice.columns), networks=networks)
+    taps = tuple(int(columns.tap[0]) or None for columns in choice.columns)
+    design = Design(coils=tuple(int(columns.coil[0]) for columns in choice.columns), networks=networks, taps=taps)
     candidate = assess(request, coils, capacitors, design)
     worst_error = max(abs(float(columns.error[0])) for columns in choice.columns)
     worst_excess = max(float(columns.excess[0]) for columns in choice.columns)
     recheck(candidate, worst_error, worst_excess)
-    return candidate
+    looked_at = with_outlook(candidate, outlook(request, coils, capacitors, design, candidate, first=first, pool=pool))
+    return with_stress(request, looked_at)
 
 
 def _proof(problem: Problem, found: Found, candidates: tuple[Candidate, ...]) -> Proof:

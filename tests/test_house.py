@@ -12,7 +12,7 @@ PACKAGE = ROOT / "partpick"
 
 # Each stage may import from itself and from those before it.
 STAGES = [
-    {"errors", "units", "reading", "quantities", "preferred", "progress", "parts", "request", "result"},
+    {"errors", "units", "reading", "quantities", "preferred", "progress", "parts", "request", "result", "connection"},
     {"physics"},
     {"tuning"},
     {"plankeys", "plantables", "planfile"},
@@ -21,10 +21,12 @@ STAGES = [
     {"starter"},
     {"forms", "candidates"},
     {"search"},
-    {"objective"},
+    {"objective", "tapping"},
     {"circuit", "assessment", "tank_figures", "nothing_fits"},
+    {"built", "stress"},
     {"solve"},
     {"report"},
+    {"frames"},
     {"terminal", "options", "jobs", "cli", "__main__", "__init__"},
 ]
 

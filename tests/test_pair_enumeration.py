@@ -32,6 +32,7 @@ SETS = {  # coarsest series that holds a value, the order of the commonness: IEC
     "E24": (11, 13, 16, 20, 24, 30, 36, 43, 51, 62, 75, 91),
 }
 ROUNDING = 1e-9  # a design exactly on a limit is inside it
+FORMS = ["solenoid", "bought"]
 EVERY_LIMIT_OFF = {"self_resonance": "none", "proportions": "none"}
 
 
@@ -161,7 +162,7 @@ def make_tables(
 ) -> dict[str, Any]:
     """Return a plan with few bands and, often, limits that bite."""
     limits: dict[str, Any] = {"error": f"{choice(rng, 2, 5, 10, 15)} %"}
-    coil: dict[str, Any] = {}
+    coil: dict[str, Any] = {"forms": FORMS}
     count = 1 if command == "pair" else int(rng.integers(2, 4))
     limits["parts_per_band"] = int(rng.integers(1, 3 if count > 1 else 4))
     if rng.random() < 0.15:
@@ -250,7 +251,7 @@ class Column:
 
 def every_winding(case: Case) -> list[Winding]:
     """Return the drawer's windings with L and Q at each band, as `windings --json --at` tells them."""
-    tables = {"coil": EVERY_LIMIT_OFF, "units": case.tables["units"]}
+    tables = {"coil": {"forms": FORMS, **EVERY_LIMIT_OFF}, "units": case.tables["units"]}
     listed = []
     for band in case.tables["band"]:
         request = request_from_tables({**tables, "band": [{"at": band["at"]}]}, "pair")
@@ -325,9 +326,9 @@ def in_play(case: Case, winding: Winding, band: int) -> bool:
         own = 1 / (2 * math.pi * math.sqrt(inductance * winding.self_capacitance))
         if own < stated * frequencies[band] * (1 - ROUNDING):
             return False
-    if rules.get("proportions") != "none" and winding.proportions is not None:
-        if not 0.4 * (1 - ROUNDING) <= winding.proportions <= 2.5 * (1 + ROUNDING):
-            return False
+    any_shape = rules.get("proportions") == "none" or winding.proportions is None
+    if not (any_shape or 0.4 * (1 - ROUNDING) <= (winding.proportions or 0) <= 2.5 * (1 + ROUNDING)):
+        return False
     if "reactance" in rules:
         reactance = 2 * math.pi * frequencies[band] * inductance
         if not 30 * (1 - ROUNDING) <= reactance <= 300 * (1 + ROUNDING):
@@ -375,13 +376,10 @@ def columns_of(case: Case, winding: Winding, band: int) -> list[Column]:
         ):
             continue
         enough = limits.get("q", 150)
-        found.append(
-            Column(
-                winding, parts, shape, error,
-                5 if loss is None else max(0, math.ceil((1 - 1 / loss / enough) / 0.25 - ROUNDING)),
-                0 if strays / total <= 0.1 else 1 if strays / total <= 0.2 else 2, math.ceil(octaves - 1e-12),
-            )  # fmt: skip
-        )
+        q_class = 5 if loss is None else max(0, math.ceil((1 - 1 / loss / enough) / 0.25 - ROUNDING))
+        stray_class = 0 if strays / total <= 0.1 else 1 if strays / total <= 0.2 else 2
+        reactance_class = math.ceil(octaves - 1e-12)
+        found.append(Column(winding, parts, shape, error, q_class, stray_class, reactance_class))
     return found
 
 

@@ -94,55 +94,6 @@ def test_core_loss_bounds_the_q_of_a_ring() -> None:
     assert np.isinf(loss.combined_q(np.inf, np.inf))
 
 
-def stranded(x: float, strands: int = 30, pitch: float = np.inf) -> loss.CopperLoss:
-    """Return the loss of an invented bundle of 0.05 mm strands, relative to its direct-current resistance."""
-    bundle = 0.05e-3 * 1.25 * np.sqrt(strands)
-    return loss.stranded_resistance(1.0, x, strands, 0.05e-3, bundle, pitch, np.inf)
-
-
-def test_one_straight_strand_is_a_round_wire() -> None:
-    """Limiting case: no neighbours."""
-    assert stranded(2.0, strands=1).total == pytest.approx(skin.skin_ratio(2.0))
-
-
-def test_many_strands_follow_the_field_of_an_even_current() -> None:
-    """Inside a bundle of even current <H^2> = I^2/(2 pi^2 D^2): integrated here, low-frequency eddy loss."""
-    x, strands, strand = 0.3, 10**6, 0.05e-3
-    bundle = strand * 1.25 * np.sqrt(strands)
-    radius = np.linspace(0.0, bundle / 2.0, 20001)
-    field = radius / (2.0 * np.pi * (bundle / 2.0) ** 2)  # per ampere
-    mean = np.trapezoid(field**2 * 2.0 * np.pi * radius, radius) / (np.pi * (bundle / 2.0) ** 2)
-    # Loss per strand pi H^2 x^4/sigma over I^2 rho/(pi a^2), low-frequency limit (Terman 1943, from memory).
-    expected = x**4 / 8.0 * 2.0 * (np.pi * strand * strands) ** 2 * mean
-    assert stranded(x, strands=strands).proximity == pytest.approx(expected, rel=0.01)
-
-
-@pytest.mark.parametrize(("strands", "crowding"), [(3, 1.55), (9, 1.84), (27, 1.92)])
-def test_few_strands_crowd_each_other_less(strands: int, crowding: float) -> None:
-    """The published constant of a straight bundle (Terman 1943, from memory), in units of (n d/D)^2 G."""
-    packing = np.sqrt(strands) / 1.25  # n d/D of the invented bundle
-    g = skin.transverse_loss_ratio(0.5)
-    assert stranded(0.5, strands=strands).proximity == pytest.approx(crowding * packing**2 * g / 2.0)
-
-
-def test_turns_add_to_the_loss_of_strands() -> None:
-    """A coil's field crosses every strand; a straight wire has its own only."""
-    assert stranded(0.5, pitch=0.5e-3).total > stranded(0.5).total
-    # Thin single strand in an endless coil: (Phi - 1) g of the solid wire, first order in (d/s)^2.
-    coil = loss.stranded_resistance(1.0, 3.0, 1, 0.1e-3, 0.1e-3, 1e-3, np.inf)
-    solid = loss.ring_resistance(1.0, 3.0, 0.1)
-    assert coil.proximity == pytest.approx(solid.proximity, rel=0.02)
-
-
-def test_stranded_wire_wins_at_medium_and_loses_at_high_frequency() -> None:
-    """The reason for stranded wire at 100 kHz to 2 MHz, and against it above (common practice, no source)."""
-    solid_radius = 0.05e-3 / 2.0 * np.sqrt(30)
-    for frequency, wins in [(500e3, True), (10e6, False)]:
-        depth = skin.skin_depth(frequency)
-        solid = skin.skin_ratio(solid_radius / depth)
-        assert (stranded(0.025e-3 / depth).total < solid) == wins
-
-
 @pytest.mark.parametrize(
     ("frequency", "expected"),
     [
@@ -172,14 +123,21 @@ def test_the_decade_and_octave_ends_are_inside() -> None:
     assert np.isfinite(loss.bought_q(40.0, stated, stated * 2.0)).all()
 
 
-@given(st.floats(1.0, 1e3), st.floats(0.0, 0.35), st.floats(1.0, 5.0))
-def test_q_bounds_enclose_the_nominal_q(q: float, spread: float, factor: float) -> None:
-    """And the upper one is never above what the straight wire would give."""
-    parts = loss.solenoid_resistance(1.0, 10.0, factor)
-    low, high = loss.copper_q_bounds(q, parts, spread)
-    assert low < q <= high * (1 + 1e-12)
-    assert high <= q * parts.total / parts.skin * (1 + 1e-12)
-    assert low == pytest.approx(0.8 * q / (1.0 + spread))  # 20 % shortfall: common practice, no source
+@given(st.floats(1e-4, 0.1), st.floats(0.0, 0.1), st.floats(0.0, 0.1), st.floats(0.0, 0.35))
+def test_q_bounds_enclose_the_nominal_q(skin_part: float, proximity_part: float, core: float, spread: float) -> None:
+    """And the upper one is never above what straight wire and core alone would give."""
+    nominal = 1.0 / (skin_part + proximity_part + core)
+    low, high = loss.q_bounds(skin_part, proximity_part, core, spread, 0.3)
+    assert low < nominal <= high * (1 + 1e-12)
+    assert high <= 1.0 / (skin_part + core) * (1 + 1e-12)
+
+
+def test_the_least_q_has_the_shortfall_of_measured_coils() -> None:
+    """20 % below the copper's (common practice, no source), and the error of the proximity factor on top."""
+    low, high = loss.q_bounds(0.004, 0.001, 0.0, 0.10, 0.3)
+    assert low == pytest.approx(200.0 * 0.8 / 1.1)
+    assert high == pytest.approx(200.0 / 0.9)
+    assert np.isnan(loss.q_bounds(0.004, 0.001, np.nan, 0.10, 0.3)).all()
 
 
 def test_unknown_proximity_makes_the_loss_unknown() -> None:

@@ -120,6 +120,7 @@ def test_oscillator_below_puts_the_padder_into_the_signal_circuit() -> None:
     signal, points = plain_circuit(low, high, *SECTION), tracking_points(low, high)
     wrong = three_point_circuit(section_capacitance(signal, points), points - intermediate)
     assert np.isnan(wrong.padder)
+    assert np.isnan(best_tracking(signal, low, high, -intermediate).worst_error)
 
 
 def test_no_distance_needs_no_padder() -> None:
@@ -151,7 +152,10 @@ def test_best_coil_for_given_padders(padder: float) -> None:
     shape = padded_frequency(padded._replace(padder=np.asarray(padder)), section_capacitance(plain, grid))
     scale = best_scale(shape, target)
     found = minimize_scalar(
-        lambda u: float(np.max(np.abs(u * shape - target))), bounds=(0.5, 2.0), method="bounded", options={"xatol": 1e-12}
+        lambda u: float(np.max(np.abs(u * shape - target))),
+        bounds=(0.5, 2.0),
+        method="bounded",
+        options={"xatol": 1e-12},
     )
     worst = np.max(np.abs(scale * shape - target))
     assert worst == pytest.approx(found.fun, rel=1e-6)

@@ -34,9 +34,7 @@ def rows(name: str) -> list[dict[str, str]]:
 
 def coils(row: dict[str, str]) -> tuple[Rings, Rings]:
     gap = float(row["centre_gap_m"])
-    return tuple(
-        coil_rings(int(row[f"N{k}"]), float(row[f"D{k}_m"]), float(row[f"pitch{k}_m"]), gap) for k in (1, 2)
-    )  # type: ignore[return-value]
+    return tuple(coil_rings(int(row[f"N{k}"]), float(row[f"D{k}_m"]), float(row[f"pitch{k}_m"]), gap) for k in (1, 2))  # type: ignore[return-value]
 
 
 @pytest.mark.parametrize("row", rows("variometer.csv"), ids=lambda r: f"{r['case']}-{r['theta_deg']}")
@@ -44,10 +42,10 @@ def test_mutual_inductance_against_angle(row: dict[str, str]) -> None:
     """Both methods, as a share of M at 0 degrees (it passes through 0 at 90), and the series connection."""
     stator, rotor = coils(row)
     angle, expected, tolerance = float(row["theta_deg"]), float(row["M_H"]), float(row["rel_tol"])
-    greatest = expected / float(row["M_over_M0"]) if expected > 1e-12 else 1e-6
+    greatest = 1e-5 if row["case"] == "A" else 2e-6  # M at 0 degrees, rounded down
     mutual = tilted_mutual_inductance(stator, rotor, angle)
-    assert mutual == pytest.approx(expected, abs=tolerance * abs(greatest))
-    assert tilted_mutual_by_line_integral(stator, rotor, angle, 180) == pytest.approx(mutual, abs=1e-10 * abs(greatest))
+    assert mutual == pytest.approx(expected, abs=tolerance * greatest)
+    assert tilted_mutual_by_line_integral(stator, rotor, angle, 180) == pytest.approx(mutual, abs=1e-10 * greatest)
     own = [float(row["L1_H"]), float(row["L2_H"])]
     assert series_inductance(*own, mutual) == pytest.approx(float(row["L_series_H"]), rel=1e-6)
     if row["centre_gap_m"] == "0":  # the family has no gap in its middle

@@ -11,12 +11,13 @@ from partpick.search.bands import Found
 from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
 from partpick.search.shared import search_shared
+from partpick.search.stacked import search_stacked
 
 PLANS = {"stacked": stacked_plans, "shared": shared_plans}
 
 
 def found_in(layout: str, problem: Problem) -> Found:
-    search = {"shared": search_shared}[layout]
+    search = {"stacked": search_stacked, "shared": search_shared}[layout]
     source = ColumnSource(problem)
     found = search(problem, source, wanted=100, all_windings=False, monitor=Quiet())
     assert found.stopped_by is None
@@ -39,7 +40,7 @@ PIECES = 2  # place of the pieces in the order by error
 
 @pytest.mark.parametrize("coupled", [False, True])
 @pytest.mark.parametrize("bands", [1, 2, 3])
-@pytest.mark.parametrize("layout", ["shared"])
+@pytest.mark.parametrize("layout", ["stacked", "shared"])
 def test_every_rank_and_the_front_equal_plain_enumeration(layout: str, bands: int, coupled: bool) -> None:
     """A plan that the search leaves out or misplaces would be a false "optimal"."""
     answered = sum(agree(layout, seed, bands=bands, coupled=coupled) > 0 for seed in range(40))

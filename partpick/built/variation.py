@@ -86,11 +86,21 @@ class VaryingTank:
         trimmer = self.trimmer.middle if self.trimmer else 0.0
         return resonance_frequency(self.built_inductance(x), self.fixed_capacitance(x) + trimmer)
 
+    def nominal_fixed(self) -> float:
+        """Return all capacitance but the trimmer of a build without deviations. [F]"""
+        return float(self.fixed_capacitance(self._nothing_off())[0])
+
+    def wanted(self, inductance: float | Floats) -> float | Floats:
+        """Return the capacitance that is on frequency with an inductance. [F]"""
+        return 1.0 / ((2.0 * np.pi * self.frequency) ** 2 * inductance)
+
+    def _nothing_off(self) -> Floats:
+        return np.zeros((1 + max((self.coil, self.wiring, self.winding, *self.parts)), 1))
+
     def weights(self, trimmer: float) -> dict[int, float]:
         """Return d ln C / d ln c of every capacitance, C being all in circuit; the coil has 1. [-]"""
-        none = np.zeros((1 + max((self.coil, self.wiring, self.winding, *self.parts)), 1))
-        across = float(self.network(none)[0])
-        total = across + self.wiring_capacitance + self.winding_capacitance + trimmer
+        across = float(self.network(self._nothing_off())[0])
+        total = self.nominal_fixed() + trimmer
         found = {
             self.coil: 1.0,
             self.wiring: self.wiring_capacitance / total,
@@ -255,7 +265,7 @@ def variation(
                 frequency=band.highest,
                 inductance=figures.inductance,
                 coil=coil,
-                coil_tempco=float(coils.tempco[tank.coil, index]),
+                coil_tempco=float(coils.tempco[tank.row, index]),
                 parts=parts,
                 values=tuple(part.value for part in chosen),
                 series_inductances=tuple(part.series_inductance or 0.0 for part in chosen),

@@ -26,13 +26,12 @@ class BandDrift:
     shift_spread: float  # Hz, size
 
 
-def on_frequency(tank: VaryingTank, sources: int) -> float:
+def on_frequency(tank: VaryingTank) -> float:
     """Return the trimmer where it brings the nominal parts on frequency, or its nearer end; 0 without one. [F]"""
     if tank.trimmer is None:
         return 0.0
-    fixed = float(tank.fixed_capacitance(np.zeros((sources, 1)))[0])
-    wanted = 1.0 / ((2.0 * math.pi * tank.frequency) ** 2 * tank.inductance)
-    return min(max(wanted - fixed, tank.trimmer.low), tank.trimmer.high)
+    missing = float(tank.wanted(tank.inductance)) - tank.nominal_fixed()
+    return min(max(missing, tank.trimmer.low), tank.trimmer.high)
 
 
 def band_drift(variation: Variation, tank: VaryingTank, kelvin: float) -> BandDrift | None:
@@ -52,7 +51,7 @@ def band_drift(variation: Variation, tank: VaryingTank, kelvin: float) -> BandDr
     Coefficients are constant over the range, as class 1 dielectrics have them; a coefficient is uniform
     within its tolerance, and independent of the others.
     """
-    trimmer = on_frequency(tank, len(variation.sources))
+    trimmer = on_frequency(tank)
     weights = tank.weights(trimmer)
     nominal, sizes = 0.0, []
     for place, weight in weights.items():
@@ -60,13 +59,9 @@ def band_drift(variation: Variation, tank: VaryingTank, kelvin: float) -> BandDr
         tempco = tank.coil_tempco if source.kind == COIL else source.tempco
         nominal -= 0.5 * weight * (math.nan if tempco is None else tempco) if weight else 0.0
         sizes.append(0.5 * weight * source.tempco_size)
-    if tank.trimmer is not None and trimmer > 0.0:
-        total = tank.wiring_capacitance / weights[tank.wiring] if weights[tank.wiring] else 0.0
-        if not total:
-            fixed = float(tank.fixed_capacitance(np.zeros((len(variation.sources), 1)))[0])
-            total = fixed + trimmer
+    if tank.trimmer is not None:
         own = math.nan if tank.trimmer.tempco is None else tank.trimmer.tempco
-        nominal -= 0.5 * trimmer / total * own
+        nominal -= 0.5 * trimmer / (tank.nominal_fixed() + trimmer) * own
     if not math.isfinite(nominal):
         return None
     points, shares = uniform_sum_distribution(sizes)

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from partpick.parts import Wire
+from partpick.physics.loss import CORE_LOSS_SPREAD, q_bounds
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -29,6 +30,42 @@ class Support:
     notes: tuple[str, ...] = ()
     frequency_low: float | None = None  # Hz, useful range of a core
     frequency_high: float | None = None
+    adjust: float | None = None  # fraction of the inductance either way
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Losses:
+    """Loss of J coils at B frequencies by cause, (J, B) each, as shares of 1/Q; nan: unknown."""
+
+    skin: Floats
+    proximity: Floats
+    core: Floats  # 0 in air
+
+    @property
+    def q(self) -> Floats:
+        """Q of all of them together; unknown if one is."""
+        return 1.0 / (self.skin + self.proximity + self.core)
+
+    def in_core(self, share: Floats, core_q: Floats) -> Losses:
+        """Return the losses of the same winding with a core, where it has `share` of the inductance."""
+        return Losses(skin=self.skin * share, proximity=self.proximity * share, core=1.0 / core_q)
+
+    def q_spread(self, copper_spread: Floats) -> Floats:
+        """Return by which fraction Q may fall below and rise above the nominal, at worst, (J, 2)."""
+        low, high = q_bounds(self.skin, self.proximity, self.core, copper_spread[:, None], CORE_LOSS_SPREAD)
+        both = np.stack([1.0 - low / self.q, high / self.q - 1.0])
+        worst: Floats = np.fmax.reduce(both, axis=2, initial=np.nan)  # nan only where no band is known
+        return worst.T
+
+
+def no_losses(coils: int, bands: int) -> Losses:
+    """Return losses that nobody knows."""
+    unknown = np.full((coils, bands), np.nan)
+    return Losses(skin=unknown, proximity=unknown, core=unknown)
+
+
+def _nothing_to_say(_row: int, _frequency: float) -> tuple[str, ...]:
+    return ()
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -37,6 +74,7 @@ class Block:
 
     form: str
     effort_form: int  # BOUGHT, RING, TUBE or OTHER
+    tappable: bool = False  # coils of one layout follow each other by turns, and a section is such a coil
     eased_resonance: bool = False  # twice the highest frequency is enough unless the plan says more
     supports: tuple[Support, ...]
     wires: tuple[Wire, ...] = ()
@@ -50,8 +88,11 @@ class Block:
     inductance_dc: Floats  # H
     inductance: Floats  # H, (J, B)
     q: Floats  # (J, B) nan: unknown
+    losses: Losses
     self_capacitance: Floats  # F
     spread: Floats  # fraction of the inductance
+    q_spread: Floats  # (J, 2) fraction below and above, nan: unknown
+    self_capacitance_spread: Floats  # (J, 2) fraction below and above, nan: unknown
     tempco: Floats  # 1/K, (J, B) nan: unknown
     tempco_spread: Floats  # 1/K
     price: Floats  # nan: unknown
@@ -59,6 +100,7 @@ class Block:
     wire_diameter: Floats  # m bare
     proportions: Floats | None = None  # winding length / mean diameter, single layers only
     label: Callable[[int], str] = field(repr=False)
+    cautions: Callable[[int, float], tuple[str, ...]] = field(repr=False, default=_nothing_to_say)  # at a Hz
 
     def __len__(self) -> int:
         return len(self.turns)
@@ -66,29 +108,32 @@ class Block:
 
 @dataclass(frozen=True, eq=False)
 class Layouts:
-    """Ways to put a wire on a support, each good for 1 to `most` turns, and the coils that follow."""
+    """Ways to put a wire on a support, each good for `least` to `most` turns, and the coils that follow."""
 
     support: Ints  # (F,)
     wire: Ints  # (F,)
     pitch: Floats  # (F,) m
     most: Ints  # (F,)
+    least: Ints  # (F,)
 
     @staticmethod
-    def of(rows: Sequence[tuple[int, int, float, int]]) -> Layouts:
-        """Return layouts from rows of (support, wire, pitch, most turns)."""
+    def of(rows: Sequence[tuple[int, int, float, int]], least: Sequence[int] | None = None) -> Layouts:
+        """Return layouts from rows of (support, wire, pitch, most turns), from one turn or `least` on."""
         support, wire, pitch, most = zip(*rows, strict=True) if rows else ((), (), (), ())
         return Layouts(
             np.array(support, np.int64),
             np.array(wire, np.int64),
             np.array(pitch, float),
             np.array(most, np.int64),
+            np.ones(len(rows), np.int64) if least is None else np.array(least, np.int64),
         )
 
     def coils(self) -> tuple[Ints, Ints]:
         """Return the layout and the turns of every coil, (J,) each."""
-        layout = np.repeat(np.arange(len(self.most)), self.most)
-        first = np.repeat(np.cumsum(self.most) - self.most, self.most)
-        return layout, np.arange(len(layout)) - first + 1
+        count = self.most - self.least + 1
+        layout = np.repeat(np.arange(len(count)), count)
+        first = np.repeat(np.cumsum(count) - count - self.least, count)
+        return layout, np.arange(len(layout)) - first
 
 
 def enough(quantity: int | None, units: int) -> bool:
@@ -104,6 +149,11 @@ def column(values: Sequence[float | None]) -> Floats:
 def at_every(values: Floats, frequency: Floats) -> Floats:
     """Return (J,) figures that do not depend on frequency as (J, B)."""
     return np.repeat(values[:, None], len(frequency), axis=1)
+
+
+def either_way(spread: Floats) -> Floats:
+    """Return a (J,) spread that is alike below and above as (J, 2)."""
+    return np.repeat(spread[:, None], 2, axis=1)
 
 
 def stacked(per_band: Sequence[Floats], coils: int) -> Floats:

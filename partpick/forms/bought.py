@@ -4,9 +4,22 @@ from __future__ import annotations
 
 import numpy as np
 
-from partpick.forms.block import BOUGHT, Block, Floats, Support, at_every, column, enough, stacked
+from partpick.forms.block import (
+    BOUGHT,
+    Block,
+    Floats,
+    Support,
+    at_every,
+    column,
+    either_way,
+    enough,
+    no_losses,
+    stacked,
+)
 from partpick.parts import Catalogue, Inductor
-from partpick.physics.loss import bought_q
+from partpick.physics.loss import BOUGHT_Q_SPREAD, bought_q
+
+CAPACITANCE_SPREAD = 0.30  # of a stated self-capacitance; common practice, no source
 
 
 def bought_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
@@ -35,8 +48,13 @@ def bought_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         inductance_dc=value,
         inductance=at_every(value, frequency),
         q=stacked([bought_q(q, q_frequency, f) for f in frequency], count),
+        losses=no_losses(count, len(frequency)),
         self_capacitance=column([part.self_capacitance or 0.0 for part in parts]),
         spread=column([part.tolerance for part in parts]),
+        q_spread=either_way(np.where(np.isfinite(q), BOUGHT_Q_SPREAD, np.nan)),
+        self_capacitance_spread=either_way(
+            np.array([np.nan if part.self_capacitance is None else CAPACITANCE_SPREAD for part in parts])
+        ),
         tempco=at_every(column([part.tempco for part in parts]), frequency),
         tempco_spread=np.nan_to_num(column([part.tempco_tolerance for part in parts])),
         price=column([part.unit_price for part in parts]),
@@ -50,4 +68,4 @@ def _support(part: Inductor) -> Support:
     notes = part.notes
     if part.self_capacitance is None:
         notes = (*notes, "self-capacitance not stated, taken as 0")
-    return Support(name=part.label, quantity=part.quantity, source=part.source, notes=notes)
+    return Support(name=part.label, quantity=part.quantity, source=part.source, notes=notes, adjust=part.adjust)

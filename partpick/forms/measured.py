@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from partpick.errors import RequestError
-from partpick.forms.block import BOUGHT, Block, Floats, Support, at_every
+from partpick.forms.block import BOUGHT, Block, Floats, Support, at_every, either_way, no_losses
 from partpick.quantities import format_quantity
 from partpick.request import CoilRules, MeasuredDips
 
@@ -40,8 +40,11 @@ def measured_block(rules: CoilRules, frequency: Floats) -> Block:
         inductance_dc=inductance * one,
         inductance=at_every(inductance * one, frequency),
         q=unknown,
+        losses=no_losses(1, len(frequency)),
         self_capacitance=self_capacitance * one,
         spread=MEASURED_SPREAD * one,
+        q_spread=either_way(np.full(1, np.nan)),
+        self_capacitance_spread=either_way(np.full(1, np.nan)),
         tempco=unknown,
         tempco_spread=none,
         price=none,

@@ -12,16 +12,24 @@ from partpick.forms.block import (
     Support,
     at_every,
     column,
+    either_way,
     enough,
-    stacked,
     wound_price,
 )
+from partpick.forms.copper import ABOVE_STRANDED, WireColumns, covered, losses_of
+from partpick.forms.solenoid import turns_in_words
 from partpick.parts import Catalogue, Core, Wire
-from partpick.physics.cores import core_inductance, ring_al, ring_turns_that_fit
+from partpick.physics.cores import core_inductance, ring_al, ring_leak, ring_turns_that_fit
 from partpick.physics.geometry import ring_wire_length
-from partpick.physics.loss import combined_q, ring_pitch, ring_resistance
-from partpick.physics.self_capacitance import ring_self_capacitance
-from partpick.physics.skin import skin_depth, wire_resistance
+from partpick.physics.loss import ring_pitch
+from partpick.physics.proximity import endless_proximity_factor
+from partpick.physics.self_capacitance import RING_SPREAD, ring_self_capacitance
+from partpick.physics.spread import ring_spread
+from partpick.physics.stranded import STRANDED_HIGHEST, STRANDED_RESISTANCE_SPREAD
+from partpick.quantities import format_percent
+
+RING_COPPER_SPREAD = 0.15  # of a layer without ends, up to d/s = 0.6; estimate, no source
+LEAKY = 0.10  # a leak that is worth a word
 
 
 def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
@@ -30,20 +38,44 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     layouts = _layouts(cores, catalogue.wires)
     layout, turns = layouts.coils()
     support, wire = layouts.support[layout], layouts.wire[layout]
-    bare = np.array([w.bare_diameter for w in catalogue.wires])[wire]
-    overall = np.array([w.overall_diameter for w in catalogue.wires])[wire]
+    sizes = WireColumns.of(catalogue.wires, wire)
     outer = column([core.outer_diameter for core in cores])[support]
     inner = column([core.inner_diameter for core in cores])[support]
     height = column([core.height for core in cores])[support]
-    inductance = core_inductance(column([_al(core) for core in cores])[support], turns)
-    wire_length = ring_wire_length(turns, outer, inner, height, overall)
+    low_frequency = core_inductance(column([_al(core) for core in cores])[support], turns)
+    inductance = at_every(low_frequency, frequency)
+    wire_length = ring_wire_length(turns, outer, inner, height, sizes.overall)
+    pitch = ring_pitch(turns, outer, inner, height, sizes.overall)
+    factor = endless_proximity_factor(sizes.bare / pitch)
+    resistance = sizes.dc_resistance(wire_length)
+    endless, many = np.full(len(turns), np.inf), np.ones(len(turns))
+    losses = losses_of(
+        frequency,
+        inductance,
+        [sizes.single_layer(resistance, float(f), factor, pitch, endless, many) for f in frequency],
+        [core_ceiling(cores, float(f))[support] for f in frequency],
+    )
+    permeability = column([_leaking_permeability(core) for core in cores])[support]
+    leak = ring_leak(turns, outer, inner, height, permeability, sizes.overall)
     none = np.zeros(len(turns))
 
     def label(row: int) -> str:
-        return f"{turns[row]} turns of {catalogue.wires[wire[row]].name} on {cores[support[row]].name}"
+        return f"{turns_in_words(turns[row])} of {catalogue.wires[wire[row]].name} on {cores[support[row]].name}"
+
+    def cautions(row: int, frequency: float) -> tuple[str, ...]:
+        said = []
+        if sizes.strands[row] > 1 and frequency > STRANDED_HIGHEST:
+            said.append(ABOVE_STRANDED)
+        if leak[row] >= LEAKY:
+            said.append(
+                f"{cores[support[row]].name} leaks: with {turns_in_words(turns[row])} expect up to "
+                f"{format_percent(leak[row], 2)} more inductance"
+            )
+        return tuple(said)
 
     return Block(
         form="ring core",
+        tappable=True,
         effort_form=RING,
         supports=tuple(core_support(core) for core in cores),
         wires=catalogue.wires,
@@ -54,32 +86,23 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         mean_diameter=none,
         winding_length=none,
         wire_length=wire_length,
-        inductance_dc=inductance,
-        inductance=at_every(inductance, frequency),
-        q=stacked(
-            [
-                combined_q(
-                    _copper_q(
-                        float(f),
-                        inductance,
-                        wire_length,
-                        bare,
-                        ring_pitch(turns, outer, inner, height, overall),
-                    ),
-                    core_ceiling(cores, float(f))[support],
-                )
-                for f in frequency
-            ],
-            len(turns),
-        ),
+        inductance_dc=low_frequency,
+        inductance=inductance,
+        q=losses.q,
+        losses=losses,
         self_capacitance=ring_self_capacitance(outer),
-        spread=column([core.tolerance for core in cores])[support],
+        spread=ring_spread(column([core.tolerance for core in cores])[support], permeability, leak),
+        q_spread=losses.q_spread(
+            np.where(sizes.stranded, STRANDED_RESISTANCE_SPREAD, RING_COPPER_SPREAD)
+        ),
+        self_capacitance_spread=either_way(np.full(len(turns), RING_SPREAD)),
         tempco=at_every(column([core.tempco for core in cores])[support], frequency),
         tempco_spread=np.nan_to_num(column([core.tempco_tolerance for core in cores])[support]),
         price=wound_price([core.unit_price for core in cores], support, catalogue.wires, wire, wire_length),
         volume=np.pi / 4 * outer**2 * height,
-        wire_diameter=bare,
+        wire_diameter=sizes.bare,
         label=label,
+        cautions=cautions,
     )
 
 
@@ -92,6 +115,7 @@ def core_support(core: Core) -> Support:
         notes=core.notes,
         frequency_low=core.frequency_low,
         frequency_high=core.frequency_high,
+        adjust=core.adjust,
     )
 
 
@@ -110,20 +134,25 @@ def _al(core: Core) -> float:
     return float(ring_al(core.outer_diameter, core.inner_diameter, core.height, core.permeability or 1.0))
 
 
+def _leaking_permeability(core: Core) -> float:
+    """Return the permeability that decides on the leak; an AL that was measured holds its leak already."""
+    if core.al is not None or core.permeability is None:
+        return np.inf
+    return core.permeability
+
+
 def _layouts(cores: list[Core], wires: tuple[Wire, ...]) -> Layouts:
     rows = []
+    places = covered(wires)
+    overall = np.array([wires[w].overall_diameter for w in places])
     for i, core in enumerate(cores):
-        for w, wire in enumerate(wires):
-            assert core.inner_diameter is not None
-            if wire.bare or wire.strands > 1 or wire.overall_diameter >= core.inner_diameter:
-                continue
-            most = int(ring_turns_that_fit(core.inner_diameter, wire.overall_diameter))
-            if most > 0:
-                rows.append((i, w, 0.0, most))
+        assert core.inner_diameter is not None
+        for w, most in zip(places, ring_turns_that_fit(core.inner_diameter, overall), strict=True):
+            if most > 0 and not (wires[w].strands > 1 and _above_stranded(core)):
+                rows.append((i, w, 0.0, int(most)))
     return Layouts.of(rows)
 
 
-def _copper_q(f: float, inductance: Floats, wire_length: Floats, bare: Floats, pitch: Floats) -> Floats:
-    a_over_delta = bare / 2 / float(skin_depth(f))
-    resistance = ring_resistance(wire_resistance(wire_length, bare), a_over_delta, bare / pitch).total
-    return 2 * np.pi * f * inductance / resistance
+def _above_stranded(core: Core) -> bool:
+    """Return whether a core begins where stranded wire ends."""
+    return core.frequency_low is not None and core.frequency_low >= STRANDED_HIGHEST

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
@@ -13,6 +14,7 @@ from partpick.forms.block import (
     Floats,
     Ints,
     Layouts,
+    Losses,
     Support,
     at_every,
     column,
@@ -20,20 +22,28 @@ from partpick.forms.block import (
     stacked,
     wound_price,
 )
+from partpick.forms.copper import ABOVE_STRANDED, WireColumns, losses_of
 from partpick.parts import Catalogue, Former, Wire
 from partpick.physics.geometry import solenoid_wire_length
-from partpick.physics.loss import solenoid_resistance
-from partpick.physics.proximity import solenoid_proximity_factor
+from partpick.physics.proximity import few_turns_factor, proximity_factor_spread, solenoid_proximity_factor
 from partpick.physics.self_capacitance import solenoid_self_capacitance
-from partpick.physics.sheet import inductance_sensitivities
-from partpick.physics.skin import internal_inductance_ratio, skin_depth, wire_resistance
+from partpick.physics.self_capacitance import solenoid_spread as self_capacitance_spread
+from partpick.physics.skin import internal_inductance_ratio
 from partpick.physics.solenoid import high_frequency_inductance, solenoid_families
+from partpick.physics.spread import solenoid_model_spread, solenoid_spread
+from partpick.physics.stranded import STRANDED_HIGHEST, STRANDED_RESISTANCE_SPREAD
 from partpick.quantities import format_quantity
 
 MANDREL_LEAST_WIRE = 0.8e-3  # m, thinner wire does not stand by itself; common practice, no source
 MANDREL_STIFFNESS = 12  # mandrel diameter over wire, at most; common practice, no source
 MANDREL_PITCH = 1.3  # in wire diameters, at least; common practice, no source
-MODEL_SPREAD = 0.01  # of L at radio frequency: rings against helix 0.4 %, proximity term up to 1 %
+# How far pitch and diameter stray from what is meant, fractions: common practice, no source.
+PITCH_TOLERANCE = {"close": 0.03, "twin": 0.03, "groove": 0.005, "mandrel": 0.05}
+SPRINGBACK = 0.02  # a coil opens when it leaves its mandrel
+WIRE_TOLERANCE = 0.02  # of the overall diameter: the largest of the grade stands in the tables
+# Where the published proximity table is doubtful: turns that nearly touch, on a short coil.
+DOUBTFUL_D_OVER_S, DOUBTFUL_L_OVER_D = 0.7, 1.0
+DOUBTFUL = "close winding on a short coil: the table of proximity is doubtful there, Q may be 30 % off"
 
 
 def wire_pitch(former: Former, wire: Wire) -> float | None:
@@ -63,60 +73,89 @@ def _mandrel_pitch(former: Former, wire: Wire) -> float | None:
 
 
 def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
-    """Return every whole number of turns of every solid wire that fits each former, in one layer."""
+    """Return every whole number of turns of every wire that fits each former, in one layer."""
     formers = [former for former in catalogue.formers if enough(former.quantity, units)]
     layouts = _layouts(formers, catalogue.wires)
     layout, turns = layouts.coils()
     support, wire, pitch = layouts.support[layout], layouts.wire[layout], layouts.pitch[layout]
-    bare = np.array([w.bare_diameter for w in catalogue.wires])[wire]
-    overall = np.array([w.overall_diameter for w in catalogue.wires])[wire]
-    mean = np.array([former.diameter for former in formers])[support] + overall
-    length = turns * pitch
+    sizes = WireColumns.of(catalogue.wires, wire)
+    outside = column([former.diameter for former in formers])[support]
     dc = _family_inductances(formers, catalogue.wires, layouts)
-    coil = _Turns(turns, mean, pitch, bare)
-    inductance, q = coil.at(frequency, dc)
-    tolerance = column([former.tolerance for former in formers])[support]
+    coil = SingleLayer(turns, outside + sizes.overall, pitch, sizes)
+    inductance, losses = coil.at(frequency, dc)
+    lays = [_lay(former) for former in formers]
+    springback = np.array([SPRINGBACK if lay == "mandrel" else 0.0 for lay in lays])[support]
+    tolerance = np.hypot(column([former.tolerance for former in formers])[support], springback)
+    pitch_tolerance = column([PITCH_TOLERANCE[lay] for lay in lays])[support]
 
     def label(row: int) -> str:
         former, used = formers[support[row]], catalogue.wires[wire[row]]
-        close = former.pitch is None and former.support != "mandrel"
+        close = lays[support[row]] == "close"
         lay = "close wound" if close else f"pitch {format_quantity(float(pitch[row]), 'm')}"
-        return f"{turns[row]} turns of {used.name} on {former.name}, {lay}"
+        return f"{turns_in_words(turns[row])} of {used.name} on {former.name}, {lay}"
 
     return Block(
         form="solenoid",
+        tappable=True,
         effort_form=TUBE,
-        supports=tuple(
-            Support(name=f.name, quantity=f.quantity, source=f.source, notes=f.notes) for f in formers
-        ),
+        supports=tuple(former_support(former) for former in formers),
         wires=catalogue.wires,
         support=support,
         wire=wire,
         turns=turns,
         pitch=pitch,
-        mean_diameter=mean,
-        winding_length=length,
+        mean_diameter=coil.mean,
+        winding_length=coil.length,
         wire_length=coil.wire_length,
         inductance_dc=dc,
         inductance=inductance,
-        q=q,
-        self_capacitance=solenoid_self_capacitance(mean, length / mean),
-        spread=coil.spread(tolerance),
+        q=losses.q,
+        losses=losses,
+        self_capacitance=solenoid_self_capacitance(coil.mean, coil.l_over_d),
+        spread=coil.spread(coil.diameter_tolerance(outside, tolerance), pitch_tolerance, dc, inductance),
+        q_spread=losses.q_spread(coil.copper_spread),
+        self_capacitance_spread=np.stack(self_capacitance_spread(coil.l_over_d), axis=1),
         tempco=at_every(column([former.tempco for former in formers])[support], frequency),
         tempco_spread=np.nan_to_num(column([former.tempco_tolerance for former in formers])[support]),
         price=wound_price([f.unit_price for f in formers], support, catalogue.wires, wire, coil.wire_length),
-        volume=np.pi / 4 * (mean + overall) ** 2 * length,
-        wire_diameter=bare,
-        proportions=length / mean,
+        volume=np.pi / 4 * (coil.mean + sizes.overall) ** 2 * coil.length,
+        wire_diameter=sizes.bare,
+        proportions=coil.l_over_d,
         label=label,
+        cautions=coil.cautions,
     )
+
+
+def former_support(former: Former) -> Support:
+    """Return a former as what a coil is wound on."""
+    return Support(
+        name=former.name,
+        quantity=former.quantity,
+        source=former.source,
+        notes=former.notes,
+        adjust=former.adjust,
+    )
+
+
+def turns_in_words(turns: int) -> str:
+    """Return a count of turns, such as "1 turn", "2 turns"."""
+    return "1 turn" if turns == 1 else f"{turns} turns"
+
+
+def _lay(former: Former) -> str:
+    """Return how the turns lie: what holds them at their pitch."""
+    if former.support == "mandrel":
+        return "mandrel"
+    if former.pitch is None:
+        return "close"
+    return "twin" if former.pitch == "twin" else "groove"
 
 
 def _layouts(formers: list[Former], wires: tuple[Wire, ...]) -> Layouts:
     rows = []
     for i, former in enumerate(formers):
         for w, wire in enumerate(wires):
-            pitch = wire_pitch(former, wire) if wire.strands == 1 else None
+            pitch = wire_pitch(former, wire)
             if pitch is not None:
                 most = int(former.winding_length / pitch * (1 + FIT_ROUNDING))
                 if most > 0:
@@ -146,36 +185,70 @@ def _family_inductances(formers: list[Former], wires: tuple[Wire, ...], layouts:
 
 
 @dataclass(frozen=True, eq=False)
-class _Turns:
-    """The windings as physics sees them, (J,) each."""
+class SingleLayer:
+    """Windings of one layer as physics sees them, (J,) each."""
 
     turns: Ints
     mean: Floats
     pitch: Floats
-    bare: Floats
+    wire: WireColumns
 
-    @property
+    @cached_property
+    def length(self) -> Floats:
+        """Winding length. [m]"""
+        return self.turns * self.pitch
+
+    @cached_property
+    def l_over_d(self) -> Floats:
+        """Winding length over mean diameter. [-]"""
+        return self.length / self.mean
+
+    @cached_property
     def wire_length(self) -> Floats:
+        """Length of the wire in the winding. [m]"""
         return solenoid_wire_length(self.turns, self.mean, self.pitch)
 
-    def at(self, frequency: Floats, dc: Floats) -> tuple[Floats, Floats]:
-        """Return inductance and Q at each frequency, (J, B) each."""
-        factor = solenoid_proximity_factor(
-            self.turns, self.bare / self.pitch, self.turns * self.pitch / self.mean
-        )
-        resistance = wire_resistance(self.wire_length, self.bare)
-        inductances, qs = [], []
+    def at(self, frequency: Floats, dc: Floats) -> tuple[Floats, Losses]:
+        """Return inductance, (J, B), and losses at each frequency."""
+        factor = solenoid_proximity_factor(self.turns, self.wire.bare / self.pitch, self.l_over_d)
+        few = few_turns_factor(self.turns)
+        resistance = self.wire.dc_resistance(self.wire_length)
+        solid = ~self.wire.stranded
+        inductances, copper = [], []
         for f in frequency:
-            a_over_delta = self.bare / 2 / float(skin_depth(f))
-            internal = internal_inductance_ratio(a_over_delta)
-            inductance = high_frequency_inductance(dc, self.turns, self.mean, factor, a_over_delta, internal)
-            inductances.append(inductance)
-            qs.append(
-                2 * np.pi * f * inductance / solenoid_resistance(resistance, a_over_delta, factor).total
+            x = self.wire.a_over_delta(float(f))
+            shifted = high_frequency_inductance(
+                dc, self.turns, self.mean, factor, x, internal_inductance_ratio(x)
             )
-        return stacked(inductances, len(self.turns)), stacked(qs, len(self.turns))
+            # strands carry their current evenly: nothing is lost of their low-frequency inductance
+            inductances.append(np.where(solid, shifted, dc))
+            copper.append(
+                self.wire.single_layer(resistance, float(f), factor, self.pitch, self.l_over_d, few)
+            )
+        inductance = stacked(inductances, len(self.turns))
+        return inductance, losses_of(frequency, inductance, copper)
 
-    def spread(self, tolerance: Floats) -> Floats:
-        """Return what the former's tolerance and the model leave on the inductance. [fraction]"""
-        by_diameter = inductance_sensitivities(self.turns * self.pitch / self.mean).diameter
-        return np.hypot(by_diameter * tolerance, MODEL_SPREAD)
+    def diameter_tolerance(self, outside: Floats, tolerance: Floats) -> Floats:
+        """Return the tolerance of the mean diameter from that of what is wound on and of the wire."""
+        spread: Floats = np.hypot(outside * tolerance, self.wire.overall * WIRE_TOLERANCE) / self.mean
+        return spread
+
+    def spread(self, diameter: Floats, pitch: Floats, dc: Floats, inductance: Floats) -> Floats:
+        """Return what tolerances of diameter and pitch and the model leave on the inductance. [fraction]"""
+        shift = 1.0 - inductance.min(axis=1, initial=np.inf) / dc if inductance.size else np.zeros(len(dc))
+        model = solenoid_model_spread(self.turns, self.pitch / self.mean, shift)
+        return solenoid_spread(self.l_over_d, diameter, pitch, model)
+
+    @property
+    def copper_spread(self) -> Floats:
+        """Return the relative error of the copper's resistance. [fraction]"""
+        solid = proximity_factor_spread(self.wire.bare / self.pitch, self.l_over_d)
+        return np.where(self.wire.stranded, STRANDED_RESISTANCE_SPREAD, solid)
+
+    def cautions(self, row: int, frequency: float) -> tuple[str, ...]:
+        """Return what must be said of one coil at a frequency."""
+        if self.wire.strands[row] > 1:
+            return (ABOVE_STRANDED,) if frequency > STRANDED_HIGHEST else ()
+        touching = self.wire.bare[row] >= DOUBTFUL_D_OVER_S * self.pitch[row]
+        short = self.length[row] <= DOUBTFUL_L_OVER_D * self.mean[row]
+        return (DOUBTFUL,) if touching and short and self.turns[row] > 1 else ()

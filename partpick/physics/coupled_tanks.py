@@ -187,7 +187,7 @@ def pair_bandwidth(resonance: ArrayLike, q: ArrayLike, factor: ArrayLike) -> Flo
 
     Notes
     -----
-    Narrow band: within 1 % for a bandwidth up to a tenth of the resonance. 0.644 f/Q far below critical
+    Narrow band: within 2 % for a bandwidth up to a twentieth of the resonance. 0.644 f/Q far below critical
     coupling, sqrt(2) f/Q at it. From 2.414 times critical on the dip in the middle is deeper than 3 dB.
 
     References
@@ -269,8 +269,7 @@ def pair_transfer(
     """
     s = 2j * np.pi * np.asarray(frequency, float)
     z1, z2 = (
-        np.asarray(tank.series_resistance, float) + s * np.asarray(tank.inductance, float)
-        for tank in (first, second)
+        np.asarray(tank.series_resistance, float) + s * np.asarray(tank.inductance, float) for tank in (first, second)
     )
     sm = s * np.asarray(mutual, float)
     determinant = z1 * z2 - sm**2

@@ -59,9 +59,7 @@ class Divider(NamedTuple):
     lower: FloatArray
 
 
-def divider_load(
-    frequency: ArrayLike, upper: ArrayLike, lower: ArrayLike, resistance: ArrayLike
-) -> CapacitiveLoad:
+def divider_load(frequency: ArrayLike, upper: ArrayLike, lower: ArrayLike, resistance: ArrayLike) -> CapacitiveLoad:
     """Return what a resistance on a capacitive divider does to the tank.
 
     Parameters
@@ -95,9 +93,7 @@ def divider_load(
     return CapacitiveLoad((1.0 / seen.real)[()], (seen.imag / s.imag)[()])
 
 
-def divider_for(
-    frequency: ArrayLike, resistance: ArrayLike, across: ArrayLike, capacitance: ArrayLike
-) -> Divider:
+def divider_for(frequency: ArrayLike, resistance: ArrayLike, across: ArrayLike, capacitance: ArrayLike) -> Divider:
     """Return the divider that brings a resistance across the tank as a wanted one.
 
     Parameters

@@ -9,9 +9,7 @@ from scipy.interpolate import CubicSpline
 FloatArray = NDArray[np.float64]
 
 
-def usable_turns(
-    family: ArrayLike, least_turns: float = 3.0, continuous: bool = False
-) -> tuple[float, float]:
+def usable_turns(family: ArrayLike, least_turns: float = 3.0, continuous: bool = False) -> tuple[float, float]:
     """Return the fewest and the most turns between which the contact moves.
 
     Parameters

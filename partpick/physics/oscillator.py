@@ -8,12 +8,16 @@ circuit is the polynomial P(s) = A(s) + g B(s), whose roots are its natural mode
 from __future__ import annotations
 
 from functools import reduce
-from typing import NamedTuple
+from typing import Final, NamedTuple, TypeVar
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 FloatArray = NDArray[np.float64]
+_Number = TypeVar("_Number", np.float64, np.complex128)
+
+_NEAR: Final = (1e-12, 1e12)  # oscillations looked for, as the square of frequency over the tank's
+_NOTHING: Final = 1e-15  # share of the largest coefficient that counts as an absent part
 
 
 class Characteristic(NamedTuple):
@@ -94,7 +98,7 @@ def colpitts(
     """
     c1, c2, c3 = (np.asarray(c, float) for c in (output_capacitance, control_capacitance, shunt_capacitance))
     scale = _angular(inductance, c1 * c2 / (c1 + c2) + c3)
-    coil = _polynomial(series_resistance, scale * inductance)
+    coil = _polynomial(series_resistance, np.multiply(scale, inductance))
     return _three_point(coil, _polynomial(1.0), scale, c1, c2, c3, output_conductance, control_conductance)
 
 
@@ -148,7 +152,7 @@ def clapp(
     c1, c2, c3 = (np.asarray(c, float) for c in (output_capacitance, control_capacitance, shunt_capacitance))
     around = c1 * c2 / (c1 + c2) + c3
     scale = _angular(inductance, c0 * around / (c0 + around))
-    coil = _polynomial(1.0, scale * c0 * series_resistance, scale**2 * c0 * inductance)
+    coil = _polynomial(1.0, np.multiply(scale * c0, series_resistance), np.multiply(scale**2 * c0, inductance))
     over = _polynomial(0.0, scale * c0)
     return _three_point(coil, over, scale, c1, c2, c3, output_conductance, control_conductance)
 
@@ -205,13 +209,13 @@ def hartley(
     K. K. Clarke and D. T. Hess, Communication Circuits: Analysis and Design, Addison-Wesley 1971, chapter 6
     (from memory); tests/published/oscillator_hartley.csv.
     """
-    whole = np.asarray(output_inductance, float) + control_inductance + 2.0 * np.asarray(mutual, float)
-    scale = _angular(whole, capacitance)
-    z1 = _polynomial(output_resistance, scale * output_inductance)
-    z2 = _polynomial(control_resistance, scale * control_inductance)
-    sm, sc = _polynomial(0.0, scale * mutual), _polynomial(0.0, scale * capacitance)
-    y1 = _polynomial(output_conductance, scale * output_capacitance)
-    y2 = _polynomial(control_conductance, scale * control_capacitance)
+    whole = np.asarray(output_inductance, float) + np.asarray(control_inductance, float)
+    scale = _angular(whole + 2.0 * np.asarray(mutual, float), capacitance)
+    z1 = _polynomial(output_resistance, np.multiply(scale, output_inductance))
+    z2 = _polynomial(control_resistance, np.multiply(scale, control_inductance))
+    sm, sc = _polynomial(0.0, np.multiply(scale, mutual)), _polynomial(0.0, np.multiply(scale, capacitance))
+    y1 = _polynomial(output_conductance, np.multiply(scale, output_capacitance))
+    y2 = _polynomial(control_conductance, np.multiply(scale, control_capacitance))
     determinant = _sum(_product(z1, z2), -_product(sm, sm))
     both = _sum(_product(y1, y2), _product(sc, _sum(y1, y2)))
     passive = _sum(
@@ -252,7 +256,7 @@ def threshold(characteristic: Characteristic) -> Threshold:
     b_even, b_odd = _parts(characteristic.active)
     square = _roots(_sum(_product(a_odd, b_even), -_product(a_even, b_odd)))
     # products of the small coefficients leave roots on the real axis with a rounding's imaginary part
-    real = (np.abs(square.imag) <= 1e-7 * np.abs(square)) & (square.real > 1e-12)
+    real = (np.abs(square.imag) <= 1e-7 * np.abs(square)) & (square.real > _NEAR[0]) & (square.real < _NEAR[1])
     w2 = np.where(real, square.real, np.nan)
     ae, ao, be, bo = (_at(part, w2) for part in (a_even, a_odd, b_even, b_odd))
     needed = -(ae * be + w2 * ao * bo) / (be**2 + w2 * bo**2)
@@ -302,7 +306,7 @@ def _three_point(
     g2: ArrayLike,
 ) -> Characteristic:
     """Return the polynomial of a divider with the branch coil/over between its ends."""
-    y1, y2, y3 = (_polynomial(g, scale * c) for g, c in ((g1, c1), (g2, c2), (0.0, c3)))
+    y1, y2, y3 = (_polynomial(g, np.multiply(scale, c)) for g, c in ((g1, c1), (g2, c2), (0.0, c3)))
     around = _sum(over, _product(y3, coil))
     passive = _sum(_product(_product(y1, y2), coil), _product(around, _sum(y1, y2)))
     return _characteristic(passive, around, scale)
@@ -347,21 +351,23 @@ def _parts(polynomial: FloatArray) -> tuple[FloatArray, FloatArray]:
     return signed[..., 0::2], signed[..., 1::2]
 
 
-def _at(polynomial: FloatArray, x: FloatArray) -> FloatArray:
+def _at(polynomial: FloatArray, x: NDArray[_Number]) -> NDArray[_Number]:
     """Return each polynomial at its own row of places."""
-    powers = x[..., None] ** np.arange(polynomial.shape[-1])
-    return np.asarray(np.sum(polynomial[..., None, :] * powers, axis=-1))
+    result = np.zeros_like(x)
+    for k in range(polynomial.shape[-1] - 1, -1, -1):
+        result = result * x + polynomial[..., None, k]
+    return result
 
 
 def _roots(polynomial: FloatArray) -> NDArray[np.complex128]:
     """Return all roots of polynomials with constant first; nan where there are fewer than the degree.
 
-    Coefficients that are exactly zero at either end (an absent part) would make the companion matrix
-    singular or endless; rows of one pattern are solved together without them.
+    Coefficients that are nothing at either end (an absent part) would make the companion matrix singular or
+    endless; rows of one pattern are solved together without them.
     """
     flat = polynomial.reshape(-1, polynomial.shape[-1])
     roots = np.full((len(flat), flat.shape[1] - 1), np.nan, dtype=complex)
-    present = flat != 0.0
+    present = np.abs(flat) > _NOTHING * np.max(np.abs(flat), axis=1, keepdims=True)
     first = np.argmax(present, axis=1)
     last = flat.shape[1] - 1 - np.argmax(present[:, ::-1], axis=1)
     for low, high in sorted(set(zip(first.tolist(), last.tolist(), strict=True))):
@@ -372,5 +378,15 @@ def _roots(polynomial: FloatArray) -> NDArray[np.complex128]:
         companion = np.zeros((len(rows), degree, degree))
         companion[:, np.arange(1, degree), np.arange(degree - 1)] = 1.0
         companion[:, :, -1] = -flat[rows, low:high] / flat[rows, high, None]
-        roots[rows, :degree] = np.linalg.eigvals(companion)
+        roots[rows, :degree] = _polished(flat[rows, low : high + 1], np.linalg.eigvals(companion).astype(complex))
     return roots.reshape(*polynomial.shape[:-1], -1)
+
+
+def _polished(polynomial: FloatArray, roots: NDArray[np.complex128]) -> NDArray[np.complex128]:
+    """Return the roots after Newton steps: eigenvalues of unlike size cost one another digits."""
+    order = np.arange(1, polynomial.shape[-1])
+    for _ in range(3):
+        slope = _at(polynomial[..., 1:] * order, roots)
+        step = _at(polynomial, roots) / np.where(slope == 0.0, np.inf, slope)
+        roots = np.where(np.abs(step) < 0.1 * np.abs(roots), roots - step, roots)
+    return roots

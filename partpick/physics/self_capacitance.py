@@ -176,6 +176,33 @@ def layered_self_capacitance(
     return np.where(number >= 2.0, 4.0 * (number - 1.0) / (3.0 * number**2) * plates, np.nan)[()]
 
 
+def layer_distance(bare_diameter: ArrayLike, overall_diameter: ArrayLike) -> FloatArray:
+    """Return the distance of two plates that stand for two layers of round wire on one another.
+
+    Parameters
+    ----------
+    bare_diameter : float or (n,) array
+        Bare wire diameter, or that of a bundle. [m]
+    overall_diameter : float or (n,) array
+        Over the covering, above `bare_diameter`: the distance of turns and layers. [m]
+
+    Returns
+    -------
+    distance : float or (n,) array
+        Between plates with the same capacitance. [m]
+
+    Notes
+    -----
+    s arcosh(s/d)/pi for parallel round wires d, s from centre to centre, each over one of the other layer.
+
+    References
+    ----------
+    W. R. Smythe, Static and Dynamic Electricity, McGraw-Hill 1950, section 4.14 (two cylinders; from memory).
+    """
+    overall = np.asarray(overall_diameter, float)
+    return (overall * np.arccosh(overall / np.asarray(bare_diameter, float)) / np.pi)[()]
+
+
 def self_resonance_frequency(inductance: ArrayLike, self_capacitance: ArrayLike) -> FloatArray:
     """Return the frequency at which a coil resonates with its own capacitance.
 

@@ -95,7 +95,7 @@ def solenoid_spread(
 
 
 def ring_spread(al_tolerance: ArrayLike, permeability: ArrayLike, leak: ArrayLike) -> FloatArray:
-    """Return the spread of a ring's inductance, the leak counted in.
+    """Return the spread of a ring's inductance AL N^2, from its material and what runs outside the core.
 
     Parameters
     ----------
@@ -104,22 +104,22 @@ def ring_spread(al_tolerance: ArrayLike, permeability: ArrayLike, leak: ArrayLik
     permeability : float or (n,) array
         Relative permeability of the material. [-]
     leak : float or (n,) array
-        Inductance outside the core over AL N^2 (`cores.ring_leak`), already added to the nominal. [-]
+        Inductance outside the core over AL N^2 (`cores.ring_leak`), not counted in the nominal. [-]
 
     Returns
     -------
     spread : float or (n,) array
-        Root of the sum of squares, a fraction of the nominal with its leak. [-]
+        Root of the sum of squares, a fraction of AL N^2. [-]
 
     Notes
     -----
-    The leak is uncertain by half of itself for permeability 1, by all of itself above (`cores.ring_leak`).
+    The leak is uncertain by half of itself for permeability 1, by all of itself above (`cores.ring_leak`):
+    up to 1.5 or 2 times the leak may come on top.
 
     References
     ----------
     Propagation of independent errors.
     """
     outside = np.asarray(leak, float)
-    doubt = np.where(np.asarray(permeability, float) > 1.0, 1.0, 0.5) * outside
-    result: FloatArray = (np.hypot(np.asarray(al_tolerance, float), doubt) / (1.0 + outside))[()]
-    return result
+    doubt = np.where(np.asarray(permeability, float) > 1.0, 1.0, 0.5)
+    return np.hypot(np.asarray(al_tolerance, float), outside * (1.0 + doubt))[()]

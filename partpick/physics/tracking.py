@@ -70,9 +70,7 @@ class BestTracking(NamedTuple):
     worst_error: float
 
 
-def plain_circuit(
-    low: ArrayLike, high: ArrayLike, section_low: ArrayLike, section_high: ArrayLike
-) -> PlainCircuit:
+def plain_circuit(low: ArrayLike, high: ArrayLike, section_low: ArrayLike, section_high: ArrayLike) -> PlainCircuit:
     """Return the plain circuit that a gang section sweeps from end to end.
 
     Parameters
@@ -153,9 +151,7 @@ def padded_frequency(circuit: PaddedCircuit, section: ArrayLike) -> FloatArray:
     return result
 
 
-def tracking_error(
-    plain: PlainCircuit, padded: PaddedCircuit, frequency: ArrayLike, distance: ArrayLike
-) -> FloatArray:
+def tracking_error(plain: PlainCircuit, padded: PaddedCircuit, frequency: ArrayLike, distance: ArrayLike) -> FloatArray:
     """Return by how much the padded circuit misses its distance from the plain one.
 
     Parameters
@@ -228,6 +224,11 @@ def three_point_circuit(section: ArrayLike, frequency: ArrayLike, across: ArrayL
         the section gives, and the padder belongs to the other circuit. A trimmer below zero means that the
         strays already in circuit are too many. [H, F]
 
+    Raises
+    ------
+    LinAlgError
+        If two of the settings are alike.
+
     Notes
     -----
     1/w^2 = a - b/(C + c) with a = L (across + P), b = L P^2, c = T + P: linear in a, c and a c - b, so that
@@ -248,9 +249,7 @@ def three_point_circuit(section: ArrayLike, frequency: ArrayLike, across: ArrayL
     return _from_fractions(solved, scale_c, scale_y, np.asarray(across, float))
 
 
-def _from_fractions(
-    solved: FloatArray, unit_c: FloatArray, unit_y: FloatArray, across: FloatArray
-) -> PaddedCircuit:
+def _from_fractions(solved: FloatArray, unit_c: FloatArray, unit_y: FloatArray, across: FloatArray) -> PaddedCircuit:
     """Return the circuit from a, c and a c - b in units of a capacitance and of 1/w^2."""
     a, c = solved[..., 0] * unit_y, solved[..., 1] * unit_c
     b = a * c - solved[..., 2] * unit_y * unit_c
@@ -259,9 +258,7 @@ def _from_fractions(
     return PaddedCircuit((b / padder**2)[()], padder[()], (c - padder)[()], across[()])
 
 
-def best_tracking(
-    plain: PlainCircuit, low: float, high: float, distance: float, across: float = 0.0
-) -> BestTracking:
+def best_tracking(plain: PlainCircuit, low: float, high: float, distance: float, across: float = 0.0) -> BestTracking:
     """Return the padded circuit whose worst tracking error over a range is least.
 
     Parameters

@@ -14,9 +14,7 @@ POTENTIAL_TEMPCO: Final = -2e-3  # V/K
 _QUADRATURE: Final = 64  # points over half a cycle of rf
 
 
-def junction_capacitance(
-    bias: ArrayLike, zero_bias: ArrayLike, potential: ArrayLike, grading: ArrayLike
-) -> FloatArray:
+def junction_capacitance(bias: ArrayLike, zero_bias: ArrayLike, potential: ArrayLike, grading: ArrayLike) -> FloatArray:
     """Return the capacitance of one reverse-biased junction.
 
     Parameters
@@ -45,9 +43,7 @@ def junction_capacitance(
     return (np.asarray(zero_bias, float) * depleted ** -np.asarray(grading, float))[()]
 
 
-def bias_for(
-    capacitance: ArrayLike, zero_bias: ArrayLike, potential: ArrayLike, grading: ArrayLike
-) -> FloatArray:
+def bias_for(capacitance: ArrayLike, zero_bias: ArrayLike, potential: ArrayLike, grading: ArrayLike) -> FloatArray:
     """Return the reverse voltage at which one junction has a capacitance.
 
     Parameters

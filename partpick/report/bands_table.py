@@ -20,6 +20,9 @@ from partpick.report.text import (
 from partpick.result import BandFigures, Candidate, PartLine
 
 LONGEST_NAME = 14
+OHM = "\u03a9"
+CAUSES = ("skin", "proximity", "core", "former", "capacitors", "trimmer", "tuning")
+PARTED = 0.001  # of the frequency: the least floor
 _INDENT = 2
 _FIXED_HEAD = ["band", "target", "error", "off by", "Q", "\u03a9", "per pF", "strays"]
 _SWEPT_HEAD = ["band", "wanted", "tunes", "excess", "Q", "\u03a9"]
@@ -108,6 +111,53 @@ def _number(band: BandFigures, key: str) -> float | None:
     return float(value) if isinstance(value, (int, float)) else None
 
 
+def _loaded_q(band: BandFigures) -> str:
+    load = band.extra.get("load")
+    return f"loaded Q {figure(load.get('loaded_q'))}, " if isinstance(load, dict) else ""
+
+
+def _load_in_words(band: BandFigures) -> list[str]:
+    """Return the damping resistor and how far a neighbour is kept out, where a load is stated."""
+    load = band.extra.get("load")
+    if not isinstance(load, dict):
+        return []
+    told = []
+    if load.get("damping_resistor_ohm") is not None:
+        told.append(f"{format_quantity(load['damping_resistor_ohm'], OHM)} across it to damp")
+    elif load.get("across_ohm") is not None:
+        told.append(f"load to look like {format_quantity(load['across_ohm'], OHM, 3)} across it")
+    rejection = load.get("rejection_db")
+    if isinstance(rejection, dict) and load.get("offset_hz") is not None:
+        sides = [f"{figure(rejection[side], 2)} dB {side}" for side in ("below", "above")]
+        told.append(f"at {format_quantity(load['offset_hz'], 'Hz')} off down by {' and '.join(sides)}")
+    return told
+
+
+def _loss_in_words(band: BandFigures) -> str:
+    """Return which causes take how much of the loss, such as "loss: skin 63 %, proximity 22 %"."""
+    loss = band.extra.get("loss")
+    total = loss.get("total") if isinstance(loss, dict) else None
+    if not isinstance(loss, dict) or not total:
+        return ""
+    causes = [cause for cause in CAUSES if cause in loss]
+    if loss.get("skin") is None:  # of a bought coil nobody says what its loss is made of
+        causes.insert(0, "coil")
+    shares = [(cause, loss[cause] / total) for cause in causes if loss[cause]]
+    return "loss: " + ", ".join(f"{cause} {format_percent(share, 2)}" for cause, share in shares)
+
+
+def _parted_resonances(band: BandFigures) -> str:
+    """Return the resonances of a lossy tank where they are apart by more than errors that count."""
+    parted = band.extra.get("lossy_resonances")
+    if not isinstance(parted, dict) or not band.resonance:
+        return ""
+    unity, peak, ringing = (parted[f"{name}_hz"] for name in ("unity_power_factor", "greatest_impedance", "ringing"))
+    if max(abs(f / band.resonance - 1) for f in (unity, peak, ringing)) <= PARTED:
+        return ""
+    shown = [format_quantity(f, "Hz", 5) for f in (unity, peak, ringing)]
+    return f"real at {shown[0]}, greatest impedance at {shown[1]}, rings at {shown[2]}"
+
+
 def _in_circuit(band: BandFigures, candidate: Candidate) -> str:
     """Return coil, capacitors and what else belongs to the band, in words."""
     tap = f" (tap at turn {band.tap_turns})" if band.tap_turns is not None else ""
@@ -120,7 +170,12 @@ def _in_circuit(band: BandFigures, candidate: Candidate) -> str:
     if band.contacts:
         told.append(f"contacts {', '.join(band.contacts)}")
     if band.bandwidth is not None:
-        told.append(f"bandwidth {format_quantity(band.bandwidth, 'Hz')}")
+        told.append(f"{_loaded_q(band)}bandwidth {format_quantity(band.bandwidth, 'Hz')}")
+    told += _load_in_words(band)
+    if loss := _loss_in_words(band):
+        told.append(loss)
+    if parted := _parted_resonances(band):
+        told.append(parted)
     if band.drift is not None:
         spread = "" if band.drift_spread is None else f" \u00b1{figure(band.drift_spread * 1e6, 2)}"
         told.append(f"drift {figure(band.drift * 1e6, 2, '+')}{spread} ppm/K")

@@ -5,18 +5,20 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 
+from partpick.connection import Connection, Parallel, Part, Series, parse_connection
 from partpick.quantities import format_quantity
-from partpick.report.connection import Connection, Parallel, Part, Series, parse_connection
 from partpick.report.text import cut, quantity
 from partpick.report.vector import circle, line, number, svg, words
 from partpick.result import BandFigures, Candidate, PartLine
 
 LETTER = 7.0  # width of a letter at 12 units, generous
+BOLD = 7.8
 CELL_HEIGHT = 46.0
 LEAST_CELL = 64.0
 PLATE, GAP = 9.0, 3.0  # half height of a plate, half distance between two
 BUS = 16.0  # x of the line from the hot end of the coil
 CONTACT = 62.0  # width of a switch contact with its leads
+HEADING = 26.0  # room for the name of a band
 LONGEST_NAME = 34
 
 
@@ -39,11 +41,11 @@ def circuit(candidate: Candidate, reference: str) -> str:
     start = BUS + (CONTACT if switched else 18.0)
     longest = max([LEAST_CELL * 2, *(box.width for box in boxes if box), *map(_width_of_name, bands)])
     rail = start + longest + 18.0
-    lines, y = _coil(candidate, reference, rail), 58.0
+    lines, y, last = _coil(candidate, reference, rail), 54.0, 40.0
     for band, box in zip(bands, boxes, strict=True):
-        drawn, y = _branch(band, box, labels, start, rail, y)
+        drawn, last, y = _branch(band, box, labels, start, rail, y)
         lines += drawn
-    lines += [line(BUS, 40.0, BUS, y), line(rail, 40.0, rail, y + 14), *_ground(rail, y + 14)]
+    lines += [line(BUS, 40.0, BUS, last), line(rail, 40.0, rail, y + 14), *_ground(rail, y + 14)]
     return svg(rail + 16.0, y + 34.0, lines, f"Circuit of {reference} and what each position puts across it")
 
 
@@ -64,7 +66,7 @@ def _labels(parts: tuple[PartLine, ...]) -> dict[str, str]:
 
 
 def _width_of_name(band: BandFigures) -> float:
-    return LETTER * len(_name(band)) - CONTACT
+    return BOLD * len(_name(band)) - CONTACT
 
 
 def _name(band: BandFigures) -> str:
@@ -112,17 +114,17 @@ def _draw(box: _Box, labels: Mapping[str, str], x: float, y: float, width: float
 
 def _branch(
     band: BandFigures, box: _Box | None, labels: Mapping[str, str], start: float, rail: float, y: float
-) -> tuple[list[str], float]:
-    """Return one band's row below y, and the y of its line's lower end."""
+) -> tuple[list[str], float, float]:
+    """Return one band's row below y, the y of its line, and that of its lower end."""
     height = box.height if box else CELL_HEIGHT
-    middle = y + 20 + height / 2
+    middle = y + HEADING + height / 2
     lines = [words(BUS + 8, y + 14, _name(band), "strong")]
     lines += _contact(band, start, middle) if band.contacts else [line(BUS, middle, start, middle)]
     if box is None:
         lines += [words(start + 6, middle + 4, "no capacitor: strays alone", "")]
     else:
         lines += _draw(box, labels, start, middle, rail - start)
-    return lines, y + 20 + height
+    return lines, middle, y + HEADING + height
 
 
 def _contact(band: BandFigures, start: float, y: float) -> list[str]:

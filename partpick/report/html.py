@@ -34,6 +34,11 @@ def bullets(lines: Sequence[str]) -> str:
     return element("ul", "".join(element("li", text(line)) for line in lines)) if lines else ""
 
 
+def steps(lines: Sequence[str]) -> str:
+    """Return a numbered list of texts."""
+    return element("ol", "".join(element("li", text(line)) for line in lines)) if lines else ""
+
+
 def pairs(rows: Sequence[tuple[str, str | None]]) -> str:
     """Return terms with their values, those without a value left out."""
     told = [f"<dt>{text(term)}</dt><dd>{text(value)}</dd>" for term, value in rows if value is not None]

@@ -10,8 +10,8 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 
+from partpick.connection import Connection, Part, Series, parse_connection, without
 from partpick.quantities import format_quantity
-from partpick.report.connection import Connection, Part, Series, parse_connection, without
 from partpick.report.text import clean
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, PartLine, Result
@@ -74,7 +74,7 @@ def _points(band: BandFigures) -> list[tuple[float, float | None, str]]:
     """Return frequency, tuning capacitance and words of each tank of a band: one, or both ends of its range."""
     if band.resonance is not None:
         return [(band.resonance, None, "")]
-    points = []
+    points: list[tuple[float, float | None, str]] = []
     for key, element, words in (
         ("tuned_low_hz", "tuning_high_f", " tuned to its low end"),
         ("tuned_high_hz", "tuning_low_f", " tuned to its high end"),

@@ -88,6 +88,7 @@ def _candidate(candidate: Candidate) -> Entry:
         "coils": [_coil(coil) for coil in candidate.coils],
         "parts": [_part(part) for part in candidate.parts],
         "warnings": list(candidate.warnings),
+        **candidate.extra,
     }
 
 

@@ -6,6 +6,8 @@ from collections.abc import Sequence
 
 from partpick.quantities import format_percent, format_quantity
 from partpick.report.bands_table import bands_in_full, share_of_strays, swept_range, with_labels, worst_q
+from partpick.report.spread_table import built_units
+from partpick.report.stress_table import stress_lines
 from partpick.report.text import (
     clean,
     columns,
@@ -30,11 +32,13 @@ def result_table(result: Result) -> str:
     blocks = [_heading(result)]
     if result.candidates:
         first = result.candidates[0]
-        blocks += [_ranking(result), _in_full(f"Rank {_rank(first)} in full", first), _front(result.front)]
+        blocks += [_ranking(result), _in_full(f"Rank {_rank(first)} in full", first)]
+        blocks += [built_units(result.request, first), stress_lines(first), _front(result.front)]
     else:
         blocks += [_nothing(result)]
         if result.nearest_miss is not None:
             blocks += [_in_full("The nearest miss, outside the limits", result.nearest_miss)]
+            blocks += [stress_lines(result.nearest_miss)]
     blocks += [_proof(result), _warnings(result)]
     return "\n\n".join("\n".join(block) for block in blocks if block) + "\n"
 
@@ -174,10 +178,17 @@ def coil_in_words(coil: CoilFigures) -> str:
         told.append(f"winding {length(coil.winding_length)} long")
     if coil.wire_length is not None:
         told.append(f"{length(coil.wire_length)} of wire")
-    told.append(quantity(coil.inductance, "H", 4))
+    told.append(quantity(coil.inductance, "H", 4) + _either_way(coil.extra.get("inductance_spread")))
+    if isinstance(adjust := coil.extra.get("adjust"), float) and adjust > 0:
+        told.append(f"adjustable{_either_way(adjust)}")
     if coil.self_capacitance is not None:
         told.append(f"self-capacitance {quantity(coil.self_capacitance, 'F', 2)}")
     return ", ".join(told)
+
+
+def _either_way(spread: object) -> str:
+    """Return a spread such as " ±2.1 %", "" where it is unknown."""
+    return f" \u00b1{format_percent(spread, 2)}" if isinstance(spread, float) else ""
 
 
 def _for_bands(coil: CoilFigures, candidate: Candidate) -> str:
@@ -232,14 +243,15 @@ def _nothing(result: Result) -> list[str]:
 
 
 def _proof(result: Result) -> list[str]:
-    lines = wrapped(_how_sure(result.proof, bool(result.candidates)), 0, 2)
+    lines = wrapped(how_sure(result.proof, bool(result.candidates)), 0, 2)
     lines += wrapped(f"Searched: {result.proof.searched}", 0, 2) if result.proof.searched else []
     if result.candidates:
         lines += wrapped(f"Errors below {format_percent(result.floor, 2)} are noise: parts vary more.")
     return lines
 
 
-def _how_sure(proof: Proof, found: bool) -> str:
+def how_sure(proof: Proof, found: bool) -> str:
+    """Return in words how far the answer is proven."""
     stopped = f"the search was stopped ({proof.stopped_by})" if proof.stopped_by else "the search has ended"
     if proof.status == "optimal":
         return "Proven: nothing that was left out would rank before what is shown."

@@ -12,7 +12,7 @@ import numpy as np
 
 from partpick.search.choose import ORDERS, Choice
 from partpick.search.columns import ColumnSource
-from partpick.search.figures import coarse_error, fine_error, quality_class, stray_class, whole_excess
+from partpick.search.figures import coarse_error, fine_error, whole_excess
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 
 IMPOSSIBLE = 1000  # fewest parts where a coil cannot serve a band
@@ -77,23 +77,13 @@ class Bounds:
         # what leads by error and on the front, by number of parts
         self.leading = excesses if problem.led_by_excess else self.errors
         self.least_leading = self.least_excess if problem.led_by_excess else self.least_error
-        worse = np.maximum(problem.coil_loss, problem.coil_loss_low)  # of a swept band's two ends
-        loss = np.where(problem.swept[None, :], worse, problem.coil_loss)
-        self.q_class = quality_class(loss, problem.q_enough[None, :])
-        self.stray_class = self._least_stray_class()
+        self.q_class, self.stray_class, self.reactance_class = source.least_classes()
 
     def _at_fewest_and_least(self, levels: list[Floats]) -> tuple[Floats, Floats]:
         stacked = np.array(levels)
         fewest = np.minimum(self.fewest, len(stacked) - 1)[None]
         at_fewest = np.take_along_axis(stacked, fewest, axis=0)[0]
         return at_fewest, np.where(self.possible, stacked.min(axis=0), np.inf)
-
-    def _least_stray_class(self) -> Ints:
-        p = self.problem
-        error = np.minimum(p.error_limit, 0.999)[None, :]
-        most = np.where(p.swept[None, :], p.most_at_high_end, p.wanted / (1 - error) ** 2)
-        strays = p.self_capacitance[:, None] + p.stray[None, :]
-        return stray_class(strays / most)
 
     def classes(self, by: str) -> dict[str, Ints]:
         """Return the per-band figures that enter the bound, (J, B) each."""
@@ -110,7 +100,7 @@ class Bounds:
             "coarse_excess": _whole(lambda some: whole_excess(some, 1e-12) // _COARSE, excess),
             "q_class": self.q_class,
             "stray_class": self.stray_class,
-            "reactance_class": p.reactance_class,
+            "reactance_class": self.reactance_class,
             "price": self._least_price(),
         }
         fields = packed_fields(p, by)

@@ -55,7 +55,7 @@ class Stopped(Exception):
 
 
 def column_content(problem: Problem, columns: Columns, row: int) -> tuple[object, ...]:
-    """Return what orders equal columns: values, connection, grades, coil; never row numbers.
+    """Return what orders equal columns: values, connection, grades, coil, tap; never row numbers.
 
     The connection is the shape of the network, then the place by content of the series padder, -1 for none.
     """
@@ -65,7 +65,7 @@ def column_content(problem: Problem, columns: Columns, row: int) -> tuple[object
     padder = columns.series_padder(row)
     in_series = -1 if padder is None else int(problem.part_rank[padder])
     connection = int(columns.shape[row]), in_series
-    return values, connection, ranks, int(problem.coil_rank[columns.coil[row]])
+    return values, connection, ranks, int(problem.coil_rank[columns.coil[row]]), int(columns.tap[row])
 
 
 def plan_effort(problem: Problem, coils: tuple[int, ...]) -> tuple[int, ...]:

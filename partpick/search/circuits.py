@@ -6,7 +6,10 @@ band's own network. Rows are (coil, band, parts); parts are padded with -1.
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
+from numpy.typing import NDArray
 
 from partpick.search.figures import Columns, coarse_error, fine_error, quality_class, stray_class
 from partpick.search.networks import PARALLEL
@@ -14,6 +17,7 @@ from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 
 _ROUNDING = 1e-12
 
+AnyInts = NDArray[np.integer[Any]]
 Windows = tuple[tuple[Floats, Floats], tuple[Floats, Floats]]
 
 
@@ -52,16 +56,16 @@ class Circuits:
         self._fixed = problem.fixed_capacitance()
         self._limits = [problem.windows(parts) for parts in (0, 1)]
 
-    def sums(self, band: int, parts: Ints) -> Floats:
+    def sums(self, band: int, parts: AnyInts) -> Floats:
         """Return the capacitance of each row of parts at a band, (m,); inf where one is of no use there. [F]"""
         values = np.where(self._usable[band], self._value[band], np.inf)
         return np.asarray(values[parts].sum(axis=1))
 
-    def commonness(self, parts: Ints) -> Ints:
+    def commonness(self, parts: AnyInts) -> Ints:
         """Return the summed commonness of each row of parts, (m,). [-]"""
         return np.asarray(self._commonness[parts].sum(axis=1))
 
-    def price(self, parts: Ints) -> Ints:
+    def price(self, parts: AnyInts) -> Ints:
         """Return the price of each row of parts in hundredths, NEVER where one is unknown, (m,). [-]"""
         return np.minimum(self._price[parts].sum(axis=1), NEVER)
 
@@ -93,7 +97,7 @@ class Circuits:
         )
         return none, some
 
-    def columns(self, coil: Ints, band: Ints, parts: Ints) -> tuple[Columns, Bools]:
+    def columns(self, coil: Ints, band: Ints, parts: AnyInts) -> tuple[Columns, Bools]:
         """Return the figures of each row, and whether it is inside every limit of its band.
 
         Parameters
@@ -129,8 +133,9 @@ class Circuits:
         whole = np.zeros(len(coil), dtype=np.int64)
         columns = Columns(
             coil=coil,
-            parts=parts,
+            parts=parts.astype(np.int64),
             series=whole - 1,
+            tap=whole,
             shape=np.full(len(coil), PARALLEL, np.int8),
             network=network,
             error=error,
@@ -156,7 +161,7 @@ class Circuits:
         most = np.where(some, high_some[coil, band], high[coil, band])
         return np.asarray((nominal >= least) & (nominal <= most))
 
-    def _drift(self, coil: Ints, band: Ints, parts: Ints, share: Floats, network: Floats) -> Floats:
+    def _drift(self, coil: Ints, band: Ints, parts: AnyInts, share: Floats, network: Floats) -> Floats:
         """Return |df/f| per kelvin, nominal plus spread, with the trimmer set on frequency. [1/K]"""
         p = self.problem
         strays = p.self_capacitance[coil] + p.stray[band]
@@ -175,7 +180,7 @@ def _with_blank(of_parts: np.ndarray, blank: object) -> np.ndarray:  # type: ign
     return np.concatenate([of_parts, column], axis=-1)
 
 
-def distinct(coil: Ints, letters: Ints, count: int) -> tuple[Ints, Ints]:
+def distinct(coil: Ints, letters: AnyInts, count: int) -> tuple[Ints, Ints]:
     """Return one row of each different (coil, letters), and the place of every row among those.
 
     Parameters
@@ -193,16 +198,21 @@ def distinct(coil: Ints, letters: Ints, count: int) -> tuple[Ints, Ints]:
         if room < count + 1:
             keys.append(np.zeros_like(coil))
             room = np.iinfo(np.int64).max
-        keys[-1] = keys[-1] * (count + 1) + (column + 1)
+        keys[-1] = keys[-1] * (count + 1) + (column.astype(np.int64) + 1)
         room //= count + 1
+    return distinct_rows(keys)
+
+
+def distinct_rows(keys: list[Ints]) -> tuple[Ints, Ints]:
+    """Return one row of each different tuple of keys, and the place of every row among those. [-]"""
     if len(keys) == 1:
         _, first, place = np.unique(keys[0], return_index=True, return_inverse=True)
         return first, place
     order = np.lexsort(keys)
-    new = np.zeros(len(coil), dtype=np.bool_)
+    new = np.zeros(len(order), dtype=np.bool_)
     new[:1] = True
     for key in keys:
         new[1:] |= np.diff(key[order]) != 0
-    place = np.empty(len(coil), dtype=np.int64)
+    place = np.empty(len(order), dtype=np.int64)
     place[order] = np.cumsum(new) - 1
     return order[new], place

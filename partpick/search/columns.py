@@ -39,12 +39,24 @@ class ColumnSource:
             values = problem.species[band][valid]
             most = problem.most_parts if len(values) else 0
             self.tables.append(network_tables(values, most, problem.connect_any))
+        self.grades = Grades(problem)
+        self._prepare()
+
+    def _prepare(self) -> None:
+        """Make what depends on the coils."""
+        problem = self.problem
         self.levels = [
             problem.windows(parts) for parts in (0, 1)
         ]  # windows differ only by the share limit, which a band without capacitors is spared
-        self.grades = Grades(problem)
         self._swept = SweptColumns(problem, self.tables, self.valid, self.grades)
         self._least_excess = LeastExcess(problem, self.tables, self.valid)
+
+    def sharing_tables(self, problem: Problem) -> ColumnSource:
+        """Return a source for other coils with the same capacitors and bands."""
+        other = ColumnSource.__new__(ColumnSource)
+        other.problem, other.valid, other.tables, other.grades = problem, self.valid, self.tables, self.grades
+        other._prepare()
+        return other
 
     def _same_as_before(self, band: int) -> int | None:
         for earlier in range(band):
@@ -89,6 +101,16 @@ class ColumnSource:
         0 for fixed bands; the least excess itself where no capacitor has series inductance. [-]
         """
         return self._least_excess.level(parts)
+
+    def least_classes(self) -> tuple[Ints, Ints, Ints]:
+        """Return the least Q, stray and reactance class that each coil may have, (J, B) each. [-]"""
+        p = self.problem
+        worse = np.maximum(p.coil_loss, p.coil_loss_low)  # of a swept band's two ends
+        loss = np.where(p.swept[None, :], worse, p.coil_loss)
+        error = np.minimum(p.error_limit, 0.999)[None, :]
+        most = np.where(p.swept[None, :], p.most_at_high_end, p.wanted / (1 - error) ** 2)
+        strays = p.self_capacitance[:, None] + p.stray[None, :]
+        return quality_class(loss, p.q_enough[None, :]), stray_class(strays / most), p.reactance_class.copy()
 
     def columns(self, coil: int, band: int, parts: int, lead: float | None = None) -> Columns:
         """Return every column of `parts` parts inside all limits of one band.
@@ -150,6 +172,7 @@ class ColumnSource:
             coil=whole + coil,
             parts=padded(chosen, p.most_parts),
             series=whole - 1,
+            tap=whole,
             shape=rows.shape,
             network=network,
             error=error,

@@ -21,6 +21,7 @@ class Columns:
     coil: Ints
     parts: Ints  # (m, most parts), the parallel network first, then the series padder
     series: Ints  # the part that is the series padder, -1: none
+    tap: Ints  # turns of the section in use, 0: the whole coil
     shape: NDArray[np.int8]
     network: Floats  # F, effective
     error: Floats  # signed fraction; 0 for a swept band

@@ -23,7 +23,8 @@ from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 _LAST = np.iinfo(np.int64).max
 SMALLEST_ERROR = 1e-7  # first error tried where the error leads
 LARGEST_ERROR = 0.5  # beyond it the limits alone
-BLOCK = 256  # coils tried at one time
+BLOCK = 256  # coils tried at one time; twice as many after each failure
+LARGEST_BLOCK = {"build": 512, "error": 8192, "price": 512}
 
 
 class Attempt(NamedTuple):
@@ -41,9 +42,12 @@ class Engine(Protocol):
     least_pieces: Ints  # (J,) capacitors, IMPOSSIBLE where nothing serves
     most_pieces: int
     least_error: Floats  # (J,)
+    error_step: float  # factor from one error tried to the next
 
-    def attempt(self, coils: Ints, attempt: Attempt, by: str) -> dict[int, Choice]:
-        """Return the first choice in the order `by` of each coil that has one inside the attempt.
+    def attempt(self, coils: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
+        """Return the first choices in the order `by`, and all coils that have one inside the attempt.
+
+        Choices that rank behind `wanted` other rows of the same trial may be left out.
 
         Raises
         ------
@@ -83,7 +87,7 @@ class _Steps:
         first = SMALLEST_ERROR if problem.by == "error" else problem.floor
         steps = [first]
         while steps[-1] < min(limit, LARGEST_ERROR):
-            steps.append(steps[-1] * 2)
+            steps.append(steps[-1] * (self.engine.error_step if problem.by == "error" else 2.0))
         return np.array([*steps[:-1], np.inf])
 
     def _coil_figures(self) -> dict[str, Ints]:
@@ -197,7 +201,7 @@ def search_layout(
 
 
 def _rank(engine: Engine, coils: Ints, ranking: _Ranking, found: Found, monitor: Monitor) -> None:
-    steps = _Steps(engine)
+    steps, size = _Steps(engine), BLOCK
     bound = np.full(engine.problem.coils, _LAST, dtype=np.int64)
     bound[coils] = steps.bounds(coils)
     while True:
@@ -211,24 +215,57 @@ def _rank(engine: Engine, coils: Ints, ranking: _Ranking, found: Found, monitor:
         if reason is not None:
             raise Stopped(reason)
         monitor.report("the best plans", f"{len(ranking.best)} found")
-        block = _together(steps, order)
+        block = _together(steps, order[:size])
         worth = np.array([ranking.worth_it((int(j),), int(bound[j])) for j in block], dtype=np.bool_)
         tried = block[worth]
-        solved: list[int] = []
+        solved = np.empty(0, dtype=np.int64)
         if len(tried):
-            for choice in engine.attempt(tried, steps.attempt(tried), ranking.by).values():
+            made, solved = engine.attempt(tried, steps.attempt(tried), ranking.by)
+            for choice in made.values():
                 ranking.add(choice)
-                solved.append(choice.coils[0])
+        size = BLOCK if len(solved) else min(2 * size, LARGEST_BLOCK[ranking.by])
         again = steps.advance(np.setdiff1d(tried, solved))
         bound[again] = steps.bounds(again)
         coils = np.concatenate([np.setdiff1d(coils, block), again])
 
 
-def _together(steps: _Steps, order: Ints) -> Ints:
-    """Return the next coils that share an attempt with the first of them."""
-    head = order[:BLOCK]
+def _together(steps: _Steps, head: Ints) -> Ints:
+    """Return the first coils that share an attempt."""
     alike = steps.kind(head) == steps.kind(head[:1])
     return head[: int(np.argmin(alike))] if not alike.all() else head
+
+
+def worth_naming(
+    problem: Problem, coils: Ints, keys: Ints, inside: Bools, wanted: int, all_windings: bool
+) -> list[int]:
+    """Return the rows that may be among the first `wanted`, one a support unless `all_windings`; ties stay.
+
+    Parameters
+    ----------
+    problem : Problem
+        Knows the supports.
+    coils, keys, inside : (m,), (m, steps) and (m,) arrays
+        The coil of each row, its figures in the order, and whether it counts. [-]
+    wanted : int
+        How many rows. [-]
+    all_windings : bool
+        Each coil is a row of its own. [-]
+    """
+    rows = np.flatnonzero(inside)
+    if not len(rows):
+        return []
+    order = rows[np.lexsort(keys[rows].T[::-1])]
+    leaders: dict[int, int] = {}
+    named: list[int] = []
+    for row in order.tolist():
+        group = int(coils[row]) if all_windings else int(problem.support[coils[row]])
+        leader = leaders.get(group)
+        if leader is None and len(leaders) >= wanted and (keys[row] != keys[named[-1]]).any():
+            break
+        leaders.setdefault(group, row)
+        if leader is None or (keys[row] == keys[leader]).all():
+            named.append(row)
+    return named
 
 
 def least_grid_error(problem: Problem, acting: Floats) -> Floats:

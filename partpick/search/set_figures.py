@@ -6,12 +6,12 @@ figures first, so a set's place in the order does not depend on any other set.
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
 import numpy as np
 
-from partpick.search.choose import ORDERS, Choice, column_content
+from partpick.search.choose import ORDERS, SUMS, Choice, column_content
 from partpick.search.circuits import Circuits, Windows
 from partpick.search.figures import Columns
 from partpick.search.grades import Grades
@@ -57,8 +57,27 @@ class SetFigures:
                 if group[0] in options:
                     self.species[letter] = species
 
-    def best(self, found: Iterable[Sets], windows: Windows, by: str) -> dict[int, SharedChoice]:
-        """Return the first choice of each coil among all sets found, each of them served inside `windows`."""
+    def best(
+        self,
+        found: Iterable[Sets],
+        windows: Windows,
+        by: str,
+        narrow: Callable[[int, float], None] | None = None,
+    ) -> dict[int, SharedChoice]:
+        """Return the first choice of each coil among all sets found, each of them served inside `windows`.
+
+        Parameters
+        ----------
+        found : iterable of Sets
+            The sets.
+        windows : tuple
+            Intervals of all coils. [F]
+        by : str
+            Which order.
+        narrow : callable, optional
+            Told of a coil and the largest error of interest whenever its first choice so far changes; to
+            be given where all sets found have the same number of pieces and that leads the order.
+        """
         order = ORDERS[by]
         kept: dict[int, tuple[tuple[int, ...], list[Ints]]] = {}
         for sets in self._blocks(found):
@@ -70,6 +89,8 @@ class SetFigures:
                 key, j = tuple(int(k) for k in keys[place]), int(coil[place])
                 if j not in kept or key < kept[j][0]:
                     kept[j] = (key, [])
+                    if narrow is not None:
+                        narrow(j, (key[order.index("error_class")] + 0.5) * 1e-9)
                 if key == kept[j][0]:
                     kept[j][1].append(parts[place])
         return {
@@ -106,10 +127,10 @@ class SetFigures:
     def _ways(self, coil: Ints, parts: Ints, windows: Windows) -> _Ways:
         blocks = []
         slots = np.arange(parts.shape[1])[None, :]
+        sums = self._subset_sums(parts, 0)
         for band in range(self.problem.bands):
-            sums = np.zeros((len(parts), 1))
-            for column in parts.T:
-                sums = np.concatenate([sums, sums + self.circuits.acting[band][column][:, None]], axis=1)
+            if band > 0 and not self.search.sums.alike:
+                sums = self._subset_sums(parts, band)
             low, high = (side[coil, band][:, None] for side in windows[1])
             inside = (sums >= low) & (sums <= high)
             inside[:, 0] = (windows[0][0][coil, band] <= 0) & (windows[0][1][coil, band] >= 0)
@@ -126,6 +147,13 @@ class SetFigures:
         )
         return ways.take(np.lexsort((ways.band, ways.owner)))
 
+    def _subset_sums(self, parts: Ints, band: int) -> Floats:
+        acting = self.circuits.acting[band]
+        sums = np.zeros((len(parts), 1))
+        for column in parts.T:
+            sums = np.concatenate([sums, sums + acting[column][:, None]], axis=1)
+        return sums
+
     def _keys(
         self, coil: Ints, parts: Ints, windows: Windows, order: tuple[str, ...]
     ) -> tuple[Ints, Bools]:
@@ -140,16 +168,19 @@ class SetFigures:
         for name in order:
             if name == "effort":
                 keys += list(self.problem.effort[coil].T)
-            elif name == "pieces":
-                keys.append(np.full(len(coil), parts.shape[1] + 1))
-            elif name == "commonness":
-                keys.append(self.circuits.commonness(parts))
-            elif name == "price":
-                keys.append(np.minimum(self.circuits.price(parts) + self.problem.coil_price[coil], NEVER))
+            elif name in SUMS:
+                keys.append(self._sum(coil, parts, name))
             else:
                 worst, ways = _least_worst(ways, getattr(ways.columns, name), len(coil), bands)
                 keys.append(worst)
         return np.stack(keys, axis=1), alive
+
+    def _sum(self, coil: Ints, parts: Ints, name: str) -> Ints:
+        if name == "pieces":
+            return np.full(len(coil), parts.shape[1] + 1)
+        if name == "commonness":
+            return self.circuits.commonness(parts)
+        return np.minimum(self.circuits.price(parts) + self.problem.coil_price[coil], NEVER)
 
     def _choice(
         self, coil: int, parts: Ints, windows: Windows, order: tuple[str, ...]
@@ -162,9 +193,8 @@ class SetFigures:
         for name in order:
             if name == "effort":
                 key.append(tuple(int(e) for e in problem.effort[coil]))
-            elif name in ("pieces", "commonness", "price"):
-                figures, _ = self._keys(np.array([coil]), parts[None, :], windows, (name,))
-                key.append(int(figures[0, 0]))
+            elif name in SUMS:
+                key.append(int(self._sum(np.array([coil]), parts[None, :], name)[0]))
             else:
                 worst, ways = _least_worst(ways, getattr(ways.columns, name), 1, problem.bands)
                 key.append(int(worst[0]))

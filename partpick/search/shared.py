@@ -77,20 +77,31 @@ class SharedEngine:
         open_ = [(low <= high) for low, high in limits]
         self.least_pieces[~(open_[0] | open_[1]).all(axis=1)] = IMPOSSIBLE
         self.least_error = least_grid_error(problem, self.circuits.acting)
+        self.error_step = 2.0
         self._limits = limits
 
-    def attempt(self, coils: Ints, attempt: Attempt, by: str) -> dict[int, Choice]:
+    def attempt(self, coils: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
         """Return the first choice of each coil inside the attempt; see `layouts.Engine`."""
         if by == "error":
             error = np.full(self.problem.coils, attempt.error)
             fine = self._least_errors(coils, attempt.pieces, error)
-            return dict(self._at_errors(coils, attempt.pieces, fine))
+            return _with_coils(self._at_errors(coils, attempt.pieces, fine))
         search, figures = self._all
         if (attempt.price[coils] < NEVER).all() and self.problem.price_limit >= NEVER:
             search, figures = self._priced = self._priced or self._tools(NEVER - 1)
         windows = self._windows(coils, np.full(self.problem.coils, attempt.error))
         found = search.sets(coils, attempt.pieces, windows, self._left_for_set(attempt.price))
-        return dict(figures.best(found, windows, by))
+        # sets of one size that holds no smaller one: none is lost where the windows narrow meanwhile
+        alike = by == "build" or (by == "price" and (attempt.price[coils] >= NEVER).all())
+
+        def narrow(coil: int, error: float) -> None:
+            row = np.array([coil])
+            _refill(windows, self.circuits.windows(np.array([error]), row), row)
+
+        made = figures.best(found, windows, by, narrow if alike else None)
+        if by == "price":  # a set of many equal values may cost more than the cheapest grade says
+            made = {j: c for j, c in made.items() if attempt.price[j] >= NEVER or c.key[0] <= int(attempt.price[j])}  # type: ignore[operator]
+        return _with_coils(made)
 
     def front(self, coils: Ints, emit: Callable[[Choice], None]) -> None:
         """Hand over the least worst error for each size of the set; see `layouts.Engine`."""
@@ -201,6 +212,10 @@ class SharedEngine:
             found |= {j: choice for j, choice in made.items() if choice.key[0] <= int(fine[j])}  # type: ignore[operator]
             left = left[~np.isin(left, list(found))]
         return found
+
+
+def _with_coils(made: dict[int, SharedChoice]) -> tuple[dict[int, Choice], Ints]:
+    return dict(made), np.array(sorted(made), dtype=np.int64)
 
 
 def _refill(windows: Windows, rows: Windows, coils: Ints) -> None:

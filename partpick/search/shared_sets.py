@@ -41,6 +41,7 @@ class Letters:
         grades = Grades(problem)
         groups = []
         by_part = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+        by_part = by_part or problem.price_limit < NEVER  # the grade decides whether a set is inside it
         for options in problem.options:
             useful = tuple(p for p in grades.useful(options) if problem.part_price[p] <= price_limit)
             if price_limit < NEVER:

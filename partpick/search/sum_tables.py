@@ -9,7 +9,7 @@ import numpy as np
 from partpick.search.problem import Bools, Floats, Ints
 
 LARGEST = 1_000_000  # rows of a stored table
-MOST = 4_000_000  # rows of one answer
+MOST = 2_000_000  # rows of one answer
 
 
 class TooMany(Exception):
@@ -98,6 +98,27 @@ class SumTables:
         keep = self._no_larger(band, letters, head)
         letters, head, query = letters[keep], head[keep], query[which[keep]]
         return np.concatenate([letters, head[:, None]], axis=1), query
+
+    def stored(self, band: int) -> list[Floats]:
+        """Return the sorted sums of 0, 1, ... values at a band, as far as they are stored. [F]"""
+        return [sums for sums, _ in self._stored(band) if len(sums)]
+
+    def complete(self, band: int, added: int) -> bool:
+        """Whether the sums of up to `added` values are all stored."""
+        return added < len(self._stored(band))
+
+    def any_inside(self, band: int, added: int, low: Floats, high: Floats) -> Bools:
+        """Whether some multiset of `added` values may add up to each closed interval, (m,).
+
+        True without a look where the sums are not stored.
+        """
+        stored = self._stored(band)
+        if not len(self.valid[band]):
+            return np.zeros(len(low), dtype=np.bool_)
+        if added >= len(stored):
+            return np.asarray(high >= low)
+        sums = stored[added][0]
+        return np.asarray(np.searchsorted(sums, low, side="left") < np.searchsorted(sums, high, side="right"))
 
     def _no_larger(self, band: int, letters: Ints, head: Ints) -> Bools:
         """Whether every letter comes before `head` by value, equal values by index: one spelling each."""

@@ -151,6 +151,7 @@ class SweptColumns:
             coil=whole + coil,
             parts=padded(chosen, p.most_parts),
             series=chosen[:, -1] if behind else whole - 1,
+            tap=whole,
             shape=rows.shape,
             network=high_end.network,
             error=none,

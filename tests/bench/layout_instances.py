@@ -11,7 +11,7 @@ from partpick.search.problem import NEVER, PLENTY, Problem
 E24 = (10, 11, 12, 13, 15, 16, 18, 20, 22, 24, 27, 30, 33, 36, 39, 43, 47, 51, 56, 62, 68, 75, 82, 91)
 
 
-def tank_problem(seed: int, bands: int, coils: int, parts: int, **changes: object) -> Problem:
+def tank_problem(seed: int, bands: int, coils: int, parts: int, *, leads: float = 0.0, **changes: object) -> Problem:
     """Return a problem of random frequencies (log-uniform, ends kept) and random coils."""
     rng = np.random.default_rng(seed)
     inner = np.exp(rng.uniform(np.log(3e6), np.log(30e6), bands - 2)) if bands > 2 else np.empty(0)
@@ -22,6 +22,7 @@ def tank_problem(seed: int, bands: int, coils: int, parts: int, **changes: objec
     values = [Fraction(v * 10**d, 10**13) for d in range(4) for v in E24] + [Fraction(1, 10**8)]
     species = np.array([float(v) for v in values])
     n = len(values)
+    # capacitors with leads act larger the higher the frequency; near their own resonance they are of no use
     zero, one = np.zeros(bands), np.ones((coils, bands))
     common = [0 if i % 4 == 0 else 1 if i % 2 == 0 else 2 for i in range(24)] * 4 + [0]
     given = {
@@ -46,7 +47,7 @@ def tank_problem(seed: int, bands: int, coils: int, parts: int, **changes: objec
         "coil_rank": np.arange(coils),
         "coil_tempco": one * 40e-6,
         "coil_tempco_spread": np.zeros(coils),
-        "species": np.tile(species, (bands, 1)),
+        "species": species / (1 - (2 * np.pi * frequency[:, None]) ** 2 * leads * species),
         "commonness": np.array(common),
         "options": tuple((i,) for i in range(n)),
         "part_loss": np.full((bands, n), 1e-3),
@@ -70,4 +71,6 @@ def tank_problem(seed: int, bands: int, coils: int, parts: int, **changes: objec
         "floor": 0.001,
         "by": "build",
     }
+    omega = 2 * np.pi * frequency[:, None]
+    given["species"] = np.where(omega**2 * leads * species > 0.25, np.inf, given["species"])
     return Problem(**{**given, **changes})  # type: ignore[arg-type]

@@ -263,6 +263,7 @@ def plan_key(problem: Problem, coils, columns, by):
                 ),
                 tuple(int(problem.part_rank[p]) for p in columns[b]["parts"]),
                 int(problem.coil_rank[columns[b]["coil"]]),
+                columns[b].get("tap", 0),
             )
             for b in order
         ),
@@ -276,7 +277,7 @@ def plan_key(problem: Problem, coils, columns, by):
     return (price, pieces, *rest, content), lead
 
 
-def all_plans(problem: Problem):
+def all_plans(problem: Problem, columns_of=band_columns):
     """Yield (key, supports, pieces, worst error or excess) of every admissible plan."""
     count = problem.coils
     for size in range(1, min(problem.inductors, problem.bands) + 1):
@@ -287,7 +288,7 @@ def all_plans(problem: Problem):
             for assignment in itertools.product(coils, repeat=problem.bands):
                 if set(assignment) != set(coils):
                     continue
-                choices = [band_columns(problem, j, b) for b, j in enumerate(assignment)]
+                choices = [columns_of(problem, j, b) for b, j in enumerate(assignment)]
                 for columns in itertools.product(*choices):
                     keyed = plan_key(problem, coils, columns, problem.by)
                     if keyed is not None:
@@ -296,11 +297,11 @@ def all_plans(problem: Problem):
                         yield key, tuple(sorted(supports.elements())), pieces, worst
 
 
-def ranking(problem: Problem):
+def ranking(problem: Problem, columns_of=band_columns):
     """Return the best key of each set of supports, best first, and the front against pieces."""
     best: dict[tuple[int, ...], tuple] = {}
     least: dict[int, float] = {}
-    for key, supports, pieces, worst in all_plans(problem):
+    for key, supports, pieces, worst in all_plans(problem, columns_of):
         if supports not in best or key < best[supports]:
             best[supports] = key
         least[pieces] = min(least.get(pieces, math.inf), worst)

@@ -74,7 +74,7 @@ def described(problem: Problem, coil: int, parts):
     """Return what orders equal circuits: values, connection in parallel without series padder, grades, coil."""
     ranks = sorted((int(problem.part_rank[p]), p) for p in parts)
     values = tuple(sorted((problem.part_value[p] for p in parts), key=Fraction))
-    return values, (0, -1), tuple(rank for rank, _ in ranks), int(problem.coil_rank[coil])
+    return values, (0, -1), tuple(rank for rank, _ in ranks), int(problem.coil_rank[coil]), 0
 
 
 def plan_key(problem: Problem, coil: int, pieces, columns, content, by: str):
@@ -156,7 +156,7 @@ def shared_plans(problem: Problem, by: str):
                     ways.append([c for s in sorted(subsets) if (c := known[band, s]) is not None])
                 for columns in itertools.product(*ways):
                     used = tuple(described(problem, coil, column["parts"]) for column in columns)
-                    values, _, ranks, rank = described(problem, coil, members)
+                    values, _, ranks, rank, _ = described(problem, coil, members)
                     key = plan_key(problem, coil, members, columns, ((rank,), values, ranks, used), by)
                     if key is not None:
                         yield coil, key, size + 1, max(abs(c["error"]) for c in columns)

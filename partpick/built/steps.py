@@ -1,0 +1,71 @@
+"""The order of adjustment on the bench.
+
+Separate tanks: an adjustable coil first, on its lowest band with the trimmer in the middle, for it moves all
+of its bands; then the trimmers, each on its own band, which disturb nobody. Other layouts get their own
+order here: stacked from the highest band down, swept bands low end by the coil and high end by the trimmer.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from partpick.built.alignment import Alignment
+from partpick.result import BandFigures, Candidate
+
+
+@dataclass(frozen=True, kw_only=True)
+class Step:
+    """One adjustment; `adjust` is None for a band that is only measured."""
+
+    adjust: str | None  # reference
+    band: str
+    frequency: float  # Hz
+    why: str  # "coil first", "own trimmer", "spread evenly", "nothing to adjust"
+    travel: float | None = None  # expected, with nominal parts
+    value: float | None = None  # F, of a trimmer
+
+
+COIL_FIRST, EVENLY, OWN_TRIMMER, NOTHING = "coil first", "spread evenly", "own trimmer", "nothing to adjust"
+
+
+def steps(own: Alignment, candidate: Candidate) -> tuple[Step, ...]:
+    """Return the adjustments of separate tanks in order, lowest band of the first coil first."""
+    trimmers = {part.bands[0]: part.reference for part in candidate.parts if part.kind == "trimmer"}
+    coils = {coil.reference: coil for coil in own.coils}
+    figures = dict(zip((band.name for band in candidate.bands), own.bands, strict=True))
+    found: list[Step] = []
+    for reference in dict.fromkeys(coil.reference for coil in candidate.coils):
+        served = sorted(
+            (band for band in candidate.bands if band.coil == reference and band.target is not None),
+            key=lambda band: band.target or 0.0,
+        )
+        if reference in coils and served:
+            on, why = _coil_band(served, trimmers)
+            found.append(_step(reference, on, why, travel=coils[reference].nominal))
+            done = on.name if on.name not in trimmers else None
+        else:
+            done = None
+        for band in served:
+            aligned = figures[band.name]
+            setting = None if aligned is None else aligned.trimmer
+            if setting is not None:
+                trimmer = trimmers.get(band.name, setting.reference)
+                found.append(_step(trimmer, band, OWN_TRIMMER, setting.nominal, setting.value))
+            elif band.name != done:
+                found.append(_step(None, band, NOTHING))
+    return tuple(found)
+
+
+def _coil_band(served: list[BandFigures], trimmers: dict[str, str]) -> tuple[BandFigures, str]:
+    """Return the band on which a coil is set: one without trimmer where there is one, else the lowest."""
+    plain = [band for band in served if band.name not in trimmers]
+    if len(plain) > 1:
+        return plain[0], EVENLY
+    return (plain or served)[0], COIL_FIRST
+
+
+def _step(
+    adjust: str | None, band: BandFigures, why: str, travel: float | None = None, value: float | None = None
+) -> Step:
+    assert band.target is not None
+    return Step(adjust=adjust, band=band.name, frequency=band.target, why=why, travel=travel, value=value)

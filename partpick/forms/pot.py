@@ -1,0 +1,135 @@
+"""Windings in gapped pot cores, layer on layer, of solid and stranded wire."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from partpick.forms.block import (
+    OTHER,
+    Block,
+    Floats,
+    Layouts,
+    at_every,
+    column,
+    either_way,
+    enough,
+    wound_price,
+)
+from partpick.forms.copper import ABOVE_STRANDED, WireColumns, few_gauges, losses_of
+from partpick.forms.ring import core_ceiling, core_support
+from partpick.forms.solenoid import turns_in_words
+from partpick.parts import Catalogue, Core, Wire
+from partpick.physics.cores import core_inductance
+from partpick.physics.geometry import layered_wire_length, window_turns_that_fit
+from partpick.physics.pot_core import pot_window
+from partpick.physics.self_capacitance import (
+    LAYERED_SPREAD,
+    layer_distance,
+    layered_self_capacitance,
+    ring_self_capacitance,
+)
+from partpick.physics.stranded import LAYERED_RESISTANCE_SPREAD, STRANDED_HIGHEST, window_field
+
+MOST_TURNS = 200  # more, nobody winds by hand; common practice, no source
+WIRES_A_COUNT = 2  # so many of the thickest wires of a kind that a number of turns leaves room for
+
+
+def pot_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
+    """Return every whole number of turns that fits each pot core, of the wires that fill its window best.
+
+    Of each kind, solid and stranded, a number of turns takes the two thickest gauges with room for it: they
+    have the least resistance, and the thinner of them less loss by proximity.
+    """
+    cores = [c for c in catalogue.cores if c.shape == "pot" and c.al is not None and enough(c.quantity, units)]
+    layouts = _layouts(cores, catalogue.wires)
+    layout, turns = layouts.coils()
+    support, wire = layouts.support[layout], layouts.wire[layout]
+    sizes = WireColumns.of(catalogue.wires, wire)
+    outer = column([core.outer_diameter for core in cores])[support]
+    height = column([core.height for core in cores])[support]
+    window = pot_window(outer, height)
+    a_layer = np.maximum(window_turns_that_fit(window.width, sizes.overall, sizes.overall), 1)
+    layers = np.ceil(turns / a_layer)
+    depth = layers * sizes.overall
+    wire_length = layered_wire_length(turns, window.inner_diameter, depth)
+    low_frequency = core_inductance(column([core.al for core in cores])[support], turns)
+    inductance = at_every(low_frequency, frequency)
+    field = window_field(turns, window.width, layers)
+    resistance = sizes.dc_resistance(wire_length)
+    losses = losses_of(
+        frequency,
+        inductance,
+        [sizes.many_layers(resistance, float(f), field) for f in frequency],
+        [core_ceiling(cores, float(f))[support] for f in frequency],
+    )
+    mean = window.inner_diameter + depth
+    distance = layer_distance(sizes.bare, sizes.overall)
+    layered = layered_self_capacitance(mean, window.width, layers, distance)
+    none = np.zeros(len(turns))
+
+    def label(row: int) -> str:
+        core, used = cores[support[row]], catalogue.wires[wire[row]]
+        return f"{turns_in_words(turns[row])} of {used.name} in {core.name}"
+
+    def cautions(row: int, frequency: float) -> tuple[str, ...]:
+        return (ABOVE_STRANDED,) if sizes.strands[row] > 1 and frequency > STRANDED_HIGHEST else ()
+
+    return Block(
+        form="pot core",
+        effort_form=OTHER,
+        supports=tuple(core_support(core) for core in cores),
+        wires=catalogue.wires,
+        support=support,
+        wire=wire,
+        turns=turns,
+        pitch=none,
+        mean_diameter=mean,
+        winding_length=none,
+        wire_length=wire_length,
+        inductance_dc=low_frequency,
+        inductance=inductance,
+        q=losses.q,
+        losses=losses,
+        self_capacitance=np.where(layers >= 2, layered, ring_self_capacitance(outer)),
+        spread=column([core.tolerance for core in cores])[support],
+        q_spread=losses.q_spread(np.full(len(turns), LAYERED_RESISTANCE_SPREAD)),
+        self_capacitance_spread=either_way(np.full(len(turns), LAYERED_SPREAD)),
+        tempco=at_every(column([core.tempco for core in cores])[support], frequency),
+        tempco_spread=np.nan_to_num(column([core.tempco_tolerance for core in cores])[support]),
+        price=wound_price([core.unit_price for core in cores], support, catalogue.wires, wire, wire_length),
+        volume=np.pi / 4 * outer**2 * height,
+        wire_diameter=sizes.bare,
+        label=label,
+        cautions=cautions,
+    )
+
+
+def _layouts(cores: Sequence[Core], wires: tuple[Wire, ...]) -> Layouts:
+    rows: list[tuple[int, int, float, int]] = []
+    least: list[int] = []
+    gauges = few_gauges(wires)
+    for i, core in enumerate(cores):
+        for stranded in (False, True):
+            kind = [w for w in gauges if (wires[w].strands > 1) == stranded]
+            for w, first, most in _best_filling(core, wires, kind):
+                rows.append((i, w, 0.0, most))
+                least.append(first)
+    return Layouts.of(rows, least)
+
+
+def _best_filling(core: Core, wires: tuple[Wire, ...], kind: Sequence[int]) -> list[tuple[int, int, int]]:
+    """Return (wire, least, most turns): thinner wire serves where thicker does not fit any more."""
+    assert core.height is not None
+    window = pot_window(core.outer_diameter, core.height)
+    fits = [
+        min(int(window_turns_that_fit(window.width, window.depth, wires[w].overall_diameter)), MOST_TURNS)
+        for w in reversed(kind)
+    ]
+    found = []
+    for place, (w, most) in enumerate(zip(reversed(kind), fits, strict=True)):
+        beyond = fits[place - WIRES_A_COUNT] if place >= WIRES_A_COUNT else 0
+        if most > beyond:
+            found.append((w, beyond + 1, most))
+    return found

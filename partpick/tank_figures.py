@@ -1,0 +1,164 @@
+"""Figures of one band's tank beyond its resonance: loss by cause, ringing, load, damping, selectivity."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from partpick.circuit import Tank, network_capacitance
+from partpick.physics.loading import damping_resistance, loaded_q, rejection
+from partpick.physics.resonance import lossy_resonances, reactance, ringing_cycles, ringing_time_constant
+from partpick.preferred import nearest
+from partpick.request import Load
+
+STEP = 1e-4  # of the frequency, to either side, for a slope
+DAMPING_SERIES = "E24"  # of resistors, 5 %; common practice, no source
+
+
+@dataclass(frozen=True, kw_only=True)
+class LoadedTank:
+    """What a load or a damping resistor makes of a tank; `None`: unknown, or it does not apply."""
+
+    q: float | None
+    damping: float | None = None  # ohm, of the series
+    across: float | None = None  # ohm, what the load must look like across the tank
+    note: str | None = None
+
+
+def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
+    """Return further keys of a band.
+
+    Parameters
+    ----------
+    tank : Tank
+        The band as picked.
+    resonance : float
+        Of its inductance and capacitance; of a swept band at its upper end. [Hz]
+
+    Returns
+    -------
+    figures : dict
+        `loss` (shares of 1/Q by cause), ringing, the three resonances of a lossy tank, and `load` where one
+        is stated; null where a loss is unknown.
+    """
+    q = tank.q()
+    inductance, capacitance = tank.inductance(), tank.total()
+    characteristic = float(reactance(inductance, capacitance))
+    series = None if q is None else characteristic / q
+    ringing = _ringing(inductance, capacitance, series, steepness(tank))
+    figures: dict[str, object] = {"loss": loss_by_cause(tank), **ringing}
+    if not tank.band.swept:
+        figures["lossy_resonances"] = _resonances(inductance, capacitance, series)
+    if tank.band.load is not None:
+        figures["load"] = _load_keys(tank, tank.band.load, resonance)
+    return figures
+
+
+def tank_bandwidth(tank: Tank, resonance: float) -> float | None:
+    """Return the width of a tank between half-power points, with its load where one is stated. [Hz]"""
+    loaded = loaded_tank(tank, resonance)
+    q = tank.q() if loaded is None else loaded.q
+    return None if q is None else resonance / q / steepness(tank)
+
+
+def steepness(tank: Tank) -> float:
+    """Return by how much series inductance makes a tank narrower than its Q says, 1 where there is none.
+
+    Capacitors with inductance in series grow with frequency, C/(1 - w^2 Ls C): the susceptance of the tank
+    crosses zero steeper by (f/2C) dC/df, and so much longer it rings.
+    """
+    if tank.band.swept or not tank.network.parts:
+        return 1.0
+    leads, frequency = tank.request.stray.inductance, tank.frequency()
+    below, above = (
+        network_capacitance(tank.capacitors, tank.network, frequency * (1 + step), leads) for step in (-STEP, STEP)
+    )
+    return 1.0 + (above - below) / (4 * STEP * tank.total())
+
+
+def loss_by_cause(tank: Tank) -> dict[str, float | None]:
+    """Return each cause's share of 1/Q, None where unknown; of the coil as a whole and its causes too."""
+    losses = tank.losses()
+    known = [loss for loss in losses.values() if loss is not None]
+    total = math.fsum(known) if len(known) == len(losses) else None
+    return {**losses, **tank.coils.loss_by_cause(tank.row, tank.index), "total": total}
+
+
+def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:
+    """Return the tank with its load, None where no load is stated.
+
+    A resistance across the tank lowers its Q at once. A wanted Q or bandwidth is met by a further resistor of
+    the E24 series; a load by tap, link or divider is matched to it instead.
+    """
+    load, q = tank.band.load, tank.q()
+    if load is None:
+        return None
+    if q is None:
+        return LoadedTank(q=None)
+    x = float(reactance(tank.inductance(), tank.total()))
+    wanted = load.loaded_q if load.bandwidth is None else resonance / load.bandwidth
+    direct = load.connection == "across"
+    before = float(loaded_q(q, x, load.resistance)) if direct and load.resistance is not None else q
+    if wanted is None:
+        # by tap, link or divider the ratio decides, and nothing says what it is to be
+        return LoadedTank(q=before if direct else None)
+    needed = float(damping_resistance(before, x, wanted))
+    if not math.isfinite(needed):
+        return LoadedTank(q=before, note=f"a Q of {wanted:.3g} is wanted, but the tank has {before:.3g} already")
+    if not direct:
+        return LoadedTank(q=wanted, across=needed)
+    damping = float(nearest(DAMPING_SERIES, needed))
+    return LoadedTank(q=float(loaded_q(before, x, damping)), damping=damping, across=needed)
+
+
+def load_note(figures: dict[str, object]) -> str | None:
+    """Return what must be said of the load of a band, from its further keys."""
+    load = figures.get("load")
+    note = load.get("note") if isinstance(load, dict) else None
+    return note if isinstance(note, str) else None
+
+
+def _load_keys(tank: Tank, load: Load, resonance: float) -> dict[str, object]:
+    loaded = loaded_tank(tank, resonance)
+    assert loaded is not None
+    q = loaded.q
+    width = tank_bandwidth(tank, resonance)
+    keys: dict[str, object] = {
+        "loaded_q": q,
+        "bandwidth_hz": width,
+        "damping_resistor_ohm": loaded.damping,
+        "across_ohm": loaded.across,
+        "ringing_time_s": None if width is None else 1 / (math.pi * width),
+        "note": loaded.note,
+    }
+    if load.offset is not None:
+        keys["offset_hz"] = load.offset
+        keys["rejection_db"] = {
+            "below": _rejection(resonance - load.offset, resonance, q),
+            "above": _rejection(resonance + load.offset, resonance, q),
+        }
+    return keys
+
+
+def _rejection(frequency: float, resonance: float, q: float | None) -> float | None:
+    return None if q is None or frequency <= 0 else float(rejection(frequency, resonance, q))
+
+
+def _ringing(inductance: float, capacitance: float, series: float | None, steep: float) -> dict[str, object]:
+    if series is None:
+        return {"ringing_time_s": None, "ringing_cycles": None}
+    cycles = float(ringing_cycles(inductance, capacitance, series)) * steep
+    return {
+        "ringing_time_s": float(ringing_time_constant(inductance, series)) * steep,
+        "ringing_cycles": cycles if math.isfinite(cycles) else None,
+    }
+
+
+def _resonances(inductance: float, capacitance: float, series: float | None) -> dict[str, float] | None:
+    if series is None:
+        return None
+    names = ("unity_power_factor_hz", "greatest_impedance_hz", "ringing_hz")
+    return {
+        name: float(value)
+        for name, value in zip(names, lossy_resonances(inductance, capacitance, series), strict=True)
+    }

@@ -1,0 +1,249 @@
+"""Stress under a drive, held against energy, ngspice and hand computation; cautions that cannot be silenced."""
+
+from __future__ import annotations
+
+import csv
+import json
+import math
+from dataclasses import replace
+from pathlib import Path
+from typing import Any
+
+import handmade
+import pytest
+from test_report_netlist import needs_ngspice, simulate
+
+import partpick
+from partpick.report.netlist import netlist
+from partpick.report.result_json import result_json
+from partpick.report.sheet import sheet
+from partpick.report.table import result_table
+from partpick.result import BandFigures, Candidate, Result
+from partpick.stress import DEVICE_PEAK, band_stress, with_stress
+
+PUBLISHED = Path(__file__).parent / "published" / "loading_stress.csv"
+QUIET = {"power": None, "voltage": None, "current": None, "supply": None, "class": "C", "modulation": 0.0}
+CAUTIONS = ("qualified", "touch", "discharge", "licence", "Class 2", "Heat", "flash-over", "medical", "exposure")
+
+
+def driven(candidate: Candidate | None = None, **drive: Any) -> Candidate:
+    """Return a candidate under a drive; by default one band of Q 187 and 180.7 ohm."""
+    extra = (("drive", tuple({**QUIET, **drive}.items())),)
+    return with_stress(handmade.request(extra=extra), candidate or rated())
+
+
+def rated(**changes: Any) -> Candidate:
+    """Return the candidate made by hand with losses and ratings known."""
+    own = handmade.candidate()
+    ratings: dict[str, Any] = {"q": 1000.0, "voltage": 500.0, "rf_current": 1.0, **changes}
+    parts = tuple(replace(part, **ratings) if part.kind == "capacitor" else part for part in own.parts)
+    return replace(own, bands=tuple(replace(band, coil_q=230.0) for band in own.bands), parts=parts)
+
+
+def stress_of(candidate: Candidate, band: int = 0) -> dict[str, Any]:
+    found = candidate.bands[band].extra["stress"]
+    assert isinstance(found, dict)
+    return found
+
+
+@pytest.mark.parametrize(
+    "row", list(csv.DictReader(PUBLISHED.read_text(encoding="utf-8").splitlines())), ids=lambda row: row["f_Hz"]
+)
+def test_published_tanks_bear_the_published_volts_and_amperes(row: dict[str, str]) -> None:
+    """Energy definition of Q (Terman 1943): peak voltage and circulating current, loaded and with the load off."""
+    frequency, inductance, capacitance = (float(row[key]) for key in ("f_Hz", "L_H", "C_F"))
+    unloaded, loaded = float(row["Q_unloaded"]), float(row["Q_loaded"])
+    band = replace(
+        handmade.band("tank", frequency, capacitance, ["C1"]),
+        inductance=inductance,
+        network=capacitance,
+        reactance=2 * math.pi * frequency * inductance,
+        q=unloaded,
+        extra={"load": {"loaded_q": loaded}},
+    )
+    parts = {"C1": handmade.capacitor("C1", capacitance), "L1": handmade.coil_part()}
+    found = band_stress({**QUIET, "power": float(row["P_into_tank_W"])}, band, parts)
+    assert found is not None
+    coil, capacitor = found
+    tolerance = float(row["rel_tol"])
+    assert coil.voltage == pytest.approx(float(row["V_peak_V"]), rel=tolerance)
+    assert coil.current == pytest.approx(float(row["I_circulating_rms_A"]), rel=tolerance)
+    assert capacitor.voltage == pytest.approx(float(row["V_peak_V"]), rel=tolerance)
+    assert capacitor.current == pytest.approx(float(row["I_circulating_rms_A"]), rel=tolerance)
+    # the same file: "with no load set Q_L = Q_U: voltage rises by sqrt(Q_U/Q_L) at the same power"
+    assert coil.voltage_load_off == pytest.approx(coil.voltage * math.sqrt(unloaded / loaded), rel=1e-12)
+
+
+def test_the_heat_of_all_parts_is_the_power_that_goes_in() -> None:
+    """With the load off nothing else can take it; strays are lossless, so that Q is made to fit."""
+    own = rated()
+    band = own.bands[0]
+    assert band.capacitance is not None and band.network is not None and band.coil_q is not None
+    q = 1 / (1 / band.coil_q + band.network / band.capacitance / 1000.0)
+    # reactance as at resonance, where coil and capacitance carry the same current
+    at_resonance = math.sqrt(band.inductance / band.capacitance)
+    candidate = driven(replace(own, bands=(replace(band, q=q, reactance=at_resonance),)), power=5.0)
+    heat = math.fsum(part["dissipation_w"] for part in stress_of(candidate)["parts"])
+    assert heat == pytest.approx(5.0, rel=1e-6)
+
+
+def test_parts_in_series_share_the_voltage_and_carry_one_current() -> None:
+    """20 pF and 60 pF across 100 V: 75 V and 25 V; by hand."""
+    band = handmade.band("tank", 7.1e6, 15e-12, ["C1", "C2"], connection="C1 + C2")
+    parts = {"C1": handmade.capacitor("C1", 20e-12), "C2": handmade.capacitor("C2", 60e-12)}
+    found = band_stress({**QUIET, "voltage": 100.0}, band, parts)
+    assert found is not None
+    first, second = found[1:]
+    assert (first.voltage, second.voltage) == (pytest.approx(75.0), pytest.approx(25.0))
+    assert first.current == pytest.approx(second.current)
+    assert first.current == pytest.approx(2 * math.pi * 7.1e6 * 15e-12 * 100 / math.sqrt(2), rel=1e-3)
+
+
+@needs_ngspice
+@pytest.mark.parametrize(
+    "tables",
+    [
+        {"band": [{"at": "3.58 MHz"}], "load": {"loaded_q": 12, "resistance": "50 ohm", "connection": "link"}},
+        {"band": [{"at": "14.2 MHz"}], "load": {"resistance": "4 kohm"}, "stray": {"inductance": "10 nH"}},
+        {"band": [{"at": "7.1 MHz"}], "load": {"loaded_q": 30}, "capacitors": {"connect": "any", "to": "100 pF"}},
+    ],
+    ids=["link", "across, with leads", "damped"],
+)
+def test_volts_and_amperes_agree_with_ngspice(tables: dict[str, Any], tmp_path: Path) -> None:
+    """5 W into three tanks that partpick picks: tank voltage and capacitor current within 0.5 %, load on and off."""
+    power = 5.0
+    request = partpick.request_from_tables({**tables, "drive": {"power": "5 W"}}, "pair")
+    result = partpick.solve(request, partpick.load_catalogue(), top=1)
+    candidate = result.candidates[0]
+    band, stress = candidate.bands[0], stress_of(candidate)
+    load = band.extra["load"]
+    assert isinstance(load, dict) and band.q is not None
+    across = band.reactance / (1 / load["loaded_q"] - 1 / band.q)
+    probes = ["let amperes = mag(i(vprobe))", "meas ac probe_a MAX amperes", "quit"]
+    for loaded, key in ((True, "voltage_peak_v"), (False, "voltage_load_off_peak_v")):
+        # a source of no voltage in the first capacitor's lead reads its current
+        lines, done = [], False
+        for line in netlist(result).splitlines():
+            if line.startswith("CC1t1 ") and not done:
+                name, high, low, value = line.split()
+                lines += [f"Vprobe {high} probed 0", f"{name} probed {low} {value}"]
+                done = True
+            elif line == "quit":
+                lines += probes
+            elif line == ".control" and loaded:
+                lines += [f"Rload t1 0 {across!r}", line]
+            else:
+                lines.append(line)
+        got = simulate("\n".join(lines) + "\n", tmp_path)
+        volts = math.sqrt(2 * power * got["t1_peak_ohm"])
+        assert stress[key] == pytest.approx(volts, rel=5e-3)
+        amperes = got["probe_a"] / got["t1_peak_ohm"] * volts / math.sqrt(2)
+        first = next(part for part in stress["parts"] if part["reference"] == "C1")
+        told = first["current_rms_a" if loaded else "current_load_off_rms_a"]
+        assert told == pytest.approx(amperes, rel=5e-3)
+
+
+def test_a_drive_of_current_meets_the_resistance_of_the_tank() -> None:
+    """10 mA into Q X: 187 times 180.7 ohm makes 338 V; by hand. Full modulation doubles it."""
+    band = handmade.candidate().bands[0]
+    assert band.q is not None
+    volts = 0.010 * band.q * band.reactance
+    assert stress_of(driven(current=0.010))["voltage_peak_v"] == pytest.approx(volts)
+    assert stress_of(driven(current=0.010, modulation=1.0))["voltage_peak_v"] == pytest.approx(2 * volts)
+
+
+def test_the_device_sees_twice_its_supply_and_more_in_class_e() -> None:
+    """Twice in a tuned stage (common practice, no source); class E 3.56 times (Sokal 1975, from memory)."""
+    assert driven(power=0.1, supply=12.0).extra["device_peak_v"] == 24.0
+    assert driven(power=0.1, supply=12.0, **{"class": "E"}).extra["device_peak_v"] == pytest.approx(12 * 3.56)
+    assert set(DEVICE_PEAK) == {"A", "B", "C", "E"}
+
+
+# ---------------------------------------------------------------- ratings
+
+
+@pytest.mark.parametrize(
+    ("ratings", "verdict"),
+    [
+        ({}, "inside"),  # 100 V of 500 V, 0.32 A of 1 A in the larger
+        ({"voltage": 150.0}, "near"),
+        ({"voltage": 99.0}, "over"),
+        ({"rf_current": 0.4}, "near"),
+        ({"rf_current": 0.3}, "over"),
+        ({"voltage": None}, "not rated"),
+        ({"rf_current": None}, "not rated"),
+        ({"voltage": None, "rf_current": 0.3}, "over"),
+    ],
+)
+def test_a_rating_is_weighed_with_its_margin(ratings: dict[str, Any], verdict: str) -> None:
+    """Half of the voltage and 0.7 of the current are usual (common practice); without a rating nothing is fine."""
+    candidate = driven(rated(**ratings), voltage=100.0)
+    larger = next(part for part in stress_of(candidate)["parts"] if part["reference"] == "C1")
+    assert larger["current_rms_a"] == pytest.approx(0.3154, rel=1e-3)  # 2 pi 7.1 MHz 100 pF 100 V / sqrt 2
+    assert larger["verdict"] == verdict
+    assert any("C1 at beacon" in warning for warning in candidate.warnings) == (verdict != "inside")
+
+
+# ---------------------------------------------------------------- cautions
+
+
+def outputs(candidate: Candidate) -> list[str]:
+    result = handmade.result(candidate)
+    return [" ".join(text.split()) for text in (result_table(result), sheet(result), result_json(result))]
+
+
+@pytest.mark.parametrize(
+    "drive",
+    [
+        {"power": 1.0},
+        {"power": 100.0, "modulation": 1.0},
+        {"voltage": 30.0},
+        {"current": 0.001},
+        {"power": 0.1, "supply": 15.0},
+    ],
+)
+def test_cautions_come_from_one_watt_or_thirty_volts(drive: dict[str, Any]) -> None:
+    """Every caution, in table, sheet and JSON, with the figure that triggered it."""
+    candidate = driven(**drive)
+    worst = max(part["voltage_load_off_peak_v"] for part in stress_of(candidate)["parts"])
+    for text in outputs(candidate):
+        for words in CAUTIONS:
+            assert words.lower() in text.lower(), words
+        assert f"{partpick.quantities.format_quantity(worst, 'V')} peak" in text
+
+
+@pytest.mark.parametrize("drive", [{"voltage": 29.0}, {"power": 0.001}, {"current": 1e-4}])
+def test_a_small_drive_is_told_without_cautions(drive: dict[str, Any]) -> None:
+    """A caution on every receiver would be read by nobody."""
+    assert driven(**drive).extra["cautions"] == []
+
+
+def test_a_tank_of_unknown_q_is_taken_for_dangerous() -> None:
+    """What is not known is not fine."""
+    own = rated()
+    unknown = driven(replace(own, bands=tuple(replace(band, q=None) for band in own.bands)), power=0.01)
+    assert stress_unknown(unknown.bands[0]) and unknown.extra["cautions"]
+    assert any("take it for dangerous" in warning for warning in unknown.warnings)
+
+
+def stress_unknown(band: BandFigures) -> bool:
+    return band.extra["stress"] is None
+
+
+@pytest.mark.parametrize("by", ["build", "error", "price"])
+@pytest.mark.parametrize("more", [{}, {"limits": {"error": "none", "q": "none", "drift": "none"}}])
+def test_no_plan_and_no_order_silences_the_cautions(by: str, more: dict[str, Any]) -> None:
+    """From the plan to the printed page."""
+    tables = {"band": [{"at": "7.1 MHz"}], "coil": {"measured": "4 uH"}, "drive": {"power": "5 W"}, **more}
+    result: Result = partpick.solve(
+        partpick.request_from_tables(tables, "pair", by=by), partpick.load_catalogue(), top=1
+    )
+    assert "Caution: Local law" in result_table(result)
+    assert json.loads(result_json(result))["candidates"][0]["cautions"]
+    assert "Cautions" in sheet(result)
+
+
+def test_without_a_drive_nothing_is_added() -> None:
+    """A plan that states no drive prints as before."""
+    own = handmade.candidate()
+    assert with_stress(handmade.request(), own) is own
