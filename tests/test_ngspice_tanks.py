@@ -60,8 +60,9 @@ def tank_lines(name: str) -> tuple[list[str], BandFigures]:
     """Return the elements of the tank between node t and ground; nothing of our own arithmetic but 1/Q."""
     candidate, leads = proposed(name)
     (band,) = candidate.bands
-    assert band.coil_q is not None and band.target is not None
-    omega = 2 * math.pi * band.target
+    assert band.coil_q is not None
+    assert band.resonance is not None
+    omega = 2 * math.pi * band.resonance  # where the Q of each part is taken
     lines = [
         f"L1 t l {band.inductance!r}",
         f"R1 l 0 {omega * band.inductance / band.coil_q!r}",
