@@ -49,9 +49,9 @@ def assess(
     coil_list, coil_lines = _coil_lines(request, coils, design, references)
     extras = [*_trimmer_lines(request), *_tuning_lines(request)]
     parts = (*lines, *coil_lines, *extras)
-    used = [i for network in design.networks for i in network.pieces]
+    used = design.capacitors
     errors = [abs(b.error) for b in bands if b.error is not None]
-    excesses = [band.extra["excess"] for band in bands if band.target is None]
+    excesses = [excess for band in bands if isinstance(excess := band.extra.get("excess"), float)]
     prices = [line.unit_price for line in (*lines, *coil_lines)]
     return Candidate(
         rank=None,
@@ -99,6 +99,8 @@ def _coil_references(request: Request, design: Design) -> dict[int, str]:
 def _capacitor_lines(
     request: Request, capacitors: Sequence[Capacitor], design: Design
 ) -> tuple[list[tuple[str, ...]], list[PartLine]]:
+    if design.closed:
+        return _shared_lines(request, capacitors, design)
     names: list[tuple[str, ...]] = []
     lines: list[PartLine] = []
     for band, network in zip(request.bands, design.networks, strict=True):
@@ -109,6 +111,27 @@ def _capacitor_lines(
             lines.append(_capacitor_line(reference, capacitors[index], (band.name,)))
         names.append(tuple(own))
     return names, lines
+
+
+def _shared_lines(
+    request: Request, capacitors: Sequence[Capacitor], design: Design
+) -> tuple[list[tuple[str, ...]], list[PartLine]]:
+    """Capacitors that several bands use: one line each, with all its bands."""
+    lines = []
+    for place, index in enumerate(design.members):
+        bands = [b.name for b, closed in zip(request.bands, design.closed, strict=True) if place in closed]
+        lines.append(_capacitor_line(f"C{place + 1}", capacitors[index], tuple(bands)))
+    return [tuple(f"C{place + 1}" for place in closed) for closed in design.closed], lines
+
+
+def _contacts(tank: Tank) -> tuple[str, ...]:
+    """Return the switch contacts that close at a band: its own, those of its stack, or one a capacitor."""
+    if tank.design.closed and tank.request.switching == "shared":
+        return tuple(f"S{place + 1}" for place in tank.design.closed[tank.index])
+    if tank.design.closed:
+        higher = [i for i, band in enumerate(tank.request.bands) if band.lowest >= tank.band.lowest]
+        return tuple(f"S{i + 1}" for i in higher)
+    return (f"S{tank.index + 1}",) if len(tank.request.bands) > 1 else ()
 
 
 def _capacitor_line(reference: str, part: Capacitor, bands: tuple[str, ...]) -> PartLine:
@@ -219,7 +242,7 @@ def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFig
         trimmer=tank.trimmer if band.trimmer else None,
         coil=reference,
         tap_turns=tank.tap_turns,
-        contacts=(f"S{tank.index + 1}",) if len(tank.request.bands) > 1 else (),
+        contacts=_contacts(tank),
         capacitors=names,
         connection=_swept_connection(names, network) if swept else connection_text(names, network.shape),
         reactance=2 * math.pi * band.highest * tank.inductance(),

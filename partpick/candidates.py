@@ -172,28 +172,28 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
     bands = len(frequency)
     evaluated = blocks[0].inductance.shape[1] if blocks else bands
     high, low = slice(0, bands), slice(evaluated - bands, evaluated)
-    inductance, q = column("inductance", evaluated).astype(float), column("q", evaluated).astype(float)
+    inductance, q = column("inductance", evaluated).astype(float, copy=False), column("q", evaluated).astype(float)
     whole = [np.empty(0, np.int64)]
     return Coils(
         frequency=frequency,
         supports=tuple(supports),
         support=np.concatenate(support or whole),
         blocks=tuple(blocks),
-        turns=column("turns").astype(np.int64),
-        inductance_dc=column("inductance_dc").astype(float),
+        turns=column("turns").astype(np.int64, copy=False),
+        inductance_dc=column("inductance_dc").astype(float, copy=False),
         inductance=inductance[:, high],
         q=q[:, high],
         inductance_low=inductance[:, low],
         q_low=q[:, low],
-        self_capacitance=column("self_capacitance").astype(float),
-        spread=column("spread").astype(float),
-        q_spread=column("q_spread", 2).astype(float),
-        self_capacitance_spread=column("self_capacitance_spread", 2).astype(float),
-        tempco=column("tempco", evaluated).astype(float)[:, high],
-        tempco_spread=column("tempco_spread").astype(float),
-        price=column("price").astype(float),
-        volume=column("volume").astype(float),
-        wire_diameter=column("wire_diameter").astype(float),
+        self_capacitance=column("self_capacitance").astype(float, copy=False),
+        spread=column("spread").astype(float, copy=False),
+        q_spread=column("q_spread", 2).astype(float, copy=False),
+        self_capacitance_spread=column("self_capacitance_spread", 2).astype(float, copy=False),
+        tempco=column("tempco", evaluated).astype(float, copy=False)[:, high],
+        tempco_spread=column("tempco_spread").astype(float, copy=False),
+        price=column("price").astype(float, copy=False),
+        volume=column("volume").astype(float, copy=False),
+        wire_diameter=column("wire_diameter").astype(float, copy=False),
         effort_form=np.concatenate([np.full(len(b), b.effort_form) for b in blocks] or whole).astype(
             np.int64
         ),
@@ -203,18 +203,19 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
 
 
 def _content_rank(blocks: list[Block]) -> Ints:
-    """Order coils by form, former, wire, pitch, turns and value; never by their row."""
+    """Order coils by form, former, wire and turns; never by their row.
+
+    A wire goes on a former at one pitch only, so that the pitch adds nothing.
+    """
     if not blocks:
         return np.empty(0, np.int64)
     forms = _place([block.form for block in blocks])
-    form = np.concatenate([np.full(len(block), forms[i]) for i, block in enumerate(blocks)])
-    names = [[support.name for support in block.supports] for block in blocks]
-    wires = [[wire.name for wire in block.wires] for block in blocks]
-    former = np.concatenate([_place(n)[b.support] for n, b in zip(names, blocks, strict=True)])
-    wire = np.concatenate([_place(["", *w])[b.wire + 1] for w, b in zip(wires, blocks, strict=True)])
-    turns = np.concatenate([b.turns for b in blocks])
-    pitch = np.concatenate([b.pitch for b in blocks])
-    order = np.lexsort((turns, pitch, wire, former, form))
+    keys = []
+    for form, block in zip(forms, blocks, strict=True):
+        former = _place([support.name for support in block.supports])[block.support]
+        wire = _place(["", *(wire.name for wire in block.wires)])[block.wire + 1]
+        keys.append((((int(form) << 20 | former) << 16 | wire) << 20) | block.turns)
+    order = np.argsort(np.concatenate(keys), kind="stable")
     rank = np.empty(len(order), dtype=np.int64)
     rank[order] = np.arange(len(order))
     return rank

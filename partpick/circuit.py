@@ -40,6 +40,15 @@ class Design:
     coils: tuple[int, ...]  # (B,) index into Coils
     networks: tuple[Network, ...]  # (B,)
     taps: tuple[int | None, ...] = ()  # (B,) turns of the section in use, None: the whole coil; (): no taps
+    members: tuple[int, ...] = ()  # the capacitors that there are, where bands share them
+    closed: tuple[tuple[int, ...], ...] = ()  # (B, any) places in `members` of those in circuit at each band
+
+    @property
+    def capacitors(self) -> tuple[int, ...]:
+        """Every capacitor once, whether one band uses it or several."""
+        if self.closed:
+            return self.members
+        return tuple(part for network in self.networks for part in network.pieces)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Mapping, Sequence
+from importlib import import_module
 from inspect import cleandoc
 from typing import TYPE_CHECKING, Any
 
@@ -338,19 +339,29 @@ def _solve_and_write(
 
 
 def _renderers(result: Result, why: int | None) -> dict[str, Callable[[], str]]:
-    """Return what writes each output; those that are not wanted are never called."""
-    from partpick.report import bom, netlist, reasons, result_json, sheet, table
+    """Return what writes each output; those that are not wanted are never called, nor loaded."""
+
+    def by(module: str, function: str) -> Callable[[], str]:
+        def render() -> str:
+            text: str = getattr(import_module(f"partpick.report.{module}"), function)(result)
+            return text
+
+        return render
 
     def shown() -> str:
-        told = "" if why is None or not result.candidates else "\n" + reasons.reasons(result, why)
-        return table.result_table(result) + told
+        text = by("table", "result_table")()
+        if why is None or not result.candidates:
+            return text
+        from partpick.report.reasons import reasons
+
+        return text + "\n" + reasons(result, why)
 
     return {
         "table": shown,
-        "json": lambda: result_json.result_json(result),
-        "bom": lambda: bom.bom_csv(result),
-        "sheet": lambda: sheet.sheet(result),
-        "netlist": lambda: netlist.netlist(result),
+        "json": by("result_json", "result_json"),
+        "bom": by("bom", "bom_csv"),
+        "sheet": by("sheet", "sheet"),
+        "netlist": by("netlist", "netlist"),
     }
 
 

@@ -181,7 +181,8 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
     omega = 2 * np.pi * frequency
     trimmers = [band.trimmer for band in bands]
     drift_set = limits.drift is not None
-    coil_price = np.array([NEVER if np.isnan(p) else round(p * 100) for p in coils.price], dtype=np.int64)
+    unpriced = np.isnan(coils.price)
+    coil_price = np.where(unpriced, NEVER, np.rint(np.where(unpriced, 0.0, coils.price) * 100)).astype(np.int64)
     part_price = np.array([_hundredths(c.unit_price) for c in capacitors], dtype=np.int64)
     return Problem(
         frequency=frequency,

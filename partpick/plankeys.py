@@ -36,7 +36,8 @@ from partpick.quantities import (
 
 Read = Callable[[object], object]
 
-FORMS = ("solenoid", "ring core", "pot core", "rod core", "multilayer", "bought")  # grows with the table of winding forms in candidates.py
+# grows with the table of winding forms in candidates.py
+FORMS = ("solenoid", "ring core", "pot core", "rod core", "multilayer", "bought")
 ORDERS = ("build", "error", "price")
 MOST_BANDS = 64
 MOST_PARTS_PER_BAND = 6

@@ -8,15 +8,15 @@ from partpick.assessment import assess, recheck
 from partpick.built.outlook import outlook, with_outlook
 from partpick.candidates import Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
-from partpick.circuit import Design, Network
 from partpick.errors import RequestError
+from partpick.layouts import check_layout, design_of, search_layout
 from partpick.nothing_fits import explain
 from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet
 from partpick.request import Band, Request
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
-from partpick.search.bands import Found, pieces_of_bound, search_bands
+from partpick.search.bands import Found, pieces_of_bound
 from partpick.search.choose import ORDERS, Choice
 from partpick.search.problem import Problem
 from partpick.stress import with_stress
@@ -53,7 +53,7 @@ def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Mon
     floor = tolerance_floor(coils, capacitors, request.limits.error)
     problem = build_problem(request, coils, capacitors, floor)
     source = column_source(request, coils, problem)
-    found = search_bands(problem, source, wanted=top, all_windings=request.all_windings, monitor=monitor)
+    found = search_layout(request, problem, source, wanted=top, monitor=monitor)
     pool = _refit_pool(request, catalogue)
     result = _result(request, coils, capacitors, problem, found, pool)
     if result.candidates or found.stopped_by is not None:
@@ -69,7 +69,7 @@ def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidat
     floor = tolerance_floor(coils, capacitors, request.limits.error)
     problem = build_problem(request, coils, capacitors, floor)
     source = column_source(request, coils, problem)
-    found = search_bands(problem, source, wanted=1, all_windings=False, monitor=monitor, front=False)
+    found = search_layout(request, problem, source, wanted=1, monitor=monitor, front=False)
     return _candidate(request, coils, capacitors, found.choices[0]) if found.choices else None
 
 
@@ -106,9 +106,8 @@ def windings(
 
 def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
+    check_layout(request)
     unplanned = [
-        (request.switching != "separate", f'switching = "{request.switching}"'),
-        (request.coil.taps and request.switching != "separate", "coil.taps with this switching"),
         (request.limits.alignable is not None, "limits.alignable"),
         *((True, f"the table [{name}]") for name, _ in request.extra if name not in PLANNED_TABLES),
     ]
@@ -171,12 +170,7 @@ def _candidate(
     first: bool = False,
     pool: tuple[Capacitor, ...] = (),
 ) -> Candidate:
-    networks = tuple(
-        Network(parts=columns.network_parts(0), shape=int(columns.shape[0]), series=columns.series_padder(0))
-        for columns in choice.columns
-    )
-    taps = tuple(int(columns.tap[0]) or None for columns in choice.columns)
-    design = Design(coils=tuple(int(columns.coil[0]) for columns in choice.columns), networks=networks, taps=taps)
+    design = design_of(request, choice)
     candidate = assess(request, coils, capacitors, design)
     worst_error = max(abs(float(columns.error[0])) for columns in choice.columns)
     worst_excess = max(float(columns.excess[0]) for columns in choice.columns)

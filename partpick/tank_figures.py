@@ -5,9 +5,15 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from partpick.circuit import Tank, network_capacitance
+from partpick.circuit import Tank, network_capacitance, network_shares
 from partpick.physics.loading import damping_resistance, loaded_q, rejection
-from partpick.physics.resonance import lossy_resonances, reactance, ringing_cycles, ringing_time_constant
+from partpick.physics.resonance import (
+    effective_capacitance,
+    lossy_resonances,
+    reactance,
+    ringing_cycles,
+    ringing_time_constant,
+)
 from partpick.preferred import nearest
 from partpick.request import Load
 
@@ -44,7 +50,7 @@ def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
     q = tank.q()
     inductance, capacitance = tank.inductance(), tank.total()
     characteristic = float(reactance(inductance, capacitance))
-    series = None if q is None else characteristic / q
+    series = None if q is None else characteristic * (1 / q + _further_loss(tank))
     ringing = _ringing(inductance, capacitance, series, steepness(tank))
     figures: dict[str, object] = {"loss": loss_by_cause(tank), **ringing}
     if not tank.band.swept:
@@ -57,8 +63,30 @@ def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
 def tank_bandwidth(tank: Tank, resonance: float) -> float | None:
     """Return the width of a tank between half-power points, with its load where one is stated. [Hz]"""
     loaded = loaded_tank(tank, resonance)
-    q = tank.q() if loaded is None else loaded.q
-    return None if q is None else resonance / q / steepness(tank)
+    q, unloaded = tank.q() if loaded is None else loaded.q, tank.q()
+    if q is None or unloaded is None:
+        return None
+    return resonance * (1 / q + _further_loss(tank)) / steepness(tank)
+
+
+def _further_loss(tank: Tank) -> float:
+    """Return what series inductance adds to the loss of the capacitors, as a share of 1/Q.
+
+    It lets more current through a capacitor than its value alone would: Q counts each by its value.
+    """
+    if tank.band.swept or not tank.network.parts:
+        return 0.0
+    frequency, total = tank.frequency(), tank.total()
+    parts = [tank.capacitors[i] for i in tank.network.parts]
+    acting = [float(effective_capacitance(c.value, c.series_inductance or 0.0, frequency)) for c in parts]
+    inner = network_capacitance(tank.capacitors, tank.network, frequency, 0.0)
+    leads = tank.across() / inner * tank.across() / total
+    exact = [
+        share * acts / part.value * leads
+        for part, acts, share in zip(parts, acting, network_shares(acting, tank.network.shape), strict=True)
+    ]
+    counted = [weight for _, weight in tank.weights(total)]
+    return math.fsum((x - w) / part.q for part, x, w in zip(parts, exact, counted, strict=True) if part.q)
 
 
 def steepness(tank: Tank) -> float:
@@ -104,11 +132,16 @@ def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:
         return LoadedTank(q=before if direct else None)
     needed = float(damping_resistance(before, x, wanted))
     if not math.isfinite(needed):
-        return LoadedTank(q=before, note=f"a Q of {wanted:.3g} is wanted, but the tank has {before:.3g} already")
+        note = f"a Q of {_words(wanted)} is wanted, but the tank has {_words(before)} already"
+        return LoadedTank(q=before, note=note)
     if not direct:
         return LoadedTank(q=wanted, across=needed)
     damping = float(nearest(DAMPING_SERIES, needed))
     return LoadedTank(q=float(loaded_q(before, x, damping)), damping=damping, across=needed)
+
+
+def _words(q: float) -> str:
+    return f"{q:.0f}" if q >= 100 else f"{q:.3g}"
 
 
 def load_note(figures: dict[str, object]) -> str | None:

@@ -13,13 +13,14 @@ from handmade import candidate as one_candidate
 from handmade import capacitor, coil
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from varying import COIL_PLACE, on_one_coil, without_strays
+from varying import COIL_PLACE, on_one_coil, swept, without_strays
 from workbench import INDUCTORS, plan, ranked, run, write_drawer
 
 from partpick.built.alignment import Alignment, alignment
 from partpick.built.series import series
 from partpick.built.steps import COIL_FIRST, EVENLY, NOTHING, OWN_TRIMMER, Step, steps
-from partpick.built.variation import Variation, VaryingTank
+from partpick.built.tank import VaryingTank
+from partpick.built.variation import Variation
 from partpick.request import Trimmer
 
 BUILDS = 100_000
@@ -33,7 +34,7 @@ def aligned(variation: Variation, adjust: float = 0.0, limit: float | None = Non
 
 
 def tanks(variation: Variation) -> list[VaryingTank]:
-    return [tank for tank in variation.tanks if tank is not None]
+    return list(variation.tanks)
 
 
 def test_nothing_to_adjust_is_no_alignment() -> None:
@@ -106,6 +107,34 @@ def _comes_right(
     return np.ones(error.shape, dtype=bool) if limit is None else np.abs(error) <= limit + give
 
 
+@pytest.mark.parametrize("adjust", [0.0, 0.06])
+@pytest.mark.parametrize("trimmer", [None, WIDE])
+def test_a_swept_band_is_aligned_where_one_setting_reaches_both_ends(adjust: float, trimmer: Trimmer | None) -> None:
+    """Each build is tried over a fine grid of trimmer and slug: the lower end by one, the upper by the other."""
+    if not adjust and trimmer is None:
+        return  # nothing to adjust
+    one = on_one_coil([[27e-12]], coil_size=0.08, part_size=0.1, trimmers=[trimmer])
+    variation = swept(one, low=12e-12, high=90e-12, padder=330e-12, wanted=0.97)
+    x = variation.draw(400, 1)
+    found = alignment(variation, {COIL_PLACE: adjust} if adjust else {}, None, x)
+    upper = variation.tanks[0]
+    lower = upper.low_end
+    assert found is not None and lower is not None
+    slug = np.linspace(-0.6 * adjust, 0.6 * adjust, 1 + 240 * (adjust > 0))[:, None, None]
+    turned = np.linspace(10e-12, 34e-12, 241)[None, :, None] if trimmer else np.zeros((1, 1, 1))
+
+    def resonance(tank: VaryingTank) -> np.ndarray:
+        total = tank.fixed_capacitance(x) + turned
+        return 1 / (2 * np.pi * np.sqrt(tank.built_inductance(x) * (1 + slug) * total))
+
+    down, up = resonance(lower) / lower.frequency, resonance(upper) / upper.frequency
+    bounds = []
+    for give in (-1e-3, 1e-3):  # a step of the grid
+        bounds.append(((down <= 1 + give) & (up >= 1 - give)).any(axis=(0, 1)).mean())
+    assert bounds[0] <= found.share <= bounds[1] < bounds[0] + 0.1
+    assert 0.05 < found.share < 0.999
+
+
 def test_a_unit_can_be_aligned_only_where_each_band_can() -> None:
     """Independent trimmers on sound coils: chances multiply; with all spread in the coil they do not."""
     parts = without_strays(on_one_coil([[100e-12]] * 2, coil_size=0.0, part_size=0.10, trimmers=[NARROW] * 2))
@@ -113,7 +142,7 @@ def test_a_unit_can_be_aligned_only_where_each_band_can() -> None:
     for variation, power in ((parts, 2), (winding, 1)):
         found = aligned(variation)
         one = found.bands[0]
-        assert one is not None and one.share is not None
+        assert one.share is not None
         assert found.share == pytest.approx(one.share**power, abs=0.005)
 
 
@@ -135,7 +164,7 @@ def test_settings_bring_the_nominal_unit_on_frequency() -> None:
         factor = found.coils[0].value if adjust else 1.0
         nothing = np.zeros((len(variation.sources), 1))
         for tank, own in zip(tanks(variation), found.bands, strict=True):
-            assert own is not None and own.trimmer is not None
+            assert own.trimmer is not None
             total = float(tank.fixed_capacitance(nothing)[0]) + own.trimmer.value
             resonance = 1 / (2 * np.pi * np.sqrt(tank.inductance * factor * total))
             assert resonance == pytest.approx(tank.frequency, rel=1e-12)
@@ -146,7 +175,7 @@ def test_settings_of_aligned_units_are_inside_20_to_80_per_cent() -> None:
     """What is counted as aligned has no setting near an end."""
     variation = on_one_coil([[100e-12], [220e-12]], coil_size=0.08, trimmers=[WIDE, WIDE])
     found = aligned(variation, 0.1)
-    settings_told = [*found.coils, *(own.trimmer for own in found.bands if own is not None and own.trimmer)]
+    settings_told = [*found.coils, *(own.trimmer for own in found.bands if own.trimmer)]
     assert len(settings_told) == 3
     assert all(0.2 - 1e-9 <= each.low <= each.high <= 0.8 + 1e-9 for each in settings_told)
 
@@ -156,7 +185,7 @@ def test_slopes_are_those_of_a_turn_of_each_adjustment() -> None:
     variation = on_one_coil([[100e-12]], trimmers=[WIDE])
     found = aligned(variation)
     tank, own = tanks(variation)[0], found.bands[0]
-    assert own is not None and own.trimmer is not None
+    assert own.trimmer is not None
     total = tank.nominal_fixed() + own.trimmer.value
 
     def resonance(inductance: float, capacitance: float) -> float:

@@ -6,9 +6,12 @@ from typing import Any
 
 import numpy as np
 import pytest
+from smallstock import bundle, core, former, inductor, of_turns, stock, wire, wound
 
+from partpick import candidates
 from partpick.candidates import FORMS
 from partpick.catalogue import load_catalogue
+from partpick.forms.unwound import unwound
 from partpick.physics.cores import ring_leak
 from partpick.physics.filaments import loop_inductance
 from partpick.physics.multilayer import layered_inductance
@@ -16,9 +19,6 @@ from partpick.physics.sliding_core import core_inductance_rise
 from partpick.physics.solenoid import solenoid_family
 from partpick.plankeys import FORMS as KNOWN_FORMS
 from partpick.request import Band, CoilRules, Request
-from smallstock import bundle, core, former, inductor, of_turns, stock, wire, wound
-
-from partpick import candidates
 
 POT = core("pot", 18, None, 11, al=160e-9, permeability=None, tolerance=0.03, frequency_low=50e3, frequency_high=500e3)
 ROD = core("rod", 10, None, 100, permeability=120.0, tolerance=0.2)
@@ -216,7 +216,8 @@ def test_springback_widens_the_spread_of_a_self_supporting_coil() -> None:
 def test_the_spread_follows_the_former() -> None:
     """Propagated, not a fixed percentage: four times the tolerance of the tube shows."""
     close, loose = (
-        wound("solenoid", 7e6, former(20, 40, 2.0, support="ribbed", tolerance=t), wire(1.0, 1.062)) for t in (0.005, 0.02)
+        wound("solenoid", 7e6, former(20, 40, 2.0, support="ribbed", tolerance=tolerance), wire(1.0, 1.062))
+        for tolerance in (0.005, 0.02)
     )
     place = of_turns(close, 15)
     assert 0.005 < close.spread[place] < 0.02 < loose.spread[place] < 0.05
@@ -318,3 +319,16 @@ def test_no_stock_gives_no_coil() -> None:
     request = Request(command="pair", bands=(Band(name="if", at=455e3),), coil=CoilRules())
     assert not len(candidates.realisable_coils(request, stock()))
     assert not len(candidates.realisable_coils(request, stock(POT, ROD, former(8, 18))))
+
+
+def test_what_no_wire_fits_is_named_with_its_column() -> None:
+    """Issue: wire that does not fit groove or window is one clear line, not a silence."""
+    fine = (former(20, 25), former(20, 25, 1.0, support="ribbed"), POT, core("ring", 20, 10, 7, permeability=9.0), ROD)
+    assert not unwound(stock(THICK, *fine))
+    narrow = former(30, 25, 0.3, support="ribbed")
+    tiny = (core("ring", 4, 0.5, 2, permeability=9.0), core("pot", 4, None, 2, al=1e-7))
+    said = unwound(stock(THICK, *fine, narrow, *tiny))
+    assert [text.split(":")[0] for text in said] == ["formers.csv, tube 30x25", "cores.csv, ring 4", "cores.csv, pot 4"]
+    assert "300 \u00b5m (pitch)" in said[0] and "inner_diameter" in said[1] and "outer_diameter" in said[2]
+    assert not unwound(stock(narrow))
+    assert not unwound(load_catalogue())

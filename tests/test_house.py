@@ -22,7 +22,7 @@ STAGES = [
     {"forms", "candidates"},
     {"search"},
     {"objective", "tapping"},
-    {"circuit", "assessment", "tank_figures", "nothing_fits"},
+    {"circuit", "layouts", "assessment", "tank_figures", "nothing_fits"},
     {"built", "stress"},
     {"solve"},
     {"report"},

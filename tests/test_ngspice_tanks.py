@@ -67,14 +67,16 @@ def tank_lines(name: str) -> tuple[list[str], BandFigures]:
         f"L1 t l {band.inductance!r}",
         f"R1 l 0 {omega * band.inductance / band.coil_q!r}",
         f"CS t 0 {band.stray + band.self_capacitance!r}",
-        f"L2 t top {leads!r}" if leads else "R2 t top 1e-9",
+        *([f"L2 t top {leads!r}"] if leads else []),
     ]
-    ends = {"C1": ("top", "0")}
     if "(" in band.connection:
         outer, inner = band.connection.replace("(", "").replace(")", ""), band.connection.split("(")[1]
         mixed = "|" in inner  # C1 + (C2 | C3), else C1 | (C2 + C3)
         assert outer.split()[0] == "C1"
-        ends = {"C1": ("top", "m"), "C2": ("m", "0"), "C3": ("m", "0")} if mixed else {**ends, "C2": ("top", "m"), "C3": ("m", "0")}
+        if mixed:
+            ends = {"C1": ("top", "m"), "C2": ("m", "0"), "C3": ("m", "0")}
+        else:
+            ends = {"C1": ("top", "0"), "C2": ("top", "m"), "C3": ("m", "0")}
     elif "+" in band.connection:
         chain = ["top", *(f"m{i}" for i in range(1, len(band.capacitors))), "0"]
         ends = {reference: (chain[i], chain[i + 1]) for i, reference in enumerate(band.capacitors)}
@@ -85,20 +87,24 @@ def tank_lines(name: str) -> tuple[list[str], BandFigures]:
             continue
         part = capacitor_called(line.description)
         assert part.q is not None
+        assert part.series_inductance
         upper, lower = ends[line.reference]
         lines += [
             f"{line.reference} {upper} {line.reference}a {part.value!r}",
-            f"L{line.reference} {line.reference}a {line.reference}b {part.series_inductance or 1e-15!r}",
+            f"L{line.reference} {line.reference}a {line.reference}b {part.series_inductance!r}",
             f"R{line.reference} {line.reference}b {lower} {1 / (omega * part.value * part.q)!r}",
         ]
-    return lines, band
+    return [text if leads else text.replace(" top", " t") for text in lines], band
 
 
 def simulate(lines: list[str], control: list[str], folder: Path) -> np.ndarray[Any, np.dtype[np.float64]]:
     """Run a deck that writes `out.txt` and return its columns."""
-    deck = ["* tank", *lines, ".options rshunt=1e14 reltol=1e-6", ".control", "set numdgt=14", *control, "quit", ".endc", ".end"]
+    head = ["* tank", *lines, ".options rshunt=1e14 reltol=1e-6"]
+    deck = [*head, ".control", "set numdgt=14", *control, "quit", ".endc", ".end"]
     (folder / "tank.cir").write_text("\n".join(deck) + "\n", encoding="utf-8")
-    done = subprocess.run(["ngspice", "-b", "tank.cir"], capture_output=True, text=True, timeout=60, check=False, cwd=folder)
+    done = subprocess.run(
+        ["ngspice", "-b", "tank.cir"], capture_output=True, text=True, timeout=60, check=False, cwd=folder
+    )
     assert (folder / "out.txt").exists(), done.stdout + done.stderr
     return np.loadtxt(folder / "out.txt")
 

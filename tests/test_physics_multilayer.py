@@ -8,7 +8,13 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from partpick.physics.filaments import loop_inductance, mutual_inductance
-from partpick.physics.multilayer import layered_inductance, multilayer_inductance, multilayer_spread
+from partpick.physics.multilayer import (
+    OUTSIDE_SPREAD,
+    layered_inductance,
+    multilayer_inductance,
+    multilayer_sensitivities,
+    multilayer_spread,
+)
 from partpick.physics.solenoid import solenoid_family
 
 proportion = st.floats(0.1, 3.0)
@@ -71,3 +77,24 @@ def test_larger_coils_have_more_inductance_in_proportion(layers: int, turns: int
     assert large == pytest.approx(k * small, rel=1e-9)
     more = layered_inductance(layers + 1, turns, 0.01, 5e-4, 5e-4, 4e-4)
     assert more > small
+
+
+def test_sensitivities_are_the_derivatives() -> None:
+    """Central differences of the closed form; together 1, as an inductance is a length."""
+    size = np.array([0.012, 0.006, 0.004])
+    by = multilayer_sensitivities(*size)
+    for place, slope in enumerate(by):
+        step = np.where(np.arange(3) == place, 1e-5, 0.0)
+        up, down = (multilayer_inductance(100, *(size * (1 + sign * step))) for sign in (1, -1))
+        assert slope == pytest.approx((up / down - 1) / 2e-5, rel=1e-4)
+    assert sum(by) == pytest.approx(1.0)
+
+
+@pytest.mark.parametrize(("layers", "turns"), [(2, 60), (2, 25), (20, 2), (30, 3), (3, 45)])
+def test_outside_the_range_the_closed_form_is_within_its_wide_spread(layers: int, turns: int) -> None:
+    """Long thin coils and flat discs of 0.3 mm wire on 10 mm, summed turn by turn."""
+    pitch = 0.3e-3
+    size = (10e-3 + layers * pitch, turns * pitch, layers * pitch)
+    assert np.isnan(multilayer_spread(*size))
+    summed = layered_inductance(layers, turns, 10e-3, pitch, pitch, 0.27e-3)
+    assert multilayer_inductance(layers * turns, *size) == pytest.approx(summed, rel=OUTSIDE_SPREAD)

@@ -82,3 +82,15 @@ def test_no_length_is_unknown_and_no_capacitance_never_resonates() -> None:
     """Unknown where the formula says nothing; infinity where it does."""
     assert np.isnan(self_capacitance.solenoid_self_capacitance(0.01, [0.0, -1.0])).all()
     assert np.isinf(self_capacitance.self_resonance_frequency(1e-6, 0.0))
+
+
+def test_layers_of_round_wire_act_as_plates_further_apart_than_their_coverings() -> None:
+    """Straight field lines between two cylinders, integrated here."""
+    bare, overall = 0.4e-3, 0.44e-3
+    distance = self_capacitance.layer_distance(bare, overall)
+    assert overall - bare < distance < overall
+    strip = np.linspace(-bare / 2, bare / 2, 20001)
+    gap = overall - 2 * np.sqrt((bare / 2) ** 2 - strip**2)
+    assert overall / distance == pytest.approx(np.trapezoid(1 / gap, strip), rel=1e-4)
+    # Never more than two lone parallel wires, whose field goes round: pi/arcosh(s/d) (Smythe 1950, from memory).
+    assert overall / distance < np.pi / np.arccosh(overall / bare)

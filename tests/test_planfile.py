@@ -82,6 +82,12 @@ intermediate = "455 kHz"
 [temperature]
 from = "-10 \u00b0C"
 to = 40
+measured_drift = "-18 ppm"
+[spread]
+builds = 5000
+seed = 7
+parts = "normal"
+batch = "50 %"
 [[band]]
 name = "beacon"
 at = "3.58 MHz"
@@ -144,7 +150,8 @@ def test_every_key_of_a_plan_reaches_the_request() -> None:
     assert further["drive"] == driven
     assert further["oscillator"]["transconductance"] == 5e-3
     assert further["receiver"] == {"intermediate": 455e3, "side": "above"}
-    assert further["temperature"] == {"from": -10.0, "to": 40.0}
+    assert further["temperature"] == {"from": -10.0, "to": 40.0, "measured_drift": -18e-6}
+    assert further["spread"] == {"builds": 5000, "seed": 7, "parts": "normal", "batch": 0.5}
 
 
 def test_a_band_states_its_own_or_takes_the_plans() -> None:

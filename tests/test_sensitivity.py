@@ -27,7 +27,7 @@ def test_each_part_shifts_as_the_resonance_does() -> None:
     variation = on_one_coil([[100e-12, 33e-12], [47e-12]])
     for row in sensitivity(variation, UNIFORM):
         place = next(i for i, s in enumerate(variation.sources) if s.reference == row.reference)
-        tank = next(t for t in variation.tanks if t is not None and t.name == row.band)
+        tank = next(t for t in variation.tanks if t.name == row.band)
         x = np.zeros((len(variation.sources), 2))
         x[place] = (-0.005, 0.005)
         low, high = tank.resonance(x)
@@ -39,7 +39,6 @@ def test_shares_of_each_band_add_up_to_all_of_it() -> None:
     variation = on_one_coil([[100e-12, 33e-12], [47e-12]])
     rows = sensitivity(variation, UNIFORM)
     for tank in variation.tanks:
-        assert tank is not None
         own = [row for row in rows if row.band == tank.name]
         assert sum(row.share_of_variance for row in own) == pytest.approx(1.0)
         assert {"L1", "self-capacitance of L1"} <= {row.reference for row in own}
@@ -49,7 +48,6 @@ def test_shares_are_what_goes_when_a_part_is_exact() -> None:
     """Counted in builds: the variance of a band with one part made exact, against that part's share."""
     variation = on_one_coil([[100e-12, 47e-12]], coil_size=0.02, part_size=0.02, stray_size=0.1)
     tank = variation.tanks[0]
-    assert tank is not None
     whole = tank.resonance(variation.draw(200_000, 1)).var()
     for row in sensitivity(variation, UNIFORM):
         exact = with_sizes(variation, **{row.reference: 0.0})
@@ -61,7 +59,6 @@ def test_drifts_of_the_parts_add_up_to_that_of_the_band() -> None:
     """Every contribution, strays included, sums to -(a_L + a_C)/2 of a tank of one coefficient."""
     variation = on_one_coil([[100e-12, 47e-12]])
     tank = variation.tanks[0]
-    assert tank is not None
     sources = tuple(replace(source, tempco=50e-6) for source in variation.sources)
     warm = Variation(sources=sources, tanks=(replace(tank, coil_tempco=30e-6),))
     drifts = [row.drift for row in sensitivity(warm, UNIFORM)]
@@ -92,7 +89,7 @@ def test_the_promise_of_a_better_part_is_kept(parts: str) -> None:
     variation = without_strays(on_one_coil([[100e-12]], coil_size=0.01, part_size=0.05))
     best = worth_improving(variation, deviation_of(parts))
     tank = variation.tanks[0]
-    assert best is not None and tank is not None and best.reference == "C3"
+    assert best is not None and best.reference == "C3"
     then = with_sizes(variation, C3=best.better)
     for told, built in ((best.deviation, variation), (best.deviation_then, then)):
         counted = np.log(tank.resonance(built.draw(200_000, 1, parts))).std()

@@ -14,7 +14,8 @@ from varying import on_one_coil, without_strays
 from workbench import CAPACITORS, INDUCTORS, plan, ranked, run, write_drawer
 
 from partpick.built.refit import swaps
-from partpick.built.variation import Variation, VaryingTank
+from partpick.built.tank import VaryingTank
+from partpick.built.variation import Variation
 from partpick.built.warming import band_drift
 from partpick.catalogue_defaults import GRADES
 from partpick.parts import Capacitor
@@ -44,7 +45,6 @@ def warmed(coil: float, capacitors: list[tuple[float, float, float]], coil_size:
 
 def first(variation: Variation) -> VaryingTank:
     tank = variation.tanks[0]
-    assert tank is not None
     return tank
 
 

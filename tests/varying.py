@@ -8,7 +8,8 @@ from typing import Any
 
 import numpy as np
 
-from partpick.built.variation import CAPACITOR, COIL, SELF_CAPACITANCE, WIRING, Source, Variation, VaryingTank
+from partpick.built.tank import Swept, VaryingTank
+from partpick.built.variation import CAPACITOR, COIL, SELF_CAPACITANCE, TUNING, WIRING, Source, Variation
 from partpick.request import Trimmer
 from partpick.search.networks import PARALLEL
 
@@ -67,7 +68,36 @@ def on_one_coil(
 
 def without_strays(variation: Variation) -> Variation:
     """Return the same with no stray capacitance at all."""
-    tanks = [replace(t, wiring_capacitance=0.0, winding_capacitance=0.0) for t in variation.tanks if t is not None]
+    tanks = [replace(t, wiring_capacitance=0.0, winding_capacitance=0.0) for t in variation.tanks]
     nothing = np.zeros((len(variation.sources), 1))
     tanks = [replace(tank, frequency=float(tank.resonance(nothing)[0])) for tank in tanks]
     return replace(variation, tanks=tuple(tanks))
+
+
+def swept(
+    variation: Variation, *, low: float, high: float, size: float = 0.05, padder: float | None = None, wanted: float
+) -> Variation:
+    """Return the first band swept by an element from `low` to `high` (farad); `wanted` is asked of its full range."""
+    first = variation.tanks[0]
+    sources = [*variation.sources, Source(reference="T", kind=TUNING, label="", size=size)]
+    element = len(sources) - 1
+    if padder is not None:
+        sources.append(Source(reference="C9", kind=CAPACITOR, label="", size=0.05, batch=9))
+
+    def end(capacitance: float) -> VaryingTank:
+        own = Swept(
+            source=element,
+            capacitance=capacitance,
+            padder=None if padder is None else element + 1,
+            padder_capacitance=padder or 0.0,
+            padder_inductance=5e-9,
+        )
+        return replace(first, swept=own)
+
+    nothing = np.zeros((len(sources), 1))
+    ends = [end(low), end(high)]
+    reached = [float(tank.resonance(nothing)[0]) for tank in ends]
+    middle, half = sum(reached) / 2, (reached[0] - reached[1]) / 2 * wanted
+    lower = replace(ends[1], frequency=middle - half)
+    upper = replace(ends[0], frequency=middle + half, low_end=lower)
+    return Variation(sources=tuple(sources), tanks=(upper,))

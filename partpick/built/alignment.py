@@ -13,7 +13,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from partpick.built.variation import COIL, Floats, Variation, VaryingTank
+from partpick.built.tank import Floats, VaryingTank
+from partpick.built.variation import COIL, Variation
 
 INNER_TRAVEL = (0.2, 0.8)  # a setting outside is too near an end to find; common practice, no source
 FULL_TRAVEL = (0.0, 1.0)
@@ -32,7 +33,7 @@ class Setting:
 
 @dataclass(frozen=True, kw_only=True)
 class BandAlignment:
-    """One band and its adjustments."""
+    """One band and its adjustments; a swept band at its upper end."""
 
     share: float | None  # of units in which this band alone comes right; None: no trimmer, coil, limit
     trimmer: Setting | None
@@ -44,7 +45,7 @@ class BandAlignment:
 class Alignment:
     """All bands and adjustable coils of a unit."""
 
-    bands: tuple[BandAlignment | None, ...]  # None: swept
+    bands: tuple[BandAlignment, ...]
     coils: tuple[Setting, ...]
     share: float  # of units in which every band comes right, settings inside 20 to 80 % of travel
     worst_case: bool  # every unit within tolerance, over the full travel
@@ -59,6 +60,8 @@ def inductance_asked(
     """Return between which inductances, over nominal, a band comes right in each build, (n,) each. [-]"""
     fixed = tank.fixed_capacitance(x)
     on_target = float(tank.wanted(tank.inductance))
+    if tank.low_end is not None:
+        return _inductance_that_covers(tank, tank.low_end, x, travel)
     if tank.trimmer is not None:
         span = tank.trimmer.high - tank.trimmer.low
         low, high = (tank.trimmer.low + share * span for share in travel)
@@ -67,6 +70,20 @@ def inductance_asked(
         return np.zeros(len(fixed)), np.full(len(fixed), np.inf)
     exact = on_target / fixed
     return exact / (1.0 + error_limit) ** 2, exact / (1.0 - error_limit) ** 2
+
+
+def _inductance_that_covers(
+    upper: VaryingTank, lower: VaryingTank, x: Floats, travel: tuple[float, float]
+) -> Interval:
+    """Return between which inductances, over nominal, a swept band reaches both ends with one trimmer setting."""
+    least, most = upper.fixed_capacitance(x), lower.fixed_capacitance(x)
+    up, down = float(upper.wanted(upper.inductance)), float(lower.wanted(lower.inductance))
+    low, high = 0.0, 0.0
+    if upper.trimmer is not None:
+        span = upper.trimmer.high - upper.trimmer.low
+        low, high = (upper.trimmer.low + share * span for share in travel)
+    # one setting t has to be at least down/y - most and at most up/y - least, y being the inductance
+    return np.maximum(down / (most + high), (down - up) / (most - least)), up / (least + low)
 
 
 def coil_range(x: Floats, coil: int, adjust: float, travel: tuple[float, float]) -> Interval:
@@ -92,7 +109,7 @@ def alignment(
     builds : (S, n) array
         Random builds. [fraction]
     """
-    tanks = [tank for tank in variation.tanks if tank is not None]
+    tanks = variation.tanks
     if not any(tank.trimmer for tank in tanks) and not any(tank.coil in adjust for tank in tanks):
         return None
     whole = np.ones(builds.shape[1], dtype=np.bool_)
@@ -111,7 +128,7 @@ def alignment(
         settings += [] if setting is None else [setting]
         figures.update(group.band_figures(builds, chosen))
     return Alignment(
-        bands=tuple(None if tank is None else figures[tank.name] for tank in variation.tanks),
+        bands=tuple(figures[tank.name] for tank in tanks),
         coils=tuple(settings),
         share=float(whole.mean()),
         worst_case=worst_case,
@@ -162,14 +179,13 @@ class _Group:
         least, most = coil_range(x, self.coil, self.adjust, FULL_TRAVEL)
         if not self.adjust:
             return least
-        plain = [tank for tank in self.tanks if tank.trimmer is None]
+        plain = [tank for tank in self.tanks if tank.trimmer is None and tank.low_end is None]
         if plain:
             wanted = np.mean([tank.wanted(tank.inductance) / tank.fixed_capacitance(x) for tank in plain], axis=0)
-        else:
-            lowest = min(self.tanks, key=lambda tank: tank.frequency)
-            assert lowest.trimmer is not None
-            on_target = lowest.wanted(lowest.inductance)
-            wanted = on_target / (lowest.fixed_capacitance(x) + lowest.trimmer.middle)
+        else:  # a swept band is set at its lower end
+            lowest = min((tank.low_end or tank for tank in self.tanks), key=lambda tank: tank.frequency)
+            middle = lowest.trimmer.middle if lowest.trimmer else 0.0
+            wanted = lowest.wanted(lowest.inductance) / (lowest.fixed_capacitance(x) + middle)
         inner = coil_range(x, self.coil, self.adjust, INNER_TRAVEL)
         low, high = self.asked(x, INNER_TRAVEL)
         low, high = np.maximum(low, inner[0]), np.minimum(high, inner[1])
@@ -207,7 +223,8 @@ class _Group:
                 setting = _trimmer_setting(tank, left, here, chosen, nothing)
                 trimmer = min(max(setting.value, tank.trimmer.low), tank.trimmer.high)
             frequency = tank.frequency
-            adjustable = tank.trimmer is not None or self.adjust or self.error_limit is not None
+            swept = tank.low_end is not None
+            adjustable = tank.trimmer is not None or self.adjust or self.error_limit is not None or swept
             found[tank.name] = BandAlignment(
                 share=float(alone.aligned(builds).mean()) if adjustable else None,
                 trimmer=setting,
@@ -221,8 +238,8 @@ def _trimmer_setting(tank: VaryingTank, left: Floats, here: Floats, x: Floats, n
     """Return where a trimmer ends up with the coil at `left` (n,) in the builds and at `here` nominally."""
     assert tank.trimmer is not None
     span, low_end = tank.trimmer.high - tank.trimmer.low, tank.trimmer.low
-    value = float((tank.wanted(tank.inductance * here) - tank.fixed_capacitance(nothing))[0])
-    set_to = tank.wanted(tank.inductance * left) - tank.fixed_capacitance(x)
+    value = float(_trimmer_left(tank, here, nothing)[0])
+    set_to = _trimmer_left(tank, left, x)
     low, high = _middle_range((set_to - low_end) / span)
     return Setting(
         reference=f"trimmer of {tank.name}",
@@ -231,6 +248,18 @@ def _trimmer_setting(tank: VaryingTank, left: Floats, here: Floats, x: Floats, n
         high=high,
         value=value,
     )
+
+
+def _trimmer_left(tank: VaryingTank, inductance: Floats, x: Floats) -> Floats:
+    """Return where a trimmer is left: on frequency, of a swept band with as much to spare at both ends. [F]"""
+    exact: Floats = tank.wanted(tank.inductance * inductance) - tank.fixed_capacitance(x)
+    if tank.low_end is None:
+        return exact
+    low = tank.low_end
+    assert tank.trimmer is not None
+    least = low.wanted(low.inductance * inductance) - low.fixed_capacitance(x)
+    ends = np.clip(np.stack([least, exact]), tank.trimmer.low, tank.trimmer.high)
+    return ends.mean(axis=0)
 
 
 def _middle_range(settings: Floats) -> tuple[float, float]:

@@ -10,13 +10,14 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 from partpick.built.alignment import Alignment, BandAlignment, Setting, adjustable_coils, alignment
+from partpick.built.of_design import variation
 from partpick.built.refit import Swap, swaps
 from partpick.built.sensitivity import Contribution, WorthImproving, sensitivity, worth_improving
 from partpick.built.series import Series, series
 from partpick.built.settings import SpreadSettings, spread_settings
-from partpick.built.spread import BandSpread, UnitSpread, spread
+from partpick.built.spread import BandSpread, SweptSpread, UnitSpread, spread
 from partpick.built.steps import steps
-from partpick.built.variation import Variation, deviation_of, variation
+from partpick.built.variation import Variation, deviation_of
 from partpick.built.warming import BandDrift, band_drift
 from partpick.candidates import Coils
 from partpick.circuit import Design
@@ -40,6 +41,7 @@ class Outlook:
     drift: tuple[BandDrift | None, ...]  # empty: no range is stated
     refit: tuple[Swap, ...]
     series: Series | None  # None: one unit
+    notes: tuple[str, ...]  # defaults taken, in words
 
 
 def outlook(
@@ -79,8 +81,6 @@ def outlook(
     temperature = dict(dict(request.extra).get("temperature", ()))
     low, high = (_number(temperature, key) for key in ("from", "to"))
     measured = _number(temperature, "measured_drift")
-    tanks = [tank for tank in varying.tanks if tank is not None]
-    ranged = low is not None and high is not None
     return Outlook(
         settings=settings,
         spread=spreads,
@@ -88,13 +88,12 @@ def outlook(
         sensitivity=sensitivity(varying, deviation_of(settings.parts)),
         worth_improving=worth_improving(varying, deviation_of(settings.parts)),
         temperature=(low, high) if low is not None and high is not None else None,
-        drift=tuple(
-            None if tank is None or low is None or high is None else band_drift(varying, tank, high - low)
-            for tank in varying.tanks
-        )
-        if ranged
-        else (),
-        refit=() if measured is None else tuple(s for tank in tanks for s in swaps(varying, tank, measured, pool)),
+        drift=()
+        if low is None or high is None
+        else tuple(band_drift(varying, tank, high - low) for tank in varying.tanks),
+        refit=()
+        if measured is None
+        else tuple(swap for tank in varying.tanks for swap in swaps(varying, tank, measured, pool)),
         series=None
         if request.units == 1
         else series(
@@ -103,6 +102,7 @@ def outlook(
             aligned.share if aligned is not None else spreads.inside,
             _stock(capacitors, coils, design, candidate),
         ),
+        notes=varying.notes,
     )
 
 
@@ -148,15 +148,15 @@ def with_outlook(candidate: Candidate, known: Outlook) -> Candidate:
         extra["refit"] = [_swap(each) for each in known.refit]
     if known.series is not None:
         extra["series"] = _series(known.series)
-    return replace(candidate, bands=bands, extra={**candidate.extra, **extra})
+    warnings = tuple(dict.fromkeys((*candidate.warnings, *known.notes)))
+    return replace(candidate, bands=bands, warnings=warnings, extra={**candidate.extra, **extra})
 
 
 def _with_band(band: BandFigures, place: int, known: Outlook) -> BandFigures:
-    extra: Entry = {}
-    if (own := known.spread.bands[place]) is not None:
-        extra["spread"] = _band_spread(own)
-    if known.alignment is not None and (aligned := known.alignment.bands[place]) is not None:
-        extra["alignment"] = _band_alignment(aligned)
+    own = known.spread.bands[place]
+    extra: Entry = {"spread": _swept_spread(own) if isinstance(own, SweptSpread) else _band_spread(own)}
+    if known.alignment is not None:
+        extra["alignment"] = _band_alignment(known.alignment.bands[place])
     if known.drift:
         extra["temperature"] = _band_drift(known.drift[place])
     return replace(band, extra={**band.extra, **extra})
@@ -182,6 +182,17 @@ def _band_spread(own: BandSpread) -> Entry:
         "error_most": own.worst_high,
         "share_inside": own.inside,
         "method": "counted" if own.counted else "propagated",
+    }
+
+
+def _swept_spread(own: SweptSpread) -> Entry:
+    return {
+        "tuned_low_95_percent_hz": own.low,
+        "tuned_high_5_percent_hz": own.high,
+        "tuned_low_most_hz": own.worst_low,
+        "tuned_high_least_hz": own.worst_high,
+        "share_covering": own.covers,
+        "method": "counted",
     }
 
 

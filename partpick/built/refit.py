@@ -11,7 +11,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from partpick.built.variation import CAPACITOR, Source, Variation, VaryingTank
+from partpick.built.tank import VaryingTank
+from partpick.built.variation import CAPACITOR, Source, Variation
 from partpick.built.warming import on_frequency
 from partpick.parts import Capacitor
 from partpick.search.networks import PARALLEL

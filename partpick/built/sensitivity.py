@@ -10,6 +10,7 @@ import numpy as np
 from partpick.built.spread import slopes
 from partpick.built.variation import CAPACITOR, COIL, Variation
 
+USEFUL = 0.05  # of a band's standard deviation must go for a part to be worth it
 BETTER = 0.01  # tolerance of a capacitor that is bought better or measured, of a coil measured after winding
 
 
@@ -43,7 +44,7 @@ class WorthImproving:
 
 
 def sensitivity(variation: Variation, deviation_per_size: float) -> tuple[Contribution, ...]:
-    """Return what every source contributes to every fixed band that it acts on, bands in plan order.
+    """Return what every source contributes to every band that it acts on, a swept band at its upper end.
 
     Parameters
     ----------
@@ -54,8 +55,6 @@ def sensitivity(variation: Variation, deviation_per_size: float) -> tuple[Contri
     """
     found = []
     for tank in variation.tanks:
-        if tank is None:
-            continue
         slope = slopes(variation, tank)
         variance = (slope * variation.sizes * deviation_per_size) ** 2
         whole = float(variance.sum()) or 1.0
@@ -80,11 +79,11 @@ def sensitivity(variation: Variation, deviation_per_size: float) -> tuple[Contri
 
 
 def worth_improving(variation: Variation, deviation_per_size: float) -> WorthImproving | None:
-    """Return the part that narrows the bands most when it is at 1 %; None where every part is.
+    """Return the part that narrows the bands most when it is at 1 %; None where none does much.
 
     The gain is the sum over bands of the variance that goes, each as a fraction of the band's own.
     """
-    tanks = [tank for tank in variation.tanks if tank is not None]
+    tanks = variation.tanks
     if not tanks:
         return None
     variance = np.array([(slopes(variation, tank) * variation.sizes * deviation_per_size) ** 2 for tank in tanks])
@@ -97,6 +96,8 @@ def worth_improving(variation: Variation, deviation_per_size: float) -> WorthImp
     if relative[best] <= 0.0:
         return None
     at = int(gain[:, best].argmax())
+    if gain[at, best] < (1.0 - (1.0 - USEFUL) ** 2) * whole[at, 0]:
+        return None
     source = variation.sources[best]
     return WorthImproving(
         reference=source.reference,

@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
+from statistics import NormalDist
 
 import numpy as np
-from scipy.special import ndtr, ndtri
+from numpy.typing import NDArray
 
 from partpick.built.settings import SpreadSettings
-from partpick.built.variation import NORMAL_PARTS, Floats, Variation, VaryingTank, deviation_of
+from partpick.built.tank import Floats, VaryingTank
+from partpick.built.variation import NORMAL_PARTS, Variation, deviation_of
 from partpick.physics.uncertainty import uniform_sum_distribution
 from partpick.request import Limits
 
@@ -29,11 +32,22 @@ class BandSpread:
 
 
 @dataclass(frozen=True, kw_only=True)
-class UnitSpread:
-    """The bands, and the unit as a whole; a swept band has None."""
+class SweptSpread:
+    """How far one swept band reaches over all units, trimmer at its middle; counted in builds."""
 
-    bands: tuple[BandSpread | None, ...]
-    inside: float | None  # share of units with every fixed band inside the error limit
+    low: float  # Hz: 19 of 20 units tune at least down to it
+    high: float  # Hz: 19 of 20 units tune at least up to it
+    worst_low: float  # Hz: every unit tunes at least down to it
+    worst_high: float  # Hz
+    covers: float  # share of units that cover the band as asked for, without margin
+
+
+@dataclass(frozen=True, kw_only=True)
+class UnitSpread:
+    """The bands, and the unit as a whole."""
+
+    bands: tuple[BandSpread | SweptSpread, ...]
+    inside: float | None  # share of units with every fixed band inside the error limit, every swept one covered
 
 
 def slopes(variation: Variation, tank: VaryingTank) -> Floats:
@@ -57,15 +71,17 @@ def propagated(
     sizes = np.abs(slopes(variation, tank)) * variation.sizes
     nominal = float(np.log(tank.resonance(np.zeros((len(sizes), 1)))[0] / tank.frequency))
     deviation = deviation_of(parts) * float(np.sqrt((sizes**2).sum()))
-    ends = None if error_limit is None else np.log([1.0 - error_limit, 1.0 + error_limit]) - nominal
+    limit = 0.5 if error_limit is None else error_limit
+    ends = [math.log1p(-limit) - nominal, math.log1p(limit) - nominal]
     if parts == NORMAL_PARTS:
-        low, high = deviation * ndtri([LOW_SHARE, HIGH_SHARE])
-        below = None if ends is None else ndtr(ends / max(deviation, 1e-300))
+        normal = NormalDist(sigma=max(deviation, 1e-300))
+        low, high = normal.inv_cdf(LOW_SHARE), normal.inv_cdf(HIGH_SHARE)
+        below = [normal.cdf(end) for end in ends]
     else:
         points, shares = uniform_sum_distribution(sizes)
         low, high = np.interp([LOW_SHARE, HIGH_SHARE], shares, points)
-        below = None if ends is None else np.interp(ends, points, shares)
-    inside = None if below is None else float(below[1] - below[0])
+        below = [float(each) for each in np.interp(ends, points, shares)]
+    inside = None if error_limit is None else below[1] - below[0]
     return deviation, float(np.expm1(nominal + low)), float(np.expm1(nominal + high)), inside
 
 
@@ -88,17 +104,22 @@ def spread(
         Whether each band's range is counted in the builds; by propagation otherwise. The whole unit is
         always counted: its bands depend on each other.
     """
-    bands: list[BandSpread | None] = []
+    bands: list[BandSpread | SweptSpread] = []
     right = np.ones(builds.shape[1], dtype=np.bool_)
+    judged = False
     for tank in variation.tanks:
-        if tank is None:
-            bands.append(None)
+        if tank.low_end is not None:
+            swept, covered = _swept(variation, tank, tank.low_end, builds)
+            bands.append(swept)
+            right &= covered
+            judged = True
             continue
         deviation, low, high, inside = propagated(variation, tank, settings.parts, limits.error)
         error = tank.resonance(builds) / tank.frequency - 1.0
         if limits.error is not None:
             ok = np.abs(error) <= limits.error
             right &= ok
+            judged = True
             inside = float(ok.mean()) if counted else inside
         if counted:
             low, high = (float(point) for point in np.quantile(error, (LOW_SHARE, HIGH_SHARE)))
@@ -114,5 +135,19 @@ def spread(
                 counted=counted,
             )
         )
-    share = None if limits.error is None or not any(bands) else float(right.mean())
-    return UnitSpread(bands=tuple(bands), inside=share)
+    return UnitSpread(bands=tuple(bands), inside=float(right.mean()) if judged else None)
+
+
+def _swept(
+    variation: Variation, upper: VaryingTank, lower: VaryingTank, builds: Floats
+) -> tuple[SweptSpread, NDArray[np.bool_]]:
+    down, up = lower.resonance(builds), upper.resonance(builds)
+    covered = (down <= lower.frequency) & (up >= upper.frequency)
+    figures = SweptSpread(
+        low=float(np.quantile(down, HIGH_SHARE)),
+        high=float(np.quantile(up, LOW_SHARE)),
+        worst_low=float(lower.resonance(variation.corners).max()),
+        worst_high=float(upper.resonance(variation.corners).min()),
+        covers=float(covered.mean()),
+    )
+    return figures, covered

@@ -2,7 +2,8 @@
 
 Separate tanks: an adjustable coil first, on its lowest band with the trimmer in the middle, for it moves all
 of its bands; then the trimmers, each on its own band, which disturb nobody. Other layouts get their own
-order here: stacked from the highest band down, swept bands low end by the coil and high end by the trimmer.
+order here: stacked from the highest band down. A swept band has its low end set by the coil and its high end
+by the trimmer, in turn until both stay.
 """
 
 from __future__ import annotations
@@ -20,12 +21,13 @@ class Step:
     adjust: str | None  # reference
     band: str
     frequency: float  # Hz
-    why: str  # "coil first", "own trimmer", "spread evenly", "nothing to adjust"
+    why: str  # one of the words below
     travel: float | None = None  # expected, with nominal parts
     value: float | None = None  # F, of a trimmer
 
 
 COIL_FIRST, EVENLY, OWN_TRIMMER, NOTHING = "coil first", "spread evenly", "own trimmer", "nothing to adjust"
+LOW_END, HIGH_END = "low end by the coil", "high end by the trimmer"
 
 
 def steps(own: Alignment, candidate: Candidate) -> tuple[Step, ...]:
@@ -36,21 +38,23 @@ def steps(own: Alignment, candidate: Candidate) -> tuple[Step, ...]:
     found: list[Step] = []
     for reference in dict.fromkeys(coil.reference for coil in candidate.coils):
         served = sorted(
-            (band for band in candidate.bands if band.coil == reference and band.target is not None),
-            key=lambda band: band.target or 0.0,
+            (band for band in candidate.bands if band.coil == reference),
+            key=_frequency,
         )
         if reference in coils and served:
             on, why = _coil_band(served, trimmers)
+            why = why if on.target is not None else LOW_END
             found.append(_step(reference, on, why, travel=coils[reference].nominal))
             done = on.name if on.name not in trimmers else None
         else:
             done = None
         for band in served:
             aligned = figures[band.name]
-            setting = None if aligned is None else aligned.trimmer
+            setting = aligned.trimmer
             if setting is not None:
                 trimmer = trimmers.get(band.name, setting.reference)
-                found.append(_step(trimmer, band, OWN_TRIMMER, setting.nominal, setting.value))
+                why = OWN_TRIMMER if band.target is not None else HIGH_END
+                found.append(_step(trimmer, band, why, setting.nominal, setting.value))
             elif band.name != done:
                 found.append(_step(None, band, NOTHING))
     return tuple(found)
@@ -58,7 +62,7 @@ def steps(own: Alignment, candidate: Candidate) -> tuple[Step, ...]:
 
 def _coil_band(served: list[BandFigures], trimmers: dict[str, str]) -> tuple[BandFigures, str]:
     """Return the band on which a coil is set: one without trimmer where there is one, else the lowest."""
-    plain = [band for band in served if band.name not in trimmers]
+    plain = [band for band in served if band.name not in trimmers and band.target is not None]
     if len(plain) > 1:
         return plain[0], EVENLY
     return (plain or served)[0], COIL_FIRST
@@ -67,5 +71,15 @@ def _coil_band(served: list[BandFigures], trimmers: dict[str, str]) -> tuple[Ban
 def _step(
     adjust: str | None, band: BandFigures, why: str, travel: float | None = None, value: float | None = None
 ) -> Step:
-    assert band.target is not None
-    return Step(adjust=adjust, band=band.name, frequency=band.target, why=why, travel=travel, value=value)
+    at = "high_hz" if why == HIGH_END else "low_hz"
+    frequency = _frequency(band, at)
+    return Step(adjust=adjust, band=band.name, frequency=frequency, why=why, travel=travel, value=value)
+
+
+def _frequency(band: BandFigures, at: str = "low_hz") -> float:
+    """Return the target, of a swept band one end of the range asked for. [Hz]"""
+    if band.target is not None:
+        return band.target
+    end = band.extra[at]
+    assert isinstance(end, (int, float))
+    return float(end)

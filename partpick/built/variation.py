@@ -1,4 +1,4 @@
-"""What may differ from unit to unit, and each band's tank as a function of it.
+"""What may differ from unit to unit, and random builds of it.
 
 A source is one piece, or one stray, with its largest deviation. A piece that serves several bands is one
 source: a coil shared by all bands moves them together.
@@ -6,24 +6,14 @@ source: a coil shared by all bands moves them together.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
-from partpick.candidates import Coils
-from partpick.circuit import Design, Tank
-from partpick.parts import Capacitor
-from partpick.physics.resonance import effective_capacitance, resonance_frequency
+from partpick.built.tank import Floats, VaryingTank
 from partpick.physics.uncertainty import NORMAL, UNIFORM, correlated_uniform
-from partpick.request import Request, Trimmer
-from partpick.result import Candidate
-from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
 
-Floats = NDArray[np.float64]
-
-COIL, CAPACITOR, WIRING, SELF_CAPACITANCE = "coil", "capacitor", "wiring", "self-capacitance"
+COIL, CAPACITOR, WIRING, SELF_CAPACITANCE, TUNING = "coil", "capacitor", "wiring", "self-capacitance", "tuning"
 UNIFORM_PARTS, NORMAL_PARTS = "uniform", "normal"
 MOST_DEVIATION = 0.95  # a part is never less than nothing
 
@@ -42,96 +32,12 @@ class Source:
 
 
 @dataclass(frozen=True, kw_only=True)
-class VaryingTank:
-    """One fixed band; `coil`, `parts` and the rest are places among the sources."""
-
-    name: str
-    frequency: float  # Hz, target
-    inductance: float  # H
-    coil: int
-    coil_tempco: float  # 1/K, nan: unknown
-    parts: tuple[int, ...]
-    values: tuple[float, ...]  # F
-    series_inductances: tuple[float, ...]  # H
-    shape: int
-    leads: float  # H
-    wiring: int
-    wiring_capacitance: float  # F
-    winding: int
-    winding_capacitance: float  # F
-    trimmer: Trimmer | None
-
-    def network(self, x: Floats) -> Floats:
-        """Return how the capacitors act in builds with deviations `x` (S, n). [F]"""
-        if not self.parts:
-            return np.zeros(x.shape[1])
-        acting = [
-            effective_capacitance(value * (1.0 + x[part]), inductance, self.frequency)
-            for part, value, inductance in zip(self.parts, self.values, self.series_inductances, strict=True)
-        ]
-        whole = connected(acting, self.shape)
-        return effective_capacitance(whole, self.leads, self.frequency) if self.leads else whole
-
-    def fixed_capacitance(self, x: Floats) -> Floats:
-        """Return all capacitance but the trimmer. [F]"""
-        wiring = self.wiring_capacitance * (1.0 + x[self.wiring])
-        return self.network(x) + wiring + self.winding_capacitance * (1.0 + x[self.winding])
-
-    def built_inductance(self, x: Floats) -> Floats:
-        """Return the inductance. [H]"""
-        return self.inductance * (1.0 + x[self.coil])
-
-    def resonance(self, x: Floats) -> Floats:
-        """Return the resonance with the trimmer at the middle of its range. [Hz]"""
-        trimmer = self.trimmer.middle if self.trimmer else 0.0
-        return resonance_frequency(self.built_inductance(x), self.fixed_capacitance(x) + trimmer)
-
-    def nominal_fixed(self) -> float:
-        """Return all capacitance but the trimmer of a build without deviations. [F]"""
-        return float(self.fixed_capacitance(self._nothing_off())[0])
-
-    def wanted(self, inductance: float | Floats) -> float | Floats:
-        """Return the capacitance that is on frequency with an inductance. [F]"""
-        return 1.0 / ((2.0 * np.pi * self.frequency) ** 2 * inductance)
-
-    def _nothing_off(self) -> Floats:
-        return np.zeros((1 + max((self.coil, self.wiring, self.winding, *self.parts)), 1))
-
-    def weights(self, trimmer: float) -> dict[int, float]:
-        """Return d ln C / d ln c of every capacitance, C being all in circuit; the coil has 1. [-]"""
-        across = float(self.network(self._nothing_off())[0])
-        total = self.nominal_fixed() + trimmer
-        found = {
-            self.coil: 1.0,
-            self.wiring: self.wiring_capacitance / total,
-            self.winding: self.winding_capacitance / total,
-        }
-        for part, slope in zip(self.parts, self._slopes(across), strict=True):
-            found[part] = found.get(part, 0.0) + slope / total
-        return found
-
-    def _slopes(self, across: float) -> list[float]:
-        """Return c dC/dc of each capacitor, C being the network with its leads. [F]"""
-        if not self.parts:
-            return []
-        pairs = zip(self.values, self.series_inductances, strict=True)
-        acting = [float(effective_capacitance(value, inductance, self.frequency)) for value, inductance in pairs]
-        bare = float(connected([np.array(each) for each in acting], self.shape))
-        # c/(1 - w^2 L c) has the logarithmic derivative 1/(1 - w^2 L c), the ratio of acting to own capacitance
-        by_leads = across / bare
-        slopes = network_slopes(acting, self.shape)
-        return [
-            across * by_leads * slope / bare * each / value
-            for slope, each, value in zip(slopes, acting, self.values, strict=True)
-        ]
-
-
-@dataclass(frozen=True, kw_only=True)
 class Variation:
-    """All sources of one design, and its fixed bands; a band that is swept has None."""
+    """All sources of one design, and its bands."""
 
     sources: tuple[Source, ...]
-    tanks: tuple[VaryingTank | None, ...]  # in plan order
+    tanks: tuple[VaryingTank, ...]  # in plan order
+    notes: tuple[str, ...] = ()  # defaults taken, in words
 
     @property
     def sizes(self) -> Floats:
@@ -189,121 +95,3 @@ def _of_one_batch(generator: np.random.Generator, own: Floats, correlation: floa
 def deviation_of(parts: str) -> float:
     """Return the standard deviation of a source over its tolerance. [-]"""
     return NORMAL if parts == NORMAL_PARTS else float(UNIFORM)
-
-
-def connected(c: Sequence[Floats], shape: int) -> Floats:
-    """Return a network of up to six capacitances in parallel, or of one of the shapes of three. [F]"""
-    if shape == PARALLEL or len(c) == 1:
-        return np.sum(c, axis=0)
-    if shape == SERIES:
-        return 1.0 / np.sum([1.0 / each for each in c], axis=0)
-    if shape == SHUNTED:
-        return c[0] + c[1] * c[2] / (c[1] + c[2])
-    assert shape == CHAINED
-    pair = c[1] + c[2]
-    return c[0] * pair / (c[0] + pair)
-
-
-def network_slopes(c: Sequence[float], shape: int) -> list[float]:
-    """Return c dC/dc of each part of a network of plain capacitances. [F]"""
-    if shape == PARALLEL or len(c) == 1:
-        return list(c)
-    if shape == SERIES:
-        whole = 1.0 / sum(1.0 / each for each in c)
-        return [whole**2 / each for each in c]
-    if shape == SHUNTED:
-        pair = c[1] * c[2] / (c[1] + c[2])
-        return [c[0], pair**2 / c[1], pair**2 / c[2]]
-    pair = c[1] + c[2]
-    whole = c[0] * pair / (c[0] + pair)
-    return [whole**2 / c[0], whole**2 * c[1] / pair**2, whole**2 * c[2] / pair**2]
-
-
-def variation(
-    request: Request, coils: Coils, capacitors: Sequence[Capacitor], design: Design, candidate: Candidate
-) -> Variation:
-    """Return what varies in a design, by the references of its assessed candidate.
-
-    Parameters
-    ----------
-    request : Request
-        Its strays and their tolerance.
-    coils : Coils
-        Every coil in play.
-    capacitors : sequence of Capacitor
-        Every capacitor in play.
-    design : Design
-        What was picked.
-    candidate : Candidate
-        The same design assessed: pieces that two bands share have one reference there.
-    """
-    places: dict[str, int] = {}
-    sources: list[Source] = []
-
-    def place(source: Source) -> int:
-        if source.reference not in places:
-            places[source.reference] = len(sources)
-            sources.append(source)
-        return places[source.reference]
-
-    tanks: list[VaryingTank | None] = []
-    for index, (band, figures) in enumerate(zip(request.bands, candidate.bands, strict=True)):
-        tank = Tank(request=request, coils=coils, capacitors=capacitors, design=design, index=index)
-        coil = place(_coil_source(tank, figures.coil, candidate))
-        winding = place(_stray_source(request, SELF_CAPACITANCE, figures.coil))
-        parts = tuple(
-            place(_capacitor_source(reference, part, capacitors[part]))
-            for reference, part in zip(figures.capacitors, tank.network.parts, strict=False)
-        )
-        if band.swept:
-            tanks.append(None)
-            continue
-        chosen = [capacitors[part] for part in tank.network.parts]
-        tanks.append(
-            VaryingTank(
-                name=band.name,
-                frequency=band.highest,
-                inductance=figures.inductance,
-                coil=coil,
-                coil_tempco=float(coils.tempco[tank.row, index]),
-                parts=parts,
-                values=tuple(part.value for part in chosen),
-                series_inductances=tuple(part.series_inductance or 0.0 for part in chosen),
-                shape=tank.network.shape,
-                leads=request.stray.inductance,
-                wiring=place(_stray_source(request, WIRING, band.name)),
-                wiring_capacitance=band.stray,
-                winding=winding,
-                winding_capacitance=figures.self_capacitance,
-                trimmer=band.trimmer,
-            )
-        )
-    return Variation(sources=tuple(sources), tanks=tuple(tanks))
-
-
-def _coil_source(tank: Tank, reference: str, candidate: Candidate) -> Source:
-    label = next(coil.label for coil in candidate.coils if coil.reference == reference)
-    return Source(
-        reference=reference,
-        kind=COIL,
-        label=label,
-        size=float(tank.coils.spread[tank.coil]),
-        tempco_size=float(tank.coils.tempco_spread[tank.coil]),
-    )
-
-
-def _capacitor_source(reference: str, index: int, part: Capacitor) -> Source:
-    return Source(
-        reference=reference,
-        kind=CAPACITOR,
-        label=part.label,
-        size=part.tolerance,
-        batch=index,
-        tempco=part.tempco,
-        tempco_size=part.tempco_tolerance or 0.0,
-    )
-
-
-def _stray_source(request: Request, kind: str, of: str) -> Source:
-    stray = request.stray  # its tolerance and tempco hold for wiring and self-capacitance alike
-    return Source(reference=f"{kind} of {of}", kind=kind, label=kind, size=stray.tolerance, tempco=stray.tempco)

@@ -8,7 +8,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from partpick.built.spread import HIGH_SHARE, LOW_SHARE
-from partpick.built.variation import COIL, Variation, VaryingTank
+from partpick.built.tank import VaryingTank
+from partpick.built.variation import COIL, Variation
 from partpick.physics.uncertainty import uniform_sum_distribution
 
 

@@ -9,9 +9,9 @@ from typing import Final
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.special import ellipe, ellipkm1
 
 from partpick.physics.skin import MU_0
+from partpick.physics.special import elliptic_integrals
 
 FloatArray = NDArray[np.float64]
 
@@ -60,7 +60,8 @@ def mutual_inductance(radius: ArrayLike, other_radius: ArrayLike, distance: Arra
     far_side = (a + b) ** 2 + square
     m = 4.0 * a * b / far_side
     with np.errstate(invalid="ignore"):
-        shape = np.asarray((2.0 - m) * ellipkm1(((a - b) ** 2 + square) / far_side) - 2.0 * ellipe(m))
+        first, second = elliptic_integrals(((a - b) ** 2 + square) / far_side)
+        shape = np.asarray((2.0 - m) * first - 2.0 * second)
     far = m < _SERIES_BELOW
     if np.any(far):
         shape = np.where(far, np.pi / 2.0 * m * m * np.polyval(_FAR[::-1], np.where(far, m, 0.0)), shape)

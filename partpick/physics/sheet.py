@@ -9,9 +9,9 @@ from typing import Final, NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.special import ellipe, ellipkm1
 
 from partpick.physics.skin import MU_0
+from partpick.physics.special import elliptic_integrals
 
 FloatArray = NDArray[np.float64]
 
@@ -229,7 +229,7 @@ def _middle(length_over_diameter: FloatArray) -> tuple[FloatArray, FloatArray]:
     square = x * x
     m = 1.0 / (1.0 + square)
     k = np.sqrt(m)
-    first, second = ellipkm1(square * m), ellipe(m)
+    first, second = elliptic_integrals(square * m)
     shape = square * (first - second) + second - k
     grown = 2.0 * square * (first - second) - square * m * (2.0 * second - first - k)
     scale = 4.0 / (3.0 * np.pi * x * k)

@@ -11,7 +11,8 @@ from typing import Final
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.special import jve
+
+from partpick.physics.special import bessel_quotients
 
 FloatArray = NDArray[np.float64]
 
@@ -187,9 +188,9 @@ def _per_distinct(function: Callable[[FloatArray], FloatArray], argument: ArrayL
 
 
 def _bessel_quotient(x: FloatArray) -> NDArray[np.complex128]:
-    """Return J0(z)/J1(z) for z = (1 - j) x, x within the range of neither series; the scalings cancel."""
+    """Return J0(z)/J1(z) for z = (1 - j) x, x within the range of neither series."""
     z = (1.0 - 1.0j) * np.clip(np.nan_to_num(x), _SERIES_BELOW, _ASYMPTOTIC_ABOVE)
-    return np.asarray(jve(0, z) / jve(1, z), complex)
+    return np.asarray(1.0 / bessel_quotients(z)[0], complex)
 
 
 def _choose(x: FloatArray, small: FloatArray, exact: FloatArray, large: FloatArray) -> FloatArray:

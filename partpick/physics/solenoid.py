@@ -10,10 +10,10 @@ from typing import Final
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.special import jve
 
 from partpick.physics.filaments import loop_inductance, mutual_inductance
 from partpick.physics.skin import MU_0
+from partpick.physics.special import bessel_quotients
 
 FloatArray = NDArray[np.float64]
 
@@ -98,7 +98,7 @@ def solenoid_families(
     # figure carries the rounding of its neighbours.
     for start, end in zip(starts.tolist(), ends.tolist(), strict=True):
         piece = step[start:end]
-        np.cumsum(np.cumsum(piece), out=piece)
+        np.add.accumulate(np.add.accumulate(piece), out=piece)
     return step
 
 
@@ -175,5 +175,6 @@ def reaction_ratio(a_over_delta: ArrayLike) -> FloatArray:
     distinct, where = np.unique(values, return_inverse=True)  # thousands of windings share a few wires
     z = (1.0 - 1.0j) * np.clip(np.nan_to_num(distinct), 0.0, _ASYMPTOTIC_ABOVE)
     thick = np.maximum(distinct, 1.0)
-    ratio = np.where(distinct > _ASYMPTOTIC_ABOVE, 1.0 - 1.0 / thick, np.real(-jve(2, z) / jve(0, z)))
+    first, second = bessel_quotients(z)
+    ratio = np.where(distinct > _ASYMPTOTIC_ABOVE, 1.0 - 1.0 / thick, np.real(-second * first))
     return np.where(distinct >= 0.0, ratio, np.nan)[where.reshape(values.shape)][()]

@@ -10,7 +10,6 @@ from typing import Final
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.special import ndtr
 
 FloatArray = NDArray[np.float64]
 
@@ -119,5 +118,7 @@ def correlated_uniform(common: ArrayLike, own: ArrayLike, correlation: float) ->
     """
     r = 2.0 * np.sin(np.pi * correlation / 6.0)
     mixed = np.sqrt(r) * np.asarray(common, float) + np.sqrt(1.0 - r) * np.asarray(own, float)
+    from scipy.special import ndtr  # takes longer to import than a whole search for one pair
+
     result: FloatArray = 2.0 * ndtr(mixed) - 1.0
     return result

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
+from partpick.forms.unwound import unwound
 from partpick.parts import Catalogue
 from partpick.quantities import format_quantity
 from partpick.report.text import clean, columns, cut, length, plural, wrapped
@@ -103,7 +104,7 @@ def _henry(value: float) -> str:
 
 
 def _notes(catalogue: Catalogue) -> list[str]:
-    """Return what was filled in for empty cells, each sentence once."""
+    """Return what was filled in for empty cells, and what no wire fits, each sentence once."""
     counts: dict[str, int] = {}
     parts: tuple[Any, ...] = (
         *catalogue.capacitors,
@@ -114,6 +115,7 @@ def _notes(catalogue: Catalogue) -> list[str]:
     for part in parts:
         for note in part.notes:
             counts[note] = counts.get(note, 0) + 1
+    counts.update(dict.fromkeys(unwound(catalogue), 1))
     lines: list[str] = [""] if counts else []
     for note, count in list(counts.items())[:MOST_NOTES]:
         lines += wrapped(f"Note: {note}" + (f" ({plural(count, 'part')})" if count > 1 else ""), 0, 2)

@@ -14,6 +14,7 @@ from partpick.result import BandFigures, Candidate
 _MOST_SWAPS = 6
 _WHY = {
     "coil first": "its trimmer in the middle",
+    "low end by the coil": "the tuning element closed, its trimmer in the middle",
     "spread evenly": "so that the errors of its bands without trimmer are alike",
 }
 
@@ -46,7 +47,7 @@ def _bands(request: Request, candidate: Candidate) -> list[str]:
     if request.limits.error is not None:
         head.append(f"within {format_percent(request.limits.error)}")
         rows = [
-            [*row, _share(_table(band.extra["spread"])["share_inside"])]
+            [*row, _share(_inside(band))]
             for row, band in zip(rows, shown, strict=True)
         ]
     if any("alignment" in band.extra for band in shown):
@@ -59,13 +60,30 @@ def _bands(request: Request, candidate: Candidate) -> list[str]:
     return [*wrapped(first), *(f"  {line}" for line in columns([head, *rows], left=(0,)))]
 
 
+def _inside(band: BandFigures) -> float | None:
+    """Return the share of units inside the limit, of a swept band that of those which cover it."""
+    spread = _table(band.extra["spread"])
+    share: float | None = spread["share_inside"] if "share_inside" in spread else spread["share_covering"]
+    return share
+
+
 def _range_cells(band: BandFigures) -> list[str]:
     spread = _table(band.extra["spread"])
+    if "share_covering" in spread:
+        return [
+            cut(clean(band.name), LONGEST_NAME),
+            f"{_megahertz(spread['tuned_low_95_percent_hz'])}..{_megahertz(spread['tuned_high_5_percent_hz'])}",
+            f"{_megahertz(spread['tuned_low_most_hz'])}..{_megahertz(spread['tuned_high_least_hz'])}",
+        ]
     return [
         cut(clean(band.name), LONGEST_NAME),
         _percent_range(spread["error_5_percent"], spread["error_95_percent"]),
         _percent_range(spread["error_least"], spread["error_most"]),
     ]
+
+
+def _megahertz(hertz: float) -> str:
+    return format_quantity(hertz, "Hz", 4).replace(" ", "").removesuffix("Hz")
 
 
 def _percent_range(low: float, high: float) -> str:
@@ -85,8 +103,9 @@ def _whole_unit(request: Request, candidate: Candidate) -> list[str]:
     spread = _table(candidate.extra["spread"])
     if spread["share_inside"] is None or request.limits.error is None or len(candidate.bands) < 2:
         return []
-    text = f"Every band within {format_percent(request.limits.error)} as built: {_share(spread['share_inside'])} of"
-    return wrapped(f"{text} {spread['builds']} units drawn at random.", 0, 2)
+    swept = ", every range covered," if any(band.target is None for band in candidate.bands) else ""
+    right = f"Every band within {format_percent(request.limits.error)}{swept} as built"
+    return wrapped(f"{right}: {_share(spread['share_inside'])} of {spread['builds']} units drawn at random.", 0, 2)
 
 
 # ---------------------------------------------------------------- alignment
@@ -117,7 +136,8 @@ def _step(step: Mapping[str, Any], candidate: Candidate) -> str:
     if step["adjust"] is None:
         return f"{at}: nothing to adjust, measure it"
     figures = _table(band.extra.get("alignment"))
-    if step["why"] == "own trimmer":
+    if step["why"] in ("own trimmer", "high end by the trimmer"):
+        at += ", the tuning element open" if band.target is None else ""
         trimmer = _table(figures["trimmer"])
         if not 0.0 <= trimmer["travel"] <= 1.0:
             return f"{step['adjust']} for {at}: out of its reach with nominal parts"

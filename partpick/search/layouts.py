@@ -43,6 +43,7 @@ class Engine(Protocol):
     most_pieces: int
     least_error: Floats  # (J,)
     error_step: float  # factor from one error tried to the next
+    unproven: list[Choice]  # what a stopped trial had found
 
     def attempt(self, coils: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
         """Return the first choices in the order `by`, and all coils that have one inside the attempt.
@@ -191,6 +192,8 @@ def search_layout(
         found.settled = True
     except Stopped as stop:
         found.stopped_by = stop.reason
+        for choice in engine.unproven:
+            ranking.add(choice)
     found.choices = ranking.rows()
     if front and found.choices and found.settled:
         try:

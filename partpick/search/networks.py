@@ -58,9 +58,10 @@ class Table:
     """All networks of k parts, sorted by capacitance."""
 
     def __init__(self, rows: Rows) -> None:
-        self.rows = rows.take(np.argsort(rows.value, kind="stable"))
-        self.value = self.rows.value
-        self.parts = self.rows.species.shape[1]
+        self._rows = rows
+        self._order = np.argsort(rows.value)  # equal capacitances in any order: content tells them apart later
+        self.value = rows.value[self._order]
+        self.parts = rows.species.shape[1]
 
     def any_inside(self, low: Floats, high: Floats) -> NDArray[np.bool_]:
         """Whether some network lies in each closed interval [low, high]."""
@@ -80,7 +81,7 @@ class Table:
         """Return the networks in the closed interval [low, high]."""
         first = int(np.searchsorted(self.value, low, side="left"))
         last = int(np.searchsorted(self.value, high, side="right"))
-        return self.rows.take(slice(first, max(first, last)))
+        return self._rows.take(self._order[first : max(first, last)])
 
     def inside_each(self, low: Floats, high: Floats) -> tuple[Rows, Ints]:
         """Return the networks in each of several closed intervals, end to end, and whose they are."""
@@ -88,7 +89,7 @@ class Table:
         times = np.maximum(np.searchsorted(self.value, high, side="right") - first, 0)
         which = np.repeat(np.arange(len(first)), times)
         start = first - (np.cumsum(times) - times)
-        return self.rows.take(np.arange(len(which)) + start[which]), which
+        return self._rows.take(self._order[np.arange(len(which)) + start[which]]), which
 
 
 class Stream:

@@ -68,6 +68,7 @@ class SharedEngine:
     def __init__(self, problem: Problem, monitor: Monitor) -> None:
         self.problem = problem
         self.monitor = monitor
+        self.unproven: list[Choice] = []
         self.circuits = Circuits(problem)
         self.most_pieces = problem.parts_limit
         limits = self.circuits.windows(np.full(problem.coils, np.inf))

@@ -15,9 +15,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from partpick.search.circuits import Circuits
-from partpick.search.figures import Columns
+from partpick.search.choose import ORDERS, SUMS
 from partpick.search.problem import NEVER, Bools, Ints
 
+ROWS = 20_000  # circuits whose figures are worked out at one time
+WORST = tuple(name for name in ORDERS["error"] if name not in SUMS and name != "effort")
 _FAR = np.int64(1) << 60
 
 
@@ -32,7 +34,7 @@ class Layer:
     head: NDArray[np.int32]  # (e,)
     added: NDArray[np.int16]  # (e, k) parts, -1 where there are fewer
     alive: Bools = field(init=False)  # (e,)
-    columns: Columns = field(init=False)  # (n,) once `StackGraph.describe` was called
+    figures: dict[str, Ints] = field(init=False)  # (n,) each, once `StackGraph.describe` was called
     sums: dict[str, Ints] = field(init=False)  # (e,) each, likewise
 
     def __post_init__(self) -> None:
@@ -77,9 +79,14 @@ class StackGraph:
     def describe(self, circuits: Circuits) -> None:
         """Work out the figures by which the paths are ordered."""
         for layer in self.layers:
-            band = np.full(len(layer.coil), layer.band)
-            layer.columns, _ = circuits.columns(self.coils[layer.coil], band, layer.parts.astype(np.int64))
-            added = layer.added.astype(np.int64)
+            blocks = []
+            for start in range(0, max(1, len(layer.coil)), ROWS):
+                coil = self.coils[layer.coil[start : start + ROWS]]
+                parts = layer.parts[start : start + ROWS]
+                columns, _ = circuits.columns(coil, np.full(len(coil), layer.band), parts)
+                blocks.append([getattr(columns, name) for name in WORST])
+            layer.figures = {name: np.concatenate(b) for name, b in zip(WORST, zip(*blocks, strict=True), strict=True)}
+            added = layer.added
             layer.sums = {
                 "pieces": (added >= 0).sum(axis=1),
                 "commonness": circuits.commonness(added),
@@ -148,7 +155,7 @@ class StackGraph:
         """Return the least worst node figure for each coil, (m,), and keep to the paths up to it."""
         best = self._least_of_coils(self.worst_on_the_way(name))
         for layer in self.layers:
-            inside = getattr(layer.columns, name) <= best[layer.coil]
+            inside = layer.figures[name] <= best[layer.coil]
             layer.alive &= inside[layer.head]
         self.drop_dead_ends()
         return best
@@ -160,7 +167,7 @@ class StackGraph:
             live = layer.alive
             least = np.full(len(layer.coil), _FAR, dtype=np.int64)
             np.minimum.at(least, layer.head[live], worst[layer.tail[live]])
-            worst = np.where(least < _FAR, np.maximum(least, getattr(layer.columns, name)), _FAR)
+            worst = np.where(least < _FAR, np.maximum(least, layer.figures[name]), _FAR)
         return worst
 
     def _least_of_coils(self, of_nodes: Ints) -> Ints:

@@ -9,21 +9,21 @@ import numpy as np
 from numpy.typing import NDArray
 
 from partpick.progress import Monitor
+from partpick.search.bounds import IMPOSSIBLE
 from partpick.search.choose import Stopped
 from partpick.search.circuits import Circuits, Windows, distinct, distinct_rows, species_of_parts
 from partpick.search.grades import Grades
 from partpick.search.networks import PARALLEL, Rows
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
-from partpick.search.stack_graph import Layer, StackGraph
+from partpick.search.stack_graph import ROWS, Layer, StackGraph
 from partpick.search.sum_tables import SumTables, TooMany
 
 Shorts = NDArray[np.int16]
 
 GRAIN = 1e-21  # F; finer differences of values are none
 MOST_KINDS = 4
-MOST_EDGES = 200_000  # of one layer of one graph
-ROWS = 20_000  # circuits whose figures are worked out at one time
-WORK_LIMIT = 60_000_000  # edges of one request
+MOST_EDGES = 100_000  # of one layer of one graph
+WORK_LIMIT = 20_000_000  # edges of one request
 
 
 class StackNodes:
@@ -37,8 +37,6 @@ class StackNodes:
         self.grades = Grades(problem)
         limits = circuits.windows(np.full(problem.coils, np.inf))
         self.sums = SumTables(self._lasting_species(), limits[1][1])
-        self.least_added = self._least_added(limits)  # (J, B) in order of the layers
-        self.rest = self.least_added[:, ::-1].cumsum(axis=1)[:, ::-1]  # (J, B) from this layer on
         self.scarce = self._scarce()
         self._kind, self._amount = self._kinds(shared=False)
         self._kind_shared, self._amount_shared = self._kinds(shared=True)
@@ -60,12 +58,15 @@ class StackNodes:
         most = p.bands * p.most_parts
         return bool((p.part_stock < most).any()) or p.values_limit < most or p.price_limit < NEVER
 
-    def _least_added(self, limits: Windows) -> Ints:
-        """Return the fewest capacitors that each band adds, from the interval of the band before, (J, B)."""
+    def least_rest(self, limits: Windows) -> Ints:
+        """Return the fewest capacitors that each layer and those after it add, (m, B).
+
+        From the interval of each band and that of the band before; `IMPOSSIBLE` and more where none will do.
+        """
         p = self.problem
-        most = np.int64(p.most_parts + 1)
-        fewest = np.full((p.coils, p.bands), most, dtype=np.int64)
-        before_low, before_high = np.zeros(p.coils), np.zeros(p.coils)
+        coils = len(limits[0][0])
+        fewest = np.full((coils, p.bands), IMPOSSIBLE, dtype=np.int64)
+        before_low, before_high = np.zeros(coils), np.zeros(coils)
         for place, band in enumerate(self.order):
             low, high = (side[:, band] for side in limits[1])
             left = np.flatnonzero(low <= high)
@@ -82,7 +83,7 @@ class StackNodes:
                 high = np.where(without, np.maximum(high, 0.0), high)
             if place + 1 < p.bands:
                 before_low, before_high = self._at_next(low, high, int(band), int(self.order[place + 1]))
-        return fewest
+        return fewest[:, ::-1].cumsum(axis=1)[:, ::-1]
 
     def _at_next(self, low: Floats, high: Floats, band: int, following: int) -> tuple[Floats, Floats]:
         """Return the interval of a band as its parts act at the next one. [F]"""
@@ -151,10 +152,11 @@ class StackNodes:
         Stopped
             The monitor or the work limit ended it.
         """
-        rules = _Rules(coils, windows, budget, price, shared, count_pieces)
-        count = len(coils)
-        nothing = np.zeros(count, dtype=np.int64)
-        start = _Nodes(np.arange(count), np.empty((count, 0), dtype=np.int16), nothing, nothing)
+        rest = self.least_rest(windows)
+        rules = _Rules(coils, windows, rest, budget, price, shared, count_pieces)
+        near = np.flatnonzero(rest[:, 0] <= budget[coils])
+        nothing = np.zeros(len(near), dtype=np.int64)
+        start = _Nodes(near, np.empty((len(near), 0), dtype=np.int16), nothing, nothing)
         yield from self._below([], start, rules)
 
     def _below(self, layers: list[Layer], at: _Nodes, rules: _Rules) -> Iterator[StackGraph]:
@@ -232,8 +234,9 @@ class StackNodes:
     def _edges(self, place: int, before: _Nodes, rules: _Rules) -> tuple[Ints, Shorts]:
         """Return the node before and the parts added of every edge of a layer, (e,) and (e, most parts)."""
         problem, band = self.problem, int(self.order[place])
-        later = self.rest[:, place + 1] if place + 1 < problem.bands else np.zeros(problem.coils, dtype=np.int64)
-        spare = (rules.budget - later)[rules.coils[before.coil]] - before.pieces
+        spare = rules.budget[rules.coils[before.coil]] - before.pieces
+        if place + 1 < problem.bands:
+            spare = spare - rules.rest[before.coil, place + 1]
         sums = self.circuits.sums(band, before.parts)
         tails, parts = [], []
         if place == 0:
@@ -315,6 +318,7 @@ class _Rules:
 
     coils: Ints
     windows: Windows
+    rest: Ints
     budget: Ints
     price: Ints
     shared: bool

@@ -10,7 +10,7 @@ import numpy as np
 from partpick.progress import Monitor
 from partpick.search.bands import Found
 from partpick.search.bounds import IMPOSSIBLE
-from partpick.search.choose import ORDERS, SUMS, Choice, column_content
+from partpick.search.choose import ORDERS, SUMS, Choice, Stopped, column_content
 from partpick.search.circuits import Circuits, Windows
 from partpick.search.columns import ColumnSource
 from partpick.search.layouts import SMALLEST_ERROR, Attempt, least_grid_error, search_layout, worth_naming
@@ -71,14 +71,16 @@ class StackedEngine:
     def __init__(self, problem: Problem, monitor: Monitor, wanted: int, all_windings: bool) -> None:
         self.problem = problem
         self.monitor = monitor
+        self.unproven: list[Choice] = []
         self.wanted, self.all_windings = wanted, all_windings
         self.circuits = Circuits(problem)
         self.nodes = StackNodes(problem, self.circuits, monitor)
         every = problem.bands * problem.most_parts
         self.most_pieces = min(every, problem.parts_limit)
         self._parts_limit_binds = self.most_pieces < every
-        impossible = (self.nodes.least_added > problem.most_parts).any(axis=1)
-        self.least_pieces = np.where(impossible, IMPOSSIBLE, self.nodes.rest[:, 0])
+        every_coil = np.arange(problem.coils)
+        least = self.nodes.least_rest(self._windows(every_coil, np.inf))[:, 0]
+        self.least_pieces = np.minimum(least, IMPOSSIBLE)
         self.least_error = np.maximum(least_grid_error(problem, self.circuits.acting), self._least_error_at_top())
         # paths multiply band by band, so the more bands, the finer the steps
         self.error_step = float(2.0 ** min(1.0, 4.0 / problem.bands))
@@ -91,7 +93,7 @@ class StackedEngine:
         budget = self._budget(attempt)
         count = self._parts_limit_binds and by != "build"
         windows = self._windows(coils, attempt.error)
-        for graph in self._graphs(coils, windows, budget, attempt.price, count):
+        for graph in self._kept(self._graphs(coils, windows, budget, attempt.price, count), best):
             keys, inside = self._settle(graph, ORDERS[by], attempt.price)
             worth = worth_naming(self.problem, coils, keys, inside, self.wanted, self.all_windings)
             for place in np.flatnonzero(inside).tolist():
@@ -106,6 +108,16 @@ class StackedEngine:
                     self._narrow(windows, coils, place, figures[0])
         made = {coil: choice for coil, (_, choice) in best.items() if choice is not None}
         return made, np.array(sorted(best), dtype=np.int64)
+
+    def _kept(
+        self, graphs: Iterator[StackGraph], best: dict[int, tuple[tuple[int, ...], Choice | None]]
+    ) -> Iterator[StackGraph]:
+        """Hand on graphs; where a stop ends them, leave what was found so far in `unproven`."""
+        try:
+            yield from graphs
+        except Stopped:
+            self.unproven = [choice for _, choice in best.values() if choice is not None]
+            raise
 
     def _narrow(self, windows: Windows, coils: Ints, place: int, fine: int) -> None:
         """Leave out what is worse than a stack already found."""

@@ -9,7 +9,7 @@ import numpy as np
 from partpick.search.problem import Bools, Floats, Ints
 
 LARGEST = 1_000_000  # rows of a stored table
-MOST = 2_000_000  # rows of one answer
+MOST = 200_000  # rows of one answer
 
 
 class TooMany(Exception):

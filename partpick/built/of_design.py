@@ -1,0 +1,156 @@
+"""A design to what varies in it, by the references of its assessed candidate."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+
+from partpick.built.tank import Swept, VaryingTank
+from partpick.built.variation import CAPACITOR, COIL, SELF_CAPACITANCE, TUNING, WIRING, Source, Variation
+from partpick.candidates import Coils
+from partpick.circuit import Design, Tank
+from partpick.parts import Capacitor
+from partpick.request import Request, Tuning
+from partpick.result import BandFigures, Candidate
+
+# of the capacitance of a tuning element whose plan states no tolerance; common practice, no source
+TUNING_TOLERANCE = {"variable capacitor": 0.05, "varactor": 0.10}
+
+
+def variation(
+    request: Request, coils: Coils, capacitors: Sequence[Capacitor], design: Design, candidate: Candidate
+) -> Variation:
+    """Return what varies in a design, by the references of its assessed candidate.
+
+    Parameters
+    ----------
+    request : Request
+        Its strays and their tolerance.
+    coils : Coils
+        Every coil in play.
+    capacitors : sequence of Capacitor
+        Every capacitor in play.
+    design : Design
+        What was picked.
+    candidate : Candidate
+        The same design assessed: pieces that two bands share have one reference there.
+    """
+    sources = _Sources()
+    tanks: list[VaryingTank] = []
+    for index, figures in enumerate(candidate.bands):
+        tank = Tank(request=request, coils=coils, capacitors=capacitors, design=design, index=index)
+        upper = _varying(tank, figures, candidate, sources, low_end=False)
+        if tank.band.swept:
+            upper = replace(upper, low_end=_varying(tank, figures, candidate, sources, low_end=True))
+        tanks.append(upper)
+    return Variation(sources=tuple(sources.found), tanks=tuple(tanks), notes=_notes(request))
+
+
+@dataclass(frozen=True)
+class _Sources:
+    """The sources met so far, one for each reference."""
+
+    found: list[Source] = field(default_factory=list)
+    places: dict[str, int] = field(default_factory=dict)
+
+    def place(self, source: Source) -> int:
+        """Return the place of a source, a new one at the end."""
+        if source.reference not in self.places:
+            self.places[source.reference] = len(self.found)
+            self.found.append(source)
+        return self.places[source.reference]
+
+
+def _varying(
+    tank: Tank, figures: BandFigures, candidate: Candidate, sources: _Sources, *, low_end: bool
+) -> VaryingTank:
+    """Return one band at one end of its range; a fixed band has its upper end only."""
+    request, band = tank.request, tank.band
+    coil = sources.place(_coil_source(tank, figures.coil, candidate))
+    pieces = [
+        sources.place(_capacitor_source(reference, part, tank.capacitors[part]))
+        for reference, part in zip(figures.capacitors, tank.network.pieces, strict=True)
+    ]
+    chosen = [tank.capacitors[part] for part in tank.network.parts]
+    return VaryingTank(
+        name=band.name,
+        frequency=tank.frequency(low_end=low_end),
+        inductance=tank.inductance(low_end=low_end),
+        coil=coil,
+        coil_tempco=float(tank.coils.tempco[tank.coil, tank.index]),
+        parts=tuple(pieces[: len(chosen)]),
+        values=tuple(part.value for part in chosen),
+        series_inductances=tuple(part.series_inductance or 0.0 for part in chosen),
+        shape=tank.network.shape,
+        leads=request.stray.inductance,
+        wiring=sources.place(_stray_source(request, WIRING, band.name)),
+        wiring_capacitance=band.stray,
+        winding=sources.place(_stray_source(request, SELF_CAPACITANCE, figures.coil)),
+        winding_capacitance=figures.self_capacitance,
+        trimmer=band.trimmer,
+        swept=_swept(tank, pieces, sources, low_end=low_end),
+    )
+
+
+def _swept(tank: Tank, pieces: Sequence[int], sources: _Sources, *, low_end: bool) -> Swept | None:
+    element = tank.element()
+    if element is None or tank.request.tuning is None:
+        return None
+    series = tank.network.series
+    padder = None if series is None else tank.capacitors[series]
+    return Swept(
+        source=sources.place(
+            Source(
+                reference="T",
+                kind=TUNING,
+                label=element.words,
+                size=_tuning_tolerance(tank.request.tuning),
+                tempco=element.tempco,
+            )
+        ),
+        capacitance=element.high if low_end else element.low,
+        padder=None if padder is None else pieces[-1],
+        padder_capacitance=0.0 if padder is None else padder.value,
+        padder_inductance=0.0 if padder is None else padder.series_inductance or 0.0,
+    )
+
+
+def _tuning_tolerance(tuning: Tuning) -> float:
+    stated = tuning.get("tolerance")
+    return float(stated) if isinstance(stated, (int, float)) else TUNING_TOLERANCE.get(tuning.kind, 0.05)
+
+
+def _notes(request: Request) -> tuple[str, ...]:
+    tuning = request.tuning
+    if tuning is None or tuning.get("tolerance") is not None or not any(band.swept for band in request.bands):
+        return ()
+    taken = _tuning_tolerance(tuning) * 100
+    return (f"tuning.tolerance not stated: {taken:g} % of the capacitance taken (common practice)",)
+
+
+def _coil_source(tank: Tank, reference: str, candidate: Candidate) -> Source:
+    label = next(coil.label for coil in candidate.coils if coil.reference == reference)
+    return Source(
+        reference=reference,
+        kind=COIL,
+        label=label,
+        size=float(tank.coils.spread[tank.coil]),
+        tempco_size=float(tank.coils.tempco_spread[tank.coil]),
+    )
+
+
+def _capacitor_source(reference: str, index: int, part: Capacitor) -> Source:
+    return Source(
+        reference=reference,
+        kind=CAPACITOR,
+        label=part.label,
+        size=part.tolerance,
+        batch=index,
+        tempco=part.tempco,
+        tempco_size=part.tempco_tolerance or 0.0,
+    )
+
+
+def _stray_source(request: Request, kind: str, of: str) -> Source:
+    stray = request.stray  # its tolerance and tempco hold for wiring and self-capacitance alike
+    return Source(reference=f"{kind} of {of}", kind=kind, label=kind, size=stray.tolerance, tempco=stray.tempco)

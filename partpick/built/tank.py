@@ -1,0 +1,162 @@
+"""One band's tank as a function of what varies in it: capacitance, resonance, and the weight of each part."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import reduce
+
+import numpy as np
+from numpy.typing import NDArray
+
+from partpick.physics.resonance import effective_capacitance, resonance_frequency
+from partpick.request import Trimmer
+from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
+
+Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True, kw_only=True)
+class Swept:
+    """The tuning element at one end of its range, with the padder in series."""
+
+    source: int
+    capacitance: float  # F
+    padder: int | None  # place among the sources
+    padder_capacitance: float  # F
+    padder_inductance: float  # H
+
+    def acting(self, x: Floats, frequency: float) -> Floats:
+        """Return element and padder together. [F]"""
+        own = self.capacitance * (1.0 + x[self.source])
+        if self.padder is None:
+            return own
+        padder = self.padder_capacitance * (1.0 + x[self.padder])
+        return connected([own, effective_capacitance(padder, self.padder_inductance, frequency)], SERIES)
+
+
+@dataclass(frozen=True, kw_only=True)
+class VaryingTank:
+    """One band, a swept one at its upper end; `coil`, `parts` and the rest are places among the sources."""
+
+    name: str
+    frequency: float  # Hz: the target, or the end of the range that is asked for
+    inductance: float  # H
+    coil: int
+    coil_tempco: float  # 1/K, nan: unknown
+    parts: tuple[int, ...]
+    values: tuple[float, ...]  # F
+    series_inductances: tuple[float, ...]  # H
+    shape: int
+    leads: float  # H
+    wiring: int
+    wiring_capacitance: float  # F
+    winding: int
+    winding_capacitance: float  # F
+    trimmer: Trimmer | None
+    swept: Swept | None = None
+    low_end: VaryingTank | None = None  # of a swept band
+
+    def network(self, x: Floats) -> Floats:
+        """Return how the capacitors act in builds with deviations `x` (S, n). [F]"""
+        if not self.parts:
+            return np.zeros(x.shape[1])
+        acting = [
+            effective_capacitance(value * (1.0 + x[part]), inductance, self.frequency)
+            for part, value, inductance in zip(self.parts, self.values, self.series_inductances, strict=True)
+        ]
+        whole = connected(acting, self.shape)
+        return effective_capacitance(whole, self.leads, self.frequency) if self.leads else whole
+
+    def fixed_capacitance(self, x: Floats) -> Floats:
+        """Return all capacitance but the trimmer. [F]"""
+        wiring = self.wiring_capacitance * (1.0 + x[self.wiring])
+        fixed = self.network(x) + wiring + self.winding_capacitance * (1.0 + x[self.winding])
+        return fixed if self.swept is None else fixed + self.swept.acting(x, self.frequency)
+
+    def built_inductance(self, x: Floats) -> Floats:
+        """Return the inductance. [H]"""
+        return self.inductance * (1.0 + x[self.coil])
+
+    def resonance(self, x: Floats) -> Floats:
+        """Return the resonance with the trimmer at the middle of its range. [Hz]"""
+        trimmer = self.trimmer.middle if self.trimmer else 0.0
+        return resonance_frequency(self.built_inductance(x), self.fixed_capacitance(x) + trimmer)
+
+    def nominal_fixed(self) -> float:
+        """Return all capacitance but the trimmer of a build without deviations. [F]"""
+        return float(self.fixed_capacitance(self._nothing_off())[0])
+
+    def wanted(self, inductance: float | Floats) -> float | Floats:
+        """Return the capacitance that is on frequency with an inductance. [F]"""
+        return 1.0 / ((2.0 * np.pi * self.frequency) ** 2 * inductance)
+
+    def _nothing_off(self) -> Floats:
+        others = () if self.swept is None else (self.swept.source, self.swept.padder or 0)
+        return np.zeros((1 + max((self.coil, self.wiring, self.winding, *self.parts, *others)), 1))
+
+    def weights(self, trimmer: float) -> dict[int, float]:
+        """Return d ln C / d ln c of every capacitance, C being all in circuit; the coil has 1. [-]"""
+        across = float(self.network(self._nothing_off())[0])
+        total = self.nominal_fixed() + trimmer
+        found = {
+            self.coil: 1.0,
+            self.wiring: self.wiring_capacitance / total,
+            self.winding: self.winding_capacitance / total,
+        }
+        for part, slope in zip(self.parts, self._slopes(across), strict=True):
+            found[part] = found.get(part, 0.0) + slope / total
+        if self.swept is not None:
+            found |= self._swept_weights(self.swept, total)
+        return found
+
+    def _swept_weights(self, swept: Swept, total: float) -> dict[int, float]:
+        whole = float(swept.acting(self._nothing_off(), self.frequency)[0])
+        if swept.padder is None:
+            return {swept.source: whole / total}
+        padder = float(effective_capacitance(swept.padder_capacitance, swept.padder_inductance, self.frequency))
+        by_padder = whole**2 / padder * padder / swept.padder_capacitance
+        return {swept.source: whole**2 / swept.capacitance / total, swept.padder: by_padder / total}
+
+    def _slopes(self, across: float) -> list[float]:
+        """Return c dC/dc of each capacitor, C being the network with its leads. [F]"""
+        if not self.parts:
+            return []
+        pairs = zip(self.values, self.series_inductances, strict=True)
+        acting = [float(effective_capacitance(value, inductance, self.frequency)) for value, inductance in pairs]
+        bare = float(connected([np.array(each) for each in acting], self.shape))
+        # c/(1 - w^2 L c) has the logarithmic derivative 1/(1 - w^2 L c), the ratio of acting to own capacitance
+        by_leads = across / bare
+        slopes = network_slopes(acting, self.shape)
+        return [
+            across * by_leads * slope / bare * each / value
+            for slope, each, value in zip(slopes, acting, self.values, strict=True)
+        ]
+
+
+def connected(c: Sequence[Floats], shape: int) -> Floats:
+    """Return a network of up to six capacitances in parallel, or of one of the shapes of three. [F]"""
+    if shape == PARALLEL or len(c) == 1:
+        return reduce(np.add, c)
+    if shape == SERIES:
+        return 1.0 / reduce(np.add, [1.0 / each for each in c])
+    if shape == SHUNTED:
+        return c[0] + c[1] * c[2] / (c[1] + c[2])
+    assert shape == CHAINED
+    pair = c[1] + c[2]
+    return c[0] * pair / (c[0] + pair)
+
+
+def network_slopes(c: Sequence[float], shape: int) -> list[float]:
+    """Return c dC/dc of each part of a network of plain capacitances. [F]"""
+    if shape == PARALLEL or len(c) == 1:
+        return list(c)
+    if shape == SERIES:
+        whole = 1.0 / sum(1.0 / each for each in c)
+        return [whole**2 / each for each in c]
+    if shape == SHUNTED:
+        pair = c[1] * c[2] / (c[1] + c[2])
+        return [c[0], pair**2 / c[1], pair**2 / c[2]]
+    pair = c[1] + c[2]
+    whole = c[0] * pair / (c[0] + pair)
+    return [whole**2 / c[0], whole**2 * c[1] / pair**2, whole**2 * c[2] / pair**2]

@@ -1,0 +1,89 @@
+"""Switching layouts from plan to result: what is in circuit, what it counts as, what is refused."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Any
+
+import pytest
+
+from partpick.catalogue import load_catalogue
+from partpick.errors import RequestError
+from partpick.parts import Catalogue
+from partpick.planfile import request_from_tables
+from partpick.request import Request
+from partpick.result import Candidate
+from partpick.solve import solve
+
+BANDS = [
+    {"name": "low", "at": "3.65 MHz"},
+    {"name": "middle", "at": "7.1 MHz"},
+    {"name": "high", "at": "14.1 MHz"},
+]
+
+
+def asked(switching: str, **tables: Any) -> Request:
+    limits = {"error": "1 %", "parts": 5, **tables.pop("limits", {})}
+    return request_from_tables({"switching": switching, "limits": limits, "band": BANDS, **tables}, "bands")
+
+
+def few_formers() -> Catalogue:
+    catalogue = load_catalogue(None)
+    return replace(catalogue, formers=tuple(f for f in catalogue.formers if f.support == "ribbed")[:3], inductors=())
+
+
+def values_in_circuit(candidate: Candidate) -> dict[str, list[float]]:
+    value = {line.reference: line.value for line in candidate.parts if line.kind == "capacitor"}
+    return {band.name: [value[reference] for reference in band.capacitors] for band in candidate.bands}
+
+
+@pytest.mark.parametrize("switching", ["stacked", "shared"])
+def test_capacitors_that_bands_share_count_once(switching: str) -> None:
+    """A piece is bought once, however many bands it serves."""
+    result = solve(asked(switching), few_formers(), top=3)
+    assert result.proof.status == "optimal"
+    for candidate in result.candidates:
+        capacitors = [line for line in candidate.parts if line.kind == "capacitor"]
+        assert candidate.part_count == len(capacitors) == candidate.piece_count - 1
+        for band in candidate.bands:
+            assert band.network == pytest.approx(sum(values_in_circuit(candidate)[band.name]), rel=2e-3)
+        for line in capacitors:
+            serves = {band.name for band in candidate.bands if line.reference in band.capacitors}
+            assert serves == set(line.bands)
+
+
+def test_each_lower_band_of_a_stack_adds_to_those_above() -> None:
+    """Stacked: the capacitors of a higher band stay in circuit, and at least one comes in."""
+    for candidate in solve(asked("stacked"), few_formers(), top=3).candidates:
+        low, middle, high = (set(band.capacitors) for band in candidate.bands)
+        assert high < middle < low
+        assert set(candidate.bands[0].contacts) > set(candidate.bands[2].contacts)
+
+
+def test_a_shared_set_holds_no_more_than_the_limit() -> None:
+    """`parts` is the most that the set may hold; each band closes the contacts of its own capacitors."""
+    for candidate in solve(asked("shared", limits={"parts": 4}), few_formers(), top=3).candidates:
+        assert candidate.part_count <= 4
+        for band in candidate.bands:
+            assert [c.replace("S", "C") for c in band.contacts] == list(band.capacitors)
+
+
+def test_sharing_never_needs_more_pieces_than_separate_capacitors() -> None:
+    """A shared set with room for all separate capacitors can do what they do."""
+    separate = solve(asked("separate", limits={"parts": 6}), few_formers(), top=1).candidates[0]
+    shared = solve(asked("shared", limits={"parts": 6}), few_formers(), top=1).candidates[0]
+    assert shared.piece_count <= separate.piece_count
+
+
+@pytest.mark.parametrize(
+    ("switching", "tables", "named"),
+    [
+        ("stacked", {"limits": {"inductors": 2}}, "inductors"),
+        ("shared", {"coil": {"taps": True}}, "taps"),
+        ("stacked", {"capacitors": {"connect": "any"}}, "connect"),
+    ],
+)
+def test_what_a_layout_is_not_planned_with_is_refused_by_name(switching: str, tables: dict, named: str) -> None:
+    """Better a clear refusal than a plan of something else."""
+    with pytest.raises(RequestError, match=named):
+        solve(asked(switching, **tables), few_formers())
