@@ -141,6 +141,9 @@ _NETLIST = click.option(
 _WHY = click.option(
     "--why", type=click.IntRange(min=1), metavar="RANK", help="Say why the candidate of a rank stands there."
 )
+_AGAINST = click.option(
+    "--against", type=_PATH, metavar="RESULT", help="Say what changes against an earlier --json file."
+)
 _DRAWER = click.option("--drawer", type=_PATH, metavar="FOLDER", help="Your own parts, in CSV files as in data/.")
 _LIMIT = click.option("--time-limit", callback=_seconds, metavar="SECONDS", help="Stop then, keep the best.")
 _FORCE = click.option("--force", is_flag=True, help="Replace an output file that is there already.")
@@ -155,7 +158,7 @@ _ALL = click.option("--all-windings", is_flag=True, help="Rank every winding, no
 
 def _common(command: Any) -> Any:
     """Add the options of every command that ranks candidates."""
-    for add in reversed((_TOP, _JSON, _BOM, _SHEET, _NETLIST, _WHY, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
+    for add in reversed((_TOP, _JSON, _BOM, _SHEET, _NETLIST, _WHY, _AGAINST, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
         command = add(command)
     return command
 
@@ -227,6 +230,8 @@ def bands(plans: tuple[str, ...], top: int, drawer: str | None, by: str, all_win
     jobs = list(zip(every, outputs_of_plans(every, drawer, given), strict=True))
     for _, outputs in jobs:
         outputs.check()
+    if len(jobs) > 1 and given["against"] is not None:
+        raise RequestError("--against compares one plan with one earlier result; several plans are given")
     catalogue = None
     codes = [FOUND]
     for plan, outputs in jobs:
@@ -329,16 +334,30 @@ def _solve_and_write(
     why = given["why"]
     if why is not None and not outputs.shows_table:
         raise RequestError("--why is told below the table, and stdout (-) is taken by another output")
+    before = _earlier(given["against"], outputs)
     with Terminal(given["time_limit"]) as monitor:
         result = solve(request, catalogue, top=max(top, why or 0), monitor=monitor)
         monitor.writing()
-        outputs.write(**_renderers(result, why))
+        outputs.write(**_renderers(result, why, before))
     if monitor.elapsed >= TOO_SHORT_TO_TELL:
         click.echo(f"took {monitor.elapsed:.1f} s", err=True)
     return _exit_code(result, monitor)
 
 
-def _renderers(result: Result, why: int | None) -> dict[str, Callable[[], str]]:
+def _earlier(path: str | None, outputs: Outputs) -> Mapping[str, Any] | None:
+    """Return the best candidate of an earlier result to compare with, read before anything is solved."""
+    if path is None:
+        return None
+    if not outputs.shows_table:
+        raise RequestError("--against is told below the table, and stdout (-) is taken by another output")
+    from partpick.report.against import read_result
+
+    return read_result(path)
+
+
+def _renderers(
+    result: Result, why: int | None, before: Mapping[str, Any] | None = None
+) -> dict[str, Callable[[], str]]:
     """Return what writes each output; those that are not wanted are never called, nor loaded."""
 
     def by(module: str, function: str) -> Callable[[], str]:
@@ -350,6 +369,10 @@ def _renderers(result: Result, why: int | None) -> dict[str, Callable[[], str]]:
 
     def shown() -> str:
         text = by("table", "result_table")()
+        if before is not None:
+            from partpick.report.against import changes
+
+            text += "\n" + changes(result, before)
         if why is None or not result.candidates:
             return text
         from partpick.report.reasons import reasons

@@ -31,6 +31,7 @@ def check_layout(request: Request) -> None:
         (any(band.swept for band in request.bands), "bands with from/to"),
         (request.limits.inductors > 1, "limits.inductors above 1"),
         (request.coil.taps, "coil.taps = true"),
+        (request.limits.alignable is not None, "limits.alignable"),
         (request.capacitors.connect == "any", 'capacitors.connect = "any"'),
     )
     for asked, what in unplanned:

@@ -103,6 +103,9 @@ def _quality_trials(request: Request) -> Iterator[_Trial]:
     if limits.drift is not None:
         free = replace(request, limits=replace(limits, drift=1.0))
         yield _Trial("drift", free, _worst_drift, _drift_words)
+    if limits.alignable is not None:
+        free = replace(request, limits=replace(limits, alignable=None))
+        yield _Trial("alignable", free, lambda _: "none", lambda _: _alignable_words(request))
     if limits.price is not None:
         free = replace(request, by="price", limits=replace(limits, price=None))
         yield _Trial("price", free, lambda c: c.price, _price_words)
@@ -140,6 +143,13 @@ def _stock_words(candidate: Candidate) -> str:
 def _coil_words(candidate: Candidate) -> str:
     coils = "; ".join(coil.label for coil in candidate.coils)
     return f"without it: {coils}"
+
+
+def _alignable_words(request: Request) -> str:
+    bare = [band.name for band in request.bands if band.trimmer is None]
+    if bare:
+        return f"without a trimmer nothing can be aligned: {', '.join(bare)}"
+    return "a trimmer of wider range, a coil or capacitors of closer tolerance are needed"
 
 
 def _price_words(candidate: Candidate) -> str:

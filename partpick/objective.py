@@ -236,8 +236,19 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         by=_search_order(request, coil_price, part_price),
         margin=limits.margin,
         excess_limit=float("inf") if limits.excess is None else limits.excess,
+        alignable=_alignable_share(limits.alignable),
+        coil_spread=coils.spread,
+        part_tolerance=np.array([c.tolerance for c in capacitors]),
+        stray_tolerance=stray.tolerance,
         **_swept_figures(request, coils, capacitors, first),
     )
+
+
+def _alignable_share(limit: str | float | None) -> float:
+    """Return the share of builds that must come on frequency: 1 at all corners, 0 where none is asked for."""
+    if limit is None:
+        return 0.0
+    return 1.0 if isinstance(limit, str) else float(limit)
 
 
 def _swept_figures(

@@ -108,7 +108,10 @@ def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
     check_layout(request)
     unplanned = [
-        (request.limits.alignable is not None, "limits.alignable"),
+        (
+            request.limits.alignable is not None and any(band.swept for band in request.bands),
+            "limits.alignable with bands that are swept",
+        ),
         *((True, f"the table [{name}]") for name, _ in request.extra if name not in PLANNED_TABLES),
     ]
     for asked, what in unplanned:

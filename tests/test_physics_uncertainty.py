@@ -9,7 +9,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from partpick.physics.uncertainty import combined_uncertainty, correlated_uniform, uniform_sum_distribution
+from partpick.physics.uncertainty import UNIFORM, correlated_uniform, uniform_sum_distribution
 
 SIZES = st.lists(st.floats(1e-6, 0.3), min_size=1, max_size=8)
 
@@ -54,7 +54,7 @@ def test_variances_add(sizes: list[float]) -> None:
     deviation, share = uniform_sum_distribution(sizes)
     middle = (deviation[1:] + deviation[:-1]) / 2
     variance = float((np.diff(share) * middle**2).sum())
-    assert np.sqrt(variance) == pytest.approx(float(combined_uncertainty(sizes)), rel=0.01)
+    assert np.sqrt(variance) == pytest.approx(UNIFORM * np.linalg.norm(sizes), rel=0.01)
 
 
 def test_no_tolerance_at_all_is_a_step() -> None:

@@ -61,6 +61,29 @@ class _Sources:
         return self.places[source.reference]
 
 
+def references(design: Design, index: int, names: Sequence[str]) -> list[tuple[str, int]]:
+    """Return reference and capacitor of each piece of a band, in the order of its network.
+
+    Parameters
+    ----------
+    design : Design
+        What was picked.
+    index : int
+        The band, in plan order.
+    names : sequence of str
+        References of the pieces in circuit there; where bands share pieces, in the order of the set.
+    """
+    pieces = design.networks[index].pieces
+    named = [design.members[place] for place in design.closed[index]] if design.closed else list(pieces)
+    left = list(zip(names, named, strict=True))
+    found = []
+    for piece in pieces:
+        pair = next(each for each in left if each[1] == piece)
+        left.remove(pair)
+        found.append(pair)
+    return found
+
+
 def _varying(
     tank: Tank, figures: BandFigures, candidate: Candidate, sources: _Sources, *, low_end: bool
 ) -> VaryingTank:
@@ -69,7 +92,7 @@ def _varying(
     coil = sources.place(_coil_source(tank, figures.coil, candidate))
     pieces = [
         sources.place(_capacitor_source(reference, part, tank.capacitors[part]))
-        for reference, part in zip(figures.capacitors, tank.network.pieces, strict=True)
+        for reference, part in references(tank.design, tank.index, figures.capacitors)
     ]
     chosen = [tank.capacitors[part] for part in tank.network.parts]
     return VaryingTank(

@@ -10,7 +10,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 from partpick.built.alignment import Alignment, BandAlignment, Setting, adjustable_coils, alignment
-from partpick.built.of_design import variation
+from partpick.built.of_design import references, variation
 from partpick.built.refit import Swap, swaps
 from partpick.built.sensitivity import Contribution, WorthImproving, sensitivity, worth_improving
 from partpick.built.series import Series, series
@@ -124,9 +124,9 @@ def _stock(
 ) -> dict[str, int | None]:
     """Return how many pieces there are of each reference."""
     stock: dict[str, int | None] = {}
-    for band, coil, network in zip(candidate.bands, design.coils, design.networks, strict=True):
+    for index, (band, coil) in enumerate(zip(candidate.bands, design.coils, strict=True)):
         stock[band.coil] = coils.supports[int(coils.support[coil])].quantity
-        for reference, part in zip(band.capacitors, network.pieces, strict=False):
+        for reference, part in references(design, index, band.capacitors):
             stock[reference] = capacitors[part].quantity
     return stock
 

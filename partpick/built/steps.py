@@ -1,9 +1,9 @@
 """The order of adjustment on the bench.
 
-Separate tanks: an adjustable coil first, on its lowest band with the trimmer in the middle, for it moves all
-of its bands; then the trimmers, each on its own band, which disturb nobody. Other layouts get their own
-order here: stacked from the highest band down. A swept band has its low end set by the coil and its high end
-by the trimmer, in turn until both stay.
+An adjustable coil comes first, on its lowest band with the trimmer in the middle, for it moves all of its bands;
+then the trimmers, lowest band first: each is in circuit on its own band only, in every switching layout, and
+disturbs nobody. A swept band has its low end set by the coil and its high end by the trimmer, in turn until both
+stay.
 """
 
 from __future__ import annotations

@@ -13,33 +13,11 @@ from numpy.typing import ArrayLike, NDArray
 
 FloatArray = NDArray[np.float64]
 
-UNIFORM: Final = 1.0 / np.sqrt(3.0)  # standard deviation over half-width
+UNIFORM: Final = 1.0 / np.sqrt(3.0)  # standard deviation over half-width: JCGM 100:2008, 4.3.7
 NORMAL: Final = 0.5  # a tolerance of a normal quantity is taken as two standard deviations
 
 _HARMONICS: Final = 256
 _POINTS: Final = 257  # of the tabulated distribution, on its upper half
-
-
-def combined_uncertainty(half_widths: ArrayLike) -> FloatArray:
-    """Return the standard deviation of a sum of independent uniform quantities.
-
-    Parameters
-    ----------
-    half_widths : (..., k) array
-        Largest deviation of each; the last axis is summed over. [any unit]
-
-    Returns
-    -------
-    deviation : float or (...) array
-        sqrt(sum a^2 / 3). [the same unit]
-
-    References
-    ----------
-    JCGM 100:2008, 4.3.7 (uniform between limits) and 5.1.2, equation (10) (combination).
-    """
-    a = np.asarray(half_widths, float)
-    result: FloatArray = UNIFORM * np.sqrt((a**2).sum(axis=-1))
-    return result
 
 
 @cache

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from partpick.search.alignment import alignable
 from partpick.search.coverage import LeastExcess
 from partpick.search.figures import (
     Columns,
@@ -167,6 +168,8 @@ class ColumnSource:
         if np.isfinite(p.drift_limit):
             nominal, spread = self.drift(coil, band, chosen, share_of_parts, network)
             keep &= np.abs(nominal) + spread <= p.drift_limit * (1 + 1e-12)
+        if p.alignable > 0:
+            keep &= alignable(p, coil, band, values, chosen, rows.shape)
         whole = np.zeros(len(chosen), dtype=np.int64)
         columns = Columns(
             coil=whole + coil,

@@ -31,6 +31,7 @@ class Grades:
                 float(np.nan_to_num(p.part_tempco[part], nan=9.0)) if np.isfinite(p.drift_limit) else 0.0,
                 float(p.part_tempco_spread[part]) if np.isfinite(p.drift_limit) else 0.0,
                 int(p.part_price[part]),
+                float(p.part_tolerance[part]) if p.alignable > 0 else 0.0,
             )
             if figures in seen:
                 continue

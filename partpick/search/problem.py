@@ -89,6 +89,11 @@ class Problem:
     part_loss_low: Floats = field(default_factory=_unset)  # (B, P) 1/Q
     margin: float = 0.0  # coverage beyond each end, fraction of f
     excess_limit: float = float("inf")
+    # alignment: whether each band's trimmer reaches its target whatever the parts are within tolerance
+    alignable: float = 0.0  # share of builds, 1: all corners, 0: not asked
+    coil_spread: Floats = field(default_factory=_unset)  # (J,) fraction of the inductance, size
+    part_tolerance: Floats = field(default_factory=_unset)  # (P,) fraction, size
+    stray_tolerance: float = 0.0
 
     def __post_init__(self) -> None:
         """Fill what a problem of fixed bands leaves out."""
@@ -104,6 +109,8 @@ class Problem:
             "coil_loss_low": self.coil_loss,
             "species_low": self.species,
             "part_loss_low": self.part_loss,
+            "coil_spread": np.zeros(len(self.self_capacitance)),
+            "part_tolerance": np.zeros(len(self.part_value)),
         }
         for name, value in defaults.items():
             if getattr(self, name).size == 0:
@@ -170,9 +177,12 @@ class Problem:
             reach_low, reach_high = self.wanted - fixed - slack, self.wanted - fixed + slack
             low = np.where(trimmed[None, :], np.maximum(low, reach_low), low)
             high = np.where(trimmed[None, :], np.minimum(high, reach_high), high)
+        strays = self.self_capacitance[:, None] + self.stray[None, :]
         if parts > 0:
-            strays = self.self_capacitance[:, None] + self.stray[None, :]
             low = np.maximum(low, strays / self.share - fixed)
+        if self.alignable == 1.0:
+            least, most = self._alignable_window(strays)
+            low, high = np.maximum(low, least), np.minimum(high, most)
         grain = 1e-12 * self.wanted  # rounding of the limits themselves
         low, high = low - grain, high + grain
         in_play = self.in_play & ~self.swept[None, :]  # swept.py has its own intervals
@@ -181,6 +191,17 @@ class Problem:
         if self.lead_inductance > 0:
             low, high = self._before_leads(low), self._before_leads(high)
         return low, high
+
+    def _alignable_window(self, strays: Floats) -> tuple[Floats, Floats]:
+        """Return what the network must be for the trimmer to reach every corner, with the closest capacitor, (J, B).
+
+        A network is never closer than its closest part, so that no network outside can be aligned. [F]
+        """
+        coil = self.coil_spread[:, None]
+        part = float(self.part_tolerance.min()) if len(self.part_tolerance) else 0.0
+        least = self.wanted / (1.0 - coil) - self.trimmer_high - strays * (1.0 - self.stray_tolerance)
+        most = self.wanted / (1.0 + coil) - self.trimmer_low - strays * (1.0 + self.stray_tolerance)
+        return least / (1.0 - part), most / (1.0 + part)
 
     def _before_leads(self, network: Floats) -> Floats:
         """Return the network that acts as `network` behind the leads' inductance."""

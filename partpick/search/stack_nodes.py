@@ -23,7 +23,7 @@ Shorts = NDArray[np.int16]
 GRAIN = 1e-21  # F; finer differences of values are none
 MOST_KINDS = 4
 MOST_EDGES = 100_000  # of one layer of one graph
-WORK_LIMIT = 20_000_000  # edges of one request
+WORK_LIMIT = 10_000_000  # edges of one request
 
 
 class StackNodes:
@@ -40,9 +40,13 @@ class StackNodes:
         self.scarce = self._scarce()
         self._kind, self._amount = self._kinds(shared=False)
         self._kind_shared, self._amount_shared = self._kinds(shared=True)
-        self.work = 0
+        self.allow(WORK_LIMIT)
         # the intervals alone say everything else about a band
         self._exact = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+
+    def allow(self, work: int) -> None:
+        """Set how many edges may be made from now on before the search stops itself."""
+        self._work_left = work
 
     def _lasting_species(self) -> Floats:
         """Return the species of use at a band and all lower ones: what is added stays in circuit. [F]"""
@@ -186,8 +190,8 @@ class StackNodes:
         tail, added = self._edges(place, before, rules)
         if not len(tail):
             return None
-        self.work += len(tail)
-        if self.work > WORK_LIMIT:
+        self._work_left -= len(tail)
+        if self._work_left < 0:
             raise Stopped("work limit")
         coil = before.coil[tail]
         parts = np.sort(np.concatenate([before.parts[tail], added], axis=1), axis=1)[:, ::-1]

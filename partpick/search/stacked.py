@@ -19,6 +19,7 @@ from partpick.search.stack_graph import StackGraph
 from partpick.search.stack_nodes import StackNodes
 
 FRONT_STEP = 1e-9
+FRONT_WORK = 4_000_000  # edges of the graphs for the front
 
 
 @dataclass(frozen=True)
@@ -102,8 +103,7 @@ class StackedEngine:
                 if known is not None and known[0] < figures:
                     continue
                 named = self._named(graph, place, keys[place], ORDERS[by]) if place in worth else None
-                if known is None or figures < known[0] or named is None or known[1] is None or named.key < known[1].key:
-                    best[coil] = figures, named
+                best[coil] = figures, _first(named, known[1]) if known and known[0] == figures else named
                 if by == "error":
                     self._narrow(windows, coils, place, figures[0])
         made = {coil: choice for coil, (_, choice) in best.items() if choice is not None}
@@ -139,16 +139,25 @@ class StackedEngine:
         error = max(SMALLEST_ERROR, least * (1 + 1e-9))
         fewest = int(self.least_pieces[coils].min(initial=IMPOSSIBLE))
         top = float(self.problem.error_limit.max())
-        while budget >= fewest:
+        self.nodes.allow(FRONT_WORK)
+        stopped: Stopped | None = None
+        while budget >= fewest and stopped is None:
             error = error if error < min(0.5, top) else np.inf
             self.monitor.report(f"the least error with {budget + 1} pieces or fewer")
-            reached = self._least_by_pieces(coils, error, budget)
+            try:
+                reached = self._least_by_pieces(coils, error, budget)
+            except Stopped as stop:
+                stopped = stop
+                break
             corners += [(pieces, fine, who) for pieces, (fine, who) in sorted(reached.items())]
             budget = min([budget, *(pieces - 1 for pieces in reached)])
             if error == np.inf:
                 break
             error *= self.error_step
-        self._emit_front(corners, emit)
+        self.nodes.allow(FRONT_WORK)
+        self._emit_front(corners, emit)  # those with most pieces are certain even after a stop
+        if stopped is not None:
+            raise stopped
 
     def _least_by_pieces(self, coils: Ints, error: float, budget: int) -> dict[int, tuple[int, list[int]]]:
         """Return the least fine error of any coil for each number of capacitors, and who reaches it."""
@@ -301,3 +310,9 @@ class StackedEngine:
             nodes = np.unique(layer.tail[ways[first]])
             kept.append(first)
         return kept[::-1]
+
+
+def _first(one: Choice | None, other: Choice | None) -> Choice | None:
+    """Return the choice that comes first by content, of those that are known."""
+    known = [choice for choice in (one, other) if choice is not None]
+    return min(known, key=lambda choice: choice.key) if known else None
