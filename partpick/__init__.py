@@ -15,7 +15,7 @@ if TYPE_CHECKING:
     from partpick.planfile import load_plan, request_from_tables
     from partpick.request import Request
     from partpick.result import Result
-    from partpick.solve import solve
+    from partpick.solving import solve
 
     __version__: str
 
@@ -38,7 +38,7 @@ _HOMES = {
     "load_catalogue": "partpick.catalogue",
     "load_plan": "partpick.planfile",
     "request_from_tables": "partpick.planfile",
-    "solve": "partpick.solve",
+    "solve": "partpick.solving",
 }
 
 
@@ -50,7 +50,7 @@ def __getattr__(name: str) -> object:
     if name not in _HOMES:
         raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
     value = getattr(import_module(_HOMES[name]), name)
-    globals()[name] = value  # `solve` is also the name of its module, which the import has just put here
+    globals()[name] = value
     return value
 
 

@@ -282,7 +282,7 @@ def windings(
     catalogue = _catalogue(drawer)
     from partpick.report.result_json import windings_json
     from partpick.report.windings_table import windings_table
-    from partpick.solve import windings as find_windings
+    from partpick.solving import windings as find_windings
 
     coils = find_windings(request, catalogue, inductance=wanted, at=at)
     with Terminal() as monitor:
@@ -329,7 +329,7 @@ def _solve_and_write(
     request: Request, catalogue: Catalogue, outputs: Outputs, top: int, given: Mapping[str, Any]
 ) -> int:
     """Solve one request and write its outputs; nothing is left half written by a signal."""
-    from partpick.solve import solve
+    from partpick.solving import solve
 
     why = given["why"]
     if why is not None and not outputs.shows_table:

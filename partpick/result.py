@@ -1,6 +1,6 @@
 """What comes out: frozen values in the shape of the result file, SI, `None` for unknown.
 
-Assessment makes `Candidate`s, `solve.py` makes the `Result`, `report/` only reads them.
+Assessment makes `Candidate`s, `solving.py` makes the `Result`, `report/` only reads them.
 """
 
 from __future__ import annotations

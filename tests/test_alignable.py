@@ -19,7 +19,7 @@ from partpick.search.alignment import alignable
 from partpick.search.bands import search_bands
 from partpick.search.columns import ColumnSource
 from partpick.search.problem import NEVER, PLENTY, Problem
-from partpick.solve import solve
+from partpick.solving import solve
 
 
 def with_tolerances(seed: int, share: float, **shape: int) -> Problem:

@@ -71,10 +71,10 @@ class Canned:
 def canned(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> Canned:
     """Return the stand-in, in force in an empty folder."""
     stand_in = Canned()
-    search, catalogue = ModuleType("partpick.solve"), ModuleType("partpick.catalogue")
+    search, catalogue = ModuleType("partpick.solving"), ModuleType("partpick.catalogue")
     search.solve, search.windings = stand_in.solve, stand_in.windings  # type: ignore[attr-defined]
     catalogue.load_catalogue = stand_in.load_catalogue  # type: ignore[attr-defined]
-    monkeypatch.setitem(sys.modules, "partpick.solve", search)
+    monkeypatch.setitem(sys.modules, "partpick.solving", search)
     monkeypatch.setitem(sys.modules, "partpick.catalogue", catalogue)
     monkeypatch.chdir(tmp_path)
     return stand_in

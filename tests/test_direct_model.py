@@ -19,7 +19,7 @@ from ortools.sat.python import cp_model
 from partpick.catalogue import load_catalogue
 from partpick.planfile import request_from_tables
 from partpick.report.result_json import result_json
-from partpick.solve import solve
+from partpick.solving import solve
 
 PICOHENRY, FEMTOFARAD = 1e-12, 1e-15
 STRAY = 5000  # fF, the default of pair

@@ -24,7 +24,7 @@ STAGES = [
     {"objective", "tapping"},
     {"circuit", "layouts", "assessment", "tank_figures", "nothing_fits"},
     {"built", "stress"},
-    {"solve"},
+    {"solving"},
     {"report"},
     {"frames"},
     {"terminal", "options", "jobs", "cli", "__main__", "__init__"},

@@ -13,7 +13,7 @@ from partpick.parts import Catalogue
 from partpick.planfile import request_from_tables
 from partpick.request import Request
 from partpick.result import Candidate
-from partpick.solve import solve
+from partpick.solving import solve
 
 BANDS = [
     {"name": "low", "at": "3.65 MHz"},

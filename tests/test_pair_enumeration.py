@@ -23,7 +23,7 @@ from partpick.catalogue import load_catalogue
 from partpick.parts import Catalogue
 from partpick.planfile import request_from_tables
 from partpick.report.result_json import result_json, windings_json
-from partpick.solve import solve, windings
+from partpick.solving import solve, windings
 
 PICOFARAD = 1e-12
 SETS = {  # coarsest series that holds a value, the order of the commonness: IEC 60063

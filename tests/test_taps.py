@@ -16,7 +16,7 @@ from partpick.progress import Quiet
 from partpick.search.bands import search_bands
 from partpick.search.problem import Problem
 from partpick.search.taps import Sections, TappedSource
-from partpick.solve import solve
+from partpick.solving import solve
 
 SHAPES = ({"bands": 1}, {"bands": 2}, {"bands": 2, "inductors": 2}, {"bands": 2, "coupled": True})
 

@@ -174,7 +174,7 @@ class Circuits:
         return np.asarray(0.5 * np.abs(p.coil_tempco[coil, band] + capacitance) + 0.5 * spread)
 
 
-def _with_blank(of_parts: np.ndarray, blank: object) -> np.ndarray:  # type: ignore[type-arg]
+def _with_blank(of_parts: Any, blank: object) -> Any:
     """Add what index -1 stands for as the last entry of the last axis."""
     column = np.full((*of_parts.shape[:-1], 1), blank, dtype=of_parts.dtype)
     return np.concatenate([of_parts, column], axis=-1)

@@ -108,16 +108,19 @@ class _Steps:
         """Return the packed bound of some coils at their present attempts, (m,)."""
         p, by = self.problem, self.problem.by
         before = np.where(self.error_step[coils] > 0, self.errors[self.error_step[coils] - 1], 0.0)
-        error = np.maximum(before, np.where(np.isfinite(self.engine.least_error[coils]), self.engine.least_error[coils], 0.0))
-        error = error * (1 - 1e-9)  # rounding
+        least = self.engine.least_error[coils]
+        error = np.maximum(before, np.where(np.isfinite(least), least, 0.0)) * (1 - 1e-9)  # rounding
         figures = {name: figure[coils] for name, figure in self._tail.items()}
         figures["pieces"] = np.minimum(self.pieces[coils], IMPOSSIBLE) + 1
         figures["error_class"] = coarse_error(error, p.floor)
         figures["fine_error"] = fine_error(error) - 1
         if by == "price":
-            least = np.where(self.price_step[coils] > 0, self.price_caps(coils, before=True) + 1, p.coil_price[coils] + self.engine.least_pieces[coils] * self.cheapest)
-            figures["price"] = np.where(self.priced[coils], np.minimum(least, NEVER), NEVER)
-            figures["error_class"] = np.where(self.priced[coils], coarse_error(np.zeros(len(coils)), p.floor), figures["error_class"])
+            priced = self.priced[coils]
+            first = p.coil_price[coils] + self.engine.least_pieces[coils] * self.cheapest
+            known = np.where(self.price_step[coils] > 0, self.price_caps(coils, before=True) + 1, first)
+            figures["price"] = np.where(priced, np.minimum(known, NEVER), NEVER)
+            at_best = coarse_error(np.zeros(len(coils)), p.floor)
+            figures["error_class"] = np.where(priced, at_best, figures["error_class"])
         packed = pack(figures, packed_fields(p, by))
         return np.where(self.engine.least_pieces[coils] >= IMPOSSIBLE, _LAST, packed)
 

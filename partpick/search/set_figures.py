@@ -162,7 +162,7 @@ class SetFigures:
         bands = self.problem.bands
         served = np.zeros((len(coil), bands), dtype=np.bool_)
         served[ways.owner, ways.band] = True
-        alive = served.all(axis=1)
+        alive = np.asarray(served.all(axis=1))
         ways = ways.take(alive[ways.owner])
         keys = []
         for name in order:

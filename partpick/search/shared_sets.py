@@ -18,7 +18,7 @@ from partpick.search.choose import Stopped
 from partpick.search.circuits import Circuits, Windows, distinct
 from partpick.search.grades import Grades
 from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
-from partpick.search.sum_tables import SumTables, TooMany
+from partpick.search.sum_tables import SumTables, TooManyError
 
 CHUNK = 1 << 19  # subset sums at one time
 LARGEST_SET = 20  # whose subsets are still written out
@@ -39,7 +39,7 @@ class Letters:
     def of(problem: Problem, circuits: Circuits, price_limit: int) -> Letters:
         """Return the letters of a problem; parts whose price is unknown or above the limit are left out."""
         grades = Grades(problem)
-        groups = []
+        groups: list[tuple[int, ...]] = []
         by_part = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
         by_part = by_part or problem.price_limit < NEVER  # the grade decides whether a set is inside it
         for options in problem.options:
@@ -221,7 +221,7 @@ class SetSearch:
         rest = sums[row, mask]
         try:
             new, which = self.sums.inside(band, added, low[row, 0] - rest, high[row, 0] - rest)
-        except TooMany:
+        except TooManyError:
             if len(sets) == 1:
                 raise Stopped("work limit") from None
             half = len(sets) // 2

@@ -14,8 +14,8 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from partpick.search.circuits import Circuits
 from partpick.search.choose import ORDERS, SUMS
+from partpick.search.circuits import Circuits
 from partpick.search.problem import NEVER, Bools, Ints
 
 ROWS = 20_000  # circuits whose figures are worked out at one time

@@ -16,7 +16,7 @@ from partpick.search.grades import Grades
 from partpick.search.networks import PARALLEL, Rows
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 from partpick.search.stack_graph import ROWS, Layer, StackGraph
-from partpick.search.sum_tables import SumTables, TooMany
+from partpick.search.sum_tables import SumTables, TooManyError
 
 Shorts = NDArray[np.int16]
 
@@ -173,7 +173,7 @@ class StackNodes:
             raise Stopped(reason)
         try:
             made = self._layer(len(layers), at, rules)
-        except TooMany:
+        except TooManyError:
             if len(at.coil) == 1:
                 raise Stopped("work limit") from None
             middle = len(at.coil) // 2
@@ -261,7 +261,7 @@ class StackNodes:
             tails.append(some[which[origin]])
             parts.append(chosen)
             if sum(len(t) for t in tails) > MOST_EDGES:
-                raise TooMany
+                raise TooManyError
         filled = []
         for chosen in parts:
             block = np.full((len(chosen), max(1, problem.most_parts)), -1, dtype=np.int16)

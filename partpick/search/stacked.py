@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
+from fractions import Fraction
 
 import numpy as np
 
@@ -169,7 +170,8 @@ class StackedEngine:
             worst = graph.worst_on_the_way("fine_error")
             last = graph.layers[-1]
             for node in np.flatnonzero(worst < NEVER):
-                pieces, fine, coil = int((last.parts[node] >= 0).sum()), int(worst[node]), int(graph.coils[last.coil[node]])
+                pieces, fine = int((last.parts[node] >= 0).sum()), int(worst[node])
+                coil = int(graph.coils[last.coil[node]])
                 known = reached.get(pieces)
                 if known is None or fine < known[0]:
                     reached[pieces] = (fine, [coil])
@@ -290,6 +292,10 @@ class StackedEngine:
             tuple(key), (coil,), tuple(columns[band] for band in bands), tuple(own[band] for band in bands)
         )
 
+    def _by_content(self, parts: tuple[int, ...]) -> tuple[list[Fraction], list[int]]:
+        p = self.problem
+        return sorted(p.part_value[part] for part in parts), [int(p.part_rank[part]) for part in parts]
+
     def _content(self, coil: int, parts: tuple[int, ...]) -> tuple[object, ...]:
         row = np.array([parts], dtype=np.int64).reshape(1, len(parts))
         columns, _ = self.circuits.columns(np.array([coil]), np.array([0]), row)
@@ -306,7 +312,7 @@ class StackedEngine:
             for edge in edges:
                 parts = [int(part) for part in layer.added[edge] if part >= 0]
                 ways.setdefault(tuple(sorted(parts, key=lambda part: int(p.part_rank[part]))), []).append(int(edge))
-            first = min(ways, key=lambda parts: (sorted(p.part_value[i] for i in parts), [int(p.part_rank[i]) for i in parts]))
+            first = min(ways, key=self._by_content)
             nodes = np.unique(layer.tail[ways[first]])
             kept.append(first)
         return kept[::-1]

@@ -12,7 +12,7 @@ LARGEST = 1_000_000  # rows of a stored table
 MOST = 200_000  # rows of one answer
 
 
-class TooMany(Exception):
+class TooManyError(Exception):
     """An answer would not fit into memory; ask for less at a time."""
 
 
@@ -69,7 +69,7 @@ class SumTables:
 
         Raises
         ------
-        TooMany
+        TooManyError
             There are more than `MOST`.
         """
         stored, valid = self._stored(band), self.valid[band]
@@ -80,13 +80,13 @@ class SumTables:
             first = np.searchsorted(sums, low, side="left")
             times = np.maximum(np.searchsorted(sums, high, side="right") - first, 0)
             if int(times.sum()) > MOST:
-                raise TooMany
+                raise TooManyError
             which = np.repeat(np.arange(len(first)), times)
             start = first - (np.cumsum(times) - times)
             return letters[np.arange(len(which)) + start[which]], which
         values = self.acting[band][valid]
         if len(low) * len(values) > MOST:
-            raise TooMany
+            raise TooManyError
         # the largest value first: the others are no larger, and each is at least the smallest
         slack = 1e-12 * values[None, :]
         rest_low, rest_high = low[:, None] - values - slack, high[:, None] - values + slack

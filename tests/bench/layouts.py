@@ -12,11 +12,11 @@ from pathlib import Path
 
 sys.path[:0] = [str(Path(__file__).parents[level]) for level in (1, 2)]
 
-from bench.layout_instances import tank_problem
+from bench.layout_instances import tank_problem  # noqa: E402
 
-from partpick.progress import Quiet
-from partpick.search.shared import search_shared
-from partpick.search.stacked import search_stacked
+from partpick.progress import Quiet  # noqa: E402
+from partpick.search.shared import search_shared  # noqa: E402
+from partpick.search.stacked import search_stacked  # noqa: E402
 
 SEEDS = (1, 2, 3)
 CASES = [  # layout, bands, coils, parts a band or of the set
@@ -59,7 +59,8 @@ def main() -> None:
                     for seed in SEEDS:
                         line = timed(layout, bands, coils, parts, seed, by, wanted=wanted, front=front, leads=leads)
                         what = f"{layout} {bands}x{coils} K={parts} by {by} leads {leads * 1e9:g} nH"
-                        print(f"{what:45} top {wanted:2} {'+front' if front else '      '} seed {seed} {line}", flush=True)
+                        how = f"top {wanted:2} {'+front' if front else '      '} seed {seed}"
+                        print(f"{what:45} {how} {line}", flush=True)
     print(f"peak memory {resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024:.0f} MB")
 
 

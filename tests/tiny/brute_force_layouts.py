@@ -10,8 +10,6 @@ import math
 from collections import Counter
 from fractions import Fraction
 
-import numpy as np
-
 from partpick.search.problem import NEVER, Problem
 
 ROUNDING = 1e-11  # a design exactly on a limit is inside it
@@ -56,10 +54,9 @@ def circuit(problem: Problem, coil: int, band: int, parts: tuple[int, ...]):
         size = abs(problem.coil_tempco[coil, band] + tempco) / 2 + spread / 2
         if not size <= problem.drift_limit * (1 + ROUNDING):
             return None
+    q_class = 5
     if math.isfinite(loss):
         q_class = max(0, math.ceil((1 - 1 / loss / problem.q_enough[band]) / 0.25 - 1e-9))
-    else:
-        q_class = 5
     share = strays / total
     return {
         "parts": tuple(sorted(parts, key=lambda p: int(problem.part_rank[p]))),

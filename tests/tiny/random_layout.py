@@ -5,9 +5,9 @@ from __future__ import annotations
 from dataclasses import replace
 
 import numpy as np
-from tiny.random_problem import random_problem
 
 from partpick.search.problem import NEVER, Problem
+from tiny.random_problem import random_problem
 
 
 def random_layout(seed: int, *, bands: int, shared: bool, coupled: bool = False) -> Problem:
@@ -20,9 +20,11 @@ def random_layout(seed: int, *, bands: int, shared: bool, coupled: bool = False)
     start = rng.choice([0.0, *plain], (coils, 1))
     steps = rng.choice(plain, (coils, bands - 1)) * rng.integers(1, 3, (coils, bands - 1))
     net = np.concatenate([start, start + np.cumsum(steps, axis=1)], axis=1)
-    if shared and bands > 2 and rng.random() < 0.5:  # a band that the others' capacitors can serve
-        net[:, -1] = net[:, 1] + plain[0]
-        net = np.sort(net, axis=1)
+    if shared and bands > 2:  # sums that three capacitors can switch in
+        chosen = rng.choice(plain, (coils, 3))
+        masks = np.array([[m >> i & 1 for i in range(3)] for m in range(8)])
+        sums = np.sort(chosen @ masks.T, axis=1)
+        net = np.sort(np.array([rng.choice(row, bands, replace=False) for row in sums]), axis=1)
     noise = 1.0 if on_the_spot else rng.uniform(0.97, 1.03, net.shape)
     wanted = (net * noise + 4e-12)[:, ::-1]  # by rising frequency
     if rng.random() < 0.3:  # slightly negative: no capacitor, and still inside a loose limit
@@ -43,6 +45,7 @@ def random_layout(seed: int, *, bands: int, shared: bool, coupled: bool = False)
         changes["floor"] = 0.05
     for name in ("trimmer_low", "trimmer_high", "trimmer_loss", "trimmer_tempco", "error_limit", "frequency"):
         changes[name] = getattr(problem, name)[place]
+    in_all = NEVER if problem.parts_limit >= NEVER else bands + 1
     return replace(
         problem,
         wanted=np.where(low_trimmer, wanted[:, place] + 6e-12, wanted[:, place]),
@@ -50,6 +53,6 @@ def random_layout(seed: int, *, bands: int, shared: bool, coupled: bool = False)
         connect_any=False,
         least_parts=0,
         most_parts=min(problem.most_parts, 2),
-        parts_limit=int(rng.integers(1, 4)) if shared else problem.parts_limit if problem.parts_limit >= NEVER else bands + 1,
+        parts_limit=int(rng.integers(min(bands, 3), 4)) if shared else in_all,
         **changes,
     )
