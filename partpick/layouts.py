@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 
 from partpick.circuit import Design, Network
@@ -14,6 +16,7 @@ from partpick.search.columns import ColumnSource
 from partpick.search.networks import PARALLEL
 from partpick.search.problem import Problem
 
+Search = Callable[..., Found]
 FIXED_ONLY = ("stacked", "shared")  # planned for fixed bands on one coil, capacitors in parallel
 
 
@@ -52,16 +55,14 @@ def search_layout(
     front: bool = True,
 ) -> Found:
     """Return the first `wanted` plans of the request's layout, and the front."""
-    arguments = {"wanted": wanted, "all_windings": request.all_windings, "monitor": monitor, "front": front}
+    search: Search = search_bands
     if request.switching == "stacked":
-        from partpick.search.stacked import search_stacked
-
-        return search_stacked(problem, source, **arguments)
-    if request.switching == "shared":
-        from partpick.search.shared import search_shared
-
-        return search_shared(problem, source, **arguments)
-    return search_bands(problem, source, **arguments)
+        from partpick.search.stacked import search_stacked as search
+    elif request.switching == "shared":
+        from partpick.search.shared import search_shared as search
+    return search(
+        problem, source, wanted=wanted, all_windings=request.all_windings, monitor=monitor, front=front
+    )
 
 
 def design_of(request: Request, choice: Choice) -> Design:

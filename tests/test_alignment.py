@@ -115,13 +115,13 @@ def test_a_swept_band_is_aligned_where_one_setting_reaches_both_ends(adjust: flo
         return  # nothing to adjust
     one = on_one_coil([[27e-12]], coil_size=0.08, part_size=0.1, trimmers=[trimmer])
     variation = swept(one, low=12e-12, high=90e-12, padder=330e-12, wanted=0.97)
-    x = variation.draw(400, 1)
+    x = variation.draw(200, 1)
     found = alignment(variation, {COIL_PLACE: adjust} if adjust else {}, None, x)
     upper = variation.tanks[0]
     lower = upper.low_end
     assert found is not None and lower is not None
-    slug = np.linspace(-0.6 * adjust, 0.6 * adjust, 1 + 240 * (adjust > 0))[:, None, None]
-    turned = np.linspace(10e-12, 34e-12, 241)[None, :, None] if trimmer else np.zeros((1, 1, 1))
+    slug = np.linspace(-0.6 * adjust, 0.6 * adjust, 1 + 120 * (adjust > 0))[:, None, None]
+    turned = np.linspace(10e-12, 34e-12, 121)[None, :, None] if trimmer else np.zeros((1, 1, 1))
 
     def resonance(tank: VaryingTank) -> np.ndarray:
         total = tank.fixed_capacitance(x) + turned
@@ -129,9 +129,9 @@ def test_a_swept_band_is_aligned_where_one_setting_reaches_both_ends(adjust: flo
 
     down, up = resonance(lower) / lower.frequency, resonance(upper) / upper.frequency
     bounds = []
-    for give in (-1e-3, 1e-3):  # a step of the grid
+    for give in (-2e-3, 2e-3):  # a step of the grid
         bounds.append(((down <= 1 + give) & (up >= 1 - give)).any(axis=(0, 1)).mean())
-    assert bounds[0] <= found.share <= bounds[1] < bounds[0] + 0.1
+    assert bounds[0] <= found.share <= bounds[1] < bounds[0] + 0.15
     assert 0.05 < found.share < 0.999
 
 

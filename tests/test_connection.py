@@ -6,8 +6,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from partpick.errors import InternalError
 from partpick.connection import Connection, Parallel, Part, Series, parse_connection, references_of, without
+from partpick.errors import InternalError
 
 names = st.from_regex(r"(C|T|CT|L)[0-9]{0,3}", fullmatch=True)
 trees: st.SearchStrategy[Connection] = st.recursive(

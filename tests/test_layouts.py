@@ -46,7 +46,7 @@ def test_capacitors_that_bands_share_count_once(switching: str) -> None:
         capacitors = [line for line in candidate.parts if line.kind == "capacitor"]
         assert candidate.part_count == len(capacitors) == candidate.piece_count - 1
         for band in candidate.bands:
-            assert band.network == pytest.approx(sum(values_in_circuit(candidate)[band.name]), rel=0.06)  # leads raise it
+            assert band.network == pytest.approx(sum(values_in_circuit(candidate)[band.name]), rel=0.06)
         for line in capacitors:
             serves = {band.name for band in candidate.bands if line.reference in band.capacitors}
             assert serves == set(line.bands)

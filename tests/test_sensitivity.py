@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pytest
 from varying import on_one_coil, without_strays
+from workbench import plan, ranked, write_drawer
 
 from partpick.built.sensitivity import sensitivity, worth_improving
 from partpick.built.variation import NORMAL_PARTS, UNIFORM_PARTS, Variation, deviation_of
@@ -99,3 +101,21 @@ def test_the_promise_of_a_better_part_is_kept(parts: str) -> None:
 def test_nothing_is_worth_improving_where_every_part_is_close() -> None:
     """At 1 % and better there is no part to buy."""
     assert worth_improving(on_one_coil([[100e-12]], coil_size=0.01, part_size=0.005), UNIFORM) is None
+
+
+def test_a_capacitor_of_a_stack_is_one_source_on_all_its_bands(tmp_path: Path) -> None:
+    """Pieces that two bands share vary once: one reference, in the table of both bands, in the order of the parts."""
+    rows = [{"value": f"{value} pF", "grade": "C0G", "tolerance": "5 %", "q": 1000} for value in (33, 47, 68, 120, 150)]
+    drawer = write_drawer(tmp_path / "drawer", capacitors=rows)
+    head = 'switching = "stacked"\n[coil]\nforms = ["bought"]\n[limits]\nerror = "5 %"\n[stray]\nshare = "none"\n'
+    job = plan(tmp_path / "plan.toml", [("low", "5 MHz"), ("high", "7.1 MHz")], head)
+    best = ranked("bands", job, "--drawer", drawer)[0]
+    values = {part["reference"]: part["value_f"] for part in best["parts"] if part["kind"] == "capacitor"}
+    low, high = best["bands"]
+    assert set(high["capacitors"]) < set(low["capacitors"])
+    for band in best["bands"]:
+        own = {row["reference"]: row for row in best["sensitivity"] if row["band"] == band["name"]}
+        assert {name for name in own if name.startswith("C")} == set(band["capacitors"])
+        for name in band["capacitors"]:  # in parallel: half the share of each in all capacitance
+            expected = -0.005 * band["resonance_hz"] * values[name] / band["capacitance_f"]
+            assert own[name]["hertz_per_percent"] == pytest.approx(expected, rel=0.05)

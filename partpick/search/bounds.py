@@ -13,7 +13,7 @@ import numpy as np
 from partpick.search.choose import ORDERS, Choice
 from partpick.search.columns import ColumnSource
 from partpick.search.figures import coarse_error, fine_error, whole_excess
-from partpick.search.problem import NEVER, Floats, Ints, Problem
+from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 
 IMPOSSIBLE = 1000  # fewest parts where a coil cannot serve a band
 OUT_OF_REACH = 1 << 62  # its error or excess there, as a whole number
@@ -70,7 +70,7 @@ class Bounds:
             self.errors.append(source.least_errors(parts))
             excesses.append(source.least_excesses(parts))
         finite = np.array([np.isfinite(errors) for errors in self.errors])
-        self.possible = finite.any(axis=0)
+        self.possible: Bools = np.asarray(finite.any(axis=0))
         self.fewest = np.where(self.possible, finite.argmax(axis=0), IMPOSSIBLE).astype(np.int64)
         self.error_at_fewest, self.least_error = self._at_fewest_and_least(self.errors)
         self.excess_at_fewest, self.least_excess = self._at_fewest_and_least(excesses)

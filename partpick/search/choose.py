@@ -48,7 +48,7 @@ class Choice:
 
 
 @dataclass(frozen=True)
-class Stopped(Exception):
+class Stopped(Exception):  # noqa: N818 - a stop that was asked for is no error
     """A shared-limit choice that ran out of time."""
 
     reason: str

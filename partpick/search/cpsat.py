@@ -7,6 +7,8 @@ error never enters the model, its class does.
 
 from __future__ import annotations
 
+from fractions import Fraction
+
 import numpy as np
 from ortools.sat.python import cp_model
 
@@ -120,7 +122,7 @@ class _ColumnModel:
             self.bands[band] = columns.take(place == best)
         return tuple(self.bands)
 
-    def _solve(self, figures: list[np.ndarray], *, worst: bool) -> int | None:  # type: ignore[type-arg]
+    def _solve(self, figures: list[np.ndarray], *, worst: bool) -> int | None:
         model = cp_model.CpModel()
         picks = [[model.new_bool_var("") for _ in range(len(columns))] for columns in self.bands]
         for band in picks:
@@ -162,7 +164,7 @@ class _ColumnModel:
     def _add_limits(self, model: cp_model.CpModel, picks: list[list[cp_model.IntVar]]) -> None:
         problem = self.problem
         use: dict[int, list[cp_model.LinearExpr]] = {}
-        holders: dict[tuple[int, object], list[cp_model.IntVar]] = {}
+        holders: dict[tuple[int, Fraction], list[cp_model.IntVar]] = {}
         own: dict[int, list[cp_model.IntVar]] = {coil: [] for coil in self.coils}
         for band, (columns, picked) in enumerate(zip(self.bands, picks, strict=True)):
             for row, pick in enumerate(picked):
@@ -176,8 +178,8 @@ class _ColumnModel:
         if len(self.coils) > 1:
             for every in own.values():
                 model.add_at_least_one(every)
-        for part, terms in use.items():
-            model.add(sum(terms) <= int(problem.part_stock[part]))
+        for piece, terms in use.items():
+            model.add(sum(terms) <= int(problem.part_stock[piece]))
         if problem.values_limit < NEVER:
             used = {value: model.new_bool_var("") for _, value in holders}
             for (_, value), every in holders.items():
@@ -188,8 +190,8 @@ class _ColumnModel:
         if problem.price_limit < NEVER:
             coils = plan_price(problem, self.coils)
             model.add(self._sum(picks, "price") <= problem.price_limit - coils)
-        for name, value in self.fixed:
-            model.add(self._sum(picks, name) == value)
+        for name, total in self.fixed:
+            model.add(self._sum(picks, name) == total)
 
     def _sum(self, picks: list[list[cp_model.IntVar]], name: str) -> cp_model.LinearExprT:
         return sum(

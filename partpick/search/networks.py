@@ -99,7 +99,7 @@ class Stream:
         self.single = values
         self.inner = inner
         self.connect_any = connect_any
-        self.parts = inner.parts + 1
+        self.parts: int = inner.parts + 1
 
     def any_inside(self, low: Floats, high: Floats) -> NDArray[np.bool_]:
         """Whether some network lies in each closed interval [low, high]."""

@@ -60,7 +60,7 @@ class SetBounds:
         classes = self.bounds.classes(by)
         packed, sets = [], []
         for block in self._blocks():
-            serves = self.bounds.possible[block].any(axis=1).all(axis=1)
+            serves = np.all(self.bounds.possible[block].any(axis=1), axis=1)
             kept = block[serves]
             packed.append(self._packed(classes, kept, by))
             sets.append(kept)
@@ -120,7 +120,7 @@ def _least_worst(errors: Floats, cap: int) -> Floats:
     best = np.minimum.accumulate(errors, axis=0)
     finite = np.isfinite(best)
     level = np.where(finite.any(axis=0), finite.argmax(axis=0), 0)
-    served = finite.any(axis=0).all(axis=1)
+    served = np.all(finite.any(axis=0), axis=1)
     rows, bands = np.arange(best.shape[1]), np.arange(best.shape[2])
     worst = np.full(best.shape[1], np.inf)
     while True:

@@ -15,7 +15,8 @@ def random_problem(seed: int, *, bands: int, inductors: int = 1, coupled: bool =
     rng = np.random.default_rng(seed)
     coils = int(rng.integers(1, 5))
     supports = int(rng.integers(1, coils + 1))
-    values = [Fraction(int(v), 10**12) for v in sorted(rng.choice([10, 12, 15, 22, 27, 33, 47, 68, 100], rng.integers(2, 5), False))]
+    drawn = rng.choice([10, 12, 15, 22, 27, 33, 47, 68, 100], rng.integers(2, 5), False)
+    values = [Fraction(int(v), 10**12) for v in sorted(drawn)]
     grades = [int(rng.integers(1, 3)) for _ in values]
     options, part = [], 0
     for count in grades:
@@ -49,7 +50,9 @@ def random_problem(seed: int, *, bands: int, inductors: int = 1, coupled: bool =
         wanted=target_total,
         self_capacitance=np.full(coils, 1e-12),
         in_play=rng.random((coils, bands)) < 0.9,
-        coil_loss=np.where(rng.random((coils, bands)) < 0.1, np.nan, 1 / rng.choice([60.0, 110.0, 160.0, 250.0], (coils, bands))),
+        coil_loss=np.where(
+            rng.random((coils, bands)) < 0.1, np.nan, 1 / rng.choice([60.0, 110.0, 160.0, 250.0], (coils, bands))
+        ),
         reactance_class=rng.integers(0, 2, (coils, bands)),
         effort=rng.integers(0, 2, (coils, 3)),
         coil_price=np.where(rng.random(coils) < 0.1, NEVER, rng.integers(1, 4, coils) * 10),
