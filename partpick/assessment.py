@@ -284,6 +284,9 @@ def _coverage(tank: Tank, tuned_high: float) -> dict[str, object]:
         "parallel_padder_f": tank.across() if network.parts else None,
         "tuning_low_f": element.low,
         "tuning_high_f": element.high,
+        "inductance_low_h": tank.inductance(low_end=True),
+        "capacitance_low_f": tank.total(low_end=True),
+        "capacitance_high_f": tank.total(),
     }
 
 

@@ -138,6 +138,7 @@ _SHEET = click.option(
 _NETLIST = click.option(
     "--netlist", "netlist_path", type=_PATH, metavar="FILE", help="Write its tanks as a SPICE deck."
 )
+_DIAL = click.option("--dial", "dial_path", type=_PATH, metavar="FILE", help="Write its dial chart (.csv or .json).")
 _WHY = click.option(
     "--why", type=click.IntRange(min=1), metavar="RANK", help="Say why the candidate of a rank stands there."
 )
@@ -158,7 +159,8 @@ _ALL = click.option("--all-windings", is_flag=True, help="Rank every winding, no
 
 def _common(command: Any) -> Any:
     """Add the options of every command that ranks candidates."""
-    for add in reversed((_TOP, _JSON, _BOM, _SHEET, _NETLIST, _WHY, _AGAINST, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
+    outputs = (_JSON, _BOM, _SHEET, _NETLIST, _DIAL)
+    for add in reversed((_TOP, *outputs, _WHY, _AGAINST, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
         command = add(command)
     return command
 
@@ -334,11 +336,15 @@ def _solve_and_write(
     why = given["why"]
     if why is not None and not outputs.shows_table:
         raise RequestError("--why is told below the table, and stdout (-) is taken by another output")
+    if (dial := outputs.paths.get("dial")) is not None:
+        from partpick.report.dial import check_dial
+
+        check_dial(dial, request)
     before = _earlier(given["against"], outputs)
     with Terminal(given["time_limit"]) as monitor:
         result = solve(request, catalogue, top=max(top, why or 0), monitor=monitor)
         monitor.writing()
-        outputs.write(**_renderers(result, why, before))
+        outputs.write(**_renderers(result, why, before, dial))
     if monitor.elapsed >= TOO_SHORT_TO_TELL:
         click.echo(f"took {monitor.elapsed:.1f} s", err=True)
     return _exit_code(result, monitor)
@@ -356,7 +362,7 @@ def _earlier(path: str | None, outputs: Outputs) -> Mapping[str, Any] | None:
 
 
 def _renderers(
-    result: Result, why: int | None, before: Mapping[str, Any] | None = None
+    result: Result, why: int | None, before: Mapping[str, Any] | None = None, dial: str | None = None
 ) -> dict[str, Callable[[], str]]:
     """Return what writes each output; those that are not wanted are never called, nor loaded."""
 
@@ -379,12 +385,18 @@ def _renderers(
 
         return text + "\n" + reasons(result, why)
 
+    def chart() -> str:
+        from partpick.report.dial import dial_text
+
+        return dial_text(result, dial or "-")
+
     return {
         "table": shown,
         "json": by("result_json", "result_json"),
         "bom": by("bom", "bom_csv"),
         "sheet": by("sheet", "sheet"),
         "netlist": by("netlist", "netlist"),
+        "dial": chart,
     }
 
 

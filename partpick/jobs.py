@@ -10,7 +10,7 @@ from typing import Any
 from partpick.errors import RequestError
 from partpick.report.files import STDOUT, Output, check_outputs, write_outputs
 
-_ENDINGS = {"json": ".json", "bom": ".csv", "sheet": ".html", "netlist": ".cir"}
+_ENDINGS = {"json": ".json", "bom": ".csv", "sheet": ".html", "netlist": ".cir", "dial": ".csv"}
 
 
 class Outputs:

@@ -5,11 +5,14 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 
+from partpick.candidates import realisable_coils
 from partpick.parts import Catalogue
 from partpick.progress import Monitor
 from partpick.request import Request
 from partpick.result import Candidate, RuledOut
+from partpick.tuning_range import beyond_reach
 
+LADDER = (1.1, 1.25, 1.5, 2.0, 3.0, 5.0, 1e6)  # how far Q and drift are eased, step by step, until a plan exists
 CLOSE_MISS = 5  # times the error limit: up to here a wider error limit is the first thing to think of
 
 Again = Callable[[Request, Catalogue, Monitor], Candidate | None]
@@ -35,10 +38,15 @@ def explain(
     with the value that this plan needs (for the error limit the least possible). The error limit comes
     first where it is missed by little, else the first of the others: an error of 20 % helps nobody.
     """
+    swept = any(band.swept for band in request.bands)
+    if swept and (alone := beyond_reach(request, realisable_coils(request, catalogue))) is not None:
+        return None, alone
     found: list[tuple[Candidate, RuledOut]] = []
     for trial in _trials(request):
         if monitor.stopped() is not None:
             break
+        if found and found[-1][1].limit == trial.limit:
+            continue  # a smaller step was enough
         monitor.report(f"whether a plan exists without the limit {trial.limit}")
         candidate = again(trial.relaxed, trial.catalogue(catalogue), monitor)
         if candidate is not None:
@@ -62,16 +70,41 @@ def _most_helpful(request: Request, found: list[RuledOut]) -> int:
 
 def _trials(request: Request) -> Iterator[_Trial]:
     limits = request.limits
-    if limits.error is not None:
+    if limits.error is not None and not all(band.swept for band in request.bands):
         # A default limit is off where a trimmer stands; a very wide one keeps the rest comparable.
         wide = replace(request, by="error", limits=replace(limits, error=0.9, error_stated=True))
         yield _Trial("error", wide, lambda c: c.worst_error, _error_words)
+    yield from _swept_trials(request)
     yield from _count_trials(request)
     yield from _quality_trials(request)
     yield from _coil_trials(request)
     yield _Trial(
         "quantity", replace(request, units=1), lambda _: "as many as wanted", _stock_words, _in_plenty
     )
+
+
+def _swept_trials(request: Request) -> Iterator[_Trial]:
+    limits = request.limits
+    if not any(band.swept for band in request.bands):
+        return
+    if limits.excess is not None:
+        free = replace(request, by="error", limits=replace(limits, excess=None))
+        yield _Trial("excess", free, lambda c: c.worst_excess, _excess_words)
+    if limits.margin > 0:
+        free = replace(request, limits=replace(limits, margin=0.0))
+        yield _Trial("margin", free, _margin_of, lambda c: f"{100 * _margin_of(c):.3g} % would do")
+
+
+def _margin_of(candidate: Candidate) -> float:
+    """Return what a candidate covers beyond both ends of its swept bands, the least. [fraction of f]"""
+    beyond = []
+    for band in candidate.bands:
+        if "tuned_low_hz" not in band.extra:
+            continue
+        keys = ("low_hz", "high_hz", "tuned_low_hz", "tuned_high_hz")
+        low, high, tuned_low, tuned_high = (float(str(band.extra[key])) for key in keys)
+        beyond += [1 - tuned_low / low, tuned_high / high - 1]
+    return max(0.0, min(beyond))
 
 
 def _count_trials(request: Request) -> Iterator[_Trial]:
@@ -93,16 +126,13 @@ def _count_trials(request: Request) -> Iterator[_Trial]:
 
 def _quality_trials(request: Request) -> Iterator[_Trial]:
     limits = request.limits
-    if any(band.q for band in request.bands):
-        free = replace(
-            request,
-            limits=replace(limits, q=None),
-            bands=tuple(replace(band, q=None) for band in request.bands),
-        )
-        yield _Trial("q", free, _worst_q, _q_words)
-    if limits.drift is not None:
-        free = replace(request, limits=replace(limits, drift=1.0))
-        yield _Trial("drift", free, _worst_drift, _drift_words)
+    for share in LADDER if any(band.q for band in request.bands) else ():
+        bands = tuple(replace(band, q=band.q / share if band.q else None) for band in request.bands)
+        yield _Trial("q", replace(request, bands=bands), _worst_q, _q_words)
+    for times in LADDER if limits.drift is not None else ():
+        assert limits.drift is not None
+        wider = replace(request, limits=replace(limits, drift=limits.drift * times))
+        yield _Trial("drift", wider, _worst_drift, _drift_words)
     if limits.alignable is not None:
         free = replace(request, limits=replace(limits, alignable=None))
         yield _Trial("alignable", free, lambda _: "none", lambda _: _alignable_words(request))
@@ -128,6 +158,11 @@ def _coil_trials(request: Request) -> Iterator[_Trial]:
     if rules.forms is not None:
         free = replace(rules, forms=None)
         yield _Trial("forms", replace(request, coil=free), lambda c: c.coils[0].form, _coil_words)
+
+
+def _excess_words(candidate: Candidate) -> str:
+    assert candidate.worst_excess is not None
+    return f"the least that these parts reach is {100 * candidate.worst_excess:.3g} %"
 
 
 def _error_words(candidate: Candidate) -> str:

@@ -102,5 +102,5 @@ def option_name(path: str) -> str:
         return "FREQUENCY"
     if path in flags:
         return flags[path]
-    table = path.partition(".")[0]
-    return flags.get(table, path)
+    table, _, key = path.partition(".")
+    return f"{flags[table]} {key}" if table in flags else path

@@ -98,7 +98,7 @@ def read_limits(reader: TableReader, raw: object, connect: str, band_count: int)
     for name, without in (("parts_per_band", most), ("inductors", max(1, band_count)), ("margin", 0.0)):
         if name in stated and stated[name] is None:
             stated[name] = without
-    limits = Limits(**stated, error_stated="error" in stated)
+    limits = Limits(**stated, error_stated="error" in stated, inductors_stated="inductors" in stated)
     if limits.parts_per_band > most:
         where = f' with {reader.name("capacitors.connect")} "any"' if connect == "any" else ""
         raise reader.fail(

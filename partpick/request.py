@@ -34,6 +34,7 @@ class Limits:
     parts: int | None = None
     values: int | None = None
     inductors: int = 1
+    inductors_stated: bool = False  # [cover] gives every band that it makes a coil where this is unstated
     q: float | None = None
     drift: float | None = None  # 1/K
     price: float | None = None

@@ -8,6 +8,7 @@ from partpick.assessment import assess, recheck
 from partpick.built.outlook import outlook, with_outlook
 from partpick.candidates import Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
+from partpick.cover import cover, span_of, with_bands
 from partpick.errors import RequestError
 from partpick.layouts import check_layout, design_of, search_layout
 from partpick.nothing_fits import explain
@@ -46,7 +47,19 @@ def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Mon
         The request asks for something that this version does not plan.
     """
     monitor = monitor or Quiet()
+    if span_of(request) is not None:
+        _refuse_unplanned(with_bands(request, 1))
+        return cover(request, catalogue, lambda made: _planned(made, catalogue, top, monitor), _again, monitor)
     _refuse_unplanned(request)
+    result = _planned(request, catalogue, top, monitor)
+    if result.candidates or result.proof.stopped_by is not None:
+        return result
+    nearest, ruled_out = explain(request, catalogue, _again, monitor)
+    return replace(result, nearest_miss=nearest, ruled_out_by=ruled_out)
+
+
+def _planned(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) -> Result:
+    """Return the result of one search, without a word on why nothing fits."""
     monitor.report("every coil that the stock can wind")
     coils = realisable_coils(request, catalogue)
     capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
@@ -55,11 +68,7 @@ def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Mon
     source = column_source(request, coils, problem)
     found = search_layout(request, problem, source, wanted=top, monitor=monitor)
     pool = _refit_pool(request, catalogue)
-    result = _result(request, coils, capacitors, problem, found, pool)
-    if result.candidates or found.stopped_by is not None:
-        return result
-    nearest, ruled_out = explain(request, catalogue, _again, monitor)
-    return replace(result, nearest_miss=nearest, ruled_out_by=ruled_out)
+    return _result(request, coils, capacitors, problem, found, pool)
 
 
 def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidate | None:

@@ -11,6 +11,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
+from partpick.conduction import conduction_warnings
 from partpick.connection import Connection, Parallel, Part, parse_connection
 from partpick.physics.loading import circulating_current, peak_voltage
 from partpick.physics.resonance import effective_capacitance
@@ -80,10 +81,11 @@ def with_stress(request: Request, candidate: Candidate) -> Candidate:
     supply = drive["supply"]
     device = None if supply is None else supply * DEVICE_PEAK[drive["class"]] * (1 + drive["modulation"])
     unknown = [band.name for band in bands if band.extra["stress"] is None]
+    conducts = conduction_warnings(request.tuning, bands)
     return replace(
         candidate,
         bands=tuple(bands),
-        warnings=(*candidate.warnings, *_rating_warnings(every), *_unknown_warnings(unknown)),
+        warnings=(*candidate.warnings, *_rating_warnings(every), *_unknown_warnings(unknown), *conducts),
         extra={
             **candidate.extra,
             "device_peak_v": device,

@@ -297,3 +297,26 @@ def test_a_starter_does_not_write_over_anything() -> None:
     Path("file").write_text("old")
     assert_refused(run("starter", "file"))
     assert Path("file").read_text() == "old"
+
+
+@pytest.mark.parametrize(
+    ("element", "said"),
+    [
+        ("variable capacitor:150pF..12pF", "low: is not below"),
+        ("variable capacitor:12pF..12pF", "low: is not below"),
+        ("variable capacitor:150pF", "LOW..HIGH"),
+        ("variable capacitor:12pF..150pF;sections=9", "sections: read"),
+        ("variable capacitor:12pF..150pF;sections=0", "sections: read"),
+        ("variable capacitor:12pF..150pF;sections=1.5", "whole number"),
+        ("variable capacitor:12pF..150pF;law=straight", "straight-line frequency"),
+        ("varactor:-1V..9V;zero_bias=500pF;grading=0.5", "zero or more"),
+        ("varactor:9V..1V;zero_bias=500pF;grading=0.5", "from: is not below"),
+        ("varactor:1V..9V;grading=0.5", "zero_bias: is missing"),
+        ("varactor:1V..9V;zero_bias=500pF;grading=0", "grading"),
+        ("varactor:1V..9V;zero_bias=500pF;grading=0.5;count=99", "count: read"),
+    ],
+)
+def test_a_tuning_element_that_makes_no_sense_is_refused_by_its_key(element: str, said: str) -> None:
+    """Ends the wrong way round, a junction driven into conduction, more sections than there are."""
+    line = refused("pair", "7.0MHz..7.3MHz", "--tuning", element, *OUTPUTS)
+    assert said in line and "--tuning" in line

@@ -128,8 +128,8 @@ def test_every_key_of_a_plan_reaches_the_request() -> None:
     assert request.title == "Skerry Point workshop, invented"
     assert (request.units, request.switching) == (3, "stacked")
     assert request.limits == Limits(
-        error=0.004, error_stated=True, parts_per_band=3, parts=10, values=5, inductors=2, q=80.0,
-        drift=30e-6, price=12.0, excess=None, margin=0.02, alignable=0.99,
+        error=0.004, error_stated=True, parts_per_band=3, parts=10, values=5, inductors=2, inductors_stated=True,
+        q=80.0, drift=30e-6, price=12.0, excess=None, margin=0.02, alignable=0.99,
     )  # fmt: skip
     assert request.coil == CoilRules(
         forms=("solenoid", "ring core"), taps=True, inductance=(2e-6, 6e-6), reactance=(40.0, 1000.0),

@@ -29,7 +29,8 @@ def request_as_json(request: Request) -> dict[str, object]:
     """
     tuning = request.tuning
     limits = asdict(request.limits)
-    limits.pop("error_stated")
+    for flag in ("error_stated", "inductors_stated"):
+        limits.pop(flag)
     tables: dict[str, object] = {
         "command": request.command,
         "title": request.title,

@@ -37,7 +37,7 @@ class Found:
     next_bound: int = _LAST  # packed, of the first plan not settled
 
 
-class _Ranking:
+class Ranking:
     """The best choice of each set of supports, and when enough of them are certain."""
 
     def __init__(self, problem: Problem, wanted: int, all_windings: bool) -> None:
@@ -107,8 +107,8 @@ def search_bands(
     """
     found = Found()
     bounds = Bounds(problem, source)
-    evaluator = Evaluator(problem, source, monitor, bounds.leading)
-    ranking = _Ranking(problem, wanted, all_windings)
+    evaluator = Evaluator(problem, source, monitor, bounds.leading, bounds.fewest)
+    ranking = Ranking(problem, wanted, all_windings)
     together = _coils_together(problem, bounds, monitor)
     try:
         for bound, coils in _in_order(problem, bounds, together):

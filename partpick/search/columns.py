@@ -10,6 +10,7 @@ import numpy as np
 
 from partpick.search.alignment import alignable
 from partpick.search.coverage import LeastExcess
+from partpick.search.drift_bound import steady_enough
 from partpick.search.figures import (
     Columns,
     coarse_error,
@@ -68,7 +69,8 @@ class ColumnSource:
     def least_errors(self, parts: int) -> Floats:
         """Return the least size of error with exactly `parts` parts, (J, B); inf where none is inside.
 
-        A swept band has no error: 0 where `parts` or fewer parts cover it. [-]
+        A lower bound, 0, where the networks are too many to look through for every coil. A swept band has no
+        error: 0 where `parts` or fewer parts cover it. [-]
         """
         p = self.problem
         low, high = self.levels[min(parts, 1)]
@@ -81,6 +83,10 @@ class ColumnSource:
                 continue
             if parts >= len(tables):
                 continue
+            table = tables[parts]
+            if isinstance(table, Stream) and table.deep:  # too many to look through for all coils: a bound
+                best[low[:, band] <= high[:, band], band] = 0.0
+                continue
             rows = np.flatnonzero(low[:, band] <= high[:, band])
             lower, upper = low[rows, band], high[rows, band]
             centre = p.wanted[rows, band] - fixed[rows, band]
@@ -88,12 +94,14 @@ class ColumnSource:
                 squared = (2 * np.pi * p.frequency[band]) ** 2 * p.lead_inductance
                 centre = np.where(centre > 0, centre / (1 + squared * np.abs(centre)), centre)
             centre = np.clip(centre, lower, upper)
-            for side in tables[parts].neighbours(centre):
+            for side in table.neighbours(centre):
                 inside = (side >= lower) & (side <= upper)
                 network = p.behind_leads(side[inside], band)
                 total = fixed[rows[inside], band] + network
                 error = np.abs(np.sqrt(p.wanted[rows[inside], band] / total) - 1.0)
                 best[rows[inside], band] = np.minimum(best[rows[inside], band], error)
+        if np.isfinite(p.drift_limit):
+            best[~steady_enough(p, parts)] = np.inf
         return best
 
     def least_excesses(self, parts: int) -> Floats:

@@ -7,6 +7,7 @@ error never enters the model, its class does.
 
 from __future__ import annotations
 
+from concurrent.futures import ThreadPoolExecutor, wait
 from fractions import Fraction
 
 import numpy as np
@@ -28,6 +29,7 @@ from partpick.search.problem import NEVER, Problem
 
 SEED = 1
 WORK_LIMIT = 60.0  # deterministic time of one solve
+LISTEN_SECONDS = 0.05  # between two looks at the monitor
 
 
 def choose_coupled(
@@ -150,16 +152,26 @@ class _ColumnModel:
         reason = self.monitor.stopped()
         if reason is not None:
             raise Stopped(reason)
-        self.monitor.on_stop(solver.stop_search)
-        try:
-            status = solver.solve(model)
-        finally:
-            self.monitor.on_stop(None)
+        status = self._status(solver, model)
         if status == cp_model.OPTIMAL:
             return round(solver.objective_value)
         if status == cp_model.INFEASIBLE:
             return None
         raise Stopped(self.monitor.stopped() or "work limit")
+
+    def _status(self, solver: cp_model.CpSolver, model: cp_model.CpModel) -> cp_model.CpSolverStatus:
+        """Solve in a thread of its own: a signal reaches Python only where this one is not inside the solver."""
+        solver.parameters.catch_sigint_signal = False
+        with ThreadPoolExecutor(max_workers=1) as executor:
+            solving = executor.submit(solver.solve, model)
+            try:
+                while not wait([solving], timeout=LISTEN_SECONDS).done:
+                    if self.monitor.stopped() is not None:
+                        solver.stop_search()
+            except BaseException:  # a second Ctrl-C: leave at once
+                solver.stop_search()
+                raise
+            return solving.result()
 
     def _add_limits(self, model: cp_model.CpModel, picks: list[list[cp_model.IntVar]]) -> None:
         problem = self.problem

@@ -25,11 +25,17 @@ class Evaluator:
     """Turns a set of coils into its best choice; exact under every limit of the problem."""
 
     def __init__(
-        self, problem: Problem, source: ColumnSource, monitor: Monitor, least: list[Floats] | None = None
+        self,
+        problem: Problem,
+        source: ColumnSource,
+        monitor: Monitor,
+        least: list[Floats] | None = None,
+        fewest: Ints | None = None,
     ) -> None:
         self.problem = problem
         self.source = source
         self.monitor = monitor
+        self.fewest = fewest  # (J, B) a bound of the parts of each band, if known
         self.least = least  # (J, B) of each number of parts: a bound of the error (or excess), if known
         self.leading = "fine_excess" if problem.led_by_excess else "fine_error"
         self.leading_place = ORDERS["error"].index(self.leading)
@@ -44,7 +50,7 @@ class Evaluator:
         Stopped
             A shared limit was in force and its proof was ended early.
         """
-        if not self._supports_in_stock(coils):
+        if not self._supports_in_stock(coils) or self._beyond_shared_limits(coils):
             return None
         if by == "build":
             return self._by_pieces(coils)
@@ -57,7 +63,11 @@ class Evaluator:
         if not self._supports_in_stock(coils):
             return None
         capped = min(self.problem.parts_limit, pieces - len(coils))
-        inner = Evaluator(replace(self.problem, parts_limit=capped), self.source, self.monitor, self.least)
+        inner = Evaluator(
+            replace(self.problem, parts_limit=capped), self.source, self.monitor, self.least, self.fewest
+        )
+        if inner._beyond_shared_limits(coils):
+            return None
         inner.reached = self.reached
         # at the least error no fewer pieces will do, so a mixed plan too has its parts before its excess
         return inner._by_error(coils, fewest_parts_first=True)
@@ -126,6 +136,19 @@ class Evaluator:
         if choice is None or choice.key[self.leading_place] != worst:
             return None  # a coil would be left out
         return choice if inside_shared_limits(self.problem, choice) else None
+
+    def _beyond_shared_limits(self, coils: tuple[int, ...]) -> bool:
+        """Whether even the fewest and cheapest parts are more than a shared limit allows."""
+        p = self.problem
+        if self.fewest is None or not p.coupled:
+            return False
+        parts = int(self.fewest[list(coils)].min(axis=0).sum())
+        if parts > p.parts_limit or min(parts, 1) > p.values_limit:
+            return True
+        if p.price_limit >= NEVER:
+            return False
+        cheapest = int(p.part_price.min()) if len(p.part_price) else 0
+        return int(p.coil_price[list(coils)].sum()) + parts * cheapest > p.price_limit
 
     def _supports_in_stock(self, coils: tuple[int, ...]) -> bool:
         problem = self.problem

@@ -100,6 +100,7 @@ class Stream:
         self.inner = inner
         self.connect_any = connect_any
         self.parts: int = inner.parts + 1
+        self.deep = isinstance(inner, Stream)  # every look-up is a look-up of look-ups
 
     def any_inside(self, low: Floats, high: Floats) -> NDArray[np.bool_]:
         """Whether some network lies in each closed interval [low, high]."""

@@ -7,12 +7,12 @@ from collections.abc import Callable, Iterator
 import numpy as np
 
 from partpick.progress import Monitor
+from partpick.search.attempts import SMALLEST_ERROR, Attempt, least_grid_error, search_layout
 from partpick.search.bands import Found
 from partpick.search.bounds import IMPOSSIBLE
 from partpick.search.choose import Choice
 from partpick.search.circuits import Circuits, Windows
 from partpick.search.columns import ColumnSource
-from partpick.search.layouts import SMALLEST_ERROR, Attempt, least_grid_error, search_layout
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 from partpick.search.set_figures import SetFigures, SharedChoice
 from partpick.search.shared_sets import Letters, Sets, SetSearch
@@ -79,10 +79,11 @@ class SharedEngine:
         self.least_pieces[~(open_[0] | open_[1]).all(axis=1)] = IMPOSSIBLE
         self.least_error = least_grid_error(problem, self.circuits.acting)
         self.error_step = 2.0
+        self.front_first = True  # small sets are soon proven, and show something where large ones are not
         self._limits = limits
 
     def attempt(self, coils: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
-        """Return the first choice of each coil inside the attempt; see `layouts.Engine`."""
+        """Return the first choice of each coil inside the attempt; see `attempts.Engine`."""
         if by == "error":
             error = np.full(self.problem.coils, attempt.error)
             fine = self._least_errors(coils, attempt.pieces, error)
@@ -105,7 +106,7 @@ class SharedEngine:
         return _with_coils(made)
 
     def front(self, coils: Ints, emit: Callable[[Choice], None]) -> None:
-        """Hand over the least worst error for each size of the set; see `layouts.Engine`."""
+        """Hand over the least worst error for each size of the set; see `attempts.Engine`."""
         last = np.inf
         least = float(self.least_error[coils].min(initial=np.inf))
         for size in range(int(self.least_pieces[coils].min(initial=0)), self.most_pieces + 1):

@@ -21,6 +21,7 @@ from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
 from partpick.search.sum_tables import SumTables, TooManyError
 
 CHUNK = 1 << 19  # subset sums at one time
+ANSWER = 2_000_000  # multisets added at one time
 LARGEST_SET = 20  # whose subsets are still written out
 WORK_LIMIT = 400_000_000  # subset sums of one request
 
@@ -83,7 +84,7 @@ class SetSearch:
         self.monitor = monitor
         self.order = np.argsort(-problem.frequency, kind="stable")
         self.work = 0
-        self.sums = SumTables(letters.acting, circuits.windows(np.full(problem.coils, np.inf))[1][1])
+        self.sums = SumTables(letters.acting, circuits.windows(np.full(problem.coils, np.inf))[1][1], ANSWER)
         self._exact = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
         self.single_parts = all(len(group) == 1 for group in letters.parts)
         self._largest = np.where(np.isfinite(letters.acting), letters.acting, 0.0).max(axis=0, initial=0.0)

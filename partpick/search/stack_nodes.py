@@ -22,8 +22,8 @@ Shorts = NDArray[np.int16]
 
 GRAIN = 1e-21  # F; finer differences of values are none
 MOST_KINDS = 4
-MOST_EDGES = 100_000  # of one layer of one graph
-WORK_LIMIT = 10_000_000  # edges of one request
+MOST_EDGES = 60_000  # of one layer of one graph
+WORK_LIMIT = 300_000_000  # places for capacitors in the graphs of one request
 
 
 class StackNodes:
@@ -36,16 +36,17 @@ class StackNodes:
         self.order = np.argsort(-problem.frequency, kind="stable")
         self.grades = Grades(problem)
         limits = circuits.windows(np.full(problem.coils, np.inf))
-        self.sums = SumTables(self._lasting_species(), limits[1][1])
+        self.sums = SumTables(self._lasting_species(), limits[1][1], 2 * MOST_EDGES)
         self.scarce = self._scarce()
         self._kind, self._amount = self._kinds(shared=False)
         self._kind_shared, self._amount_shared = self._kinds(shared=True)
         self.allow(WORK_LIMIT)
+        self._cheapest = int(problem.part_price.min(initial=NEVER)) if len(problem.part_price) else 0
         # the intervals alone say everything else about a band
         self._exact = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
 
     def allow(self, work: int) -> None:
-        """Set how many edges may be made from now on before the search stops itself."""
+        """Set how much may be made from now on, in places for capacitors, before the search stops itself."""
         self._work_left = work
 
     def _lasting_species(self) -> Floats:
@@ -190,7 +191,7 @@ class StackNodes:
         tail, added = self._edges(place, before, rules)
         if not len(tail):
             return None
-        self._work_left -= len(tail)
+        self._work_left -= len(tail) * (before.parts.shape[1] + problem.most_parts)
         if self._work_left < 0:
             raise Stopped("work limit")
         coil = before.coil[tail]
@@ -210,7 +211,9 @@ class StackNodes:
         if rules.shared:
             keep &= self._inside_shared_limits(coils[coil[first]], parts, least_price)
         limit = rules.price[coils[coil[first]]]
-        keep &= (limit >= NEVER) | (least_price + problem.coil_price[coils[coil[first]]] <= limit)
+        later = rules.rest[coil[first], place + 1] if place + 1 < problem.bands else np.zeros_like(first)
+        least_total = least_price + problem.coil_price[coils[coil[first]]] + later * self._cheapest
+        keep &= (limit >= NEVER) | (least_total <= limit)
         new = np.cumsum(keep) - 1
         edge = np.flatnonzero(keep[head])
         kept = np.flatnonzero(keep)

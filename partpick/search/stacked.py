@@ -9,18 +9,18 @@ from fractions import Fraction
 import numpy as np
 
 from partpick.progress import Monitor
+from partpick.search.attempts import SMALLEST_ERROR, Attempt, least_grid_error, search_layout, worth_naming
 from partpick.search.bands import Found
 from partpick.search.bounds import IMPOSSIBLE
 from partpick.search.choose import ORDERS, SUMS, Choice, Stopped, column_content
 from partpick.search.circuits import Circuits, Windows
 from partpick.search.columns import ColumnSource
-from partpick.search.layouts import SMALLEST_ERROR, Attempt, least_grid_error, search_layout, worth_naming
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 from partpick.search.stack_graph import StackGraph
 from partpick.search.stack_nodes import StackNodes
 
 FRONT_STEP = 1e-9
-FRONT_WORK = 4_000_000  # edges of the graphs for the front
+FRONT_WORK = 100_000_000  # places for capacitors in the graphs for the front
 
 
 @dataclass(frozen=True)
@@ -74,6 +74,7 @@ class StackedEngine:
         self.problem = problem
         self.monitor = monitor
         self.unproven: list[Choice] = []
+        self.front_first = False
         self.wanted, self.all_windings = wanted, all_windings
         self.circuits = Circuits(problem)
         self.nodes = StackNodes(problem, self.circuits, monitor)
@@ -90,7 +91,7 @@ class StackedEngine:
         self._cheapest = int(prices.min()) if len(prices) else NEVER
 
     def attempt(self, coils: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
-        """Return the first choice of each coil inside the attempt; see `layouts.Engine`."""
+        """Return the first choice of each coil inside the attempt; see `attempts.Engine`."""
         best: dict[int, tuple[tuple[int, ...], Choice | None]] = {}
         budget = self._budget(attempt)
         count = self._parts_limit_binds and by != "build"
@@ -129,7 +130,7 @@ class StackedEngine:
                 end[row] = value
 
     def front(self, coils: Ints, emit: Callable[[Choice], None]) -> None:
-        """Hand over the least worst error for each number of pieces; see `layouts.Engine`.
+        """Hand over the least worst error for each number of pieces; see `attempts.Engine`.
 
         Larger and larger errors are tried with fewer and fewer capacitors: what has more than the
         least number found at a smaller error cannot be on the front again.

@@ -9,7 +9,6 @@ import numpy as np
 from partpick.search.problem import Bools, Floats, Ints
 
 LARGEST = 1_000_000  # rows of a stored table
-MOST = 200_000  # rows of one answer
 
 
 class TooManyError(Exception):
@@ -19,8 +18,9 @@ class TooManyError(Exception):
 class SumTables:
     """Sums of one, two and three values, sorted; more values one by one on top of those."""
 
-    def __init__(self, acting: Floats, most: Floats) -> None:
-        """Take the values at each band, (B, n), and the largest sum of use, (J, B). [F]"""
+    def __init__(self, acting: Floats, most: Floats, answer: int) -> None:
+        """Take the values at each band, (B, n) F, the largest sum of use, (J, B) F, and the most rows of an answer."""
+        self.answer = answer
         self.acting = acting
         finite = np.isfinite(acting)
         self.alike = bool((acting == acting[:1]).all())
@@ -70,7 +70,7 @@ class SumTables:
         Raises
         ------
         TooManyError
-            There are more than `MOST`.
+            There are more than `answer`.
         """
         stored, valid = self._stored(band), self.valid[band]
         if not len(valid):
@@ -79,13 +79,13 @@ class SumTables:
             sums, letters = stored[added]
             first = np.searchsorted(sums, low, side="left")
             times = np.maximum(np.searchsorted(sums, high, side="right") - first, 0)
-            if int(times.sum()) > MOST:
+            if int(times.sum()) > self.answer:
                 raise TooManyError
             which = np.repeat(np.arange(len(first)), times)
             start = first - (np.cumsum(times) - times)
             return letters[np.arange(len(which)) + start[which]], which
         values = self.acting[band][valid]
-        if len(low) * len(values) > MOST:
+        if len(low) * len(values) > self.answer:
             raise TooManyError
         # the largest value first: the others are no larger, and each is at least the smallest
         slack = 1e-12 * values[None, :]

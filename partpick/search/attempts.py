@@ -14,7 +14,7 @@ from typing import NamedTuple, Protocol
 import numpy as np
 
 from partpick.progress import Monitor
-from partpick.search.bands import Found, _Ranking
+from partpick.search.bands import Found, Ranking
 from partpick.search.bounds import IMPOSSIBLE, pack, packed_fields
 from partpick.search.choose import Choice, Stopped
 from partpick.search.figures import coarse_error, fine_error, quality_class, stray_class
@@ -44,6 +44,7 @@ class Engine(Protocol):
     least_error: Floats  # (J,)
     error_step: float  # factor from one error tried to the next
     unproven: list[Choice]  # what a stopped trial had found
+    front_first: bool  # by error: the front, fewest pieces first, before the ranking
 
     def attempt(self, coils: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
         """Return the first choices in the order `by`, and all coils that have one inside the attempt.
@@ -129,7 +130,7 @@ class _Steps:
         step = self.price_step[coils] - (1 if before else 0)
         least = self.engine.least_pieces[coils] * self.cheapest
         most = self._most_cost()
-        grown = np.minimum(np.rint(np.maximum(least, 1) * 1.5**np.minimum(step, 80)), most).astype(np.int64)
+        grown = np.minimum(np.rint(np.maximum(least, 1) * 1.2 ** np.minimum(step, 150)), most).astype(np.int64)
         return self.problem.coil_price[coils] + grown
 
     def _most_cost(self) -> int:
@@ -187,10 +188,18 @@ def search_layout(
     """
     problem = engine.problem
     found = Found()
-    ranking = _Ranking(problem, wanted, all_windings)
+    ranking = Ranking(problem, wanted, all_windings)
     usable = (engine.least_pieces <= engine.most_pieces) & (problem.support_stock[problem.support] >= 1)
     coils = np.flatnonzero(usable)
+    first = problem.by == "error" and engine.front_first
+
+    def keep(choice: Choice) -> None:
+        found.front.append(choice)
+        ranking.add(choice)
+
     try:
+        if first:
+            engine.front(coils, keep)
         _rank(engine, coils, ranking, found, monitor)
         found.settled = True
     except Stopped as stop:
@@ -198,7 +207,9 @@ def search_layout(
         for choice in engine.unproven:
             ranking.add(choice)
     found.choices = ranking.rows()
-    if front and found.choices and found.settled:
+    if not front:
+        found.front.clear()
+    elif not first and found.choices and found.settled:
         try:
             engine.front(coils, found.front.append)
         except Stopped as stop:
@@ -206,7 +217,7 @@ def search_layout(
     return found
 
 
-def _rank(engine: Engine, coils: Ints, ranking: _Ranking, found: Found, monitor: Monitor) -> None:
+def _rank(engine: Engine, coils: Ints, ranking: Ranking, found: Found, monitor: Monitor) -> None:
     steps, size = _Steps(engine), BLOCK
     bound = np.full(engine.problem.coils, _LAST, dtype=np.int64)
     bound[coils] = steps.bounds(coils)
