@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from partpick.result import Result
     from partpick.solving import solve
 
-    __version__: str
+__version__ = "0.1.0"
 
 __all__ = [
     "PartpickError",
@@ -43,8 +43,6 @@ _HOMES = {
 
 
 def __getattr__(name: str) -> object:
-    if name == "__version__":
-        return _version()
     if name == "frames":
         return import_module("partpick.frames")
     if name not in _HOMES:
@@ -56,13 +54,3 @@ def __getattr__(name: str) -> object:
 
 def __dir__() -> list[str]:
     return sorted({*globals(), *__all__})
-
-
-def _version() -> str:
-    """Return the installed version; "unknown" in a checkout that was never installed."""
-    from importlib.metadata import PackageNotFoundError, version
-
-    try:
-        return version("partpick")
-    except PackageNotFoundError:
-        return "unknown"

@@ -162,7 +162,7 @@ def _result(
     return Result(
         request=request,
         floor=problem.floor,
-        proof=_proof(problem, found, candidates),
+        proof=_proof(request, problem, found, candidates, front),
         candidates=candidates,
         front=front,
     )
@@ -171,6 +171,17 @@ def _result(
 def _order(problem: Problem, choice: Choice) -> tuple[tuple[str, object], ...]:
     """Return the steps of the order by name with a choice's figures, all but the last, which is its content."""
     return tuple(zip(ORDERS[problem.by], choice.key, strict=False))
+
+
+def _error_bound(found: Found, first: Candidate, front: tuple[Candidate, ...]) -> float | None:
+    """Return an error below which no plan of as few pieces gets: from the front, None where it did not get so far.
+
+    Errors inside the floor are equal to the order, so that the first plan may be above it.
+    """
+    if found.stopped_by is not None or first.worst_error is None:
+        return None
+    least = [c.worst_error for c in front if c.worst_error is not None and c.piece_count <= first.piece_count]
+    return min([first.worst_error, *least])
 
 
 def _candidate(
@@ -191,33 +202,48 @@ def _candidate(
     return with_stress(request, looked_at)
 
 
-def _proof(problem: Problem, found: Found, candidates: tuple[Candidate, ...]) -> Proof:
-    searched = (
-        f"every one of {problem.coils} coils with every network of {problem.least_parts} to "
-        f"{problem.most_parts} capacitors a band, for nominal values"
-    )
+def _searched(request: Request, problem: Problem) -> str:
+    """Return in words what was exhausted."""
+    coils = f"every one of {problem.coils} coils"
     if problem.inductors > 1 and problem.bands > 1:
-        searched = searched.replace("coils with", f"coils, alone and up to {problem.inductors} together, with")
+        coils += f", alone and up to {problem.inductors} together"
+    if request.coil.taps:
+        coils += ", whole and at every tap"
+    if request.switching == "shared":
+        return f"{coils} with every shared set of up to {problem.parts_limit} capacitors, for nominal values"
+    if request.switching == "stacked":
+        return f"{coils} with every stack of up to {problem.most_parts} capacitors a band, for nominal values"
+    least, most = problem.least_parts, problem.most_parts
+    return f"{coils} with every network of {least} to {most} capacitors a band, for nominal values"
+
+
+def _proof(
+    request: Request,
+    problem: Problem,
+    found: Found,
+    candidates: tuple[Candidate, ...],
+    front: tuple[Candidate, ...],
+) -> Proof:
     if found.stopped_by is None:
         status = "optimal" if candidates else "infeasible"
     else:
         status = "feasible" if candidates else "unknown"
     stages: list[Stage] = []
     if candidates:
-        stages = _stages(problem, found, candidates[0])
-    return Proof(status=status, searched=searched, stages=tuple(stages), stopped_by=found.stopped_by)
+        stages = _stages(problem, found, candidates[0], front)
+    return Proof(status=status, searched=_searched(request, problem), stages=tuple(stages), stopped_by=found.stopped_by)
 
 
-def _stages(problem: Problem, found: Found, first: Candidate) -> list[Stage]:
+def _stages(problem: Problem, found: Found, first: Candidate, front: tuple[Candidate, ...]) -> list[Stage]:
     """Value and bound of each objective in the order's sequence; a bound is proven, or null."""
     proven = found.stopped_by is None or found.settled
     pieces = first.piece_count
     bound = pieces if proven else pieces_of_bound(found.next_bound, problem.by)
     bound = None if bound is None else min(bound, pieces)
-    error = max(first.worst_error or 0.0, problem.floor if problem.by != "error" else 1e-9)
+    error = first.worst_error or 0.0
     stages = [Stage(objective="pieces", value=pieces, bound=bound)]
     if first.worst_error is not None:
-        stages.append(Stage(objective="worst_error", value=error, bound=error if proven else None))
+        stages.append(Stage(objective="worst_error", value=error, bound=_error_bound(found, first, front)))
     if first.worst_excess is not None:
         excess = first.worst_excess
         stages.append(Stage(objective="worst_excess", value=excess, bound=excess if proven else None))

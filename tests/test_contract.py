@@ -259,8 +259,10 @@ def test_stages_state_pieces_and_worst_error_with_their_bounds(drawer: Path) -> 
     result = run("pair", "7.1MHz", "--drawer", drawer, *FORMS, *WIDE, "--json", "-").json
     stages = {stage["objective"]: stage for stage in result["proof"]["stages"]}
     assert stages["pieces"]["value"] == stages["pieces"]["bound"] == result["candidates"][0]["piece_count"]
-    error = max(result["candidates"][0]["worst_error_ppm"] / 1e6, result["request"]["floor"])
+    error = result["candidates"][0]["worst_error_ppm"] / 1e6
     assert stages["worst_error"]["value"] == pytest.approx(error)
+    least = min(c["worst_error_ppm"] for c in result["front"] if c["piece_count"] <= stages["pieces"]["value"]) / 1e6
+    assert stages["worst_error"]["bound"] == pytest.approx(min(error, least))
 
 
 def test_the_floor_is_half_the_uncertainty_that_tolerances_leave(tmp_path: Path) -> None:

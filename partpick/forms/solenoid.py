@@ -32,7 +32,6 @@ from partpick.physics.skin import internal_inductance_ratio
 from partpick.physics.solenoid import high_frequency_inductance, solenoid_families
 from partpick.physics.spread import solenoid_model_spread, solenoid_spread
 from partpick.physics.stranded import STRANDED_HIGHEST, STRANDED_RESISTANCE_SPREAD
-from partpick.quantities import format_quantity
 
 MANDREL_LEAST_WIRE = 0.8e-3  # m, thinner wire does not stand by itself; common practice, no source
 MANDREL_STIFFNESS = 12  # mandrel diameter over wire, at most; common practice, no source
@@ -91,7 +90,7 @@ def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block
     def label(row: int) -> str:
         former, used = formers[support[row]], catalogue.wires[wire[row]]
         close = lays[support[row]] == "close"
-        lay = "close wound" if close else f"pitch {format_quantity(float(pitch[row]), 'm')}"
+        lay = "close wound" if close else f"pitch {1e3 * pitch[row]:.3g} mm"
         return f"{turns_in_words(turns[row])} of {used.name} on {former.name}, {lay}"
 
     return Block(

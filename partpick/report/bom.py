@@ -64,7 +64,7 @@ def _line(part: PartLine) -> _Line:
         unit=part.unit,
         tolerance=part.tolerance,
         description=part.description,
-        unit_price=_without_wire(part),
+        unit_price=price_without_wire(part),
         source=part.source,
         told_apart=(part.label, part.grade, part.tempco, part.wire, part.wire_length),
     )
@@ -76,7 +76,7 @@ def _wire_price(part: PartLine) -> float | None:
     return part.wire_length * part.wire_price_per_m
 
 
-def _without_wire(part: PartLine) -> float | None:
+def price_without_wire(part: PartLine) -> float | None:
     """Return the price of a piece, of a wound coil that of its former or core alone."""
     wire = _wire_price(part)
     if part.unit_price is None or wire is None:

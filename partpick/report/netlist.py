@@ -28,6 +28,8 @@ def netlist(result: Result) -> str:
         return "\n".join([*lines, "* Nothing fits: there is no tank to simulate.", ".end"]) + "\n"
     tanks = list(_tanks(result.request, result.candidates[0]))
     lines += ["* Strays are taken without loss; a trimmer stands at the middle of its range."]
+    if any(band.load is not None for band in result.request.bands) or result.request.load is not None:
+        lines += ["* The load is left out: these are the tanks unloaded."]
     lines += [".options rshunt=1e12"]  # a way to ground for a node between two capacitors
     for tank in tanks:
         lines += tank.lines

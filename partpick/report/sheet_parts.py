@@ -9,6 +9,7 @@ from partpick.forms.block import TAIL
 from partpick.quantities import format_percent, format_quantity
 from partpick.report import html
 from partpick.report.bands_table import with_labels
+from partpick.report.bom import price_without_wire
 from partpick.report.text import figure, length, quantity, signed_percent, signed_shift, slope
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 
@@ -30,9 +31,10 @@ def shopping(candidate: Candidate, units: int) -> str:
             name = coil.former if coil and coil.former else part.description
         alike.setdefault((name, _tolerance(part), part.unit_price), []).append(part)
     rows = []
-    for (name, tolerance, price), pieces in alike.items():
+    for (name, tolerance, _), pieces in alike.items():
         references = " ".join(piece.reference for piece in pieces)
-        each = "" if not price or pieces[0].wire else f"{price:.2f}"
+        own = price_without_wire(pieces[0])
+        each = "" if not own else f"{own:.2f}"
         rows.append([name, str(len(pieces)), references, tolerance, each])
     for part in candidate.parts:
         if part.wire is not None and part.wire_length is not None:

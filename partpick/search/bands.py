@@ -130,14 +130,14 @@ def search_bands(
     if front and found.choices and found.settled:
         _add_front(problem, bounds, together, evaluator, found, monitor)
     if not all(sets.complete for sets in together):
-        _own_up(problem, bounds, found)
+        _own_up(problem, bounds, found, monitor.stopped())
     return found
 
 
-def _own_up(problem: Problem, bounds: Bounds, found: Found) -> None:
+def _own_up(problem: Problem, bounds: Bounds, found: Found, reason: str | None) -> None:
     """Say that some sets of coils were not looked at, and how few pieces any of them could need."""
     found.settled = False
-    found.stopped_by = found.stopped_by or "work limit"
+    found.stopped_by = found.stopped_by or reason or "work limit"
     least = int(bounds.fewest.min(axis=0).sum()) + 1
     found.next_bound = min(found.next_bound, least << BELOW_PIECES)
 
