@@ -503,7 +503,7 @@ def test_an_interrupt_is_130_with_the_best_so_far_or_nothing(tmp_path: Path) -> 
 def test_a_time_limit_is_told_in_the_proof(tmp_path: Path) -> None:
     """Not proven is not optimal: exit 1 where nothing was found yet, 0 with candidates."""
     bands = [(f"band {i}", f"{3 + 1.37 * i:.2f} MHz") for i in range(8)]
-    path = plan(tmp_path / "p.toml", bands, "[limits]\ninductors = 3\nparts_per_band = 3\nvalues = 5\n")
+    path = plan(tmp_path / "p.toml", bands, "[limits]\ninductors = 2\nparts_per_band = 3\n")
     done = run("bands", path, "--time-limit", "0.2", "--json", "-")
     proof = done.json["proof"]
     assert proof["stopped_by"] == "time limit"
