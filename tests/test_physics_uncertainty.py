@@ -9,7 +9,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from partpick.physics.uncertainty import UNIFORM, correlated_uniform, uniform_sum_distribution
+from partpick.physics.uncertainty import UNIFORM, correlated_uniform, quantiles, uniform_sum_distribution
 
 SIZES = st.lists(st.floats(1e-6, 0.3), min_size=1, max_size=8)
 
@@ -71,3 +71,10 @@ def test_a_batch_has_the_correlation_asked_for_and_stays_uniform(wanted: float) 
     assert np.corrcoef(x)[0, 1] == pytest.approx(wanted, abs=0.01)
     assert x.std(axis=1) == pytest.approx(np.full(2, 3**-0.5), rel=0.01)
     assert np.abs(x).max() <= 1.0
+
+
+def test_quantiles_are_those_of_numpy() -> None:
+    """Type 7 of Hyndman and Fan (1996), which numpy.quantile takes by default."""
+    sample = np.random.default_rng(3).normal(size=1001)
+    shares = [0.0, 0.05, 0.5, 0.951, 1.0]
+    assert quantiles(sample, shares) == pytest.approx(np.quantile(sample, shares), rel=1e-12)

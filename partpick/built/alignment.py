@@ -15,6 +15,7 @@ import numpy as np
 
 from partpick.built.tank import Floats, VaryingTank
 from partpick.built.variation import COIL, Variation
+from partpick.physics.uncertainty import quantiles
 
 INNER_TRAVEL = (0.2, 0.8)  # a setting outside is too near an end to find; common practice, no source
 FULL_TRAVEL = (0.0, 1.0)
@@ -263,7 +264,7 @@ def _trimmer_left(tank: VaryingTank, inductance: Floats, x: Floats) -> Floats:
 
 
 def _middle_range(settings: Floats) -> tuple[float, float]:
-    low, high = np.quantile(settings, (0.05, 0.95))
+    low, high = quantiles(settings, (0.05, 0.95))
     return float(low), float(high)
 
 

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from partpick.built.settings import SpreadSettings
 from partpick.built.tank import Floats, VaryingTank
 from partpick.built.variation import NORMAL_PARTS, Variation, deviation_of
-from partpick.physics.uncertainty import uniform_sum_distribution
+from partpick.physics.uncertainty import quantiles, uniform_sum_distribution
 from partpick.request import Limits
 
 LOW_SHARE, HIGH_SHARE = 0.05, 0.95
@@ -122,7 +122,7 @@ def spread(
             judged = True
             inside = float(ok.mean()) if counted else inside
         if counted:
-            low, high = (float(point) for point in np.quantile(error, (LOW_SHARE, HIGH_SHARE)))
+            low, high = (float(point) for point in quantiles(error, (LOW_SHARE, HIGH_SHARE)))
         worst_high, worst_low = tank.resonance(variation.corners) / tank.frequency - 1.0
         bands.append(
             BandSpread(
@@ -144,8 +144,8 @@ def _swept(
     down, up = lower.resonance(builds), upper.resonance(builds)
     covered = (down <= lower.frequency) & (up >= upper.frequency)
     figures = SweptSpread(
-        low=float(np.quantile(down, HIGH_SHARE)),
-        high=float(np.quantile(up, LOW_SHARE)),
+        low=float(quantiles(down, [HIGH_SHARE])[0]),
+        high=float(quantiles(up, [LOW_SHARE])[0]),
         worst_low=float(lower.resonance(variation.corners).max()),
         worst_high=float(upper.resonance(variation.corners).min()),
         covers=float(covered.mean()),
