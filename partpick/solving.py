@@ -19,6 +19,7 @@ from partpick.request import Band, Request
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
 from partpick.search.bands import Found, pieces_of_bound
 from partpick.search.choose import ORDERS, Choice
+from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
 from partpick.stress import with_stress
 from partpick.tapping import column_source
@@ -61,11 +62,7 @@ def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Mon
 def _planned(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) -> Result:
     """Return the result of one search, without a word on why nothing fits."""
     monitor.report("every coil that the stock can wind")
-    coils = realisable_coils(request, catalogue)
-    capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
-    floor = tolerance_floor(coils, capacitors, request.limits.error)
-    problem = build_problem(request, coils, capacitors, floor)
-    source = column_source(request, coils, problem)
+    coils, capacitors, problem, source = _prepared(request, catalogue)
     found = search_layout(request, problem, source, wanted=top, monitor=monitor)
     pool = _refit_pool(request, catalogue)
     return _result(request, coils, capacitors, problem, found, pool)
@@ -73,13 +70,22 @@ def _planned(request: Request, catalogue: Catalogue, top: int, monitor: Monitor)
 
 def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidate | None:
     """Return the first candidate of a request with other limits; None where nothing fits."""
+    coils, capacitors, problem, source = _prepared(request, catalogue)
+    found = search_layout(request, problem, source, wanted=1, monitor=monitor, front=False)
+    least_is_asked = request.by != "build"
+    if not found.choices or (least_is_asked and not found.settled):
+        return None  # the least so far is not the least
+    return _candidate(request, coils, capacitors, found.choices[0])
+
+
+def _prepared(request: Request, catalogue: Catalogue) -> tuple[Coils, tuple[Capacitor, ...], Problem, ColumnSource]:
+    """Return what every search of a request starts from."""
     coils = realisable_coils(request, catalogue)
     capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
     floor = tolerance_floor(coils, capacitors, request.limits.error)
     problem = build_problem(request, coils, capacitors, floor)
     source = column_source(request, coils, problem)
-    found = search_layout(request, problem, source, wanted=1, monitor=monitor, front=False)
-    return _candidate(request, coils, capacitors, found.choices[0]) if found.choices else None
+    return coils, capacitors, problem, source
 
 
 def windings(

@@ -186,8 +186,3 @@ def inside_shared_limits(problem: Problem, choice: Choice) -> bool:
         return False
     price = sum(int(columns.price[0]) for columns in choice.columns) + plan_price(problem, choice.coils)
     return problem.price_limit >= NEVER or price <= problem.price_limit
-
-
-def used_parts(choice: Choice) -> list[Ints]:
-    """Return the parts of each band of a choice, in network order, a series padder last. [-]"""
-    return [columns.parts[0][columns.parts[0] >= 0] for columns in choice.columns]
