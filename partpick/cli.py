@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Mapping, Sequence
-from importlib import import_module
+from functools import partial
 from inspect import cleandoc
 from typing import TYPE_CHECKING, Any
 
@@ -17,10 +17,12 @@ import click
 from partpick.errors import PartpickError, RequestError
 from partpick.jobs import Outputs, files_read, on_stdout, outputs_of_plans, paths_of, plan_files
 from partpick.options import COIL_OPTIONS, PAIR_OPTIONS, band_of, option_name, plan_options, tables_of
+from partpick.rendering import renderers
 from partpick.report.files import write_outputs
 from partpick.terminal import Terminal
 
 if TYPE_CHECKING:
+    from partpick.batch import Answer, Order
     from partpick.parts import Catalogue
     from partpick.request import Request
     from partpick.result import Result
@@ -154,6 +156,12 @@ _BY = click.option(
     default="build",
     help="Rank by ease of building (build), by error or by price.",
 )
+_WORKERS = click.option(
+    "--workers",
+    type=click.IntRange(min=1, max=64),
+    metavar="N",
+    help="Solve so many plans at a time (one a core); the answers are the same.",
+)
 _ALL = click.option("--all-windings", is_flag=True, help="Rank every winding, not only the best on each former.")
 
 
@@ -215,6 +223,7 @@ def pair(frequency: str, top: int, drawer: str | None, by: str, all_windings: bo
 @cli.command()
 @click.argument("plans", type=_PATH, metavar="PLAN...", nargs=-1, required=True)
 @_common
+@_WORKERS
 @_examples(
     "partpick bands plan.toml --json result.json --bom parts.csv",
     "partpick bands plan.toml --drawer my-parts --by price",
@@ -232,24 +241,10 @@ def bands(plans: tuple[str, ...], top: int, drawer: str | None, by: str, all_win
     jobs = list(zip(every, outputs_of_plans(every, drawer, given), strict=True))
     for _, outputs in jobs:
         outputs.check()
-    if len(jobs) > 1 and given["against"] is not None:
-        raise RequestError("--against compares one plan with one earlier result; several plans are given")
-    catalogue = None
-    codes = [FOUND]
-    for plan, outputs in jobs:
-        try:
-            request = load_plan(plan, by=by, all_windings=all_windings)
-            catalogue = _catalogue(drawer) if catalogue is None else catalogue
-            codes.append(_solve_and_write(request, catalogue, outputs, top, given))
-        except PartpickError as error:
-            if len(jobs) == 1:
-                raise
-            text = str(error)
-            _complain(text if plan in text else f"{plan}: {text}")
-            codes.append(error.exit_code)
-        if codes[-1] == INTERRUPTED:
-            break
-    return max(codes)
+    if len(jobs) > 1:
+        return _solve_several(jobs, top, drawer, given, lambda plan: load_plan(plan, by=by, all_windings=all_windings))
+    ((plan, outputs),) = jobs
+    return _solve_and_write(load_plan(plan, by=by, all_windings=all_windings), _catalogue(drawer), outputs, top, given)
 
 
 @cli.command()
@@ -344,10 +339,76 @@ def _solve_and_write(
     with Terminal(given["time_limit"]) as monitor:
         result = solve(request, catalogue, top=max(top, why or 0), monitor=monitor)
         monitor.writing()
-        outputs.write(**_renderers(result, why, before, dial))
+        outputs.write(**renderers(result, why, before, dial))
     if monitor.elapsed >= TOO_SHORT_TO_TELL:
         click.echo(f"took {monitor.elapsed:.1f} s", err=True)
     return _exit_code(result, monitor)
+
+
+def _solve_several(
+    jobs: Sequence[tuple[str, Outputs]],
+    top: int,
+    drawer: str | None,
+    given: Mapping[str, Any],
+    load: Callable[[str], Request],
+) -> int:
+    """Solve several plans in a pool of processes; what is wrong with one is told and the others go on."""
+    from partpick.batch import answers, processes
+
+    if given["against"] is not None:
+        raise RequestError("--against compares one plan with one earlier result; several plans are given")
+    codes: list[int] = [FOUND]
+    orders: dict[int, Order] = {}
+    for place, (plan, outputs) in enumerate(jobs):
+        try:
+            orders[place] = _order(load(plan), outputs, top, given)
+        except PartpickError as error:
+            codes.append(_complain_of(plan, str(error), error.exit_code))
+    catalogue = _catalogue(drawer)
+    with Terminal() as monitor:
+        workers = processes(given["workers"], len(orders))
+        found = answers(
+            list(orders.values()), catalogue, workers=workers, time_limit=given["time_limit"], monitor=monitor
+        )
+        for place, answer in zip(orders, found, strict=True):
+            plan, outputs = jobs[place]
+            try:
+                codes.append(_write_answer(plan, answer, outputs, monitor))
+            except PartpickError as error:
+                codes.append(_complain_of(plan, str(error), error.exit_code))
+    if monitor.elapsed >= TOO_SHORT_TO_TELL:
+        click.echo(f"took {monitor.elapsed:.1f} s", err=True)
+    return max(codes)
+
+
+def _order(request: Request, outputs: Outputs, top: int, given: Mapping[str, Any]) -> Order:
+    """Return what is wanted of one of several plans."""
+    from partpick.batch import Order
+
+    dial = outputs.paths.get("dial")
+    if dial is not None:
+        from partpick.report.dial import check_dial
+
+        check_dial(dial, request)
+    return Order(request=request, top=top, outputs=("table", *outputs.paths), why=given["why"], dial=dial)
+
+
+def _write_answer(plan: str, answer: Answer, outputs: Outputs, monitor: Terminal) -> int:
+    """Write what came of one of several plans and return its exit code."""
+    if answer.complaint is not None:
+        return _complain_of(plan, answer.complaint, answer.exit_code)
+    if answer.texts:
+        monitor.clear()
+        with monitor.undisturbed():
+            outputs.write(**{name: partial(str, text) for name, text in answer.texts.items()})
+    if answer.interrupted:
+        return INTERRUPTED
+    return FOUND if answer.found else NOTHING_FITS
+
+
+def _complain_of(plan: str, text: str, code: int) -> int:
+    _complain(text if plan in text else f"{plan}: {text}")
+    return code
 
 
 def _earlier(path: str | None, outputs: Outputs) -> Mapping[str, Any] | None:
@@ -359,45 +420,6 @@ def _earlier(path: str | None, outputs: Outputs) -> Mapping[str, Any] | None:
     from partpick.report.against import read_result
 
     return read_result(path)
-
-
-def _renderers(
-    result: Result, why: int | None, before: Mapping[str, Any] | None = None, dial: str | None = None
-) -> dict[str, Callable[[], str]]:
-    """Return what writes each output; those that are not wanted are never called, nor loaded."""
-
-    def by(module: str, function: str) -> Callable[[], str]:
-        def render() -> str:
-            text: str = getattr(import_module(f"partpick.report.{module}"), function)(result)
-            return text
-
-        return render
-
-    def shown() -> str:
-        text = by("table", "result_table")()
-        if before is not None:
-            from partpick.report.against import changes
-
-            text += "\n" + changes(result, before)
-        if why is None or not result.candidates:
-            return text
-        from partpick.report.reasons import reasons
-
-        return text + "\n" + reasons(result, why)
-
-    def chart() -> str:
-        from partpick.report.dial import dial_text
-
-        return dial_text(result, dial or "-")
-
-    return {
-        "table": shown,
-        "json": by("result_json", "result_json"),
-        "bom": by("bom", "bom_csv"),
-        "sheet": by("sheet", "sheet"),
-        "netlist": by("netlist", "netlist"),
-        "dial": chart,
-    }
 
 
 def _exit_code(result: Result, monitor: Terminal) -> int:

@@ -13,7 +13,7 @@ import signal
 import sys
 import threading
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from types import FrameType, TracebackType
 from typing import TextIO
 
@@ -42,6 +42,7 @@ class Terminal:
         self._shown = 0  # columns of the line that stands on the terminal
         self._reason: str | None = None
         self._writing = False
+        self._undisturbed = False
         self._callback: Callable[[], None] | None = None
         self._lock = threading.RLock()  # a signal may come while its own thread holds it
         self._timer: threading.Timer | None = None
@@ -79,6 +80,15 @@ class Terminal:
         """Say that the search is over: from now on no signal may break off what is being written."""
         self._writing = True
         self.clear()
+
+    @contextlib.contextmanager
+    def undisturbed(self) -> Iterator[None]:
+        """Let no signal break off what is written meanwhile; it is heard all the same."""
+        self._undisturbed = True
+        try:
+            yield
+        finally:
+            self._undisturbed = False
 
     def clear(self) -> None:
         """Take the progress line away."""
@@ -122,7 +132,7 @@ class Terminal:
     def _signalled(self, number: int, frame: FrameType | None) -> None:
         if self._writing:
             return
-        if self.interrupted:
+        if self.interrupted and not self._undisturbed:
             raise KeyboardInterrupt
         self._stop(INTERRUPT)
 

@@ -27,6 +27,7 @@ STAGES = [
     {"solving"},
     {"report"},
     {"frames"},
+    {"rendering", "batch"},
     {"terminal", "options", "jobs", "cli", "__main__", "__init__"},
 ]
 
