@@ -20,6 +20,7 @@ from partpick.forms.ring import ring_block
 from partpick.forms.rod import rod_block
 from partpick.forms.solenoid import solenoid_block
 from partpick.parts import Catalogue
+from partpick.physics.loss import dielectric_loss
 from partpick.physics.self_capacitance import self_resonance_frequency
 from partpick.quantities import format_quantity
 from partpick.request import CoilRules, Request
@@ -43,7 +44,8 @@ LIMIT_ROUNDING = 1e-9  # a coil exactly on a limit is inside it
 class Coils:
     """J coils at B frequencies; `support` tells which former, core or bought part each needs."""
 
-    frequency: Floats  # (B,) Hz
+    frequency: Floats  # (B,) Hz, of a swept band the upper end
+    frequency_low: Floats  # (B,) Hz, its lower end
     supports: tuple[Support, ...]
     support: Ints  # (J,)
     blocks: tuple[Block, ...]
@@ -54,6 +56,7 @@ class Coils:
     inductance_low: Floats  # (J, B) H, at the lower end of a swept band
     q_low: Floats  # (J, B)
     self_capacitance: Floats  # (J,) F
+    loss_tangent: Floats  # (J,) of the self-capacitance, 0 where its loss is no cause of its own
     spread: Floats  # (J,) of the inductance, fraction: tolerances and model, uniform
     q_spread: Floats  # (J, 2) fraction below and above, nan: unknown
     self_capacitance_spread: Floats  # (J, 2) fraction below and above, nan: unknown
@@ -91,9 +94,8 @@ class Coils:
     def loss_by_cause(self, coil: int, band: int) -> dict[str, float | None]:
         """Return what each cause in the coil takes, as its share of 1/Q; None where unknown."""
         block, row = self.locate(coil)
-        causes = {"skin": block.losses.skin, "proximity": block.losses.proximity, "core": block.losses.core}
-        # No figure of a former's own loss is at hand; its share is inside the spread of Q.
-        return {**{name: _known(loss[row, band]) for name, loss in causes.items()}, "former": None}
+        names = ("skin", "proximity", "core", "former")
+        return {name: _known(getattr(block.losses, name)[row, band]) for name in names}
 
     def listed(self, inductance: float | None, *, low_frequency: bool) -> Ints:
         """Return the coils in play by content, or nearest to an inductance first."""
@@ -120,6 +122,29 @@ class Coils:
         whole: Floats = self.self_capacitance[coil] * (1.0 + mutual / section) ** 2
         return whole
 
+    def section_loss(self, row: Ints | int, across: Floats | float, *, low_end: bool = False) -> Floats:
+        """Return what the idle turns of a tapped coil add to the loss of its section in the former, (v, B).
+
+        Parameters
+        ----------
+        row : (v,) array of int or int
+            The coil of as many turns as are in circuit. [-]
+        across : (v,) array or float
+            Self-capacitance across the section, the idle turns included. [F]
+        low_end : bool
+            Whether at the lower end of swept bands.
+
+        Returns
+        -------
+        loss : (v, B) or (B,) array
+            Share of 1/Q beyond that of the coil of so many turns by itself. [-]
+        """
+        inductance = self.inductance_low if low_end else self.inductance
+        frequency = self.frequency_low if low_end else self.frequency
+        further = np.asarray(across - self.self_capacitance[row])[..., None]
+        tangent = np.asarray(self.loss_tangent[row])[..., None]
+        return dielectric_loss(inductance[row], further, frequency, tangent)
+
     def at_band(self, coil: int, band: int) -> dict[str, float | None]:
         """Return Q and series resistance at a band, None where unknown."""
         q = float(self.q[coil, band])
@@ -145,19 +170,20 @@ def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
         Formers, cores, wires and bought inductors in stock.
     """
     frequency = np.array([band.highest for band in request.bands])
+    low_end = np.array([band.lowest for band in request.bands])
     swept = any(band.swept for band in request.bands)
-    ends = np.concatenate([frequency, [band.lowest for band in request.bands]]) if swept else frequency
+    ends = np.concatenate([frequency, low_end]) if swept else frequency
     if request.coil.measured is not None:
         blocks = [measured_block(request.coil, ends)]
     else:
         wanted = request.coil.forms or tuple(FORMS)
         blocks = [FORMS[form](catalogue, ends, request.units) for form in FORMS if form in wanted]
         blocks = [block for block in blocks if len(block.turns)]
-    coils = _joined(frequency, blocks)
+    coils = _joined(frequency, low_end, blocks)
     return replace(coils, in_play=_in_play(request, coils))
 
 
-def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
+def _joined(frequency: Floats, low_end: Floats, blocks: list[Block]) -> Coils:
     supports: list[Support] = []
     support: list[Ints] = []
     for block in blocks:
@@ -176,6 +202,7 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
     whole = [np.empty(0, np.int64)]
     return Coils(
         frequency=frequency,
+        frequency_low=low_end,
         supports=tuple(supports),
         support=np.concatenate(support or whole),
         blocks=tuple(blocks),
@@ -186,6 +213,7 @@ def _joined(frequency: Floats, blocks: list[Block]) -> Coils:
         inductance_low=inductance[:, low],
         q_low=q[:, low],
         self_capacitance=column("self_capacitance").astype(float, copy=False),
+        loss_tangent=column("loss_tangent").astype(float, copy=False),
         spread=column("spread").astype(float, copy=False),
         q_spread=column("q_spread", 2).astype(float, copy=False),
         self_capacitance_spread=column("self_capacitance_spread", 2).astype(float, copy=False),

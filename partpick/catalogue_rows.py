@@ -22,6 +22,7 @@ from partpick.catalogue_cells import (
     value_words,
 )
 from partpick.catalogue_defaults import (
+    FORMER_LOSS_TANGENT,
     FORMER_TEMPCO,
     FORMER_TOLERANCE,
     GRADES,
@@ -56,6 +57,7 @@ FORMER_SIZES = (("name", "diameter", "winding_length"),)
 CORE_SIZES = (("name", "outer_diameter"),)
 SUPPORTS = ("tube", "ribbed", "mandrel")
 SHAPES = ("ring", "pot", "rod")
+MOST_LOSS_TANGENT = 0.5  # damp wood; more is a slip of the pen
 _HEIGHT_OF = {"pot": "of both halves together", "rod": "its length"}
 
 Named = TypeVar("Named", Wire, Former, Core)
@@ -229,6 +231,15 @@ def _former(row: Row) -> Former:
         notes.append(
             note_taken("tempco", ppm_words(tempco, tempco_tolerance), f"a {support} former", PRACTICE)
         )
+    loss_tangent = row.read("loss_tangent", lambda text: parse_number(text, low=0))
+    if loss_tangent is None:
+        loss_tangent = FORMER_LOSS_TANGENT[support]
+        # a mandrel leaves nothing behind but air: there is nothing to take for it
+        if support != "mandrel":
+            notes.append(note_taken("loss_tangent", f"{loss_tangent:g}", f"a {support} former", PRACTICE))
+    elif loss_tangent > MOST_LOSS_TANGENT:
+        usual = f"above {MOST_LOSS_TANGENT:g} is no former's; dry plastic has 0.005 to 0.02"
+        raise row.wrong("loss_tangent", f"read {row.cells['loss_tangent']}: {usual}")
     return Former(
         name=row.text("name"),
         support=support,
@@ -238,6 +249,7 @@ def _former(row: Row) -> Former:
         tolerance=tolerance,
         tempco=tempco,
         tempco_tolerance=tempco_tolerance,
+        loss_tangent=loss_tangent,
         quantity=row.read("quantity", parse_count),
         unit_price=read_price(row, "unit_price"),
         source=row.text("source"),

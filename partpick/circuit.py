@@ -163,7 +163,15 @@ class Tank:
     def coil_q(self, *, low_end: bool = False) -> float | None:
         """Return the Q of the coil alone; None where its loss is unknown. [-]"""
         q = float((self.coils.q_low if low_end else self.coils.q)[self.row, self.index])
-        return q if math.isfinite(q) else None
+        if not math.isfinite(q):
+            return None
+        return q if self.tap_turns is None else 1.0 / (1.0 / q + self.idle_loss(low_end=low_end))
+
+    def idle_loss(self, *, low_end: bool = False) -> float:
+        """Return what the former takes of 1/Q around the idle turns of a tapped coil, 0 without a tap. [-]"""
+        if self.tap_turns is None:
+            return 0.0
+        return float(self.coils.section_loss(self.row, self.self_capacitance, low_end=low_end)[self.index])
 
     def losses(self, *, low_end: bool = False) -> dict[str, float | None]:
         """Return 1/Q by cause: coil, capacitors, trimmer, tuning element; None where a loss is unknown. [-]"""

@@ -83,6 +83,7 @@ class Former:
     tolerance: float  # of the diameter
     tempco: float | None  # of a coil wound on it
     tempco_tolerance: float | None
+    loss_tangent: float  # of the former, its gaps counted as air; 0: nothing but air
     quantity: int | None
     unit_price: float | None
     source: str

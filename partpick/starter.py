@@ -63,11 +63,11 @@ tinned 1.0 mm,1.0 mm,1.0 mm,0.40,invented stock
 """
 
 _FORMERS = """\
-name,support,diameter,winding_length,pitch,tolerance,tempco_ppm_per_k,quantity,unit_price,source
-grey tube 16 mm,tube,16 mm,30 mm,,1 %,100,6,0.30,invented stock
-grey tube 25 mm,tube,25 mm,40 mm,twin,1 %,100,4,0.40,invented stock
-grooved former 25 mm,ribbed,25 mm,40 mm,1.5 mm,0.5 %,30,2,2.50,invented stock
-drill shank 8 mm,mandrel,8 mm,16 mm,,2 %,25,,0,invented stock
+name,support,diameter,winding_length,pitch,tolerance,tempco_ppm_per_k,loss_tangent,quantity,unit_price,source
+grey tube 16 mm,tube,16 mm,30 mm,,1 %,100,0.01,6,0.30,invented stock
+grey tube 25 mm,tube,25 mm,40 mm,twin,1 %,100,0.01,4,0.40,invented stock
+grooved former 25 mm,ribbed,25 mm,40 mm,1.5 mm,0.5 %,30,0.001,2,2.50,invented stock
+drill shank 8 mm,mandrel,8 mm,16 mm,,2 %,25,0,,0,invented stock
 """
 
 _CORES = """\

@@ -109,7 +109,10 @@ def loss_by_cause(tank: Tank) -> dict[str, float | None]:
     losses = tank.losses()
     known = [loss for loss in losses.values() if loss is not None]
     total = math.fsum(known) if len(known) == len(losses) else None
-    return {**losses, **tank.coils.loss_by_cause(tank.row, tank.index), "total": total}
+    causes = tank.coils.loss_by_cause(tank.row, tank.index)
+    if causes["former"] is not None:
+        causes["former"] += tank.idle_loss()
+    return {**losses, **causes, "total": total}
 
 
 def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:

@@ -27,7 +27,8 @@ def column_source(request: Request, coils: Coils, problem: Problem) -> ColumnSou
         row = coil - (coils.turns[coil] - turns)
         own = coils.section_self_capacitance(coil, turns)
         in_play = wound[coil] & inside_in_circuit(request, coils, coil, row, own)
-        return Sections(coil, turns, row, own, in_play)
+        loss, loss_low = (coils.section_loss(row, own, low_end=low_end) for low_end in (False, True))
+        return Sections(coil, turns, row, own, loss, loss_low, in_play)
 
     return TappedSource(problem, sections, counts)
 

@@ -33,6 +33,7 @@ def former(diameter: float, length: float, pitch: float | str | None = None, **c
         "tolerance": 0.01,
         "tempco": 1e-4,
         "tempco_tolerance": 5e-5,
+        "loss_tangent": 0.01,
         "quantity": None,
         "unit_price": None,
         "source": "invented row",

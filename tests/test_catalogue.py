@@ -21,6 +21,7 @@ from partpick.request import CapacitorRules
 Drawer = Callable[..., Path]
 CAPACITORS = "value,series,from,to,grade,tolerance,quantity,label\n"
 FORMERS = "name,support,diameter,winding_length,pitch\n"
+LOSSY = "name,diameter,winding_length,loss_tangent\n"
 CORES = "name,shape,outer_diameter,inner_diameter,height,permeability,al\n"
 
 
@@ -220,6 +221,9 @@ def test_a_bad_capacitor_file_is_refused_by_row_and_column(
         ("formers.csv", FORMERS + "a,tube,1 mm,,\n", ["row 2", "winding_length"]),
         ("formers.csv", FORMERS + "a,tube,1 mm,1 mm,0 mm\n", ["row 2", "pitch"]),
         ("formers.csv", FORMERS + "a,tube,1 mm,1 mm,close\n", ["row 2", "pitch"]),
+        ("formers.csv", LOSSY + "a,1 mm,1 mm,-0.01\n", ["row 2", "loss_tangent"]),
+        ("formers.csv", LOSSY + "a,1 mm,1 mm,2\n", ["row 2", "loss_tangent", "above 0.5"]),
+        ("formers.csv", LOSSY + "a,1 mm,1 mm,nan\n", ["row 2", "loss_tangent"]),
         ("cores.csv", CORES + "a,,10 mm,10 mm,4 mm,9,\n", ["row 2", "inner_diameter"]),
         ("cores.csv", CORES + "a,,10 mm,,4 mm,9,\n", ["row 2", "inner_diameter"]),
         ("cores.csv", CORES + "a,ring,10 mm,5 mm,0 mm,9,\n", ["row 2", "height"]),
@@ -428,8 +432,9 @@ def test_coils_take_and_say_their_defaults(drawer: Drawer) -> None:
     (coil,), (former,), (ferrite, powder) = parts.inductors, parts.formers, parts.cores
     assert (coil.tolerance, coil.q, coil.self_capacitance, coil.tempco) == (0.1, None, None, None)
     assert (former.support, former.tolerance, former.tempco) == ("tube", 0.01, pytest.approx(100e-6))
+    assert former.loss_tangent == 0.01 and "loss_tangent not stated: 0.01 taken for a tube former" in former.notes[3]
     assert (ferrite.tolerance, powder.tolerance) == (0.20, 0.05)
-    assert [len(part.notes) for part in (coil, former, ferrite)] == [3, 3, 3]
+    assert [len(part.notes) for part in (coil, former, ferrite)] == [3, 4, 3]
 
 
 # ---------------------------------------------------------------- labels

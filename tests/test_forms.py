@@ -255,9 +255,48 @@ def test_losses_by_cause_add_up_to_q() -> None:
         coils = wound(form, 300e3, *parts)
         causes = coils.loss_by_cause(0, 0)
         assert sum(loss or 0.0 for loss in causes.values()) == pytest.approx(1 / coils.q[0, 0]), form
-        assert causes["former"] is None
+        assert None not in causes.values()
         below, above = coils.q_spread[0]
         assert 0 < below < 1 and above >= 0, form
+
+
+def test_the_loss_in_a_former_by_hand() -> None:
+    """20 turns at pitch 1 mm on 20 mm: w^2 L C p tan d with the coil's own L, Medhurst's C and Knight's share.
+
+    l/D = 20/20.544, H = 0.46 pF/cm near l/D = 1 (Medhurst 1947), so C = 0.945 pF; k = 1.820 at D/l = 1.0272, so
+    p = 2.56 k/(2 + 3.56 k) = 0.5495.
+    """
+    coils = wound("solenoid", 10e6, former(20, 40, 1.0, support="ribbed", loss_tangent=0.02), THICK)
+    place = of_turns(coils, 20)
+    expected = (2 * np.pi * 10e6) ** 2 * coils.inductance[place, 0] * 0.945e-12 * 0.5495 * 0.02
+    assert coils.loss_by_cause(place, 0)["former"] == pytest.approx(expected, rel=2e-3)
+
+
+def test_former_loss_follows_what_the_field_is_in() -> None:
+    """None in air and in a core's own Q; the tube's material decides; between layers it is the wire's covering."""
+    tube = {t: wound("solenoid", 7e6, former(20, 40, loss_tangent=t), THICK) for t in (0.0, 0.01, 0.02)}
+    loss = {t: coils.loss_by_cause(9, 0)["former"] for t, coils in tube.items()}
+    assert loss[0.0] == 0.0 and loss[0.02] == pytest.approx(2 * (loss[0.01] or 0.0))
+    assert tube[0.02].q[9, 0] < tube[0.01].q[9, 0] < tube[0.0].q[9, 0]
+    assert tube[0.02].q_spread[9, 1] > tube[0.0].q_spread[9, 1]
+    for form, support in {"ring core": core("ring", 20, 10, 7, permeability=9.0), "rod core": ROD}.items():
+        assert wound(form, 300e3, support, THICK).loss_by_cause(5, 0)["former"] == 0.0
+    layers = [wound("multilayer", 300e3, former(8, 18, loss_tangent=t), THIN) for t in (0.0, 0.1)]
+    both = [coils.loss_by_cause(9, 0)["former"] or 0.0 for coils in layers]
+    assert both[0] == both[1] > 0.0
+
+
+def test_idle_turns_of_a_tapped_coil_lose_in_the_former_too() -> None:
+    """Energy apart: half in the whole coil's field at the voltage that the idle turns swing to."""
+    coils = wound("solenoid", 7e6, former(20, 40, loss_tangent=0.02), THICK)
+    whole, turns = of_turns(coils, 30), 12
+    row, across = of_turns(coils, turns), coils.section_self_capacitance(of_turns(coils, 30), turns)
+    further = float(coils.section_loss(row, across)[0])
+    omega = 2 * np.pi * 7e6
+    conductance = omega * across * coils.loss_tangent[row]  # of the whole field, seen across the section
+    whole_loss = conductance * omega * coils.inductance[row, 0]
+    assert coils.loss_by_cause(row, 0)["former"] + further == pytest.approx(whole_loss)
+    assert further > 0.0 and coils.section_loss(whole, coils.self_capacitance[whole])[0] == 0.0
 
 
 def test_nobody_says_what_the_loss_of_a_bought_coil_is_made_of() -> None:

@@ -123,21 +123,52 @@ def test_the_decade_and_octave_ends_are_inside() -> None:
     assert np.isfinite(loss.bought_q(40.0, stated, stated * 2.0)).all()
 
 
-@given(st.floats(1e-4, 0.1), st.floats(0.0, 0.1), st.floats(0.0, 0.1), st.floats(0.0, 0.35))
-def test_q_bounds_enclose_the_nominal_q(skin_part: float, proximity_part: float, core: float, spread: float) -> None:
+@given(st.floats(1e-4, 0.1), *[st.floats(0.0, 0.1)] * 3, st.floats(0.0, 0.35))
+def test_q_bounds_enclose_the_nominal_q(
+    skin_part: float, proximity_part: float, core: float, former: float, spread: float
+) -> None:
     """And the upper one is never above what straight wire and core alone would give."""
-    nominal = 1.0 / (skin_part + proximity_part + core)
-    low, high = loss.q_bounds(skin_part, proximity_part, core, spread, 0.3)
+    nominal = 1.0 / (skin_part + proximity_part + core + former)
+    low, high = loss.q_bounds(skin_part, proximity_part, core, former, spread, 0.3)
     assert low < nominal <= high * (1 + 1e-12)
     assert high <= 1.0 / (skin_part + core) * (1 + 1e-12)
 
 
 def test_the_least_q_has_the_shortfall_of_measured_coils() -> None:
     """20 % below the copper's (common practice, no source), and the error of the proximity factor on top."""
-    low, high = loss.q_bounds(0.004, 0.001, 0.0, 0.10, 0.3)
+    low, high = loss.q_bounds(0.004, 0.001, 0.0, 0.0, 0.10, 0.3)
     assert low == pytest.approx(200.0 * 0.8 / 1.1)
     assert high == pytest.approx(200.0 / 0.9)
-    assert np.isnan(loss.q_bounds(0.004, 0.001, np.nan, 0.10, 0.3)).all()
+    assert np.isnan(loss.q_bounds(0.004, 0.001, np.nan, 0.0, 0.10, 0.3)).all()
+
+
+def test_a_lossy_former_takes_the_least_q_below_that_shortfall() -> None:
+    """A good former is inside the 20 %; a bad one is not: 10 % for leads and oxide, and twice its own loss."""
+    good, bad = (loss.q_bounds(0.004, 0.001, 0.0, former, 0.0, 0.3) for former in (1e-4, 0.002))
+    assert good[0] == pytest.approx(200.0 * 0.8)
+    assert 1 / bad[0] == pytest.approx(0.005 / 0.9 + 0.004)
+    assert good[1] == bad[1] == pytest.approx(200.0)
+
+
+def test_the_loss_of_a_former_by_hand() -> None:
+    """4 uH with 1.2 pF at 10 MHz, half of the field in plastic of 0.01: w^2 L C is 0.018950, so 9.475e-5."""
+    assert loss.dielectric_loss(4e-6, 1.2e-12, 10e6, 0.01, 0.5) == pytest.approx(9.475e-5, rel=1e-4)
+    assert loss.dielectric_loss(4e-6, 1.2e-12, 10e6, 0.0) == 0.0
+
+
+def test_a_network_with_a_lossy_former_has_the_width_that_its_loss_says() -> None:
+    """Computed apart: the phase slope of a lossless coil, 80 pF and a self-capacitance with a complex permittivity."""
+    inductance, across, own, share, tangent = 4e-6, 80e-12, 4e-12, 0.6, 0.02
+    resonance = 1 / (2 * np.pi * np.sqrt(inductance * (across + own)))
+
+    def admittance(frequency: float) -> complex:
+        omega = 2 * np.pi * frequency
+        return 1 / (1j * omega * inductance) + 1j * omega * (across + own * (1 - 1j * share * tangent))
+
+    step = resonance * 1e-6
+    slope = (admittance(resonance + step) - admittance(resonance - step)).imag / (2 * step)
+    q = resonance * slope / (2 * admittance(resonance).real)
+    assert 1 / q == pytest.approx(loss.dielectric_loss(inductance, own, resonance, tangent, share), rel=1e-6)
 
 
 def test_unknown_proximity_makes_the_loss_unknown() -> None:

@@ -50,6 +50,27 @@ def test_the_spread_reaches_from_air_to_solid_polystyrene(row: dict[str, str]) -
     assert float(row["polystyrene_picofarad_per_cm"]) <= nominal * (1.0 + above)
 
 
+@pytest.mark.parametrize("row", rows("self_capacitance.csv"), ids=lambda r: r["l_over_D"])
+def test_the_share_of_a_former_is_how_its_permittivity_raises_the_capacitance(row: dict[str, str]) -> None:
+    """Between air and polystyrene (Knight, from memory) the share's mean must raise C by the published ratio."""
+    ratio = float(row["l_over_D"])
+    permittivity = np.exp(np.linspace(0.0, np.log(2.56), 201))
+    share = self_capacitance.dielectric_share(ratio, permittivity)
+    rise = np.exp(np.trapezoid(share, np.log(permittivity)))
+    published = float(row["polystyrene_picofarad_per_cm"]) / float(row["air_picofarad_per_cm"])
+    assert rise == pytest.approx(published, rel=0.01)
+
+
+@given(st.floats(0.05, 60.0), st.floats(1.0, 10.0))
+def test_the_share_of_a_former_is_a_share(ratio: float, permittivity: float) -> None:
+    """Between 0 and 1, more in a better dielectric, less in a longer coil; no coil has none."""
+    share = self_capacitance.dielectric_share(ratio, permittivity)
+    assert 0.0 < share < 1.0
+    assert self_capacitance.dielectric_share(2 * ratio, permittivity) < share
+    assert self_capacitance.dielectric_share(ratio, 2 * permittivity) > share
+    assert np.isnan(self_capacitance.dielectric_share(0.0))
+
+
 @pytest.mark.parametrize("row", rows("self_resonance.csv"), ids=lambda r: r["N"])
 def test_self_resonance_agrees_with_the_published_form(row: dict[str, str]) -> None:
     """Four coils; the table's capacitance against the closed form, root of the difference."""

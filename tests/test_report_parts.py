@@ -23,7 +23,7 @@ def _catalogue(**parts: Any) -> Catalogue:
     wire = Wire(name="enamelled 0.5 mm", bare_diameter=0.5e-3, overall_diameter=0.542e-3)
     former = Former(
         name="tube 20 mm", support="tube", diameter=20e-3, winding_length=50e-3, pitch=None, tolerance=0.01,
-        tempco=1e-4, tempco_tolerance=5e-5, quantity=3, unit_price=0.8, source="invented",
+        tempco=1e-4, tempco_tolerance=5e-5, loss_tangent=0.01, quantity=3, unit_price=0.8, source="invented",
     )  # fmt: skip
     core = Core(
         name="ring 13 mm", shape="ring", outer_diameter=13e-3, inner_diameter=7.5e-3, height=5e-3,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import fields, replace
 
 import numpy as np
 import pytest
@@ -32,6 +32,8 @@ def random_sections(problem: Problem, seed: int) -> Sections:
         turns=turns,
         row=rng.integers(0, problem.coils, len(coil)),
         self_capacitance=rng.choice([1e-12, 2e-12], len(coil)),
+        further_loss=rng.choice([0.0, 1e-3], (len(coil), problem.bands)),
+        further_loss_low=rng.choice([0.0, 1e-3], (len(coil), problem.bands)),
         in_play=rng.random((len(coil), problem.bands)) < 0.9,
     )
 
@@ -46,8 +48,8 @@ def plain_columns(problem: Problem, sections: Sections, coil: int, band: int) ->
             wanted=problem.wanted[[row]],
             self_capacitance=sections.self_capacitance[[v]],
             in_play=sections.in_play[[v]],
-            coil_loss=problem.coil_loss[[row]],
-            coil_loss_low=problem.coil_loss_low[[row]],
+            coil_loss=problem.coil_loss[[row]] + sections.further_loss[[v]],
+            coil_loss_low=problem.coil_loss_low[[row]] + sections.further_loss_low[[v]],
             inductance_low=problem.inductance_low[[row]],
             reactance_class=problem.reactance_class[[row]],
             coil_tempco=problem.coil_tempco[[row]],
@@ -68,9 +70,7 @@ def test_tapped_plans_equal_plain_enumeration(shape: dict[str, int]) -> None:
 
         def some(coils: np.ndarray, every: Sections = every) -> Sections:
             kept = np.flatnonzero(np.isin(every.coil, coils))
-            return Sections(
-                every.coil[kept], every.turns[kept], every.row[kept], every.self_capacitance[kept], every.in_play[kept]
-            )
+            return Sections(*(getattr(every, field.name)[kept] for field in fields(every)))
 
         counts = np.bincount(every.coil, minlength=problem.coils)
         source = TappedSource(problem, some, counts)

@@ -40,19 +40,26 @@ class Losses:
     skin: Floats
     proximity: Floats
     core: Floats  # 0 in air
+    former: Floats  # 0 without one; in layers, of what lies between them
 
     @property
     def q(self) -> Floats:
         """Q of all of them together; unknown if one is."""
-        return 1.0 / (self.skin + self.proximity + self.core)
+        return 1.0 / (self.skin + self.proximity + self.core + self.former)
 
     def in_core(self, share: Floats, core_q: Floats) -> Losses:
         """Return the losses of the same winding with a core, where it has `share` of the inductance."""
-        return Losses(skin=self.skin * share, proximity=self.proximity * share, core=1.0 / core_q)
+        copper = self.skin * share, self.proximity * share
+        return Losses(skin=copper[0], proximity=copper[1], core=1.0 / core_q, former=self.former)
+
+    def with_former(self, loss: Floats) -> Losses:
+        """Return the losses of the same winding on a former that takes `loss` of 1/Q, (J, B)."""
+        return Losses(skin=self.skin, proximity=self.proximity, core=self.core, former=loss)
 
     def q_spread(self, copper_spread: Floats) -> Floats:
         """Return by which fraction Q may fall below and rise above the nominal, at worst, (J, 2)."""
-        low, high = q_bounds(self.skin, self.proximity, self.core, copper_spread[:, None], CORE_LOSS_SPREAD)
+        causes = self.skin, self.proximity, self.core, self.former
+        low, high = q_bounds(*causes, copper_spread[:, None], CORE_LOSS_SPREAD)
         both = np.stack([1.0 - low / self.q, high / self.q - 1.0])
         worst: Floats = np.fmax.reduce(both, axis=2, initial=np.nan)  # nan only where no band is known
         return worst.T
@@ -61,7 +68,7 @@ class Losses:
 def no_losses(coils: int, bands: int) -> Losses:
     """Return losses that nobody knows."""
     unknown = np.full((coils, bands), np.nan)
-    return Losses(skin=unknown, proximity=unknown, core=unknown)
+    return Losses(skin=unknown, proximity=unknown, core=unknown, former=unknown)
 
 
 def _nothing_to_say(_row: int, _frequency: float) -> tuple[str, ...]:
@@ -90,6 +97,7 @@ class Block:
     q: Floats  # (J, B) nan: unknown
     losses: Losses
     self_capacitance: Floats  # F
+    loss_tangent: Floats  # of the self-capacitance: of the former, by the share of the field in it; 0 without one
     spread: Floats  # fraction of the inductance
     q_spread: Floats  # (J, 2) fraction below and above, nan: unknown
     self_capacitance_spread: Floats  # (J, 2) fraction below and above, nan: unknown

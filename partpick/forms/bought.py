@@ -50,6 +50,7 @@ def bought_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         q=stacked([bought_q(q, q_frequency, f) for f in frequency], count),
         losses=no_losses(count, len(frequency)),
         self_capacitance=column([part.self_capacitance or 0.0 for part in parts]),
+        loss_tangent=none,  # its Q is known as a whole
         spread=column([part.tolerance for part in parts]),
         q_spread=either_way(np.where(np.isfinite(q), BOUGHT_Q_SPREAD, np.nan)),
         self_capacitance_spread=either_way(

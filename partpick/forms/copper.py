@@ -95,9 +95,16 @@ class WireColumns:
 
 
 def losses_of(
-    frequency: Floats, inductance: Floats, copper: Sequence[CopperLoss], core_q: Sequence[Floats] | None = None
+    frequency: Floats,
+    inductance: Floats,
+    copper: Sequence[CopperLoss],
+    core_q: Sequence[Floats] | None = None,
+    former: Floats | None = None,
 ) -> Losses:
-    """Return losses as shares of 1/Q, (J, B), from resistance and the core's own Q at each frequency."""
+    """Return losses as shares of 1/Q, (J, B), from resistance and the core's own Q at each frequency.
+
+    Without a core or a `former` to lose anything those parts are 0.
+    """
     reactance = 2 * np.pi * frequency[None, :] * inductance
     coils = len(inductance)
     core = np.zeros(reactance.shape)
@@ -107,6 +114,7 @@ def losses_of(
         skin=stacked([loss.skin for loss in copper], coils) / reactance,
         proximity=stacked([loss.proximity for loss in copper], coils) / reactance,
         core=core,
+        former=np.zeros(reactance.shape) if former is None else former,
     )
 
 

@@ -42,6 +42,7 @@ def measured_block(rules: CoilRules, frequency: Floats) -> Block:
         q=unknown,
         losses=no_losses(1, len(frequency)),
         self_capacitance=self_capacitance * one,
+        loss_tangent=none,
         spread=MEASURED_SPREAD * one,
         q_spread=either_way(np.full(1, np.nan)),
         self_capacitance_spread=either_way(np.full(1, np.nan)),

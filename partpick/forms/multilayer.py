@@ -26,6 +26,7 @@ from partpick.forms.copper import ABOVE_STRANDED, WireColumns, few_gauges, losse
 from partpick.forms.solenoid import former_support, turns_in_words
 from partpick.parts import Catalogue, Former, Wire
 from partpick.physics.geometry import layered_wire_length
+from partpick.physics.loss import COVERING_LOSS_TANGENT, dielectric_loss
 from partpick.physics.multilayer import (
     OUTSIDE_SPREAD,
     multilayer_inductance,
@@ -60,7 +61,13 @@ def multilayer_block(catalogue: Catalogue, frequency: Floats, units: int) -> Blo
     length = column([_length(former) for former in formers])[support]
     coil = _Section(turns, tube, length, sizes)
     inductance = at_every(coil.inductance, frequency)
-    losses = coil.losses(frequency, inductance)
+    self_capacitance = layered_self_capacitance(
+        coil.mean, length, coil.layers, layer_distance(sizes.bare, sizes.overall)
+    )
+    # The field stands between the layers, in the covering of the wire; hardly any of it is in the tube.
+    losses = coil.losses(frequency, inductance).with_former(
+        dielectric_loss(inductance, self_capacitance[:, None], frequency[None, :], COVERING_LOSS_TANGENT)
+    )
 
     def label(row: int) -> str:
         former, used = formers[support[row]], catalogue.wires[wire[row]]
@@ -85,9 +92,8 @@ def multilayer_block(catalogue: Catalogue, frequency: Floats, units: int) -> Blo
         inductance=inductance,
         q=losses.q,
         losses=losses,
-        self_capacitance=layered_self_capacitance(
-            coil.mean, length, coil.layers, layer_distance(sizes.bare, sizes.overall)
-        ),
+        self_capacitance=self_capacitance,
+        loss_tangent=np.full(len(turns), COVERING_LOSS_TANGENT),
         spread=coil.spread(column([former.tolerance for former in formers])[support]),
         q_spread=losses.q_spread(np.full(len(turns), LAYERED_RESISTANCE_SPREAD)),
         self_capacitance_spread=either_way(np.full(len(turns), LAYERED_SPREAD)),

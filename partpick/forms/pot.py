@@ -23,6 +23,7 @@ from partpick.forms.solenoid import turns_in_words
 from partpick.parts import Catalogue, Core, Wire
 from partpick.physics.cores import core_inductance
 from partpick.physics.geometry import layered_wire_length, window_turns_that_fit
+from partpick.physics.loss import COVERING_LOSS_TANGENT, dielectric_loss
 from partpick.physics.pot_core import pot_window
 from partpick.physics.self_capacitance import (
     LAYERED_SPREAD,
@@ -58,15 +59,17 @@ def pot_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     inductance = at_every(low_frequency, frequency)
     field = window_field(turns, window.width, layers)
     resistance = sizes.dc_resistance(wire_length)
+    mean = window.inner_diameter + depth
+    layered = layered_self_capacitance(mean, window.width, layers, layer_distance(sizes.bare, sizes.overall))
+    self_capacitance = np.where(layers >= 2, layered, ring_self_capacitance(outer))
+    covering = np.where(layers >= 2, COVERING_LOSS_TANGENT, 0.0)  # the core's Q has the field of a single layer
     losses = losses_of(
         frequency,
         inductance,
         [sizes.many_layers(resistance, float(f), field) for f in frequency],
         [core_ceiling(cores, float(f))[support] for f in frequency],
+        dielectric_loss(inductance, self_capacitance[:, None], frequency[None, :], covering[:, None]),
     )
-    mean = window.inner_diameter + depth
-    distance = layer_distance(sizes.bare, sizes.overall)
-    layered = layered_self_capacitance(mean, window.width, layers, distance)
     none = np.zeros(len(turns))
 
     def label(row: int) -> str:
@@ -92,7 +95,8 @@ def pot_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         inductance=inductance,
         q=losses.q,
         losses=losses,
-        self_capacitance=np.where(layers >= 2, layered, ring_self_capacitance(outer)),
+        self_capacitance=self_capacitance,
+        loss_tangent=covering,
         spread=column([core.tolerance for core in cores])[support],
         q_spread=losses.q_spread(np.full(len(turns), LAYERED_RESISTANCE_SPREAD)),
         self_capacitance_spread=either_way(np.full(len(turns), LAYERED_SPREAD)),

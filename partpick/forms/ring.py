@@ -49,6 +49,7 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     factor = endless_proximity_factor(sizes.bare / pitch)
     resistance = sizes.dc_resistance(wire_length)
     endless, many = np.full(len(turns), np.inf), np.ones(len(turns))
+    # no former: what the ring's own material takes of the electric field is in the Q that it reaches
     losses = losses_of(
         frequency,
         inductance,
@@ -91,6 +92,7 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         q=losses.q,
         losses=losses,
         self_capacitance=ring_self_capacitance(outer),
+        loss_tangent=none,
         spread=ring_spread(column([core.tolerance for core in cores])[support], permeability, leak),
         q_spread=losses.q_spread(
             np.where(sizes.stranded, STRANDED_RESISTANCE_SPREAD, RING_COPPER_SPREAD)

@@ -59,6 +59,7 @@ def rod_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     in_air, air_losses = coil.at(frequency, empty)
     inductance = low_frequency[:, None] - (empty[:, None] - in_air)
     ceiling = np.stack([core_ceiling(cores, float(f))[support] for f in frequency], axis=1)
+    # no former: what the rod takes of the electric field is in the Q that it reaches
     losses = air_losses.in_core(in_air / inductance, ceiling)
     spread = np.where(measured, rods.tolerance, _spread(coil, rods, empty, rise, low_frequency, inside))
     below, above = self_capacitance_spread(coil.l_over_d)
@@ -88,6 +89,7 @@ def rod_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         q=losses.q,
         losses=losses,
         self_capacitance=solenoid_self_capacitance(coil.mean, coil.l_over_d),
+        loss_tangent=np.zeros(len(turns)),
         spread=spread,
         q_spread=losses.q_spread(np.maximum(coil.copper_spread, ROD_COPPER_SPREAD)),
         self_capacitance_spread=np.maximum(np.stack([below, above], axis=1), WIDER_CAPACITANCE),

@@ -25,8 +25,9 @@ from partpick.forms.block import (
 from partpick.forms.copper import ABOVE_STRANDED, WireColumns, losses_of
 from partpick.parts import Catalogue, Former, Wire
 from partpick.physics.geometry import solenoid_wire_length
+from partpick.physics.loss import dielectric_loss
 from partpick.physics.proximity import few_turns_factor, proximity_factor_spread, solenoid_proximity_factor
-from partpick.physics.self_capacitance import solenoid_self_capacitance
+from partpick.physics.self_capacitance import dielectric_share, solenoid_self_capacitance
 from partpick.physics.self_capacitance import solenoid_spread as self_capacitance_spread
 from partpick.physics.skin import internal_inductance_ratio
 from partpick.physics.solenoid import high_frequency_inductance, solenoid_families
@@ -81,7 +82,12 @@ def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block
     outside = column([former.diameter for former in formers])[support]
     dc = _family_inductances(formers, catalogue.wires, layouts)
     coil = SingleLayer(turns, outside + sizes.overall, pitch, sizes)
-    inductance, losses = coil.at(frequency, dc)
+    inductance, copper = coil.at(frequency, dc)
+    self_capacitance = solenoid_self_capacitance(coil.mean, coil.l_over_d)
+    held = dielectric_share(coil.l_over_d) * column([former.loss_tangent for former in formers])[support]
+    losses = copper.with_former(
+        dielectric_loss(inductance, self_capacitance[:, None], frequency[None, :], held[:, None])
+    )
     lays = [_lay(former) for former in formers]
     springback = np.array([SPRINGBACK if lay == "mandrel" else 0.0 for lay in lays])[support]
     tolerance = np.hypot(column([former.tolerance for former in formers])[support], springback)
@@ -110,7 +116,8 @@ def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block
         inductance=inductance,
         q=losses.q,
         losses=losses,
-        self_capacitance=solenoid_self_capacitance(coil.mean, coil.l_over_d),
+        self_capacitance=self_capacitance,
+        loss_tangent=held,
         spread=coil.spread(coil.diameter_tolerance(outside, tolerance), pitch_tolerance, dc, inductance),
         q_spread=losses.q_spread(coil.copper_spread),
         self_capacitance_spread=np.stack(self_capacitance_spread(coil.l_over_d), axis=1),
@@ -208,7 +215,7 @@ class SingleLayer:
         return solenoid_wire_length(self.turns, self.mean, self.pitch)
 
     def at(self, frequency: Floats, dc: Floats) -> tuple[Floats, Losses]:
-        """Return inductance, (J, B), and losses at each frequency."""
+        """Return inductance, (J, B), and losses in the wire at each frequency."""
         factor = solenoid_proximity_factor(self.turns, self.wire.bare / self.pitch, self.l_over_d)
         few = few_turns_factor(self.turns)
         resistance = self.wire.dc_resistance(self.wire_length)

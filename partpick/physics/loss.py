@@ -1,4 +1,4 @@
-"""Loss of coils, kept apart by cause: skin effect, proximity of turns or strands, core.
+"""Loss of coils, kept apart by cause: skin effect, proximity of turns or strands, core, former.
 
 Skin effect from `skin.py`, the high-frequency proximity factor from `proximity.py`; here they become the
 resistance and Q of solenoids, rings and bought inductors; stranded wire and layers stand in `stranded.py`.
@@ -17,7 +17,12 @@ from partpick.physics.skin import skin_ratio, transverse_loss_ratio
 FloatArray = NDArray[np.float64]
 
 # Measured Q lies 10 to 20 % below the copper's alone: former, leads, oxide (common practice, no source).
+LEAST_Q_SHORTFALL: Final = 0.10
 LARGEST_Q_SHORTFALL: Final = 0.20
+# Enamel, paper and varnish between layers have 0.005 to 0.02 (common practice, from memory).
+COVERING_LOSS_TANGENT: Final = 0.01
+# Plastics of one name lose up to twice as much as each other (common practice, no source).
+FORMER_LOSS_SPREAD: Final = 1.0
 # Bought inductors: the Q of the data row is a working figure (common practice, no source).
 BOUGHT_Q_SPREAD: Final = 0.30
 # A material's reachable Q is a working figure too (common practice, no source).
@@ -163,6 +168,49 @@ def ring_resistance(dc_resistance: ArrayLike, a_over_delta: ArrayLike, d_over_s:
     return solenoid_resistance(dc_resistance, a_over_delta, endless_proximity_factor(d_over_s))
 
 
+def dielectric_loss(
+    inductance: ArrayLike,
+    capacitance: ArrayLike,
+    frequency: ArrayLike,
+    loss_tangent: ArrayLike,
+    share: ArrayLike = 1.0,
+) -> FloatArray:
+    """Return what a coil's own electric field loses in its former, as its share of 1/Q.
+
+    Parameters
+    ----------
+    inductance : float or (n,) array
+        Inductance. [H]
+    capacitance : float or (n,) array
+        Self-capacitance across it. [F]
+    frequency : float or (n,) array
+        At which the coil is used, well below its self-resonance. [Hz]
+    loss_tangent : float or (n,) array
+        Of the former's material, 0 in air. [-]
+    share : float or (n,) array
+        Of the field's energy in that material, 0 to 1 (`dielectric_share`). [-]
+
+    Returns
+    -------
+    loss : float or (n,) array
+        1/Q by this cause alone, 0 in air. [-]
+
+    Notes
+    -----
+    The self-capacitance C has the conductance G = w C p tan d across it; in the tank it takes
+    G w L = w^2 L C p tan d of 1/Q, whatever other capacitance there is. Loss tangents are known within a
+    factor of two (`FORMER_LOSS_SPREAD`).
+
+    References
+    ----------
+    Definition of the loss tangent: F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 2
+    (from memory); the share of the field in it: own derivation.
+    """
+    omega = 2.0 * np.pi * np.asarray(frequency, float)
+    field = np.asarray(capacitance, float) * np.asarray(share, float) * np.asarray(loss_tangent, float)
+    return (omega**2 * np.asarray(inductance, float) * field)[()]
+
+
 def combined_q(*q: ArrayLike) -> FloatArray:
     """Return the Q of losses that add up in one reactance, such as copper and core.
 
@@ -225,7 +273,12 @@ def bought_q(q: ArrayLike, q_frequency: ArrayLike | None, frequency: ArrayLike) 
 
 
 def q_bounds(
-    skin: ArrayLike, proximity: ArrayLike, core: ArrayLike, copper_spread: ArrayLike, core_spread: ArrayLike
+    skin: ArrayLike,
+    proximity: ArrayLike,
+    core: ArrayLike,
+    former: ArrayLike,
+    copper_spread: ArrayLike,
+    core_spread: ArrayLike,
 ) -> tuple[FloatArray, FloatArray]:
     """Return the least and the greatest Q to expect of a coil whose losses were computed by cause.
 
@@ -237,6 +290,8 @@ def q_bounds(
         What neighbouring turns, strands and layers add. [-]
     core : float or (n,) array
         Loss of the core; 0 for an air coil. [-]
+    former : float or (n,) array
+        Loss of the former; 0 for a coil without one. [-]
     copper_spread : float or (n,) array
         Relative error of the copper resistance (`proximity_factor_spread`). [-]
     core_spread : float or (n,) array
@@ -250,8 +305,9 @@ def q_bounds(
     Notes
     -----
     An error e of the proximity factor moves the copper's resistance by at most e, and never below the skin
-    part. The lower bound also has the shortfall of measured coils, 20 % of the copper's Q. A core's Q is a
-    ceiling: its loss is at least the nominal.
+    part. Measured coils are 10 to 20 % below their copper's Q, the former's loss included: the lower bound is
+    the worse of 20 %, and of 10 % (leads, oxide) with twice the former's loss. The upper bound has none of
+    that: a hollow former may lose next to nothing. A core's Q is a ceiling: its loss is at least the nominal.
 
     References
     ----------
@@ -259,6 +315,8 @@ def q_bounds(
     """
     straight, heat = np.asarray(skin, float), np.asarray(core, float)
     copper, error = straight + np.asarray(proximity, float), np.asarray(copper_spread, float)
-    most = copper * (1.0 + error) / (1.0 - LARGEST_Q_SHORTFALL) + heat * (1.0 + np.asarray(core_spread, float))
+    thick, field = copper * (1.0 + error), np.asarray(former, float) * (1.0 + FORMER_LOSS_SPREAD)
+    most = np.maximum(thick / (1.0 - LARGEST_Q_SHORTFALL), thick / (1.0 - LEAST_Q_SHORTFALL) + field)
+    most = most + heat * (1.0 + np.asarray(core_spread, float))
     least = np.maximum(copper * (1.0 - error), straight) + heat
     return (1.0 / most)[()], (1.0 / least)[()]

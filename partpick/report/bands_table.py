@@ -21,6 +21,7 @@ from partpick.result import BandFigures, Candidate, PartLine
 
 LONGEST_NAME = 14
 OHM = "\u03a9"
+LEAST_SHARE = 0.005  # of the loss, that is worth a word at the bench
 CAUSES = ("skin", "proximity", "core", "former", "capacitors", "trimmer", "tuning")
 PARTED = 0.001  # of the frequency: the least floor
 _INDENT = 2
@@ -143,7 +144,8 @@ def _loss_in_words(band: BandFigures) -> str:
     if loss.get("skin") is None:  # of a bought coil nobody says what its loss is made of
         causes.insert(0, "coil")
     shares = [(cause, loss[cause] / total) for cause in causes if loss[cause]]
-    return "loss: " + ", ".join(f"{cause} {format_percent(share, 2)}" for cause, share in shares)
+    worth = [(cause, share) for cause, share in shares if share >= LEAST_SHARE]
+    return "loss: " + ", ".join(f"{cause} {format_percent(share, 2)}" for cause, share in worth)
 
 
 def _parted_resonances(band: BandFigures) -> str:

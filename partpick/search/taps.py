@@ -27,6 +27,8 @@ class Sections:
     turns: Ints
     row: Ints  # of the problem: the coil of as many turns, whose inductance and loss the section has
     self_capacitance: Floats  # F across the section, the idle turns included
+    further_loss: Floats  # (v, B) 1/Q, what the idle turns lose beyond the loss of `row`
+    further_loss_low: Floats  # (v, B) at the lower end of swept bands
     in_play: Bools  # (v, B)
 
 
@@ -102,10 +104,10 @@ def section_problem(problem: Problem, sections: Sections) -> Problem:
         wanted=problem.wanted[row],
         self_capacitance=sections.self_capacitance,
         in_play=sections.in_play,
-        coil_loss=problem.coil_loss[row],
+        coil_loss=problem.coil_loss[row] + sections.further_loss,
         reactance_class=problem.reactance_class[row],
         inductance_low=problem.inductance_low[row],
-        coil_loss_low=problem.coil_loss_low[row],
+        coil_loss_low=problem.coil_loss_low[row] + sections.further_loss_low,
         coil_tempco=problem.coil_tempco[row],
         coil_tempco_spread=problem.coil_tempco_spread[own],
         effort=problem.effort[own],
