@@ -6,6 +6,7 @@ import csv
 import io
 import json
 import math
+import re
 from dataclasses import replace
 from functools import cache
 from pathlib import Path
@@ -18,6 +19,7 @@ from workbench import run
 import partpick
 from partpick.planfile import request_from_tables
 from partpick.report.dial import STEPS, Dial, dial_of, dials
+from partpick.report.pictures import pictures
 from partpick.request import Tuning
 from partpick.result import BandFigures, Candidate, Result
 
@@ -191,3 +193,23 @@ def test_nothing_fits_leaves_a_chart_without_points(tmp_path: Path, monkeypatch:
     done = run(*PAIR, "--excess", "0.01 %", "--dial", "-")
     assert done.code == 1
     assert done.out.startswith("band,") and done.out.count("\n") == 1
+
+
+def test_the_sheet_draws_what_the_chart_says() -> None:
+    """One curve a band, drawn through the points of the chart: its scale is theirs."""
+    pytest.importorskip("matplotlib")
+    result = solved()
+    drawn = {picture.title: picture.drawing or "" for picture in pictures(result, result.candidates[0])}
+    curve = drawn["Tuning: frequency against setting"]
+    (dial,) = dials(result)
+    line = re.findall(r'<path d="([^"]*)"[^>]*style="fill: none; stroke: #2f7ed8', curve)[0]  # the legend has another
+    x, y = np.array([[float(n) for n in pair.split()] for pair in re.findall(r"[\d.]+ [\d.]+", line)]).T
+    settings = np.array([point.setting for point in dial.points])
+    frequencies = np.array([point.frequency for point in dial.points])
+    assert len(x) >= 0.8 * len(settings), "points may fall together, no more"
+    x, y = x[np.argsort(x)], y[np.argsort(x)]
+    drawn_law = np.interp(np.linspace(0, 1, 9), (x - x.min()) / np.ptp(x), (y.max() - y) / np.ptp(y))
+    order = np.argsort(settings)
+    share = (settings[order] - settings.min()) / np.ptp(settings)
+    law = np.interp(np.linspace(0, 1, 9), share, (frequencies[order] - frequencies.min()) / np.ptp(frequencies))
+    assert drawn_law == pytest.approx(law, abs=0.01)

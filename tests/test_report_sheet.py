@@ -172,7 +172,7 @@ def test_pictures_bring_neither_rules_nor_equal_names_into_the_page() -> None:
     """Two pictures stand in one page: a name that both use would draw one with the other's shapes."""
     pytest.importorskip("matplotlib")
     named = replace(handmade.two_bands(), bands=(handmade.band("$\\frac{a}{b} <i>", 7.1e6, 118e-12, ["C1", "C2"]),))
-    drawn = [picture.drawing or "" for picture in pictures(named)]
+    drawn = [picture.drawing or "" for picture in pictures(plan(named), named)]
     assert len(drawn) == 2 and all("<svg" in drawing for drawing in drawn)
     names = [set(re.findall(r'id="([^"]*)"', drawing)) for drawing in drawn]
     assert names[0] and not names[0] & names[1]
@@ -228,9 +228,17 @@ for (const width of [360, 688]) {
 @pytest.mark.skipif(shutil.which("chromium") is None, reason="chromium is not installed")
 def test_nothing_is_clipped_on_a_phone_or_on_paper(tmp_path: Path) -> None:
     """No element and no word of a drawing reaches beyond 360 px, nor beyond A4 less its margins; it prints."""
+    swept = handmade.swept_band()
     long = "Weatherforecastreceiverwithoutanyblank " * 2
     own = handmade.two_bands()
-    own = replace(own, bands=tuple(replace(band, name=long, contacts=("S1", "S12")) for band in own.bands))
+    load = {"load": {"loaded_q": 37.2, "damping_resistor_ohm": 12e3}}
+    own = replace(
+        own,
+        bands=(
+            *(replace(band, name=long, contacts=("S1", "S12"), extra={**band.extra, **load}) for band in own.bands),
+            replace(swept, bandwidth=234e3, drift=-120e-6, extra={**swept.extra, **load}),
+        ),
+    )
     (tmp_path / "sheet.html").write_text(sheet(plan(own, title=long)), encoding="utf-8")
     script = _MEASURE.replace("PAGE", json.dumps(sheet(plan(own, title=long))).replace("</", "<\\/"))
     (tmp_path / "measure.html").write_text(

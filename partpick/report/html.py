@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from html import escape
 
 from partpick.report.text import clean
+
+UNIT = re.compile(r"(?<=\d) (?=[^\s\d]*(?:Hz|F|H|\u03a9|%|V|A|W|ppm)\b|%)")  # a figure stays with its unit
 
 
 def text(words: str) -> str:
@@ -57,6 +60,7 @@ def table(head: Sequence[str], rows: Sequence[Sequence[str]], figures: Sequence[
     def cell(name: str, place: int, words: str, **attributes: str) -> str:
         if place in figures:
             attributes["class_"] = "figure"
+            return element(name, UNIT.sub("\u00a0", text(words)), **attributes)
         return element(name, text(words), **attributes)
 
     top = "".join(cell("th", place, head[place], scope="col") for place in kept)

@@ -1,4 +1,4 @@
-"""Pictures that need matplotlib, the extra `plot`: the response of each tank as an inline SVG.
+"""Pictures that need matplotlib, the extra `plot`, as inline SVG: response of each tank, tuning of swept bands.
 
 The same result gives the same bytes: no date, and names inside the picture from a fixed salt.
 """
@@ -8,13 +8,14 @@ from __future__ import annotations
 import io
 import re
 import warnings
-from collections.abc import Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
+from partpick.report.dial import Dial, dials
 from partpick.report.text import clean, cut
-from partpick.result import BandFigures, Candidate
+from partpick.result import BandFigures, Candidate, Result
 
 LONGEST_NAME = 22
 POINTS = 1201
@@ -31,18 +32,26 @@ class Picture:
     drawing: str | None
 
 
-def pictures(candidate: Candidate) -> tuple[Picture, ...]:
+def pictures(result: Result, candidate: Candidate) -> tuple[Picture, ...]:
     """Return the pictures of a candidate; each without its drawing where matplotlib is not installed."""
-    bands = [band for band in candidate.bands if band.resonance is not None and band.q is not None]
-    if not bands:
+    fixed = [band for band in candidate.bands if band.resonance is not None and band.q is not None]
+    charts = [dial for dial in dials(replace(result, candidates=(candidate,))) if len(dial.points) > 1]
+    wanted: list[tuple[str, Callable[[], str]]] = []
+    if fixed:
+        wanted += [
+            ("Response, all bands", lambda: _wide(fixed)),
+            ("Response near resonance", lambda: _near(fixed)),
+        ]
+    if charts:
+        wanted.append(("Tuning: frequency against setting", lambda: _tuning(charts)))
+    if not wanted:
         return ()
-    wide, near = "Response, all bands", "Response near resonance"
     try:
         import matplotlib as library
     except ImportError:
-        return Picture(wide, None), Picture(near, None)
+        return tuple(Picture(title, None) for title, _ in wanted)
     with _quiet_style(library):
-        return Picture(wide, _wide(bands)), Picture(near, _near(bands))
+        return tuple(Picture(title, draw()) for title, draw in wanted)
 
 
 @contextmanager
@@ -96,7 +105,7 @@ def _wide(bands: list[BandFigures]) -> str:
         axes.xaxis.set_major_formatter(lambda value, place: f"{value:g}")
         axes.xaxis.set_minor_formatter(lambda value, place: "")
 
-    return _picture(draw, "wide", bands)
+    return _picture(draw, "wide", [band.name for band in bands])
 
 
 def _near(bands: list[BandFigures]) -> str:
@@ -110,21 +119,39 @@ def _near(bands: list[BandFigures]) -> str:
             axes.plot(offset * 100, response, color=SHADES[place % len(SHADES)], linewidth=1.2)
         axes.set(xlabel="% off resonance", ylabel="dB", ylim=(-40, 2))
 
-    return _picture(draw, "near", bands)
+    return _picture(draw, "near", [band.name for band in bands])
 
 
-def _picture(draw: Any, salt: str, bands: list[BandFigures]) -> str:
+def _tuning(charts: list[Dial]) -> str:
+    from matplotlib.ticker import LogLocator, NullLocator
+
+    def draw(axes: Any) -> None:
+        for place, dial in enumerate(charts):
+            settings = [point.setting for point in dial.points]
+            frequencies = [point.frequency / 1e6 for point in dial.points]
+            axes.plot(settings, frequencies, color=SHADES[place % len(SHADES)], linewidth=1.2)
+        axes.set(xlabel=f"setting, {charts[0].unit}", ylabel="MHz")
+        if len(charts) > 1:
+            axes.set_yscale("log")
+            axes.yaxis.set_major_locator(LogLocator(subs=(1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 7.0)))
+            axes.yaxis.set_major_formatter(lambda value, place: f"{value:g}")
+            axes.yaxis.set_minor_locator(NullLocator())
+
+    return _picture(draw, "tuning", [dial.band for dial in charts])
+
+
+def _picture(draw: Any, salt: str, lines: list[str]) -> str:
     """Return an SVG to stand in a page, its names made different from those of any other picture."""
     from matplotlib.backends.backend_svg import FigureCanvasSVG
     from matplotlib.figure import Figure
 
-    figure = Figure(figsize=(4.8, 3.2 + 0.2 * ((len(bands) + 1) // 2)), layout="constrained")
+    figure = Figure(figsize=(4.8, 3.2 + 0.2 * ((len(lines) + 1) // 2)), layout="constrained")
     FigureCanvasSVG(figure)
     axes = figure.subplots()
     figure.patch.set_alpha(0)
     axes.patch.set_alpha(0)
     draw(axes)
-    names = [cut(clean(band.name), LONGEST_NAME) for band in bands]
+    names = [cut(clean(name), LONGEST_NAME) for name in lines]
     for row, name in zip(axes.lines, names, strict=True):
         row.set_label(name if not name.startswith("_") else "\u200a" + name)  # one underscore hides a label
     for told in figure.legend(loc="outside lower center", ncols=2).get_texts():

@@ -58,7 +58,7 @@ def _candidate(result: Result, candidate: Candidate) -> list[str]:
         html.section("Readings to expect", *_readings(candidate)),
         html.section("Errors and tolerance", _errors(result, candidate)),
         html.section("At the stated drive", _stress(candidate)),
-        html.section("Response", _pictures(pictures(candidate))),
+        html.section("Response and tuning", _pictures(pictures(result, candidate))),
     ]
 
 
