@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from partpick.assessment import assess, recheck
+from partpick.audit import audit
 from partpick.built.outlook import outlook, with_outlook
 from partpick.candidates import Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
@@ -46,8 +47,14 @@ def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Mon
     ------
     RequestError
         The request asks for something that this version does not plan.
+    InternalError
+        The result does not hold against the request or its own figures; nothing is shown of it.
     """
-    monitor = monitor or Quiet()
+    return audit(_solved(request, catalogue, top, monitor or Quiet()), catalogue)
+
+
+def _solved(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) -> Result:
+    """Return the result of a request, with a word on why where nothing fits."""
     if span_of(request) is not None:
         _refuse_unplanned(with_bands(request, 1))
         return cover(request, catalogue, lambda made: _planned(made, catalogue, top, monitor), _again, monitor)

@@ -24,6 +24,7 @@ STAGES = [
     {"objective", "tapping"},
     {"circuit", "layouts", "assessment", "tank_figures", "tuning_range", "nothing_fits", "cover"},
     {"built", "conduction", "stress"},
+    {"audit"},
     {"solving"},
     {"report"},
     {"frames"},
