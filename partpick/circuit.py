@@ -142,11 +142,21 @@ class Tank:
         return self.across(low_end=low_end) + self.tuned(low_end=low_end) + self.strays + self.trimmer
 
     def weights(self, total: float, *, low_end: bool = False) -> list[tuple[Capacitor, float]]:
-        """Return each capacitor with d ln(total) / d ln(its own), the series padder last."""
+        """Return each capacitor with d ln(total) / d ln(its own), the series padder last.
+
+        The same figure weighs its loss and its drift: inductance in series, its own and that of the leads,
+        lets more current through it than its value alone would.
+        """
         chosen = [self.capacitors[i] for i in self.network.parts]
-        shares = network_shares([part.value for part in chosen], self.network.shape)
+        frequency = self.frequency(low_end=low_end)
+        acting = [float(effective_capacitance(c.value, c.series_inductance or 0.0, frequency)) for c in chosen]
+        shares = network_shares(acting, self.network.shape)
         across = self.across(low_end=low_end)
-        weighted = [(part, share * across / total) for part, share in zip(chosen, shares, strict=True)]
+        leads = across / _combine(acting, self.network.shape) if acting else 1.0
+        weighted = [
+            (part, share * acts / part.value * leads * across / total)
+            for part, share, acts in zip(chosen, shares, acting, strict=True)
+        ]
         if self.network.series is not None:
             padder, tuned = self.capacitors[self.network.series], self.tuned(low_end=low_end)
             weighted.append((padder, tuned / padder.value * tuned / total))

@@ -5,10 +5,9 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from partpick.circuit import Tank, network_capacitance, network_shares
+from partpick.circuit import Tank, network_capacitance
 from partpick.physics.loading import damping_resistance, loaded_q, rejection
 from partpick.physics.resonance import (
-    effective_capacitance,
     lossy_resonances,
     reactance,
     ringing_cycles,
@@ -50,7 +49,7 @@ def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
     q = tank.q()
     inductance, capacitance = tank.inductance(), tank.total()
     characteristic = float(reactance(inductance, capacitance))
-    series = None if q is None else characteristic * (1 / q + _further_loss(tank))
+    series = None if q is None else characteristic / q
     ringing = _ringing(inductance, capacitance, series, steepness(tank))
     figures: dict[str, object] = {"loss": loss_by_cause(tank), **ringing}
     if not tank.band.swept:
@@ -66,27 +65,7 @@ def tank_bandwidth(tank: Tank, resonance: float) -> float | None:
     q, unloaded = tank.q() if loaded is None else loaded.q, tank.q()
     if q is None or unloaded is None:
         return None
-    return resonance * (1 / q + _further_loss(tank)) / steepness(tank)
-
-
-def _further_loss(tank: Tank) -> float:
-    """Return what series inductance adds to the loss of the capacitors, as a share of 1/Q.
-
-    It lets more current through a capacitor than its value alone would: Q counts each by its value.
-    """
-    if tank.band.swept or not tank.network.parts:
-        return 0.0
-    frequency, total = tank.frequency(), tank.total()
-    parts = [tank.capacitors[i] for i in tank.network.parts]
-    acting = [float(effective_capacitance(c.value, c.series_inductance or 0.0, frequency)) for c in parts]
-    inner = network_capacitance(tank.capacitors, tank.network, frequency, 0.0)
-    leads = tank.across() / inner * tank.across() / total
-    exact = [
-        share * acts / part.value * leads
-        for part, acts, share in zip(parts, acting, network_shares(acting, tank.network.shape), strict=True)
-    ]
-    counted = [weight for _, weight in tank.weights(total)]
-    return math.fsum((x - w) / part.q for part, x, w in zip(parts, exact, counted, strict=True) if part.q)
+    return resonance / q / steepness(tank)
 
 
 def steepness(tank: Tank) -> float:

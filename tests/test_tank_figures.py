@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from functools import cache
 from typing import Any
 
@@ -203,3 +204,49 @@ def test_no_capacitor_near_its_own_resonance_is_offered() -> None:
     offered = [part for c in result.candidates for part in c.parts if part.kind == "capacitor"]
     assert offered
     assert all(omega**2 * inductance[part.description] * (part.value or 0.0) <= 0.25 for part in offered)
+
+
+@pytest.mark.parametrize(("at", "connect"), [("28.5 MHz", "parallel"), ("28.5 MHz", "any"), ("50 MHz", "any")])
+def test_q_counts_the_current_that_series_inductance_lets_through(at: str, connect: str) -> None:
+    """The tank built part by part, each with its inductance and loss, behind the leads: 1/Q is G X at resonance."""
+    tables: dict[str, Any] = {"band": [{"at": at}], "stray": {"inductance": "20 nH"}, "coil": {"forms": ["solenoid"]}}
+    tables["limits"] = {"parts_per_band": 3}
+    tables["capacitors"] = {"connect": connect, "grades": ["C0G"], "from": "100 pF"}
+    candidate = first(tables)
+    (band,) = candidate.bands
+    assert band.q is not None and band.coil_q is not None and band.capacitance is not None
+    omega = 2 * np.pi * band.resonance
+    by_label = {part.label: part for part in _catalogue().capacitors}
+    sweep = skrf.Frequency(band.resonance, band.resonance, 1, unit="Hz")
+    line = skrf.media.DefinedGammaZ0(sweep, z0=50.0)
+
+    def impedance(reference: str) -> complex:
+        (line_of,) = [part for part in candidate.parts if reference in part.reference.split()]
+        part = by_label[line_of.label if line_of.label in by_label else line_of.description]
+        loss = line.resistor(1 / (omega * part.value * (part.q or math.inf)))
+        built = loss ** line.inductor(part.series_inductance) ** line.capacitor(part.value) ** line.short()
+        return complex(built.z[0, 0, 0])
+
+    network = _impedance(band.connection, impedance)
+    coil = omega * band.inductance * (1j + 1 / band.coil_q)
+    fixed = 1j * omega * (band.stray + band.self_capacitance)
+    admittance = 1 / coil + 1 / (network + 1j * omega * 20e-9) + fixed
+    assert admittance.real * characteristic(band) == pytest.approx(1 / band.q, rel=2e-4)
+    assert abs(admittance.imag) < 1e-3 * omega * band.capacitance  # capacitance is that at the target
+    # not to be had by value alone
+    loss = band.extra["loss"]
+    assert isinstance(loss, dict)
+    share = (band.network or 0.0) / band.capacitance
+    assert loss["capacitors"] > 1.03 * share / 1000
+
+
+def _impedance(connection: str, of_part: Any) -> complex:
+    """Return the impedance of a network in words, such as `C1 | (C2 + C3)`."""
+    outer = re.sub(r"\([^()]*\)", lambda inner: inner[0].replace(" | ", "|").replace(" + ", "+"), connection)
+    if " + " in outer:
+        return sum(_impedance(term, of_part) for term in outer.split(" + "))
+    if " | " in outer:
+        return 1 / sum(1 / _impedance(term, of_part) for term in outer.split(" | "))
+    if outer.startswith("("):
+        return _impedance(outer[1:-1].replace("|", " | ").replace("+", " + "), of_part)
+    return complex(of_part(outer))

@@ -47,6 +47,7 @@ class Circuits:
         usable = np.isfinite(self.acting)
         self._usable = _with_blank(usable, True)
         self._value = _with_blank(np.where(usable, self.acting, 0.0), 0.0)
+        self._gain = _with_blank(problem.part_gain(), 1.0)
         self._loss = _with_blank(problem.part_loss, 0.0)
         self._tempco = _with_blank(problem.part_tempco, 0.0)
         self._spread = _with_blank(problem.part_tempco_spread, 0.0)
@@ -119,7 +120,8 @@ class Circuits:
         wanted = p.wanted[coil, band]
         total = np.maximum(network + strays + self._middle[band], 1e-30)
         error = np.sqrt(wanted / total) - 1.0
-        share = value / np.maximum(nominal, 1e-30)[:, None]
+        alone = np.maximum(nominal, 1e-30)  # behind leads what is in circuit grows faster than its parts
+        share = value / alone[:, None] * self._gain[where, parts] * (network / alone)[:, None]
         weight = share * (network / total)[:, None]
         loss = p.coil_loss[coil, band] + (weight * self._loss[where, parts]).sum(axis=1)
         loss = loss + self._middle[band] / total * p.trimmer_loss[band]

@@ -42,6 +42,7 @@ class ColumnSource:
             most = problem.most_parts if len(values) else 0
             self.tables.append(network_tables(values, most, problem.connect_any))
         self.grades = Grades(problem)
+        self.gain = problem.part_gain(), problem.part_gain(low_end=True)
         self._prepare()
 
     def _prepare(self) -> None:
@@ -50,13 +51,14 @@ class ColumnSource:
         self.levels = [
             problem.windows(parts) for parts in (0, 1)
         ]  # windows differ only by the share limit, which a band without capacitors is spared
-        self._swept = SweptColumns(problem, self.tables, self.valid, self.grades)
+        self._swept = SweptColumns(problem, self.tables, self.valid, self.grades, self.gain)
         self._least_excess = LeastExcess(problem, self.tables, self.valid)
 
     def sharing_tables(self, problem: Problem) -> ColumnSource:
         """Return a source for other coils with the same capacitors and bands."""
         other = ColumnSource.__new__(ColumnSource)
         other.problem, other.valid, other.tables, other.grades = problem, self.valid, self.tables, self.grades
+        other.gain = self.gain
         other._prepare()
         return other
 
@@ -168,7 +170,9 @@ class ColumnSource:
         total = network + strays + trimmer
         error = np.sqrt(wanted / total) - 1.0
         values = p.species[band][rows.species]
-        share_of_parts = network_weights(values, rows.shape, np.maximum(rows.value, 1e-30))
+        alone = np.maximum(rows.value, 1e-30)
+        share_of_parts = network_weights(values, rows.shape, alone) * self.gain[0][band][chosen]
+        share_of_parts *= (network / alone)[:, None]  # behind leads a network grows faster than its parts
         loss = self._loss(coil, band, chosen, share_of_parts * (network / total)[:, None], trimmer / total)
         keep = np.abs(error) <= p.error_limit[band] * (1 + 1e-12) + 1e-15
         if p.q_limit[band] > 0:

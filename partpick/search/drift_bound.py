@@ -27,13 +27,20 @@ def steady_enough(problem: Problem, parts: int) -> Bools:
     those of its grades and strays: a point of their convex hull. |nominal| + spread is at least
     t * nominal + spread for every t from -1 to 1, and that is least at a corner of the hull. The largest
     of these bounds over some t is taken. One part has one grade, so its hulls are taken grade by grade.
+    Inductance in series raises the weight of a part by up to the largest gain, so that each grade has a corner
+    without it and one with all of it.
     Swept bands and bands with a trimmer are left to the search.
     """
     p = problem
     grades = np.unique(np.stack([p.part_tempco, p.part_tempco_spread], axis=1), axis=0)
     ends = _stray_shares(p)
+    gains = _gains(p)
     of_grade = [
-        [(share * p.stray_tempco + (1.0 - share) * tempco, (1.0 - share) * spread) for share in ends]
+        [
+            (share * p.stray_tempco + (1.0 - share) * gain * tempco, (1.0 - share) * gain * spread)
+            for share in ends
+            for gain in gains
+        ]
         for tempco, spread in grades[np.isfinite(grades[:, 0])]
     ]
     strays_alone = [(np.full_like(p.wanted, p.stray_tempco), np.zeros_like(p.wanted))]
@@ -59,6 +66,17 @@ def _least_size(coil_tempco: Floats, corners: list[Corner]) -> Floats:
         lowest = np.min([slope * tempco + spread for tempco, spread in corners], axis=0)
         bound = np.maximum(bound, slope * coil_tempco + lowest)
     return bound
+
+
+def _gains(p: Problem) -> list[Floats]:
+    """Return the least and the largest factor by which inductance in series raises a part's weight, (J, B) each."""
+    gain = p.part_gain()
+    least, most = gain.min(axis=1, initial=1.0), gain.max(axis=1, initial=1.0)
+    if least.min(initial=1.0) == most.max(initial=1.0) and p.lead_inductance == 0:
+        return [np.ones(p.wanted.shape)]
+    largest = p.wanted / np.square(1.0 - np.minimum(p.error_limit, 1.0 - 1e-9))[None, :]
+    leads = 1.0 + ((2 * np.pi * p.frequency) ** 2 * p.lead_inductance)[None, :] * largest
+    return [np.broadcast_to(least, p.wanted.shape), most[None, :] * leads]
 
 
 def _stray_shares(p: Problem) -> tuple[Floats, Floats]:

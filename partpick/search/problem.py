@@ -116,6 +116,18 @@ class Problem:
             if getattr(self, name).size == 0:
                 object.__setattr__(self, name, value)
 
+    def part_gain(self, *, low_end: bool = False) -> Floats:
+        """Return d ln(as it acts) / d ln(its value) of each part, (B, P): above 1 with inductance in series.
+
+        A part C with Ls in series acts as C/(1 - w^2 Ls C), and the quotient of the two is this very slope. [-]
+        """
+        gain = np.ones((self.bands, len(self.part_value)))
+        for acting, options in zip((self.species_low if low_end else self.species).T, self.options, strict=True):
+            if options:
+                slope = acting / float(self.part_value[options[0]])
+                gain[:, list(options)] = np.where(np.isfinite(slope), slope, 1.0)[:, None]
+        return gain
+
     @property
     def inductance_high(self) -> Floats:
         """Inductance at the target, the upper end of a swept band, (J, B). [H]"""

@@ -38,12 +38,18 @@ class SweptColumns:
     """Makes the columns of swept bands on demand."""
 
     def __init__(
-        self, problem: Problem, tables: list[list[Table | Stream]], valid: list[Ints], grades: Grades
+        self,
+        problem: Problem,
+        tables: list[list[Table | Stream]],
+        valid: list[Ints],
+        grades: Grades,
+        gain: tuple[Floats, Floats],
     ) -> None:
         self.problem = problem
         self.tables = tables
         self.valid = valid
         self.grades = grades
+        self.gain, self.gain_low = gain
         self.fixed = problem.fixed_capacitance()
         self.most, self.need = problem.most_at_high_end, problem.least_at_low_end
         self.inductance_high = problem.inductance_high
@@ -135,8 +141,8 @@ class SweptColumns:
         keep &= excess <= p.excess_limit * (1 + _GRAIN)
         if chosen.shape[1]:
             keep &= strays <= high_end.total * p.share * (1 + _GRAIN)
-        at_low = self._weights(band, rows, across, behind, low_end, at_low_end=True)
-        at_high = self._weights(band, rows, across, behind, high_end, at_low_end=False)
+        at_low = self._weights(band, rows, across, chosen, behind, low_end, at_low_end=True)
+        at_high = self._weights(band, rows, across, chosen, behind, high_end, at_low_end=False)
         loss = np.maximum(  # the worse end, unknown if either is
             self._loss(band, p.coil_loss_low[coil, band], p.part_loss_low, chosen, at_low, low_end),
             self._loss(band, p.coil_loss[coil, band], p.part_loss, chosen, at_high, high_end),
@@ -184,20 +190,30 @@ class SweptColumns:
         )
 
     def _weights(
-        self, band: int, rows: Rows, across: Species, behind: bool, end: _End, *, at_low_end: bool
+        self,
+        band: int,
+        rows: Rows,
+        across: Species,
+        chosen: Ints,
+        behind: bool,
+        end: _End,
+        *,
+        at_low_end: bool,
     ) -> tuple[Floats, Floats]:
         """Return d ln(capacitance in circuit) / d ln of each part, (m, k), and of the element, (m,). [-]"""
         p = self.problem
         values = (p.species_low if at_low_end else p.species)[band]
         element = (p.tuning_high if at_low_end else p.tuning_low)[band]
         own = np.maximum(network_values(values[across], rows.shape), 1e-30)
-        weights = network_weights(values[across], rows.shape, own) * (end.network / end.total)[:, None]
+        gain = (self.gain_low if at_low_end else self.gain)[band][chosen]
+        leads = end.network / own  # behind leads a network grows faster than its parts
+        weights = network_weights(values[across], rows.shape, own) * (leads * end.network / end.total)[:, None]
         tuned = end.tuned / end.total
         if not behind:
-            return weights, tuned
+            return weights * gain, tuned
         of_element = end.tuned / element  # T in series with C: d ln / d ln T is C / (T + C)
         weights = np.concatenate([weights, (tuned * (1.0 - of_element))[:, None]], axis=1)
-        return weights, tuned * of_element
+        return weights * gain, tuned * of_element
 
     def _loss(
         self,

@@ -56,15 +56,27 @@ def acting(problem: Problem, network, frequency):
     return network / (1 - (2 * math.pi * frequency) ** 2 * problem.lead_inductance * network)
 
 
-def weights(parts, shape, c, net):
-    """Return d ln(net) / d ln(part) by a numerical derivative: nothing shared with the search."""
+def with_inductance(problem: Problem, part, acts, own):
+    """Return how a part would act with another value, its series inductance and the frequency as they are."""
+    squared = 1 / float(problem.part_value[part]) - 1 / acts  # w^2 Ls
+    return 1 / (1 / own - squared)
+
+
+def weights(problem: Problem, parts, shape, c, frequency):
+    """Return d ln(network) / d ln(a part's own value), all inductance in series counted, by a numerical derivative."""
+    own = [float(problem.part_value[p]) for p in parts]
+
+    def network(values):
+        acts = [with_inductance(problem, p, a, v) for p, a, v in zip(parts, c, values, strict=True)]
+        return acting(problem, value(shape, acts), frequency)
+
     out = []
     for i in range(len(parts)):
         step = 1e-6
-        up, down = list(c), list(c)
+        up, down = list(own), list(own)
         up[i] *= 1 + step
         down[i] *= 1 - step
-        rise = math.log(value(shape, up)) - math.log(value(shape, down))
+        rise = math.log(network(up)) - math.log(network(down))
         out.append(rise / (math.log1p(step) - math.log1p(-step)))
     return out
 
@@ -96,7 +108,7 @@ def band_columns(problem: Problem, coil: int, band: int):
         if any(count > problem.part_stock[p] for p, count in Counter(parts).items()):
             continue
         c = [problem.species[band][of_part[p]] for p in parts]
-        w = weights(parts, shape, c, raw)
+        w = weights(problem, parts, shape, c, problem.frequency[band])
         loss = problem.coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
         loss += sum(x * net / total * problem.part_loss[band][p] for x, p in zip(w, parts, strict=True))
         if problem.q_limit[band] > 0 and not 1 / loss >= problem.q_limit[band]:
@@ -185,9 +197,10 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
             tuned = 1 / (1 / t + 1 / s)
         total = tuned + net + strays + middle
         tuned_to.append(1 / (2 * math.pi * math.sqrt(inductance * total)))
-        share = [(p, w * net / total) for p, w in zip(across, weights(across, shape, c, raw), strict=True)]
+        slopes = weights(problem, across, shape, c, frequency)
+        share = [(p, w * net / total) for p, w in zip(across, slopes, strict=True)]
         if padder is not None:
-            share.append((padder, tuned / s * tuned / total))
+            share.append((padder, tuned / float(problem.part_value[padder]) * tuned / total))
         of_element = tuned / t * tuned / total
         own = coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
         own += of_element * problem.tuning_loss[band] + sum(x * part_loss[band][p] for p, x in share)

@@ -11,6 +11,7 @@ from collections import Counter
 from fractions import Fraction
 
 from partpick.search.problem import NEVER, Problem
+from tiny.brute_force import weights
 
 ROUNDING = 1e-11  # a design exactly on a limit is inside it
 
@@ -38,7 +39,8 @@ def circuit(problem: Problem, coil: int, band: int, parts: tuple[int, ...]):
         return None
     if parts and strays / total > problem.share * (1 + ROUNDING):
         return None
-    portion = [x / sum(c) * net / total for x in c]
+    slopes = weights(problem, parts, 0, c, problem.frequency[band])
+    portion = [x * net / total for x in slopes]
     loss = problem.coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
     loss += sum(x * problem.part_loss[band][p] for x, p in zip(portion, parts, strict=True))
     if problem.q_limit[band] > 0 and not 1 / loss >= problem.q_limit[band] * (1 - ROUNDING):
@@ -46,7 +48,7 @@ def circuit(problem: Problem, coil: int, band: int, parts: tuple[int, ...]):
     if math.isfinite(problem.drift_limit):
         set_to = min(max(wanted - net - strays, low), high)
         whole = net + strays + set_to
-        portion = [x / sum(c) * net / whole for x in c]
+        portion = [x * net / whole for x in slopes]
         tempco = sum(x * problem.part_tempco[p] for x, p in zip(portion, parts, strict=True))
         tempco += (strays * problem.stray_tempco + set_to * problem.trimmer_tempco[band]) / whole
         spread = problem.coil_tempco_spread[coil]

@@ -34,6 +34,7 @@ def random_problem(seed: int, *, bands: int, inductors: int = 1, coupled: bool =
         target_total[0, -1] = 3.95e-12
     trimmer = np.where(rng.random(bands) < 0.2, 10e-12, 0.0)
     pick = lambda *choices: choices[int(rng.integers(0, len(choices)))]  # noqa: E731
+    leads = np.random.default_rng(seed + 10**7).choice([0.0, 0.0, 0.0, 80e-9, 300e-9])  # of every capacitor
     limit = pick(0.02, 0.05, 0.1)
     price = rng.integers(1, 6, part) * 5
     price[rng.random(part) < 0.2] = NEVER
@@ -61,7 +62,7 @@ def random_problem(seed: int, *, bands: int, inductors: int = 1, coupled: bool =
         coil_rank=rng.permutation(coils),
         coil_tempco=np.full((coils, bands), 40e-6),
         coil_tempco_spread=np.full(coils, 10e-6),
-        species=np.tile(plain, (bands, 1)),
+        species=acting(plain, leads, frequency),
         commonness=rng.integers(0, 3, len(values)),
         options=tuple(options),
         part_loss=np.tile(1 / rng.choice([300.0, 1000.0], part), (bands, 1)),
@@ -85,6 +86,11 @@ def random_problem(seed: int, *, bands: int, inductors: int = 1, coupled: bool =
         floor=pick(0.001, 0.01),
         by=pick("build", "error", "price"),
     )
+
+
+def acting(values: np.ndarray, leads: float, frequency: np.ndarray) -> np.ndarray:
+    """Return how capacitors with inductance in series act at each band, (B, n)."""
+    return values / (1 - (2 * np.pi * frequency[:, None]) ** 2 * leads * values)
 
 
 def random_swept_problem(seed: int, *, bands: int, swept: int, **shape: object) -> Problem:
@@ -117,6 +123,9 @@ def random_swept_problem(seed: int, *, bands: int, swept: int, **shape: object) 
         inductance_low[:, band] = rng.uniform(1.0, 1.004, coils) / (
             (2 * np.pi * plain.frequency[band]) ** 2 * wanted[:, band]
         )
+    nominal = np.array([float(plain.part_value[options[0]]) for options in plain.options])
+    leads = (1 / nominal[0] - 1 / plain.species[0, 0]) / (2 * np.pi * plain.frequency[0]) ** 2
+    values_low = acting(nominal, leads, low_end) if leads > 1e-12 else plain.species
     return replace(
         plain,
         wanted=wanted,
@@ -129,7 +138,7 @@ def random_swept_problem(seed: int, *, bands: int, swept: int, **shape: object) 
         tuning_tempco=np.full(bands, pick(0.0, 100e-6)),
         inductance_low=inductance_low,
         coil_loss_low=plain.coil_loss * rng.uniform(0.8, 1.2, plain.coil_loss.shape),
-        species_low=plain.species * pick(1.0, 1.0, 0.998),
+        species_low=values_low * pick(1.0, 1.0, 0.998),
         part_loss_low=plain.part_loss * pick(1.0, 0.5),
         excess_limit=pick(np.inf, np.inf, np.inf, 0.8),
         lead_inductance=lead_inductance,
