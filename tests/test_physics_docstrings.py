@@ -14,6 +14,7 @@ import pytest
 import partpick.physics
 
 UNIT = re.compile(r"\[[^\[\]]+\]")
+RANGE = re.compile(r"\b(within|exact|exactly|range|first order|derivative|above|below|up to|estimate|any)\b", re.IGNORECASE)
 ENTRY = re.compile(r"^\*{0,2}(\w+(?:, \w+)*) : (.+)$")
 
 
@@ -93,6 +94,15 @@ def test_every_formula_names_its_source(function: Any) -> None:
     parts = sections(function)
     source = parts.get("References", parts.get("Source", []))
     assert any(line.strip() for line in source)
+
+
+@pytest.mark.parametrize("function", own(inspect.isfunction), ids=name_of)
+def test_every_function_says_where_it_holds(function: Any) -> None:
+    """A formula used outside its range gives a number all the same; its notes must say how far it can be trusted."""
+    parts = sections(function)
+    assert any(line.strip() for line in parts.get("Notes", [])), "no notes"
+    text = " ".join(" ".join(parts.get(name, [])) for name in ("Parameters", "Returns", "Notes"))
+    assert RANGE.search(text), "no word of range or accuracy"
 
 
 @pytest.mark.parametrize("function", own(inspect.isfunction), ids=name_of)

@@ -69,6 +69,10 @@ def ring_potential(radius: ArrayLike, distance_from_axis: ArrayLike, height: Arr
     potential : float or (n,) array
         Flux through the circle about the axis through the point, over its circumference. [-]
 
+    Notes
+    -----
+    Exact for a thin wire, off the axis; on it the potential is 0 and this gives nan.
+
     References
     ----------
     W. R. Smythe, Static and Dynamic Electricity, McGraw-Hill 1950, section 7.10 (circular loop; from memory).
@@ -94,6 +98,10 @@ def ring_field(radius: ArrayLike, distance_from_axis: ArrayLike, height: ArrayLi
     -------
     field : RingField
         Axial and radial component, each a float or (n,) array; not finite on the ring itself. [1/m]
+
+    Notes
+    -----
+    Exact for a wire thin against its distance; on the axis and off it, at any distance from the wire.
 
     References
     ----------

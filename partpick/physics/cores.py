@@ -107,6 +107,43 @@ def ring_al(
     return (MU_0 * np.asarray(permeability, float) / c1)[()]
 
 
+def round_toroid_inductance(
+    turns: ArrayLike, mean_radius: ArrayLike, section_radius: ArrayLike, permeability: ArrayLike = 1.0
+) -> FloatArray:
+    """Return the inductance of a toroid whose turns are circles, wound evenly all round.
+
+    Parameters
+    ----------
+    turns : float or (n,) array
+        Number of turns. [-]
+    mean_radius : float or (n,) array
+        From the axis to the middle of the turns. [m]
+    section_radius : float or (n,) array
+        Radius of a turn, above 0 and below `mean_radius`. [m]
+    permeability : float or (n,) array
+        Relative permeability inside, 1 for air. [-]
+
+    Returns
+    -------
+    inductance : float or (n,) array
+        Inductance; nan where a turn would reach past the axis. [H]
+
+    Notes
+    -----
+    mu0 mu N^2 (R - sqrt(R^2 - a^2)): a current sheet, all flux inside. Exact for many turns; few or bunched
+    turns leak, see `ring_leak`. It is what `ring_al` is for a rectangular section.
+
+    References
+    ----------
+    F. W. Grover, Inductance Calculations, Van Nostrand 1946, toroidal coils of circular section (from memory);
+    tests/published/round_toroid.csv.
+    """
+    middle, radius = np.asarray(mean_radius, float), np.asarray(section_radius, float)
+    square = np.where(radius < middle, middle**2 - radius**2, np.nan)
+    squared_turns = np.asarray(turns, float) ** 2
+    return (MU_0 * np.asarray(permeability, float) * squared_turns * (middle - np.sqrt(square)))[()]
+
+
 def core_inductance(al: ArrayLike, turns: ArrayLike) -> FloatArray:
     """Return the inductance of turns on a closed core: a ring, a gapped pot or any other with known AL.
 
@@ -121,6 +158,10 @@ def core_inductance(al: ArrayLike, turns: ArrayLike) -> FloatArray:
     -------
     inductance : float or (n,) array
         AL N^2. [H]
+
+    Notes
+    -----
+    AL holds for small signals and inside the useful frequencies of the material; for any turns above 0.
 
     References
     ----------
@@ -144,6 +185,10 @@ def core_turns(al: ArrayLike, inductance: ArrayLike) -> IntArray:
     -------
     turns : int or (n,) array
         Turns with the least error of the inductance, at least 1. [-]
+
+    Notes
+    -----
+    For any inductance above 0; at least one turn, so that less than half of AL cannot be met.
 
     References
     ----------
@@ -178,6 +223,7 @@ def ring_turns_that_fit(inner_diameter: ArrayLike, wire_diameter: ArrayLike, arc
     -----
     Centres on a circle of diameter ID - d, chords of at least d: N 2 asin(d/(ID - d)) <= arc. A wire thicker
     than half the bore passes once.
+    Exact geometry for any sizes above 0.
 
     References
     ----------

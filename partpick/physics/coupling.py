@@ -81,6 +81,7 @@ def divider_load(frequency: ArrayLike, upper: ArrayLike, lower: ArrayLike, resis
     Notes
     -----
     Tends to R ((C1 + C2)/C1)^2 and C1 C2/(C1 + C2) where the load is light (w C2 R large).
+    Exact at one frequency, any values above 0.
 
     References
     ----------
@@ -112,6 +113,10 @@ def divider_for(frequency: ArrayLike, resistance: ArrayLike, across: ArrayLike, 
     divider : Divider
         Both capacitors, each a float or (n,) array; nan where the wanted resistance or capacitance is out
         of reach. [F]
+
+    Notes
+    -----
+    Exact at one frequency. In reach where R/(1 + (w C R)^2) of the wanted R is not above the load.
 
     References
     ----------
@@ -157,6 +162,7 @@ def link_load(
     Notes
     -----
     Z = j w L + w^2 M^2/(R + j w L2), turned into its parallel form. Tends to R (L/M)^2 for a light load.
+    Exact for coils without loss of their own.
 
     References
     ----------
@@ -197,6 +203,7 @@ def tap_load(
     Notes
     -----
     A link of the section's inductance, coupled by section + mutual.
+    Exact for coils without loss of their own.
 
     References
     ----------

@@ -75,6 +75,7 @@ def rod_permeability(permeability: ArrayLike, factor: ArrayLike) -> FloatArray:
     -----
     mu/(1 + N (mu - 1)). A coil that is shorter than the rod, or wider, gains less than this: it is no
     substitute for `sliding_core.core_inductance_rise`.
+    Within the range of the factor N that it is given.
 
     References
     ----------

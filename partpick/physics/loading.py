@@ -23,6 +23,10 @@ def parallel_q(capacitances: ArrayLike, q: ArrayLike) -> FloatArray:
     q : float or (...) array
         1/Q = sum(C_i/Q_i) / sum(C_i). [-]
 
+    Notes
+    -----
+    To about 1/Q^2: for Q above 10 within 1 %.
+
     References
     ----------
     Definition of Q by energy: F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 2.
@@ -47,6 +51,10 @@ def series_q(capacitances: ArrayLike, q: ArrayLike) -> FloatArray:
     -------
     q : float or (...) array
         1/Q = C sum(1/(C_i Q_i)) with C that of the network. [-]
+
+    Notes
+    -----
+    To about 1/Q^2: for Q above 10 within 1 %.
 
     References
     ----------
@@ -75,6 +83,10 @@ def loaded_q(unloaded_q: ArrayLike, reactance: ArrayLike, load_resistance: Array
     q : float or (n,) array
         1/Q_L = 1/Q_U + X/R; right to about 1/Q^2. [-]
 
+    Notes
+    -----
+    To about 1/Q^2: for Q above 10 within 1 %.
+
     References
     ----------
     F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 3;
@@ -102,6 +114,10 @@ def damping_resistance(unloaded_q: ArrayLike, reactance: ArrayLike, wanted_q: Ar
     resistance : float or (n,) array
         X/(1/Q_wanted - 1/Q); infinity where nothing is needed, nan where the tank is too lossy already. [ohm]
 
+    Notes
+    -----
+    To about 1/Q^2: for Q above 10 within 1 %.
+
     References
     ----------
     F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 3; `loaded_q` solved for R.
@@ -126,6 +142,10 @@ def insertion_loss(unloaded_q: ArrayLike, loaded_q: ArrayLike) -> FloatArray:
     -------
     loss : float or (n,) array
         -20 log10(1 - Q_L/Q_U). [dB]
+
+    Notes
+    -----
+    At resonance; for a loaded Q from 0 up to the unloaded one, where it becomes infinite.
 
     References
     ----------
@@ -184,6 +204,10 @@ def efficiency(unloaded_q: ArrayLike, loaded_q: ArrayLike) -> FloatArray:
     efficiency : float or (n,) array
         1 - Q_L/Q_U; the rest heats the tank. [-]
 
+    Notes
+    -----
+    At resonance; for a loaded Q from 0 up to the unloaded one.
+
     References
     ----------
     F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 5 (tank circuits);
@@ -214,6 +238,7 @@ def peak_voltage(power: ArrayLike, reactance: ArrayLike, q: ArrayLike) -> FloatA
     -----
     At the same power the voltage rises by sqrt(Q_U/Q_L) when the load is off, under a drive of constant
     current by Q_U/Q_L. Full amplitude modulation doubles it.
+    At resonance, within 1 % for a Q above 10.
 
     References
     ----------
@@ -239,6 +264,10 @@ def circulating_current(peak_voltage: ArrayLike, reactance: ArrayLike) -> FloatA
     -------
     current : float or (n,) array
         Peak current; its rms value is 1/sqrt(2) of it. [A]
+
+    Notes
+    -----
+    At resonance, to about 1/Q: for Q above 10 within 1 %.
 
     References
     ----------

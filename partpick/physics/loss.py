@@ -224,6 +224,10 @@ def combined_q(*q: ArrayLike) -> FloatArray:
     q : float or (n,) array
         1 / sum of 1/Q; unknown if one of them is. [-]
 
+    Notes
+    -----
+    Exact where each Q is defined by the same reactance; any Q above 0.
+
     References
     ----------
     Definition of Q by energy: F. E. Terman, Radio Engineers' Handbook, McGraw-Hill 1943, section 3.

@@ -31,6 +31,10 @@ def usable_turns(family: ArrayLike, least_turns: float = 3.0, continuous: bool =
     ValueError
         If the coil has fewer turns than must stay in circuit.
 
+    Notes
+    -----
+    From one turn up to the whole coil.
+
     References
     ----------
     Three turns at least: common practice, no source.

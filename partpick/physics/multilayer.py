@@ -100,6 +100,10 @@ def multilayer_sensitivities(
     by_diameter, by_length, by_depth : tuple of three floats or (n,) arrays
         Logarithmic derivatives; together 1. [-]
 
+    Notes
+    -----
+    Within the range of `multilayer_inductance`, whose derivatives they are, exactly.
+
     References
     ----------
     Derivative of `multilayer_inductance`.

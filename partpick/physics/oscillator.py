@@ -203,6 +203,7 @@ def hartley(
     -----
     1 + D (Y1 Y2 + s C (Y1 + Y2 + g)) + Z2 (Y2 + s C) + Z1 (Y1 + s C) + s M (2 s C - g) = 0 with
     D = Z1 Z2 - s^2 M^2. For small losses the threshold is near (r1 + r2) C L/((L1 + M)(L2 + M)).
+    Exact for the circuit as drawn, while the amplitude is small.
 
     References
     ----------
@@ -284,6 +285,10 @@ def growth_rate(characteristic: Characteristic, transconductance: ArrayLike) -> 
     rate : float or (n,) array
         Largest real part of the natural modes of oscillation: amplitude goes as exp(rate t); negative: it
         dies out. [1/s]
+
+    Notes
+    -----
+    Exact while the amplitude is small, for any transconductance; nothing is said of where it ends.
 
     References
     ----------

@@ -198,6 +198,10 @@ def rod_coil_in_range(
         Rod 3 to 32 diameters long, 5 to 90 % of it covered, coil up to 1.3 times as wide, permeability 50 to
         1000. [-]
 
+    Notes
+    -----
+    Answers for any sizes above 0.
+
     References
     ----------
     The table of this module.

@@ -40,6 +40,7 @@ def copper_resistivity(temperature: ArrayLike = 20.0) -> FloatArray:
     Notes
     -----
     For about -50 to 150 degC.
+    Within 1 % in that range.
 
     References
     ----------
@@ -63,6 +64,11 @@ def skin_depth(frequency: ArrayLike, temperature: ArrayLike = 20.0) -> FloatArra
     -------
     depth : float or (n,) array
         Depth at which the current density has fallen to 1/e. [m]
+
+    Notes
+    -----
+    For good conductors at any frequency above 0 where the depth is above the free path of electrons: to
+    1 THz.
 
     References
     ----------
@@ -91,6 +97,10 @@ def wire_resistance(
     -------
     resistance : float or (n,) array
         Resistance to direct current. [ohm]
+
+    Notes
+    -----
+    Exact for a uniform round wire; any sizes above 0.
 
     References
     ----------
@@ -143,6 +153,7 @@ def internal_inductance_ratio(a_over_delta: ArrayLike) -> FloatArray:
     Notes
     -----
     Im[(z/2) J0(z)/J1(z)] / ((a/delta)^2/4) with z = (1 - j) a/delta. Tends to 2 delta/a.
+    Exact for a straight round wire, any a/delta from 0 on.
 
     References
     ----------

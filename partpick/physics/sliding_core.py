@@ -103,6 +103,10 @@ def core_offset(inserted: ArrayLike, coil_length: ArrayLike, core_length: ArrayL
     offset : float or (n,) array
         Negative on the side from which the rod comes, 0 where it is centred. [m]
 
+    Notes
+    -----
+    Exact geometry; from a rod just outside (0) to one at the far side.
+
     References
     ----------
     Geometry.

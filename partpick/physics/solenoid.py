@@ -42,6 +42,7 @@ def solenoid_family(max_turns: int, diameter: float, wire_diameter: float, pitch
     Notes
     -----
     As `solenoid_families`.
+    Its range and accuracy are the same.
 
     References
     ----------

@@ -144,6 +144,7 @@ def window_field(turns: ArrayLike, width: ArrayLike, layers: ArrayLike) -> Float
     (N/w) sqrt(1/3 - 1/(12 m^2)): the field rises from layer to layer from nothing to N/w, each layer meeting
     the mean of its two sides. One layer: half of N/w, as in an endless solenoid. The field of the gap is
     left out: keep turns away from it.
+    Exact for full layers between plane walls of high permeability.
 
     References
     ----------

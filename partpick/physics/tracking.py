@@ -89,6 +89,10 @@ def plain_circuit(low: ArrayLike, high: ArrayLike, section_low: ArrayLike, secti
     circuit : PlainCircuit
         Inductance [H] and fixed capacitance [F], each a float or (n,) array.
 
+    Notes
+    -----
+    Exact without loss; for a range ratio above 1 that the section can span.
+
     References
     ----------
     F. Langford-Smith (ed.), Radiotron Designer's Handbook, 4th ed. 1953, chapter 25 (from memory);
@@ -116,6 +120,10 @@ def section_capacitance(circuit: PlainCircuit, frequency: ArrayLike) -> FloatArr
     capacitance : float or (n,) array
         Of the section alone. [F]
 
+    Notes
+    -----
+    Exact without loss; any frequency above 0, outside the range it may be negative.
+
     References
     ----------
     W. Thomson, On transient electric currents, Philosophical Magazine 5 (1853) 393-405.
@@ -139,6 +147,10 @@ def padded_frequency(circuit: PaddedCircuit, section: ArrayLike) -> FloatArray:
     -------
     frequency : float or (n,) array
         1/(2 pi sqrt(L C)), C = across + padder in series with (section + trimmer). [Hz]
+
+    Notes
+    -----
+    Exact without loss; nan for a negative capacitance in circuit.
 
     References
     ----------
@@ -170,6 +182,10 @@ def tracking_error(plain: PlainCircuit, padded: PaddedCircuit, frequency: ArrayL
     error : float or (n,) array
         Positive where the padded circuit is too high. [Hz]
 
+    Notes
+    -----
+    Exact without loss, at any frequency that the section reaches.
+
     References
     ----------
     Definition; tests/published/tracking.csv.
@@ -193,6 +209,10 @@ def tracking_points(low: ArrayLike, high: ArrayLike) -> FloatArray:
     -------
     points : (3,) or (n, 3) array
         Zeros of the third Chebyshev polynomial stretched over the range, rising. [Hz]
+
+    Notes
+    -----
+    Exact as zeros; that the errors between them are equal holds nearly, the better the narrower the range.
 
     References
     ----------

@@ -88,6 +88,7 @@ def correlated_uniform(common: ArrayLike, own: ArrayLike, correlation: float) ->
     Notes
     -----
     Normal quantities of correlation r turned into uniform ones have 6/pi asin(r/2); so r = 2 sin(pi c/6).
+    Exact for two, any correlation from -1 to 1.
 
     References
     ----------
@@ -117,6 +118,10 @@ def quantiles(values: ArrayLike, shares: ArrayLike) -> FloatArray:
     quantiles : (m,) array
         Type 7 of the reference, the default of numpy.quantile; that function brings in masked arrays, whose
         import takes a tenth of a whole search for one pair. [any]
+
+    Notes
+    -----
+    Exact for the sample; any size from 1 value on, shares from 0 to 1.
 
     References
     ----------

@@ -33,6 +33,10 @@ def junction_capacitance(bias: ArrayLike, zero_bias: ArrayLike, potential: Array
     capacitance : float or (n,) array
         C0/(1 + V/phi)^g; nan below 0 V, where the junction begins to conduct. [F]
 
+    Notes
+    -----
+    From 0 V up to breakdown, for small signals.
+
     References
     ----------
     S. M. Sze, Physics of Semiconductor Devices, 2nd ed. 1981, chapter 2 (depletion capacitance);
@@ -62,6 +66,10 @@ def bias_for(capacitance: ArrayLike, zero_bias: ArrayLike, potential: ArrayLike,
     bias : float or (n,) array
         phi ((C0/C)^(1/g) - 1); nan above the capacitance without bias. [V]
 
+    Notes
+    -----
+    Within the range of `junction_capacitance`, whose inverse it is, exactly.
+
     References
     ----------
     As `junction_capacitance`, solved for the voltage.
@@ -87,6 +95,10 @@ def bias_sensitivity(bias: ArrayLike, potential: ArrayLike, grading: ArrayLike) 
     -------
     sensitivity : float or (n,) array
         d ln C/dV = -g/(phi + V); the frequency moves by minus half of it where C is the only one. [1/V]
+
+    Notes
+    -----
+    A derivative: within 1 % for a change of bias up to 1 % of (phi + V).
 
     References
     ----------
@@ -117,6 +129,10 @@ def network_capacitance(
     capacitance : float or (n,) array
         Of the whole; broadcast of all. [F]
 
+    Notes
+    -----
+    Exact for equal junctions; any values above 0.
+
     References
     ----------
     Capacitances in parallel add, in series their reciprocals do.
@@ -145,6 +161,10 @@ def junction_for_network(
     -------
     junction : float or (n,) array
         Of one junction; nan where the series capacitor is too small. [F]
+
+    Notes
+    -----
+    Exact for equal junctions, any capacitance below the series capacitor.
 
     References
     ----------
@@ -181,6 +201,7 @@ def junction_tempco(
     -----
     The capacitance depends on phi + V alone, so C0 phi^g stays as it is. The small tempco of the
     material's permittivity and of the package is left out.
+    To first order in temperature.
 
     References
     ----------
@@ -210,6 +231,10 @@ def network_tempco(
     -------
     tempco : float or (n,) array
         Each weighted by its share of the reactance. [1/K]
+
+    Notes
+    -----
+    Exact to first order; any values above 0.
 
     References
     ----------
@@ -242,6 +267,10 @@ def junction_rf_peak(
     peak : float or (n,) array
         Peak voltage across one junction. [V]
 
+    Notes
+    -----
+    Exact for small signals: capacitances at rest share the voltage.
+
     References
     ----------
     Capacitive voltage division.
@@ -264,6 +293,10 @@ def least_bias(junction_peak: ArrayLike, reserve: ArrayLike = 1.0) -> FloatArray
     -------
     bias : float or (n,) array
         Their sum. [V]
+
+    Notes
+    -----
+    Exact for small signals; any peak from 0 on.
 
     References
     ----------
@@ -299,6 +332,7 @@ def capacitance_under_rf(
     Notes
     -----
     For a small peak v it is C (1 + g (g + 1)/8 (v/(phi + V))^2): the rf pulls the frequency down.
+    Exact for a sine that never drives the junction below its potential.
 
     References
     ----------

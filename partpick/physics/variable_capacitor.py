@@ -121,6 +121,10 @@ def rotation_for(
     KeyError
         If there is no such law.
 
+    Notes
+    -----
+    Within the range of `capacitance_at`, whose inverse it is, exactly.
+
     References
     ----------
     As `capacitance_at`.
@@ -146,6 +150,10 @@ def sections_in_parallel(section: ArrayLike, count: ArrayLike) -> FloatArray:
     capacitance : float or (n,) array
         Of all of them; ratio and law are those of one. [F]
 
+    Notes
+    -----
+    Exact; from one section on.
+
     References
     ----------
     Capacitances in parallel add.
@@ -170,6 +178,10 @@ def with_padders(variable: ArrayLike, series: ArrayLike = np.inf, parallel: Arra
     -------
     capacitance : float or (n,) array
         C S/(C + S) + P. [F]
+
+    Notes
+    -----
+    Exact; any values above 0, without series padder infinity.
 
     References
     ----------
@@ -201,6 +213,10 @@ def capacitance_range(
     range : CapacitanceRange
         With the plates out and in, each a float or (n,) array. [F]
 
+    Notes
+    -----
+    Exact; any values above 0, without series padder infinity.
+
     References
     ----------
     As `with_padders`.
@@ -228,6 +244,10 @@ def parallel_for_ratio(
     -------
     parallel : float or (n,) array
         (C_high - r^2 C_low)/(r^2 - 1); negative: the element cannot do it. [F]
+
+    Notes
+    -----
+    Exact without loss; frequency ratio above 1.
 
     References
     ----------

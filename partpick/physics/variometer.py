@@ -53,6 +53,10 @@ def coil_rings(turns: int, diameter: float, pitch: float, centre_gap: float = 0.
     rings : Rings
         Radius and height of each turn, both (turns,) arrays. [m]
 
+    Notes
+    -----
+    Turns as rings: exact for close pitch; from one turn on.
+
     References
     ----------
     Geometry.
@@ -80,6 +84,10 @@ def clearance(stator: Rings, rotor: Rings, stator_wire: float = 0.0, rotor_wire:
     clearance : float
         From the sphere that the rotor sweeps to the nearest turn of the stator; negative: it does not turn
         through. [m]
+
+    Notes
+    -----
+    Exact geometry for a rotor that turns about the middle of the stator.
 
     References
     ----------
@@ -189,6 +197,10 @@ def series_inductance(first: ArrayLike, second: ArrayLike, mutual: ArrayLike) ->
     inductance : float or (n,) array
         L1 + L2 + 2 M. [H]
 
+    Notes
+    -----
+    Exact; for a mutual inductance of either sign up to the root of L1 L2.
+
     References
     ----------
     J. C. Maxwell, A Treatise on Electricity and Magnetism, vol. 2, 1873.
@@ -214,6 +226,10 @@ def parallel_inductance(first: ArrayLike, second: ArrayLike, mutual: ArrayLike) 
     -------
     inductance : float or (n,) array
         (L1 L2 - M^2)/(L1 + L2 - 2 M). [H]
+
+    Notes
+    -----
+    Exact without loss; for a mutual inductance below the root of L1 L2.
 
     References
     ----------
