@@ -39,6 +39,22 @@ def test_ring_constants_are_the_standard_s(row: dict[str, str]) -> None:
         assert al * 1e9 == pytest.approx(float(row[f"AL_nH_mur{permeability}"]), rel=tolerance)
 
 
+@pytest.mark.parametrize("row", rows("round_toroid.csv"), ids=lambda r: r["N"])
+def test_a_toroid_of_round_section_is_the_published_one(row: dict[str, str]) -> None:
+    """Grover 1946 (from memory)."""
+    sizes = float(row["mean_radius_m"]), float(row["section_radius_m"])
+    value = cores.round_toroid_inductance(float(row["N"]), *sizes)
+    assert value == pytest.approx(float(row["L_H"]), rel=float(row["rel_tol"]))
+
+
+def test_round_and_square_sections_agree_where_they_are_small() -> None:
+    """Cousins: of equal area, far from the axis, the shape of the section is lost; a fat one reaches to the axis."""
+    radius, side = 1e-3, np.sqrt(np.pi) * 1e-3
+    ring = cores.ring_al(0.2 + side, 0.2 - side, side, 9.0)
+    assert cores.round_toroid_inductance(10, 0.1, radius, 9.0) == pytest.approx(100 * ring, rel=1e-4)
+    assert np.isnan(cores.round_toroid_inductance(10, 0.01, 0.01))
+
+
 def test_ring_constants_are_their_integrals() -> None:
     """The definition: flux adds over the section, and so does the field cubed."""
     outer, inner, h = 0.02, 0.011, 0.007

@@ -14,7 +14,7 @@ import pytest
 import partpick.physics
 
 UNIT = re.compile(r"\[[^\[\]]+\]")
-RANGE = re.compile(r"\b(within|exact|exactly|range|first order|derivative|above|below|up to|estimate|any)\b", re.IGNORECASE)
+RANGE = re.compile(r"\b(within|exact|exactly|range|first order|derivative|above|below|up to|any)\b", re.I)
 ENTRY = re.compile(r"^\*{0,2}(\w+(?:, \w+)*) : (.+)$")
 
 

