@@ -145,7 +145,9 @@ class Terminal:
             callback()
 
     def _line(self, elapsed: float, proving: str, best: str | None, bound: str | None) -> str:
-        clock = f"{elapsed:.0f} s" if self._limit is None else f"{elapsed:.0f} of {self._limit:.0f} s"
+        clock = f"{elapsed:.0f} s"
+        if self._limit is not None:  # when the proof will be complete nobody knows: only the limit is certain
+            clock += f", at most {max(self._limit - elapsed, 0.0):.0f} s left"
         told = [f"best so far {best}"] if best is not None else []
         told += [f"no better than {bound}"] if bound is not None else []
         return f"{clock}: {proving}" + (f" ({', '.join(told)})" if told else "")

@@ -117,7 +117,7 @@ def test_a_file_gets_few_plain_lines() -> None:
         _late(monitor, 12)
         for _ in range(1000):
             monitor.report("the pieces")
-    assert stream.getvalue() == "12 of 60 s: the pieces\n"
+    assert stream.getvalue() == "12 s, at most 48 s left: the pieces\n"
 
 
 def test_the_pause_between_plain_lines_grows_to_a_minute(monkeypatch: pytest.MonkeyPatch) -> None:

@@ -14,7 +14,7 @@ from typing import NamedTuple, Protocol
 import numpy as np
 
 from partpick.progress import Monitor
-from partpick.search.bands import Found, Ranking
+from partpick.search.bands import Found, Ranking, so_far
 from partpick.search.bounds import IMPOSSIBLE, pack, packed_fields
 from partpick.search.choose import Choice, Stopped
 from partpick.search.figures import coarse_error, fine_error, quality_class, stray_class
@@ -231,7 +231,7 @@ def _rank(engine: Engine, coils: Ints, ranking: Ranking, found: Found, monitor: 
         reason = monitor.stopped()
         if reason is not None:
             raise Stopped(reason)
-        monitor.report("the best plans", f"{len(ranking.best)} found")
+        monitor.report("the best plans", *so_far(ranking, found.next_bound))
         block = _together(steps, order[:size])
         worth = np.array([ranking.worth_it((int(j),), int(bound[j])) for j in block], dtype=np.bool_)
         tried = block[worth]

@@ -15,7 +15,7 @@ import numpy as np
 
 from partpick.progress import Monitor
 from partpick.search.bounds import BELOW_PIECES, Bounds, packed_key
-from partpick.search.choose import Choice, Stopped
+from partpick.search.choose import ORDERS, Choice, Key, Stopped
 from partpick.search.columns import ColumnSource
 from partpick.search.evaluate import Evaluator
 from partpick.search.figures import fine_error, whole_excess
@@ -45,6 +45,7 @@ class Ranking:
         self.wanted = wanted
         self.all_windings = all_windings
         self.best: dict[tuple[int, ...], tuple[int, Choice]] = {}
+        self.first: Choice | None = None  # of all
         self.by = problem.by
 
     def group(self, coils: tuple[int, ...]) -> tuple[int, ...]:
@@ -58,6 +59,13 @@ class Ranking:
         known = self.best.get(self.group(coils))
         return known is None or bound <= known[0]
 
+    def to_beat(self, coils: tuple[int, ...]) -> Key | None:
+        """Return the key behind which a choice of these coils is of no interest, None while all are."""
+        keys = sorted(choice.key for _, choice in self.best.values())
+        last = [keys[self.wanted - 1]] if len(keys) >= self.wanted else []
+        known = self.best.get(self.group(coils))
+        return min([*last, *([known[1].key] if known is not None else [])], default=None)
+
     def add(self, choice: Choice) -> None:
         """Keep a choice if it is the first of its row."""
         packed = packed_key(choice, self.problem)
@@ -65,6 +73,8 @@ class Ranking:
         known = self.best.get(group)
         if known is None or choice.key < known[1].key:
             self.best[group] = (packed, choice)
+        if self.first is None or choice.key < self.first.key:
+            self.first = choice
 
     def settled(self, bound: int) -> bool:
         """Whether the wanted rows all rank before anything with this bound or a later one."""
@@ -118,9 +128,9 @@ def search_bands(
             reason = monitor.stopped()
             if reason is not None:
                 raise Stopped(reason)
-            monitor.report("the best plans", f"{len(ranking.best)} found")
+            monitor.report("the best plans", *so_far(ranking, bound))
             if ranking.worth_it(coils, bound):
-                choice = evaluator.best(coils, problem.by)
+                choice = evaluator.best(coils, problem.by, ranking.to_beat(coils))
                 if choice is not None:
                     ranking.add(choice)
         found.settled = True
@@ -132,6 +142,17 @@ def search_bands(
     if not all(sets.complete for sets in together):
         _own_up(problem, bounds, found, monitor.stopped())
     return found
+
+
+def so_far(ranking: Ranking, bound: int) -> tuple[str | None, str | None]:
+    """Return the best plan so far and what no plan still open can undercut, in words; None where unknown."""
+    least = pieces_of_bound(bound, ranking.by)
+    no_better = None if least is None else f"{least} pieces"
+    if ranking.first is None:
+        return None, no_better
+    pieces = ranking.first.key[ORDERS[ranking.by].index("pieces")]
+    what = "excess" if ranking.problem.led_by_excess else "error"
+    return f"{pieces} pieces, {what} {100 * leading_figure(ranking.problem, ranking.first):.2g} %", no_better
 
 
 def _own_up(problem: Problem, bounds: Bounds, found: Found, reason: str | None) -> None:

@@ -54,6 +54,14 @@ class Stopped(Exception):  # noqa: N818 - a stop that was asked for is no error
     reason: str
 
 
+class Beaten(Exception):  # noqa: N818 - a coil that cannot win is no error
+    """Every choice of a set of coils ranks behind the one to beat."""
+
+
+class Deeper(Exception):  # noqa: N818 - the columns at hand were too few
+    """Columns of more parts are wanted before a choice can be called the first."""
+
+
 def column_content(problem: Problem, columns: Columns, row: int) -> tuple[object, ...]:
     """Return what orders equal columns: values, connection, grades, coil, tap; never row numbers.
 
@@ -79,9 +87,23 @@ def plan_price(problem: Problem, coils: tuple[int, ...]) -> int:
 
 
 def choose(
-    problem: Problem, bands: list[Columns], coils: tuple[int, ...], order: tuple[str, ...], monitor: Monitor
+    problem: Problem,
+    bands: list[Columns],
+    coils: tuple[int, ...],
+    order: tuple[str, ...],
+    monitor: Monitor,
+    to_beat: Key | None = None,
+    complete_to: int | None = None,
 ) -> Choice | None:
-    """Return the first choice in the order for these coils, each used at least once; None if there is none."""
+    """Return the first choice in the order for these coils, each used at least once; None if there is none.
+
+    Raises
+    ------
+    Deeper
+        It has more than `complete_to` pieces, up to which every column is among those given.
+    Beaten
+        No choice ranks before or with `to_beat`; not always told where one is found without a solver.
+    """
     if any(len(columns) == 0 for columns in bands):
         return None
     best = first_without_shared_limits(problem, bands, coils, order)
@@ -89,7 +111,9 @@ def choose(
         return best
     from partpick.search.cpsat import choose_coupled
 
-    return choose_coupled(problem, bands, coils, order, monitor)
+    if to_beat is not None and best.key > to_beat:
+        raise Beaten
+    return choose_coupled(problem, bands, coils, order, monitor, to_beat, complete_to)
 
 
 def first_without_shared_limits(

@@ -9,7 +9,10 @@ import numpy as np
 from partpick.progress import Monitor
 from partpick.search.choose import (
     ORDERS,
+    Beaten,
     Choice,
+    Deeper,
+    Key,
     choose,
     first_without_shared_limits,
     inside_shared_limits,
@@ -42,8 +45,17 @@ class Evaluator:
         self.least_possible = 0 if problem.led_by_excess else int(fine_error(np.zeros(1))[0])
         self.reached: dict[tuple[int, int], list[int]] = {}
 
-    def best(self, coils: tuple[int, ...], by: str) -> Choice | None:
+    def best(self, coils: tuple[int, ...], by: str, to_beat: Key | None = None) -> Choice | None:
         """Return the first choice for these coils, each used at least once, or None.
+
+        Parameters
+        ----------
+        coils : tuple of int
+            The coils.
+        by : str
+            The order.
+        to_beat : tuple, optional
+            A key in this order; None may be returned where every choice ranks behind it.
 
         Raises
         ------
@@ -52,11 +64,14 @@ class Evaluator:
         """
         if not self._supports_in_stock(coils) or self._beyond_shared_limits(coils):
             return None
-        if by == "build":
-            return self._by_pieces(coils)
-        if by == "error":
-            return self._by_error(coils)
-        return self._by_price(coils)
+        try:
+            if by == "build":
+                return self._by_pieces(coils, to_beat)
+            if by == "error":
+                return self._by_error(coils)
+            return self._by_price(coils, to_beat)
+        except Beaten:
+            return None
 
     def least_error(self, coils: tuple[int, ...], pieces: int) -> Choice | None:
         """Return the choice of least worst error (or excess) with at most `pieces` pieces in all, or None."""
@@ -155,26 +170,24 @@ class Evaluator:
         supports, used = np.unique(problem.support[list(coils)], return_counts=True)
         return bool((used <= problem.support_stock[supports]).all())
 
-    def _by_pieces(self, coils: tuple[int, ...]) -> Choice | None:
+    def _by_pieces(self, coils: tuple[int, ...], to_beat: Key | None = None) -> Choice | None:
         """Fewest parts first; more parts a band only where a shared limit asks for them."""
-        order, extra = ORDERS["build"], 0
-        most = self.problem.most_parts
-        while True:
+        order, most = ORDERS["build"], self.problem.most_parts
+        for extra in range(most + 1):
             bands, least = self._lowest_levels(coils, extra)
             if least is None:
                 return None
-            choice = choose(self.problem, bands, coils, order, self.monitor)
-            if choice is None:
-                if extra >= most:
-                    return None
-                extra += 1
+            pieces = least + len(coils) + extra  # every choice that the columns of this step add has as many
+            if extra and to_beat is not None and (pieces,) > to_beat[:1]:
+                return None
+            complete_to = pieces if extra < most else None
+            try:
+                choice = choose(self.problem, bands, coils, order, self.monitor, to_beat, complete_to)
+            except (Beaten, Deeper):
                 continue
-            pieces = choice.key[0]
-            assert isinstance(pieces, int)
-            beyond = pieces - len(coils) - least
-            if beyond <= extra or extra >= most:
+            if choice is not None and (complete_to is None or choice.key[:1] <= (pieces,)):
                 return choice
-            extra = min(beyond, most)
+        return None
 
     def _lowest_levels(self, coils: tuple[int, ...], extra: int) -> tuple[list[Columns], int | None]:
         """Return each coil's columns from its fewest parts up to `extra` more, and the least sum."""
@@ -205,7 +218,7 @@ class Evaluator:
                 found.append(columns)
         return found
 
-    def _by_price(self, coils: tuple[int, ...]) -> Choice | None:
+    def _by_price(self, coils: tuple[int, ...], to_beat: Key | None = None) -> Choice | None:
         """Cheapest first; more parts a band only where they could cost less or a shared limit asks for them."""
         bands: list[Columns] = []
         for band in range(self.problem.bands):
@@ -216,7 +229,7 @@ class Evaluator:
         choice = first_without_shared_limits(self.problem, bands, coils, ORDERS["price"])
         if choice is None or inside_shared_limits(self.problem, choice):
             return choice
-        return choose(self.problem, self._all_columns(coils), coils, ORDERS["price"], self.monitor)
+        return choose(self.problem, self._all_columns(coils), coils, ORDERS["price"], self.monitor, to_beat)
 
     def _cheap_levels(self, coil: int, band: int) -> list[Columns]:
         """Return a coil's columns from its fewest parts on, while more parts may be cheaper."""
