@@ -181,9 +181,9 @@ def _coil_words(candidate: Candidate) -> str:
 
 
 def _alignable_words(request: Request) -> str:
-    bare = [band.name for band in request.bands if band.trimmer is None]
+    bare = [band.name for band in request.bands if band.trimmer is None and not band.swept]
     if bare:
-        return f"without a trimmer nothing can be aligned: {', '.join(bare)}"
+        return f"without a trimmer, or an adjustable coil of its own, nothing can be aligned: {', '.join(bare)}"
     return "a trimmer of wider range, a coil or capacitors of closer tolerance are needed"
 
 

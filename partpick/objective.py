@@ -17,10 +17,11 @@ from partpick.physics.resonance import effective_capacitance
 from partpick.preferred import commonness
 from partpick.request import Band, Request
 from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
-from partpick.tuning import element_ends
+from partpick.tuning import element_ends, element_tolerance
 
 LEAST_FLOOR = 0.001
 TRIMMER_Q = 400.0  # film and ceramic trimmers, common practice, no source
+MOST_ADJUST = 0.95  # of the inductance either way
 NEAR_OWN_RESONANCE = 0.25  # of 1 in w^2 Ls C: nobody counts on a capacitor within half of it
 
 # Enough unloaded Q and the usual reactance by frequency, from the highest down; common practice.
@@ -238,6 +239,7 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         excess_limit=float("inf") if limits.excess is None else limits.excess,
         alignable=_alignable_share(limits.alignable),
         coil_spread=coils.spread,
+        coil_adjust=np.array([min(s.adjust or 0.0, MOST_ADJUST) for s in coils.supports], dtype=float)[coils.support],
         part_tolerance=np.array([c.tolerance for c in capacitors]),
         stray_tolerance=stray.tolerance,
         **_swept_figures(request, coils, capacitors, first),
@@ -268,6 +270,7 @@ def _swept_figures(
         "tuning_high": np.where(swept, element.high, 0.0),
         "tuning_loss": np.where(swept, 1.0 / element.q, 0.0),
         "tuning_tempco": np.where(swept, _nan(element.tempco), 0.0),
+        "tuning_tolerance": element_tolerance(request.tuning),
         "inductance_low": coils.inductance_low,
         "coil_loss_low": 1.0 / coils.q_low,
         "species_low": np.array([_effective(first, float(f)) for f in low_end]).reshape(len(low_end), len(first)),

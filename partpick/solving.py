@@ -129,16 +129,9 @@ def windings(
 def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
     check_layout(request)
-    unplanned = [
-        (
-            request.limits.alignable is not None and any(band.swept for band in request.bands),
-            "limits.alignable with bands that are swept",
-        ),
-        *((True, f"the table [{name}]") for name, _ in request.extra if name not in PLANNED_TABLES),
-    ]
-    for asked, what in unplanned:
-        if asked:
-            raise RequestError(f"{what}: read and understood, but this version does not plan it yet")
+    for name, _ in request.extra:
+        if name not in PLANNED_TABLES:
+            raise RequestError(f"the table [{name}]: read and understood, but this version does not plan it yet")
 
 
 def _refit_pool(request: Request, catalogue: Catalogue) -> tuple[Capacitor, ...]:

@@ -14,6 +14,8 @@ from partpick.request import Tuning
 
 VARIABLE_Q = 1000.0  # an air-spaced variable capacitor; common practice, no source
 VARACTOR_Q = 150.0  # common practice, no source
+# of the capacitance of an element whose plan states no tolerance; common practice, no source
+TOLERANCE = {"variable capacitor": 0.05, "varactor": 0.10}
 KINDS_PLANNED = ("variable capacitor", "varactor")
 
 
@@ -44,6 +46,12 @@ def element_ends(tuning: Tuning) -> ElementEnds:
         f'tuning.kind: "{tuning.kind}" is read and understood, but this version plans only '
         + " and ".join(f'"{kind}"' for kind in KINDS_PLANNED)
     )
+
+
+def element_tolerance(tuning: Tuning) -> float:
+    """Return the tolerance of an element's capacitance, the kind's default where the plan states none. [fraction]"""
+    stated = tuning.get("tolerance")
+    return float(stated) if isinstance(stated, (int, float)) else TOLERANCE.get(tuning.kind, 0.05)
 
 
 def _number(tuning: Tuning, key: str) -> float:

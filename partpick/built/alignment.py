@@ -49,6 +49,7 @@ class Alignment:
     bands: tuple[BandAlignment, ...]
     coils: tuple[Setting, ...]
     share: float  # of units in which every band comes right, settings inside 20 to 80 % of travel
+    share_full: float  # over the full travel
     worst_case: bool  # every unit within tolerance, over the full travel
 
 
@@ -113,7 +114,7 @@ def alignment(
     tanks = variation.tanks
     if not any(tank.trimmer for tank in tanks) and not any(tank.coil in adjust for tank in tanks):
         return None
-    whole = np.ones(builds.shape[1], dtype=np.bool_)
+    whole, full = np.ones((2, builds.shape[1]), dtype=np.bool_)
     settings: list[Setting] = []
     figures: dict[str, BandAlignment] = {}
     worst_case = True
@@ -122,6 +123,7 @@ def alignment(
         group = _Group(variation, served, coil, adjust.get(coil, 0.0), error_limit)
         ok = group.aligned(builds)
         whole &= ok
+        full &= group.aligned(builds, FULL_TRAVEL)
         worst_case = worst_case and group.always_aligned()
         # settings are told of the units that can be aligned; if none can, of all of them
         chosen = builds[:, ok] if ok.any() else builds
@@ -132,6 +134,7 @@ def alignment(
         bands=tuple(figures[tank.name] for tank in tanks),
         coils=tuple(settings),
         share=float(whole.mean()),
+        share_full=float(full.mean()),
         worst_case=worst_case,
     )
 
@@ -152,10 +155,12 @@ class _Group:
         low, high = zip(*each, strict=True)
         return np.maximum.reduce(low), np.minimum.reduce(high)
 
-    def aligned(self, x: Floats) -> np.ndarray[tuple[int], np.dtype[np.bool_]]:
-        """Return in which builds every band comes right inside 20 to 80 % of each travel, (n,)."""
-        low, high = self.asked(x, INNER_TRAVEL)
-        least, most = coil_range(x, self.coil, self.adjust, INNER_TRAVEL)
+    def aligned(
+        self, x: Floats, travel: tuple[float, float] = INNER_TRAVEL
+    ) -> np.ndarray[tuple[int], np.dtype[np.bool_]]:
+        """Return in which builds every band comes right inside a part of each travel, 20 to 80 %, (n,)."""
+        low, high = self.asked(x, travel)
+        least, most = coil_range(x, self.coil, self.adjust, travel)
         ok: np.ndarray[tuple[int], np.dtype[np.bool_]] = np.maximum(low, least) <= np.minimum(high, most)
         return ok
 

@@ -10,11 +10,9 @@ from partpick.built.variation import CAPACITOR, COIL, SELF_CAPACITANCE, TUNING, 
 from partpick.candidates import Coils
 from partpick.circuit import Design, Tank
 from partpick.parts import Capacitor
-from partpick.request import Request, Tuning
+from partpick.request import Request
 from partpick.result import BandFigures, Candidate
-
-# of the capacitance of a tuning element whose plan states no tolerance; common practice, no source
-TUNING_TOLERANCE = {"variable capacitor": 0.05, "varactor": 0.10}
+from partpick.tuning import element_tolerance
 
 
 def variation(
@@ -127,7 +125,7 @@ def _swept(tank: Tank, pieces: Sequence[int], sources: _Sources, *, low_end: boo
                 reference="T",
                 kind=TUNING,
                 label=element.words,
-                size=_tuning_tolerance(tank.request.tuning),
+                size=element_tolerance(tank.request.tuning),
                 tempco=element.tempco,
             )
         ),
@@ -138,16 +136,11 @@ def _swept(tank: Tank, pieces: Sequence[int], sources: _Sources, *, low_end: boo
     )
 
 
-def _tuning_tolerance(tuning: Tuning) -> float:
-    stated = tuning.get("tolerance")
-    return float(stated) if isinstance(stated, (int, float)) else TUNING_TOLERANCE.get(tuning.kind, 0.05)
-
-
 def _notes(request: Request) -> tuple[str, ...]:
     tuning = request.tuning
     if tuning is None or tuning.get("tolerance") is not None or not any(band.swept for band in request.bands):
         return ()
-    taken = _tuning_tolerance(tuning) * 100
+    taken = element_tolerance(tuning) * 100
     return (f"tuning.tolerance not stated: {taken:g} % of the capacitance taken (common practice)",)
 
 

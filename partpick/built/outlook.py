@@ -217,6 +217,7 @@ def _band_alignment(own: BandAlignment) -> Entry:
 def _alignment(own: Alignment, candidate: Candidate) -> Entry:
     return {
         "share_aligned": own.share,
+        "share_over_full_travel": own.share_full,
         "worst_case_aligned": own.worst_case,
         "coils": [
             {"reference": coil.reference, "inductance_over_nominal": coil.value, **_setting(coil)}

@@ -6,6 +6,9 @@ prefer (same figures, later in the order of content, never scarcer) are dropped 
 
 from __future__ import annotations
 
+from dataclasses import replace
+from typing import Protocol
+
 import numpy as np
 
 from partpick.search.alignment import alignable
@@ -24,6 +27,16 @@ from partpick.search.grades import Grades
 from partpick.search.networks import Rows, Stream, Table, network_tables
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 from partpick.search.swept import SweptColumns
+
+
+class ColumnMaker(Protocol):
+    """What makes the columns of a coil at a band."""
+
+    def columns(self, coil: int, band: int, parts: int, lead: float | None = None) -> Columns:
+        """Return every column of `parts` parts inside all limits of one band."""
+
+    def for_shared_coils(self) -> ColumnMaker | None:
+        """Return what makes the columns of coils that serve several bands; None where it makes no difference."""
 
 
 class ColumnSource:
@@ -48,6 +61,7 @@ class ColumnSource:
     def _prepare(self) -> None:
         """Make what depends on the coils."""
         problem = self.problem
+        self._shared: ColumnSource | None = None
         self.levels = [
             problem.windows(parts) for parts in (0, 1)
         ]  # windows differ only by the share limit, which a band without capacitors is spared
@@ -61,6 +75,19 @@ class ColumnSource:
         other.gain = self.gain
         other._prepare()
         return other
+
+    def for_shared_coils(self) -> ColumnMaker | None:
+        """Return the source of coils that serve several bands; None where that makes no difference."""
+        p = self.problem
+        if not (p.alignable > 0 and p.coil_alone and bool((p.coil_adjust > 0).any())):
+            return None
+        if self._shared is None:
+            self._shared = self.with_problem(replace(p, coil_alone=False))
+        return self._shared
+
+    def with_problem(self, problem: Problem) -> ColumnSource:
+        """Return a source of the same kind for the same coils under other rules."""
+        return self.sharing_tables(problem)
 
     def _same_as_before(self, band: int) -> int | None:
         for earlier in range(band):

@@ -162,7 +162,7 @@ class LeastExcess:
     def _coverable(self) -> Bools:
         """Whether enough swing is left, alone or behind some padder, with nothing else in circuit."""
         p = self.problem
-        inside = p.in_play & p.swept[None, :]
+        inside = p.in_play & p.swept[None, :] & p.swings_enough()
         fixed, most, need = p.fixed_capacitance(), p.most_at_high_end, p.least_at_low_end
         for band in np.flatnonzero(p.swept):
             padders = series_padders(p, int(band), self.valid[band])

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable, Iterator
 from dataclasses import replace
 
 import numpy as np
@@ -17,9 +18,10 @@ from partpick.search.choose import (
     first_without_shared_limits,
     inside_shared_limits,
 )
-from partpick.search.columns import ColumnSource
+from partpick.search.columns import ColumnMaker
 from partpick.search.figures import Columns, fine_error
 from partpick.search.problem import NEVER, Floats, Ints, Problem
+from partpick.search.service import ways_to_serve
 
 NO_FIGURE = 1 << 62
 
@@ -30,7 +32,7 @@ class Evaluator:
     def __init__(
         self,
         problem: Problem,
-        source: ColumnSource,
+        source: ColumnMaker,
         monitor: Monitor,
         least: list[Floats] | None = None,
         fewest: Ints | None = None,
@@ -64,6 +66,9 @@ class Evaluator:
         """
         if not self._supports_in_stock(coils) or self._beyond_shared_limits(coils):
             return None
+        return _first(way._best(coils, by, to_beat) for way in self._ways(coils))
+
+    def _best(self, coils: tuple[int, ...], by: str, to_beat: Key | None) -> Choice | None:
         try:
             if by == "build":
                 return self._by_pieces(coils, to_beat)
@@ -72,6 +77,14 @@ class Evaluator:
             return self._by_price(coils, to_beat)
         except Beaten:
             return None
+
+    def _ways(self, coils: tuple[int, ...]) -> Iterator[Evaluator]:
+        """Yield one evaluator for each way in which adjustable coils may serve one band alone."""
+        for source in ways_to_serve(self.source, coils):
+            if source is self.source:
+                yield self
+            else:
+                yield Evaluator(self.problem, source, self.monitor, self.least, self.fewest)
 
     def least_error(self, coils: tuple[int, ...], pieces: int) -> Choice | None:
         """Return the choice of least worst error (or excess) with at most `pieces` pieces in all, or None."""
@@ -85,7 +98,7 @@ class Evaluator:
             return None
         inner.reached = self.reached
         # at the least error no fewer pieces will do, so a mixed plan too has its parts before its excess
-        return inner._by_error(coils, fewest_parts_first=True)
+        return _first(way._by_error(coils, fewest_parts_first=True) for way in inner._ways(coils))
 
     def _figure(self, coils: tuple[int, ...], band: int, parts: int) -> int:
         """Return the least leading figure of the coils with at most `parts` parts inside the band's limits."""
@@ -314,6 +327,11 @@ class Evaluator:
         error = max(int(columns.fine_error[0]) for columns in choice.columns)
         excess = max(int(columns.fine_excess[0]) for columns in choice.columns)
         return replace(choice, key=(error, excess, *choice.key))
+
+
+def _first(choices: Iterable[Choice | None]) -> Choice | None:
+    """Return the choice that comes first in the order, None where there is none."""
+    return min((choice for choice in choices if choice is not None), key=lambda choice: choice.key, default=None)
 
 
 def _fewest(bands: list[Columns], figures: list[Ints], most: int) -> int:

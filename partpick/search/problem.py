@@ -8,6 +8,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from fractions import Fraction
+from functools import cached_property
+from statistics import NormalDist
 
 import numpy as np
 from numpy.typing import NDArray
@@ -89,11 +91,14 @@ class Problem:
     part_loss_low: Floats = field(default_factory=_unset)  # (B, P) 1/Q
     margin: float = 0.0  # coverage beyond each end, fraction of f
     excess_limit: float = float("inf")
-    # alignment: whether each band's trimmer reaches its target whatever the parts are within tolerance
+    # alignment: whether each band can be brought right whatever the parts are within tolerance
     alignable: float = 0.0  # share of builds, 1: all corners, 0: not asked
     coil_spread: Floats = field(default_factory=_unset)  # (J,) fraction of the inductance, size
     part_tolerance: Floats = field(default_factory=_unset)  # (P,) fraction, size
     stray_tolerance: float = 0.0
+    tuning_tolerance: float = 0.0  # of the element's capacitance
+    coil_adjust: Floats = field(default_factory=_unset)  # (J,) fraction of the inductance, either way
+    coil_alone: bool = True  # a coil serves the one band alone, so that its adjustment is free for it
 
     def __post_init__(self) -> None:
         """Fill what a problem of fixed bands leaves out."""
@@ -111,6 +116,7 @@ class Problem:
             "part_loss_low": self.part_loss,
             "coil_spread": np.zeros(len(self.self_capacitance)),
             "part_tolerance": np.zeros(len(self.part_value)),
+            "coil_adjust": np.zeros(len(self.self_capacitance)),
         }
         for name, value in defaults.items():
             if getattr(self, name).size == 0:
@@ -192,8 +198,8 @@ class Problem:
         strays = self.self_capacitance[:, None] + self.stray[None, :]
         if parts > 0:
             low = np.maximum(low, strays / self.share - fixed)
-        if self.alignable == 1.0:
-            least, most = self._alignable_window(strays)
+        if self.alignable > 0:
+            least, most = self._alignable_window(strays) if self.alignable >= 1.0 else self._window_of_share()
             low, high = np.maximum(low, least), np.minimum(high, most)
         grain = 1e-12 * self.wanted  # rounding of the limits themselves
         low, high = low - grain, high + grain
@@ -209,11 +215,76 @@ class Problem:
 
         A network is never closer than its closest part, so that no network outside can be aligned. [F]
         """
-        coil = self.coil_spread[:, None]
-        part = float(self.part_tolerance.min()) if len(self.part_tolerance) else 0.0
-        least = self.wanted / (1.0 - coil) - self.trimmer_high - strays * (1.0 - self.stray_tolerance)
-        most = self.wanted / (1.0 + coil) - self.trimmer_low - strays * (1.0 + self.stray_tolerance)
-        return least / (1.0 - part), most / (1.0 + part)
+        down, up = (end[:, None] for end in self.coil_ends)
+        part = min(float(self.part_tolerance.min()), 0.999) if len(self.part_tolerance) else 0.0
+        least = self.wanted / down - self.trimmer_high - strays * (1.0 - self.stray_tolerance)
+        most = self.wanted / up - self.trimmer_low - strays * (1.0 + self.stray_tolerance)
+        least = np.where(least > 0, least / (1.0 - part), least)
+        return least, np.where(most > 0, most / (1.0 + part), most)
+
+    def _window_of_share(self) -> tuple[Floats, Floats]:
+        """Return what the network must be for the share asked for, with capacitors that have no tolerance, (J, B). [F]
+
+        Either failure may have at most the chance that is left: its margin is so many standard deviations.
+        """
+        deviations = NormalDist().inv_cdf(max(self.alignable, 0.5))
+        strays = self.self_capacitance[:, None] + self.stray[None, :]
+        of_strays = (self.self_capacitance**2)[:, None] + (self.stray**2)[None, :]
+        least, most = np.full(self.wanted.shape, np.inf), np.full(self.wanted.shape, -np.inf)
+        for (down, up), spread in self.coil_ways:
+            ends = []
+            for factor, sign in ((down, 1.0), (up, -1.0)):
+                wanted = self.wanted / factor[:, None]
+                square = (wanted * spread[:, None]) ** 2 + self.stray_tolerance**2 * of_strays
+                ends.append(wanted - strays - sign * deviations * np.sqrt(square / 3.0))
+            most = np.maximum(most, ends[0] - self.trimmer_low)
+            least = np.minimum(least, ends[1] - self.trimmer_high)
+        return least, most
+
+    @cached_property
+    def coil_ways(self) -> list[tuple[tuple[Floats, Floats], Floats]]:
+        """The ways to use adjustable coils: two factors of their inductance, and the spread left, (J,) each. [-]
+
+        Set to nominal as near as it goes; and, where a coil serves one band alone, turned down or up all the way.
+        The spread that is left is the size of a uniform one of the same variance.
+        """
+        one, over = np.ones_like(self.coil_spread), np.maximum(self.coil_spread - self.coil_adjust, 0.0)
+        left = np.sqrt(over**3 / np.maximum(self.coil_spread, 1e-300))
+        ways = [((one, one), left)]
+        if self.coil_alone and bool((self.coil_adjust > 0).any()):
+            ways.append(((1.0 - self.coil_adjust, 1.0 + self.coil_adjust), self.coil_spread))
+        return ways
+
+    @cached_property
+    def written(self) -> Floats:
+        """Each part's capacitance as it is printed, (P,). [F]"""
+        return np.array([float(value) for value in self.part_value], dtype=np.float64)
+
+    @cached_property
+    def coil_ends(self) -> tuple[Floats, Floats]:
+        """Which inductances every build can be given at least, and at most, over nominal, (J,) each. [-]
+
+        A coil that serves one band is turned as that band asks: the weakest one up, the strongest one down. A coil
+        of several bands is set once, to its nominal inductance as near as it goes; the trimmers do the rest.
+        """
+        spread = np.minimum(self.coil_spread, 1.0 - 1e-9)
+        weakest = (1.0 - spread) * (1.0 + self.coil_adjust)
+        strongest = (1.0 + spread) * (1.0 - self.coil_adjust)
+        if self.coil_alone:
+            return weakest, strongest
+        return np.minimum(weakest, 1.0), np.maximum(strongest, 1.0)
+
+    def swings_enough(self) -> Bools:
+        """Return where the tuning element alone has swing enough in every build asked for, (J, B).
+
+        A padder takes some of the swing away, so that nothing outside can cover.
+        """
+        if self.alignable < 1.0:
+            return np.ones(self.wanted.shape, dtype=np.bool_)
+        wide = 1.0 / ((2 * np.pi * self.low_end[None, :]) ** 2 * self.inductance_low)
+        swing = (self.tuning_high - self.tuning_low)[None, :] * (1.0 - self.tuning_tolerance)
+        enough: Bools = self.coil_ends[0][:, None] * swing >= wide - self.wanted - 1e-11 * wide
+        return enough
 
     def _before_leads(self, network: Floats) -> Floats:
         """Return the network that acts as `network` behind the leads' inductance."""

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from partpick.search.alignment import swept_alignable
 from partpick.search.coverage import SeriesPadders, series_padders
 from partpick.search.figures import (
     Columns,
@@ -152,6 +153,8 @@ class SweptColumns:
         if np.isfinite(p.drift_limit):
             nominal, spread = self._drift(coil, band, chosen, at_high, high_end)
             keep &= np.abs(nominal) + spread <= p.drift_limit * (1 + _GRAIN)
+        if p.alignable > 0:
+            keep &= self._alignable(coil, band, rows, chosen, behind)
         whole, none = np.zeros(len(chosen), dtype=np.int64), np.zeros(len(chosen))
         columns = Columns(
             coil=whole + coil,
@@ -175,6 +178,15 @@ class SweptColumns:
             fine_excess=whole_excess(excess, 1e-12),
         )
         return columns, keep
+
+    def _alignable(self, coil: int, band: int, rows: Rows, chosen: Ints, behind: bool) -> Bools:
+        p = self.problem
+        acting = p.species_low[band][rows.species], p.species[band][rows.species]
+        if not behind:
+            return swept_alignable(p, coil, band, acting, chosen, rows.shape, None, None)
+        across = acting[0][:, :-1], acting[1][:, :-1]
+        padder = acting[0][:, -1], acting[1][:, -1]
+        return swept_alignable(p, coil, band, across, chosen[:, :-1], rows.shape, chosen[:, -1], padder)
 
     def _ends(self, coil: int, band: int, rows: Rows, across: Species, padder: Ints) -> tuple[_End, _End]:
         """Return what is in circuit at the low end and at the high end."""

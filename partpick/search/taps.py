@@ -44,6 +44,10 @@ class TappedSource(ColumnSource):
         self.counts = counts  # (J,) sections of each coil
         self._of_coil = lru_cache(maxsize=256)(self._one_coil)
 
+    def with_problem(self, problem: Problem) -> TappedSource:
+        """Return the columns of the same coils and sections under other rules."""
+        return TappedSource(problem, self.sections, self.counts)
+
     def least_errors(self, parts: int) -> Floats:
         """Return the least size of error over the whole coil and its sections, (J, B). [-]"""
         best = super().least_errors(parts)
@@ -110,6 +114,8 @@ def section_problem(problem: Problem, sections: Sections) -> Problem:
         coil_loss_low=problem.coil_loss_low[row] + sections.further_loss_low,
         coil_tempco=problem.coil_tempco[row],
         coil_tempco_spread=problem.coil_tempco_spread[own],
+        coil_spread=problem.coil_spread[own],
+        coil_adjust=problem.coil_adjust[own],
         effort=problem.effort[own],
         coil_price=problem.coil_price[own],
         support=problem.support[own],

@@ -303,6 +303,8 @@ def all_plans(problem: Problem, columns_of=band_columns):
                     continue
                 choices = [columns_of(problem, j, b) for b, j in enumerate(assignment)]
                 for columns in itertools.product(*choices):
+                    if any(not c.get("shared", True) and assignment.count(c["coil"]) > 1 for c in columns):
+                        continue  # right only on a coil that no other band has
                     keyed = plan_key(problem, coils, columns, problem.by)
                     if keyed is not None:
                         key, worst = keyed
