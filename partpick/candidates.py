@@ -18,6 +18,7 @@ from partpick.forms.multilayer import multilayer_block
 from partpick.forms.pot import pot_block
 from partpick.forms.ring import ring_block
 from partpick.forms.rod import rod_block
+from partpick.forms.screen import Screen
 from partpick.forms.solenoid import solenoid_block
 from partpick.parts import Catalogue
 from partpick.physics.loss import dielectric_loss
@@ -37,6 +38,7 @@ FORMS = {
     "multilayer": multilayer_block,
     "bought": bought_block,
 }
+EASED_RESONANCE = 2.0  # times the highest frequency, for forms that are eased, where the plan states nothing
 LIMIT_ROUNDING = 1e-9  # a coil exactly on a limit is inside it
 
 
@@ -68,6 +70,7 @@ class Coils:
     effort_form: Ints  # (J,) 0 bought, 1 ring, 2 tube, 3 other
     rank: Ints  # (J,) place by content: form, former, wire, pitch, turns
     in_play: NDArray[np.bool_]  # (J, B)
+    considered: int = 0  # coils that there are, those included which no band can use
 
     def __len__(self) -> int:
         return len(self.turns)
@@ -160,7 +163,10 @@ def _range_words(low: float | None, high: float | None) -> str:
 
 
 def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
-    """Return every coil of the catalogue, evaluated at each band's frequency.
+    """Return every coil of the catalogue that some band might use, evaluated at each band's frequency.
+
+    Those which the limits on inductance, proportions or self-resonance keep from every band are left out
+    where a plan has no taps: a section of such a coil may do.
 
     Parameters
     ----------
@@ -177,10 +183,30 @@ def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
         blocks = [measured_block(request.coil, ends)]
     else:
         wanted = request.coil.forms or tuple(FORMS)
-        blocks = [FORMS[form](catalogue, ends, request.units) for form in FORMS if form in wanted]
-        blocks = [block for block in blocks if len(block.turns)]
-    coils = _joined(frequency, low_end, blocks)
+        screen = _screen(request)
+        blocks = [FORMS[form](catalogue, ends, request.units, screen) for form in FORMS if form in wanted]
+    considered = sum(block.considered for block in blocks)
+    blocks = [block for block in blocks if len(block.turns)]
+    coils = replace(_joined(frequency, low_end, blocks), considered=considered)
     return replace(coils, in_play=_in_play(request, coils))
+
+
+def _screen(request: Request) -> Screen:
+    """Return the limits that decide on a coil before its loss is known."""
+    rules, targets = request.coil, [band.highest for band in request.bands]
+    if rules.taps or not targets:
+        return Screen()
+    times, lowest = rules.self_resonance, min(targets)
+    eased = times if times is None or rules.self_resonance_stated else EASED_RESONANCE
+    return Screen(
+        proportions=rules.proportions,
+        inductance=rules.inductance,
+        reactance=rules.reactance,
+        self_resonance=None if times is None else times * lowest,
+        self_resonance_eased=None if eased is None else eased * lowest,
+        least=rules.least_wound,
+        frequency=(lowest, max(targets)),
+    )
 
 
 def _joined(frequency: Floats, low_end: Floats, blocks: list[Block]) -> Coils:
@@ -298,6 +324,8 @@ def inside_in_circuit(
     """
     rules, inductance = request.coil, coils.inductance[row]
     inside = np.isfinite(inductance) & (inductance > 0)
+    wound = coils.turns[whole] > 0
+    inside &= ~wound[:, None] | (inductance >= rules.least_wound * (1 - LIMIT_ROUNDING))
     inside &= _within(inductance, rules.inductance)
     inside &= _within(2 * np.pi * coils.frequency[None, :] * inductance, rules.reactance)
     if rules.self_resonance is not None:
@@ -323,7 +351,7 @@ def _resonance_times(rules: CoilRules, coils: Coils) -> Floats:
     times = np.full(len(coils), rules.self_resonance, dtype=float)
     if not rules.self_resonance_stated:
         eased = np.concatenate([np.full(len(b), b.eased_resonance) for b in coils.blocks] or [np.empty(0)])
-        times = np.where(eased > 0, 2.0, times)
+        times = np.where(eased > 0, EASED_RESONANCE, times)
     return times
 
 

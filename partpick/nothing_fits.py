@@ -8,11 +8,13 @@ from dataclasses import dataclass, replace
 from partpick.candidates import realisable_coils
 from partpick.parts import Catalogue
 from partpick.progress import Monitor
-from partpick.request import Request
+from partpick.quantities import format_quantity
+from partpick.request import LEAST_WOUND, Request
 from partpick.result import Candidate, RuledOut
 from partpick.tuning_range import beyond_reach
 
 LADDER = (1.1, 1.25, 1.5, 2.0, 3.0, 5.0, 1e6)  # how far Q and drift are eased, step by step, until a plan exists
+LEADS_DECIDE = f"of a wound coil below {format_quantity(LEAST_WOUND, 'H')} the leads decide"
 CLOSE_MISS = 5  # times the error limit: up to here a wider error limit is the first thing to think of
 
 Again = Callable[[Request, Catalogue, Monitor], Candidate | None]
@@ -155,6 +157,9 @@ def _coil_trials(request: Request) -> Iterator[_Trial]:
     for name, value, without in lifted:
         if value is not None:
             yield _Trial(name, replace(request, coil=without), lambda _: None, _coil_words)
+    if rules.least_wound > 0:
+        every = replace(request, coil=replace(rules, least_wound=0.0))
+        yield _Trial("least_wound", every, _least_coil, _leads_words)
     if rules.forms is not None:
         free = replace(rules, forms=None)
         yield _Trial("forms", replace(request, coil=free), lambda c: c.coils[0].form, _coil_words)
@@ -178,6 +183,14 @@ def _stock_words(candidate: Candidate) -> str:
 def _coil_words(candidate: Candidate) -> str:
     coils = "; ".join(coil.label for coil in candidate.coils)
     return f"without it: {coils}"
+
+
+def _least_coil(candidate: Candidate) -> float:
+    return min(coil.inductance for coil in candidate.coils)
+
+
+def _leads_words(candidate: Candidate) -> str:
+    return f"{_coil_words(candidate)}, but {LEADS_DECIDE}"
 
 
 def _alignable_words(request: Request) -> str:

@@ -51,6 +51,11 @@ class MeasuredDips:
     with_capacitance: tuple[float, float]  # F
 
 
+# A wound coil with less inductance than three times that of one centimetre of lead (8 nH) does not measure as
+# computed: its leads decide. Common practice, no source.
+LEAST_WOUND = 3 * 8e-9  # H
+
+
 @dataclass(frozen=True, kw_only=True)
 class CoilRules:
     """Which coils are in play."""
@@ -64,6 +69,7 @@ class CoilRules:
     proportions: tuple[float, float] | None = (0.4, 2.5)
     measured: float | MeasuredDips | None = None  # H
     self_capacitance: float | None = None  # F, goes with measured
+    least_wound: float = LEAST_WOUND  # H, at the band; no key of a plan, 0 where coils are but listed
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -7,7 +7,7 @@ from dataclasses import replace
 from partpick.assessment import assess, recheck
 from partpick.audit import audit
 from partpick.built.outlook import outlook, with_outlook
-from partpick.candidates import Coils, coil_figures, realisable_coils
+from partpick.candidates import LIMIT_ROUNDING, Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
 from partpick.cover import cover, span_of, with_bands
 from partpick.errors import RequestError
@@ -16,7 +16,7 @@ from partpick.nothing_fits import explain
 from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet
-from partpick.request import Band, Request
+from partpick.request import LEAST_WOUND, Band, Request
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
 from partpick.search.bands import Found, pieces_of_bound
 from partpick.search.choose import ORDERS, Choice
@@ -26,6 +26,7 @@ from partpick.stress import with_stress
 from partpick.tapping import column_source
 
 LOW_FREQUENCY = 1e3  # Hz
+TOO_SMALL = "its leads decide: no coil for a tank"
 PLANNED_TABLES = ("temperature", "spread", "drive")  # of the further tables of a plan
 
 
@@ -111,6 +112,7 @@ def windings(
     at : float, optional
         Frequency at which inductance, Q and series resistance are taken; low frequency otherwise. [Hz]
     """
+    request = replace(request, coil=replace(request.coil, least_wound=0.0))  # listed all the same, and told apart
     if at is None:  # any low frequency will do: only low-frequency inductances are told
         request = replace(request, bands=(Band(name="", at=LOW_FREQUENCY),))
     coils = realisable_coils(request, catalogue)
@@ -122,6 +124,8 @@ def windings(
             figure = replace(figure, inductance=figure.inductance_dc or figure.inductance)
         else:
             figure = replace(figure, extra={**figure.extra, **coils.at_band(int(coil), 0)})
+        if figure.turns and figure.inductance < LEAST_WOUND * (1 - LIMIT_ROUNDING):
+            figure = replace(figure, extra={**figure.extra, "note": TOO_SMALL})
         figures.append(figure)
     return tuple(figures)
 
@@ -168,7 +172,7 @@ def _result(
     return Result(
         request=request,
         floor=problem.floor,
-        proof=_proof(request, problem, found, candidates, front),
+        proof=_proof(request, coils, problem, found, candidates, front),
         candidates=candidates,
         front=front,
     )
@@ -208,23 +212,24 @@ def _candidate(
     return with_stress(request, looked_at)
 
 
-def _searched(request: Request, problem: Problem) -> str:
+def _searched(request: Request, coils: Coils, problem: Problem) -> str:
     """Return in words what was exhausted."""
-    coils = f"every one of {problem.coils} coils"
+    searched = f"every one of {coils.considered} coils"
     if problem.inductors > 1 and problem.bands > 1:
-        coils += f", alone and up to {problem.inductors} together"
+        searched += f", alone and up to {problem.inductors} together"
     if request.coil.taps:
-        coils += ", whole and at every tap"
+        searched += ", whole and at every tap"
     if request.switching == "shared":
-        return f"{coils} with every shared set of up to {problem.parts_limit} capacitors, for nominal values"
+        return f"{searched} with every shared set of up to {problem.parts_limit} capacitors, for nominal values"
     if request.switching == "stacked":
-        return f"{coils} with every stack of up to {problem.most_parts} capacitors a band, for nominal values"
+        return f"{searched} with every stack of up to {problem.most_parts} capacitors a band, for nominal values"
     least, most = problem.least_parts, problem.most_parts
-    return f"{coils} with every network of {least} to {most} capacitors a band, for nominal values"
+    return f"{searched} with every network of {least} to {most} capacitors a band, for nominal values"
 
 
 def _proof(
     request: Request,
+    coils: Coils,
     problem: Problem,
     found: Found,
     candidates: tuple[Candidate, ...],
@@ -237,7 +242,8 @@ def _proof(
     stages: list[Stage] = []
     if candidates:
         stages = _stages(problem, found, candidates[0], front)
-    return Proof(status=status, searched=_searched(request, problem), stages=tuple(stages), stopped_by=found.stopped_by)
+    searched = _searched(request, coils, problem)
+    return Proof(status=status, searched=searched, stages=tuple(stages), stopped_by=found.stopped_by)
 
 
 def _stages(problem: Problem, found: Found, first: Candidate, front: tuple[Candidate, ...]) -> list[Stage]:

@@ -100,7 +100,7 @@ def stock(*parts: Wire | Former | Core | Inductor) -> Catalogue:
 def wound(form: str, frequency: float, *parts: Wire | Former | Core | Inductor, **rules: Any) -> Coils:
     """Return every coil of one form that these parts give, evaluated at a frequency, no limit on coils set."""
     free: dict[str, Any] = {"self_resonance": None, "self_resonance_stated": True, "proportions": None}
-    coil = CoilRules(forms=(form,), **{**free, **rules})
+    coil = CoilRules(forms=(form,), **{**free, "least_wound": 0.0, **rules})
     request = Request(command="pair", bands=(Band(name="test", at=frequency),), coil=coil)
     return realisable_coils(request, stock(*parts))
 

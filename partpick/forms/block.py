@@ -85,6 +85,7 @@ class Block:
     eased_resonance: bool = False  # twice the highest frequency is enough unless the plan says more
     supports: tuple[Support, ...]
     wires: tuple[Wire, ...] = ()
+    considered: int = 0  # coils that there are, those included which no band can use
     support: Ints
     wire: Ints  # -1: none
     turns: Ints  # 0: bought

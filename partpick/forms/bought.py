@@ -16,13 +16,14 @@ from partpick.forms.block import (
     no_losses,
     stacked,
 )
+from partpick.forms.screen import Screen
 from partpick.parts import Catalogue, Inductor
 from partpick.physics.loss import BOUGHT_Q_SPREAD, bought_q
 
 CAPACITANCE_SPREAD = 0.30  # of a stated self-capacitance; common practice, no source
 
 
-def bought_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
+def bought_block(catalogue: Catalogue, frequency: Floats, units: int, _: Screen) -> Block:
     """Return every inductor as bought; its inductance holds at every frequency below its own resonance."""
     parts = [part for part in catalogue.inductors if enough(part.quantity, units)]
     count = len(parts)
@@ -37,6 +38,7 @@ def bought_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         form="bought",
         effort_form=BOUGHT,
         eased_resonance=True,
+        considered=count,
         supports=tuple(_support(part) for part in parts),
         support=np.arange(count, dtype=np.int64),
         wire=np.full(count, -1, dtype=np.int64),

@@ -38,6 +38,10 @@ class WireColumns:
             strand=np.array([_strand(w) for w in wires])[wire],
         )
 
+    def take(self, rows: Ints) -> WireColumns:
+        """Return the wire of some coils."""
+        return WireColumns(self.bare[rows], self.overall[rows], self.strands[rows], self.strand[rows])
+
     @property
     def stranded(self) -> np.ndarray[tuple[int], np.dtype[np.bool_]]:
         """Which coils are of stranded wire."""

@@ -27,6 +27,7 @@ def measured_block(rules: CoilRules, frequency: Floats) -> Block:
 
     return Block(
         form="measured",
+        considered=1,
         effort_form=BOUGHT,
         eased_resonance=True,
         supports=(Support(name="measured coil", quantity=1 << 30, source="measured, stated in the plan"),),

@@ -23,6 +23,7 @@ from partpick.forms.block import (
     wound_price,
 )
 from partpick.forms.copper import ABOVE_STRANDED, WireColumns, few_gauges, losses_of
+from partpick.forms.screen import Screen
 from partpick.forms.solenoid import former_support, turns_in_words
 from partpick.parts import Catalogue, Former, Wire
 from partpick.physics.geometry import layered_wire_length
@@ -50,20 +51,18 @@ OUTSIDE = (
 )
 
 
-def multilayer_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
+def multilayer_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Screen) -> Block:
     """Return coils of two layers and more, every whole number of turns, on each plain tube that is small."""
     formers = [f for f in catalogue.formers if _takes_layers(f) and enough(f.quantity, units)]
     layouts = _layouts(formers, catalogue.wires)
     layout, turns = layouts.coils()
-    support, wire = layouts.support[layout], layouts.wire[layout]
-    sizes = WireColumns.of(catalogue.wires, wire)
-    tube = column([former.diameter for former in formers])[support]
-    length = column([_length(former) for former in formers])[support]
-    coil = _Section(turns, tube, length, sizes)
+    every = _section(formers, catalogue.wires, layouts, layout, turns)
+    kept = screen.kept(every.inductance, every.inductance, every.self_capacitance, eased=True)
+    layout, turns = layout[kept], turns[kept]
+    coil = _section(formers, catalogue.wires, layouts, layout, turns)
+    support, wire, sizes, length = layouts.support[layout], layouts.wire[layout], coil.wire, coil.length
     inductance = at_every(coil.inductance, frequency)
-    self_capacitance = layered_self_capacitance(
-        coil.mean, length, coil.layers, layer_distance(sizes.bare, sizes.overall)
-    )
+    self_capacitance = coil.self_capacitance
     # The field stands between the layers, in the covering of the wire; hardly any of it is in the tube.
     losses = coil.losses(frequency, inductance).with_former(
         dielectric_loss(inductance, self_capacitance[:, None], frequency[None, :], COVERING_LOSS_TANGENT)
@@ -79,6 +78,7 @@ def multilayer_block(catalogue: Catalogue, frequency: Floats, units: int) -> Blo
         form="multilayer",
         effort_form=OTHER,
         eased_resonance=True,
+        considered=len(every.turns),
         supports=tuple(former_support(former) for former in formers),
         wires=catalogue.wires,
         support=support,
@@ -139,6 +139,11 @@ class _Section:
     def inductance(self) -> Floats:
         return multilayer_inductance(self.turns, self.mean, self.length, self.depth)
 
+    @cached_property
+    def self_capacitance(self) -> Floats:
+        distance = layer_distance(self.wire.bare, self.wire.overall)
+        return layered_self_capacitance(self.mean, self.length, self.layers, distance)
+
     def losses(self, frequency: Floats, inductance: Floats) -> Losses:
         field = section_field(self.turns, self.mean, self.length, self.depth)
         resistance = self.wire.dc_resistance(self.wire_length)
@@ -162,6 +167,15 @@ class _Section:
         if np.isnan(multilayer_spread(self.mean[row], self.length[row], self.depth[row])):
             said.append(OUTSIDE)
         return tuple(said)
+
+
+def _section(
+    formers: Sequence[Former], wires: tuple[Wire, ...], layouts: Layouts, layout: Ints, turns: Ints
+) -> _Section:
+    support = layouts.support[layout]
+    tube = column([former.diameter for former in formers])[support]
+    length = column([_length(former) for former in formers])[support]
+    return _Section(turns, tube, length, WireColumns.of(wires, layouts.wire[layout]))
 
 
 def _takes_layers(former: Former) -> bool:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import cached_property
 
 import numpy as np
 
@@ -10,6 +11,7 @@ from partpick.forms.block import (
     OTHER,
     Block,
     Floats,
+    Ints,
     Layouts,
     at_every,
     column,
@@ -19,6 +21,7 @@ from partpick.forms.block import (
 )
 from partpick.forms.copper import ABOVE_STRANDED, WireColumns, few_gauges, losses_of
 from partpick.forms.ring import core_ceiling, core_support
+from partpick.forms.screen import Screen
 from partpick.forms.solenoid import turns_in_words
 from partpick.parts import Catalogue, Core, Wire
 from partpick.physics.cores import core_inductance
@@ -37,7 +40,7 @@ MOST_TURNS = 200  # more, nobody winds by hand; common practice, no source
 WIRES_A_COUNT = 2  # so many of the thickest wires of a kind that a number of turns leaves room for
 
 
-def pot_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
+def pot_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Screen) -> Block:
     """Return every whole number of turns that fits each pot core, of the wires that fill its window best.
 
     Of each kind, solid and stranded, a number of turns takes the two thickest gauges with room for it: they
@@ -46,23 +49,17 @@ def pot_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     cores = [c for c in catalogue.cores if c.shape == "pot" and c.al is not None and enough(c.quantity, units)]
     layouts = _layouts(cores, catalogue.wires)
     layout, turns = layouts.coils()
-    support, wire = layouts.support[layout], layouts.wire[layout]
-    sizes = WireColumns.of(catalogue.wires, wire)
-    outer = column([core.outer_diameter for core in cores])[support]
-    height = column([core.height for core in cores])[support]
-    window = pot_window(outer, height)
-    a_layer = np.maximum(window_turns_that_fit(window.width, sizes.overall, sizes.overall), 1)
-    layers = np.ceil(turns / a_layer)
-    depth = layers * sizes.overall
-    wire_length = layered_wire_length(turns, window.inner_diameter, depth)
-    low_frequency = core_inductance(column([core.al for core in cores])[support], turns)
-    inductance = at_every(low_frequency, frequency)
-    field = window_field(turns, window.width, layers)
+    every = _Filled(cores, catalogue.wires, layouts, layout, turns)
+    kept = screen.kept(every.low_frequency, every.low_frequency, every.self_capacitance)
+    coil = _Filled(cores, catalogue.wires, layouts, layout[kept], turns[kept])
+    turns, support, wire, sizes = coil.turns, coil.support, coil.wire, coil.sizes
+    outer, height, self_capacitance = coil.outer, coil.height, coil.self_capacitance
+    wire_length = layered_wire_length(turns, coil.window.inner_diameter, coil.depth)
+    inductance = at_every(coil.low_frequency, frequency)
+    field = window_field(turns, coil.window.width, coil.layers)
     resistance = sizes.dc_resistance(wire_length)
-    mean = window.inner_diameter + depth
-    layered = layered_self_capacitance(mean, window.width, layers, layer_distance(sizes.bare, sizes.overall))
-    self_capacitance = np.where(layers >= 2, layered, ring_self_capacitance(outer))
-    covering = np.where(layers >= 2, COVERING_LOSS_TANGENT, 0.0)  # the core's Q has the field of a single layer
+    # the core's Q has the field of a single layer
+    covering = np.where(coil.layers >= 2, COVERING_LOSS_TANGENT, 0.0)
     losses = losses_of(
         frequency,
         inductance,
@@ -82,16 +79,17 @@ def pot_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     return Block(
         form="pot core",
         effort_form=OTHER,
+        considered=len(every.turns),
         supports=tuple(core_support(core) for core in cores),
         wires=catalogue.wires,
         support=support,
         wire=wire,
         turns=turns,
         pitch=none,
-        mean_diameter=mean,
+        mean_diameter=coil.mean,
         winding_length=none,
         wire_length=wire_length,
-        inductance_dc=low_frequency,
+        inductance_dc=coil.low_frequency,
         inductance=inductance,
         q=losses.q,
         losses=losses,
@@ -108,6 +106,30 @@ def pot_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         label=label,
         cautions=cautions,
     )
+
+
+class _Filled:
+    """Windings in their cores, (J,) each."""
+
+    def __init__(
+        self, cores: Sequence[Core], wires: tuple[Wire, ...], layouts: Layouts, layout: Ints, turns: Ints
+    ) -> None:
+        self.turns, self.support, self.wire = turns, layouts.support[layout], layouts.wire[layout]
+        self.sizes = WireColumns.of(wires, layouts.wire).take(layout)
+        self.outer = column([core.outer_diameter for core in cores])[self.support]
+        self.height = column([core.height for core in cores])[self.support]
+        self.low_frequency = core_inductance(column([core.al for core in cores])[self.support], turns)
+        self.window = pot_window(self.outer, self.height)
+        overall = self.sizes.overall
+        self.layers = np.ceil(turns / np.maximum(window_turns_that_fit(self.window.width, overall, overall), 1))
+        self.depth = self.layers * overall
+        self.mean = self.window.inner_diameter + self.depth
+
+    @cached_property
+    def self_capacitance(self) -> Floats:
+        distance = layer_distance(self.sizes.bare, self.sizes.overall)
+        layered = layered_self_capacitance(self.mean, self.window.width, self.layers, distance)
+        return np.where(self.layers >= 2, layered, ring_self_capacitance(self.outer))
 
 
 def _layouts(cores: Sequence[Core], wires: tuple[Wire, ...]) -> Layouts:

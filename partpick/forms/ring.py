@@ -17,6 +17,7 @@ from partpick.forms.block import (
     wound_price,
 )
 from partpick.forms.copper import ABOVE_STRANDED, WireColumns, covered, losses_of
+from partpick.forms.screen import Screen
 from partpick.forms.solenoid import turns_in_words
 from partpick.parts import Catalogue, Core, Wire
 from partpick.physics.cores import core_inductance, ring_al, ring_leak, ring_turns_that_fit
@@ -32,17 +33,21 @@ RING_COPPER_SPREAD = 0.15  # of a layer without ends, up to d/s = 0.6; estimate,
 LEAKY = 0.10  # a leak that is worth a word
 
 
-def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
+def ring_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Screen) -> Block:
     """Return every whole number of turns of every covered wire that fits each ring, one layer on the bore."""
     cores = [core for core in catalogue.cores if core.shape == "ring" and enough(core.quantity, units)]
     layouts = _layouts(cores, catalogue.wires)
     layout, turns = layouts.coils()
+    considered = len(turns)
+    low_frequency = core_inductance(column([_al(core) for core in cores])[layouts.support][layout], turns)
+    own = ring_self_capacitance(column([core.outer_diameter for core in cores]))[layouts.support][layout]
+    kept = screen.kept(low_frequency, low_frequency, own)
+    layout, turns, low_frequency, own = layout[kept], turns[kept], low_frequency[kept], own[kept]
     support, wire = layouts.support[layout], layouts.wire[layout]
     sizes = WireColumns.of(catalogue.wires, wire)
     outer = column([core.outer_diameter for core in cores])[support]
     inner = column([core.inner_diameter for core in cores])[support]
     height = column([core.height for core in cores])[support]
-    low_frequency = core_inductance(column([_al(core) for core in cores])[support], turns)
     inductance = at_every(low_frequency, frequency)
     wire_length = ring_wire_length(turns, outer, inner, height, sizes.overall)
     pitch = ring_pitch(turns, outer, inner, height, sizes.overall)
@@ -78,6 +83,7 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         form="ring core",
         tappable=True,
         effort_form=RING,
+        considered=considered,
         supports=tuple(core_support(core) for core in cores),
         wires=catalogue.wires,
         support=support,
@@ -91,7 +97,7 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         inductance=inductance,
         q=losses.q,
         losses=losses,
-        self_capacitance=ring_self_capacitance(outer),
+        self_capacitance=own,
         loss_tangent=none,
         spread=ring_spread(column([core.tolerance for core in cores])[support], permeability, leak),
         q_spread=losses.q_spread(

@@ -21,11 +21,11 @@ from partpick.forms.block import (
 )
 from partpick.forms.copper import WireColumns, few_gauges
 from partpick.forms.ring import core_ceiling, core_support
+from partpick.forms.screen import Screen
 from partpick.forms.solenoid import PITCH_TOLERANCE, SingleLayer, turns_in_words
 from partpick.parts import Catalogue, Core, Wire
 from partpick.physics.cores import core_inductance
 from partpick.physics.rod_core import rod_coil_in_range, rod_coil_rise, rod_coil_spread
-from partpick.physics.self_capacitance import solenoid_self_capacitance
 from partpick.physics.self_capacitance import solenoid_spread as self_capacitance_spread
 from partpick.physics.solenoid import solenoid_families
 
@@ -42,16 +42,24 @@ OUTSIDE = (
 )
 
 
-def rod_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
+def rod_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Screen) -> Block:
     """Return close-wound coils of every whole number of turns in the middle of each rod."""
     cores = [core for core in catalogue.cores if core.shape == "rod" and enough(core.quantity, units)]
     layouts = _layouts(cores, catalogue.wires)
     layout, turns = layouts.coils()
-    support, wire = layouts.support[layout], layouts.wire[layout]
-    sizes = WireColumns.of(catalogue.wires, wire)
-    rods = _Rods(cores, support)
-    coil = SingleLayer(turns, rods.diameter + sizes.overall, sizes.overall, sizes)
+    considered = len(turns)
     empty = _empty_coils(cores, catalogue.wires, layouts)
+    rods = _Rods(cores, layouts.support[layout])
+    coil = _on_rods(rods, catalogue.wires, layouts.wire[layout], turns)
+    # The rod raises the inductance of the empty coil, so that those which are too large as they are go first.
+    unknown = np.isfinite(rods.al)
+    kept = screen.kept(
+        np.where(unknown, 0.0, coil.least_inductance(empty)), np.full(considered, np.inf), coil.self_capacitance
+    )
+    layout, turns, empty = layout[kept], turns[kept], empty[kept]
+    support, wire = layouts.support[layout], layouts.wire[layout]
+    rods, coil = _Rods(cores, support), coil.take(kept)
+    sizes = coil.wire
     inside = (coil.mean, coil.length, rods.diameter, rods.length, rods.permeability)
     rise = rod_coil_rise(turns, *inside)
     measured = np.isfinite(rods.al)
@@ -75,6 +83,7 @@ def rod_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
     return Block(
         form="rod core",
         effort_form=OTHER,
+        considered=considered,
         supports=tuple(core_support(core) for core in cores),
         wires=catalogue.wires,
         support=support,
@@ -88,7 +97,7 @@ def rod_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
         inductance=inductance,
         q=losses.q,
         losses=losses,
-        self_capacitance=solenoid_self_capacitance(coil.mean, coil.l_over_d),
+        self_capacitance=coil.self_capacitance,
         loss_tangent=np.zeros(len(turns)),
         spread=spread,
         q_spread=losses.q_spread(np.maximum(coil.copper_spread, ROD_COPPER_SPREAD)),
@@ -112,6 +121,12 @@ class _Rods:
         self.permeability = column([core.permeability or 1.0 + 1e-6 for core in cores])[support]
         self.al = column([core.al for core in cores])[support]
         self.tolerance = column([core.tolerance for core in cores])[support]
+
+
+def _on_rods(rods: _Rods, wires: Sequence[Wire], wire: Ints, turns: Ints) -> SingleLayer:
+    """Return the windings, side by side, as they would be without their rods."""
+    sizes = WireColumns.of(wires, wire)
+    return SingleLayer(turns, rods.diameter + sizes.overall, sizes.overall, sizes)
 
 
 def _spread(

@@ -23,6 +23,7 @@ from partpick.forms.block import (
     wound_price,
 )
 from partpick.forms.copper import ABOVE_STRANDED, WireColumns, losses_of
+from partpick.forms.screen import Screen
 from partpick.parts import Catalogue, Former, Wire
 from partpick.physics.geometry import solenoid_wire_length
 from partpick.physics.loss import dielectric_loss
@@ -30,7 +31,11 @@ from partpick.physics.proximity import few_turns_factor, proximity_factor_spread
 from partpick.physics.self_capacitance import dielectric_share, solenoid_self_capacitance
 from partpick.physics.self_capacitance import solenoid_spread as self_capacitance_spread
 from partpick.physics.skin import internal_inductance_ratio
-from partpick.physics.solenoid import high_frequency_inductance, solenoid_families
+from partpick.physics.solenoid import (
+    high_frequency_inductance,
+    least_high_frequency_inductance,
+    solenoid_families,
+)
 from partpick.physics.spread import solenoid_model_spread, solenoid_spread
 from partpick.physics.stranded import STRANDED_HIGHEST, STRANDED_RESISTANCE_SPREAD
 
@@ -72,18 +77,21 @@ def _mandrel_pitch(former: Former, wire: Wire) -> float | None:
     return wanted if wanted >= least * (1 - FIT_ROUNDING) else None
 
 
-def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block:
+def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Screen) -> Block:
     """Return every whole number of turns of every wire that fits each former, in one layer."""
     formers = [former for former in catalogue.formers if enough(former.quantity, units)]
     layouts = _layouts(formers, catalogue.wires)
     layout, turns = layouts.coils()
-    support, wire, pitch = layouts.support[layout], layouts.wire[layout], layouts.pitch[layout]
-    sizes = WireColumns.of(catalogue.wires, wire)
-    outside = column([former.diameter for former in formers])[support]
     dc = _family_inductances(formers, catalogue.wires, layouts)
-    coil = SingleLayer(turns, outside + sizes.overall, pitch, sizes)
+    every = _single_layers(formers, catalogue.wires, layouts, layout, turns)
+    kept = screen.kept(
+        every.least_inductance(dc), dc, every.self_capacitance, proportions=every.l_over_d
+    )
+    coil, dc, layout, turns = every.take(kept), dc[kept], layout[kept], turns[kept]
+    support, wire, pitch, sizes = layouts.support[layout], layouts.wire[layout], coil.pitch, coil.wire
+    outside = column([former.diameter for former in formers])[support]
     inductance, copper = coil.at(frequency, dc)
-    self_capacitance = solenoid_self_capacitance(coil.mean, coil.l_over_d)
+    self_capacitance = coil.self_capacitance
     held = dielectric_share(coil.l_over_d) * column([former.loss_tangent for former in formers])[support]
     losses = copper.with_former(
         dielectric_loss(inductance, self_capacitance[:, None], frequency[None, :], held[:, None])
@@ -103,6 +111,7 @@ def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int) -> Block
         form="solenoid",
         tappable=True,
         effort_form=TUBE,
+        considered=len(every.turns),
         supports=tuple(former_support(former) for former in formers),
         wires=catalogue.wires,
         support=support,
@@ -157,6 +166,14 @@ def _lay(former: Former) -> str:
     return "twin" if former.pitch == "twin" else "groove"
 
 
+def _single_layers(
+    formers: list[Former], wires: tuple[Wire, ...], layouts: Layouts, layout: Ints, turns: Ints
+) -> SingleLayer:
+    sizes = WireColumns.of(wires, layouts.wire)
+    mean = column([former.diameter for former in formers])[layouts.support] + sizes.overall
+    return SingleLayer(turns, mean[layout], layouts.pitch[layout], sizes.take(layout))
+
+
 def _layouts(formers: list[Former], wires: tuple[Wire, ...]) -> Layouts:
     rows = []
     for i, former in enumerate(formers):
@@ -199,6 +216,10 @@ class SingleLayer:
     pitch: Floats
     wire: WireColumns
 
+    def take(self, rows: Ints) -> SingleLayer:
+        """Return some of them."""
+        return SingleLayer(self.turns[rows], self.mean[rows], self.pitch[rows], self.wire.take(rows))
+
     @cached_property
     def length(self) -> Floats:
         """Winding length. [m]"""
@@ -208,6 +229,16 @@ class SingleLayer:
     def l_over_d(self) -> Floats:
         """Winding length over mean diameter. [-]"""
         return self.length / self.mean
+
+    @cached_property
+    def self_capacitance(self) -> Floats:
+        """Self-capacitance with one end earthed. [F]"""
+        return solenoid_self_capacitance(self.mean, self.l_over_d)
+
+    def least_inductance(self, dc: Floats) -> Floats:
+        """Return what is left of the low-frequency inductance at any frequency, at least. [H]"""
+        solid = least_high_frequency_inductance(dc, self.turns, self.mean, self.wire.bare / self.pitch)
+        return np.where(self.wire.stranded, dc, solid)
 
     @cached_property
     def wire_length(self) -> Floats:

@@ -150,6 +150,41 @@ def high_frequency_inductance(
     return result
 
 
+def least_high_frequency_inductance(
+    dc_inductance: ArrayLike, turns: ArrayLike, diameter: ArrayLike, d_over_s: ArrayLike
+) -> FloatArray:
+    """Return an inductance that a single-layer coil keeps at every frequency.
+
+    Parameters
+    ----------
+    dc_inductance : float or (n,) array
+        Low-frequency inductance. [H]
+    turns : float or (n,) array
+        Number of turns. [-]
+    diameter : float or (n,) array
+        Mean diameter. [m]
+    d_over_s : float or (n,) array
+        Bare wire diameter over pitch, 0 to 1. [-]
+
+    Returns
+    -------
+    inductance : float or (n,) array
+        A lower bound of `high_frequency_inductance`, at least 0. [H]
+
+    Notes
+    -----
+    L - mu0 N D [1/8 + pi^2/8 (d/s)^2]: all current on the skin, and the proximity factor at most
+    1 + (pi^2/2)(d/s)^2, that of thin wire in an endless winding, within which the published table lies.
+
+    References
+    ----------
+    As `high_frequency_inductance`; the limit is that of S. Butterworth, Proc. R. Soc. A 107 (1925) 693-715.
+    """
+    dense = np.pi**2 / 8.0 * np.asarray(d_over_s, float) ** 2
+    lost = MU_0 * np.asarray(turns, float) * np.asarray(diameter, float) * (0.125 + dense)
+    return np.maximum(np.asarray(dc_inductance, float) - lost, 0.0)[()]
+
+
 def reaction_ratio(a_over_delta: ArrayLike) -> FloatArray:
     """Return how strongly a round wire pushes back a transverse field, compared with a perfect conductor.
 

@@ -54,6 +54,7 @@ def request_as_json(request: Request) -> dict[str, object]:
 def _coil(request: Request) -> dict[str, object]:
     coil = asdict(request.coil)
     stated = coil.pop("self_resonance_stated")
+    coil["least_wound_h"] = coil.pop("least_wound")
     coil["self_resonance_bought"] = coil["self_resonance"] if stated else _SELF_RESONANCE_BOUGHT
     measured = request.coil.measured
     if isinstance(measured, MeasuredDips):

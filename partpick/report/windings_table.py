@@ -37,7 +37,8 @@ def windings_table(
     lines.append(figures[0])
     for coil, line in zip(shown, figures[1:], strict=True):
         lines.append(line)
-        lines += wrapped(clean(coil.label), 4, 2)
+        note = coil.extra.get("note")
+        lines += wrapped(clean(f"{coil.label}; {note}" if note else coil.label), 4, 2)
     return "\n".join(lines) + "\n"
 
 
