@@ -4,8 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-import numpy as np
-
 from partpick.circuit import Design, Network
 from partpick.errors import RequestError
 from partpick.progress import Monitor
@@ -17,7 +15,7 @@ from partpick.search.networks import PARALLEL
 from partpick.search.problem import Problem
 
 Search = Callable[..., Found]
-FIXED_ONLY = ("stacked", "shared")  # planned for fixed bands on one coil, capacitors in parallel
+JOINT = ("stacked", "shared")  # layouts in which a capacitor serves several bands
 
 
 def check_layout(request: Request) -> None:
@@ -26,23 +24,24 @@ def check_layout(request: Request) -> None:
     Raises
     ------
     RequestError
-        Swept bands, several coils, taps, or series networks with a stacked or shared layout.
+        Series networks with a stacked or shared layout, swept bands with a shared one, or a share of
+        builds that can be aligned.
     """
-    if request.switching not in FIXED_ONLY:
+    layout = request.switching
+    if layout not in JOINT:
         return
-    unplanned = (
-        (any(band.swept for band in request.bands), "bands with from/to"),
-        (request.limits.inductors > 1, "limits.inductors above 1"),
-        (request.coil.taps, "coil.taps = true"),
-        (request.limits.alignable is not None, "limits.alignable"),
-        (request.capacitors.connect == "any", 'capacitors.connect = "any"'),
-    )
-    for asked, what in unplanned:
-        if asked:
-            raise RequestError(
-                f'switching = "{request.switching}": {what} is read and understood, but this version plans it only '
-                'with switching = "separate"'
-            )
+    if request.capacitors.connect == "any":
+        raise RequestError(
+            f'capacitors.connect = "any" with switching = "{layout}": what a switch adds there lies across the '
+            'capacitors already in circuit, in parallel; write connect = "parallel", or switching = "separate"'
+        )
+    if layout == "shared" and any(band.swept for band in request.bands):
+        raise RequestError('switching = "shared": a range goes with switching "separate" or "stacked" only')
+    if request.limits.alignable is not None:
+        raise RequestError(
+            f'switching = "{layout}": limits.alignable is read and understood, but this version plans it only with '
+            'switching = "separate"'
+        )
 
 
 def search_layout(
@@ -68,30 +67,59 @@ def search_layout(
 def design_of(request: Request, choice: Choice) -> Design:
     """Return a choice as a design: coils, networks, taps, and the capacitors that bands share."""
     coils = tuple(int(columns.coil[0]) for columns in choice.columns)
+    taps = tuple(int(columns.tap[0]) or None for columns in choice.columns)
     if request.switching == "separate":
         networks = tuple(
             Network(parts=columns.network_parts(0), shape=int(columns.shape[0]), series=columns.series_padder(0))
             for columns in choice.columns
         )
-        taps = tuple(int(columns.tap[0]) or None for columns in choice.columns)
         return Design(coils=coils, networks=networks, taps=taps)
-    members, closed = _stack(request, choice) if request.switching == "stacked" else _set(choice)
+    if request.switching == "stacked":
+        return _stacks(request, choice, coils, taps)
+    members, closed = _set(choice)
     networks = tuple(Network(parts=tuple(members[place] for place in own), shape=PARALLEL) for own in closed)
-    return Design(coils=coils, networks=networks, members=members, closed=closed)
+    return Design(coils=coils, networks=networks, taps=taps, members=members, closed=closed)
 
 
-def _stack(request: Request, choice: Choice) -> tuple[tuple[int, ...], tuple[tuple[int, ...], ...]]:
-    """Return the capacitors from the highest band down, and those in circuit at each band."""
-    from partpick.search.stacked import StackedChoice
+def _stacks(
+    request: Request, choice: Choice, coils: tuple[int, ...], taps: tuple[int | None, ...]
+) -> Design:
+    """Return stack after stack, that of the lowest band first, each from its highest band down.
+
+    A series padder is in circuit at its own band alone and comes last there.
+    """
+    from partpick.search.stack_plan import StackedChoice
 
     assert isinstance(choice, StackedChoice)
-    falling = np.argsort([-band.highest for band in request.bands], kind="stable")
     members: list[int] = []
     closed: dict[int, tuple[int, ...]] = {}
-    for band in falling.tolist():
-        members += choice.added[band]
-        closed[band] = tuple(range(len(members)))
-    return tuple(members), tuple(closed[band] for band in range(len(request.bands)))
+    networks: dict[int, Network] = {}
+    rising = rising_bands(request)
+    for coil in dict.fromkeys(coils[band] for band in rising):
+        across: list[int] = []
+        for band in (band for band in reversed(rising) if coils[band] == coil):
+            own, padder = choice.added[band], choice.columns[band].series_padder(0)
+            across += range(len(members), len(members) + len(own))
+            members += own
+            closed[band] = tuple(across)
+            if padder is not None:
+                closed[band] = (*across, len(members))
+                members.append(padder)
+            networks[band] = Network(parts=tuple(members[i] for i in across), shape=PARALLEL, series=padder)
+    every = range(len(request.bands))
+    return Design(
+        coils=coils,
+        networks=tuple(networks[band] for band in every),
+        taps=taps,
+        members=tuple(members),
+        closed=tuple(closed[band] for band in every),
+    )
+
+
+def rising_bands(request: Request) -> list[int]:
+    """Return the bands by target, swept bands by their lower end, the lowest first: a stack from its foot up."""
+    bands = request.bands
+    return sorted(range(len(bands)), key=lambda i: (bands[i].lowest, bands[i].highest, -i))
 
 
 def _set(choice: Choice) -> tuple[tuple[int, ...], tuple[tuple[int, ...], ...]]:

@@ -56,6 +56,7 @@ class Circuits:
         self._middle = (problem.trimmer_low + problem.trimmer_high) / 2
         self._fixed = problem.fixed_capacitance()
         self._limits = [problem.windows(parts) for parts in (0, 1)]
+        self.limits: Windows = self._limits[0], self._limits[1]
 
     def sums(self, band: int, parts: AnyInts) -> Floats:
         """Return the capacitance of each row of parts at a band, (m,); inf where one is of no use there. [F]"""

@@ -7,16 +7,17 @@ figures first, so a set's place in the order does not depend on any other set.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from partpick.search.choose import ORDERS, SUMS, Choice, column_content
-from partpick.search.circuits import Circuits, Windows
+from partpick.search.circuits import Circuits
 from partpick.search.figures import Columns
 from partpick.search.grades import Grades
 from partpick.search.networks import PARALLEL, Rows
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
+from partpick.search.set_mounts import SetMounts
 from partpick.search.shared_sets import Sets, SetSearch
 
 BLOCK = 1 << 18  # subset sums at one time
@@ -32,12 +33,12 @@ class SharedChoice(Choice):
 
 @dataclass(frozen=True, eq=False)
 class _Ways:
-    """Admissible subsets of some sets, set by set and band by band."""
+    """Admissible subsets of some sets, each on its mount, set by set and band by band."""
 
     owner: Ints  # (m,) index of the set
     band: Ints  # (m,)
     mask: Ints  # (m,) bit i: slot i is in circuit
-    columns: Columns
+    columns: Columns  # coil and tap of the whole problem
 
     def take(self, chosen: Ints | Bools) -> _Ways:
         return _Ways(self.owner[chosen], self.band[chosen], self.mask[chosen], self.columns.take(chosen))
@@ -60,33 +61,33 @@ class SetFigures:
     def best(
         self,
         found: Iterable[Sets],
-        windows: Windows,
+        mounts: SetMounts,
         by: str,
         narrow: Callable[[int, float], None] | None = None,
     ) -> dict[int, SharedChoice]:
-        """Return the first choice of each coil among all sets found, each of them served inside `windows`.
+        """Return the first choice of each plan among all sets found, each of them served by its mounts.
 
         Parameters
         ----------
         found : iterable of Sets
             The sets.
-        windows : tuple
-            Intervals of all coils. [F]
+        mounts : SetMounts
+            The plans.
         by : str
             Which order.
         narrow : callable, optional
-            Told of a coil and the largest error of interest whenever its first choice so far changes; to
+            Told of a plan and the largest error of interest whenever its first choice so far changes; to
             be given where all sets found have the same number of pieces and that leads the order.
         """
         order = ORDERS[by]
         kept: dict[int, tuple[tuple[int, ...], list[Ints]]] = {}
-        for sets in self._blocks(found):
-            parts, coil = self._graded(sets)
-            if not len(coil):
+        for sets in self._blocks(found, mounts.widest):
+            parts, row = self._graded(sets, mounts)
+            if not len(row):
                 continue
-            keys, alive = self._keys(coil, parts, windows, order)
-            for place in _first_of_each(coil, keys, alive):
-                key, j = tuple(int(k) for k in keys[place]), int(coil[place])
+            keys, alive = self._keys(row, parts, mounts, order)
+            for place in _first_of_each(row, keys, alive):
+                key, j = tuple(int(k) for k in keys[place]), int(row[place])
                 if j not in kept or key < kept[j][0]:
                     kept[j] = (key, [])
                     if narrow is not None:
@@ -94,50 +95,61 @@ class SetFigures:
                 if key == kept[j][0]:
                     kept[j][1].append(parts[place])
         return {
-            j: min((self._choice(j, parts, windows, order) for parts in ties), key=lambda c: c.key)
+            j: min((self._choice(j, parts, mounts, order) for parts in ties), key=lambda c: c.key)
             for j, (_, ties) in kept.items()
         }
 
-    def least_errors(self, sets: Sets, windows: Windows) -> Ints:
+    def least_errors(self, sets: Sets, mounts: SetMounts) -> Ints:
         """Return the least worst error of each set as the whole number of the order, NEVER where it has none."""
-        parts, coil = self._graded(sets, expand=False)
-        keys, alive = self._keys(coil, parts, windows, ("fine_error",))
+        parts, row = self._graded(sets, mounts, expand=False)
+        keys, alive = self._keys(row, parts, mounts, ("fine_error",))
         return np.where(alive, keys[:, 0], NEVER)
 
-    def _blocks(self, found: Iterable[Sets]) -> Iterable[Sets]:
+    def _blocks(self, found: Iterable[Sets], widest: int) -> Iterable[Sets]:
         for sets in found:
-            size = max(1, min(4096, BLOCK >> sets.letters.shape[1]))
+            size = max(1, min(4096, (BLOCK >> sets.letters.shape[1]) // widest))
             for start in range(0, len(sets), size):
                 yield sets.take(slice(start, start + size))
 
-    def _graded(self, sets: Sets, expand: bool = True) -> tuple[Ints, Ints]:
-        """Return the parts of each set in each choice of grades inside stock and price, and its coil."""
+    def _graded(self, sets: Sets, mounts: SetMounts, expand: bool = True) -> tuple[Ints, Ints]:
+        """Return the parts of each set in each choice of grades inside stock and price, and its plan."""
         search, problem = self.search, self.problem
         if search.single_parts or not expand:
-            return search.first_part[sets.letters].reshape(sets.letters.shape), sets.coil
+            return search.first_part[sets.letters].reshape(sets.letters.shape), sets.row
         shape = np.full(len(sets), PARALLEL, np.int8)
         rows = Rows(np.zeros(len(sets)), self.species[sets.letters].astype(np.int16), shape)
         origin, parts = self.grades.expand(rows)
-        coil = sets.coil[origin]
+        row = sets.row[origin]
         if problem.price_limit < NEVER:
-            inside = self.circuits.price(parts) + problem.coil_price[coil] <= problem.price_limit
-            parts, coil = parts[inside], coil[inside]
-        return parts, coil
+            inside = self.circuits.price(parts) + self._coils(mounts, row, problem.coil_price) <= problem.price_limit
+            parts, row = parts[inside], row[inside]
+        return parts, row
 
-    def _ways(self, coil: Ints, parts: Ints, windows: Windows) -> _Ways:
+    @staticmethod
+    def _coils(mounts: SetMounts, row: Ints, figure: Ints) -> Ints:
+        """Return a figure summed over the coils of some plans, (m, ...). [-]"""
+        coils = mounts.coils[row]
+        used = (coils >= 0).reshape(*coils.shape, *[1] * (figure.ndim - 1))
+        return np.where(used, figure[coils], 0).sum(axis=1)
+
+    def _ways(self, row: Ints, parts: Ints, mounts: SetMounts) -> _Ways:
         blocks = []
         slots = np.arange(parts.shape[1])[None, :]
         sums = self._subset_sums(parts, 0)
+        places = mounts.places
         for band in range(self.problem.bands):
             if band > 0 and not self.search.sums.alike:
                 sums = self._subset_sums(parts, band)
-            low, high = (side[coil, band][:, None] for side in windows[1])
-            inside = (sums >= low) & (sums <= high)
-            inside[:, 0] = (windows[0][0][coil, band] <= 0) & (windows[0][1][coil, band] >= 0)
-            owner, mask = np.nonzero(inside)
+            mount, which = mounts.at(band, row)
+            low, high = mounts.low[mount, band][:, None], mounts.high[mount, band][:, None]
+            inside = (sums[which] >= low) & (sums[which] <= high)
+            inside[:, 0] = mounts.bare[mount, band]
+            pair, mask = np.nonzero(inside)
+            owner, place = which[pair], mounts.place[mount[pair]]
             taken = np.where((mask[:, None] >> slots) & 1 == 1, parts[owner], -1)
             where = np.full(len(owner), band)
-            columns, keep = self.circuits.columns(coil[owner], where, taken)
+            columns, keep = places.circuits.columns(place, where, taken)
+            columns = replace(columns, coil=places.coil[place], tap=places.tap[place])
             blocks.append(_Ways(owner, where, mask, columns).take(keep))
         ways = _Ways(
             np.concatenate([w.owner for w in blocks]),
@@ -154,70 +166,77 @@ class SetFigures:
             sums = np.concatenate([sums, sums + acting[column][:, None]], axis=1)
         return sums
 
-    def _keys(
-        self, coil: Ints, parts: Ints, windows: Windows, order: tuple[str, ...]
-    ) -> tuple[Ints, Bools]:
+    def _keys(self, row: Ints, parts: Ints, mounts: SetMounts, order: tuple[str, ...]) -> tuple[Ints, Bools]:
         """Return each set's figures in the order, (m, steps), effort as three; and whether all bands are served."""
-        ways = self._ways(coil, parts, windows)
+        keys, alive, _ = self._staged(self._ways(row, parts, mounts), row, parts, mounts, order)
+        return keys, alive
+
+    def _staged(
+        self, ways: _Ways, row: Ints, parts: Ints, mounts: SetMounts, order: tuple[str, ...]
+    ) -> tuple[Ints, Bools, _Ways]:
+        """Return figures, whether all bands are served, and the ways left, one step of the order after the other."""
         bands = self.problem.bands
-        served = np.zeros((len(coil), bands), dtype=np.bool_)
+        served = np.zeros((len(row), bands), dtype=np.bool_)
         served[ways.owner, ways.band] = True
         alive = np.asarray(served.all(axis=1))
         ways = ways.take(alive[ways.owner])
         keys = []
         for name in order:
             if name == "effort":
-                keys += list(self.problem.effort[coil].T)
+                keys += list(self._coils(mounts, row, self.problem.effort).T)
             elif name in SUMS:
-                keys.append(self._sum(coil, parts, name))
+                keys.append(self._sum(row, parts, mounts, name))
             else:
-                worst, ways = _least_worst(ways, getattr(ways.columns, name), len(coil), bands)
+                worst, ways = _least_worst(ways, getattr(ways.columns, name), len(row), bands)
                 keys.append(worst)
-        return np.stack(keys, axis=1), alive
+        return np.stack(keys, axis=1), alive, ways
 
-    def _sum(self, coil: Ints, parts: Ints, name: str) -> Ints:
+    def _sum(self, row: Ints, parts: Ints, mounts: SetMounts, name: str) -> Ints:
         if name == "pieces":
-            return np.full(len(coil), parts.shape[1] + 1)
+            return parts.shape[1] + (mounts.coils[row] >= 0).sum(axis=1)
         if name == "commonness":
             return self.circuits.commonness(parts)
-        return np.minimum(self.circuits.price(parts) + self.problem.coil_price[coil], NEVER)
+        return np.minimum(self.circuits.price(parts) + self._coils(mounts, row, self.problem.coil_price), NEVER)
 
-    def _choice(
-        self, coil: int, parts: Ints, windows: Windows, order: tuple[str, ...]
-    ) -> SharedChoice:
+    def _choice(self, row: int, parts: Ints, mounts: SetMounts, order: tuple[str, ...]) -> SharedChoice:
         """Return the one choice of a set: equal subsets are settled by content."""
+        parts = parts[np.argsort(self.problem.part_rank[parts], kind="stable")]
+        rows = np.array([row])
+        ways = self._ways(rows, parts[None, :], mounts)
+        keys, _, left = self._staged(ways, rows, parts[None, :], mounts, order)
+        return self._first_by_content(row, parts, mounts, keys[0], left, order)
+
+    def _first_by_content(
+        self, row: int, parts: Ints, mounts: SetMounts, figures: Ints, ways: _Ways, order: tuple[str, ...]
+    ) -> SharedChoice:
         problem = self.problem
-        parts = parts[np.argsort(problem.part_rank[parts], kind="stable")]
-        ways = self._ways(np.array([coil]), parts[None, :], windows)
-        key: list[int | tuple[object, ...]] = []
-        for name in order:
-            if name == "effort":
-                key.append(tuple(int(e) for e in problem.effort[coil]))
-            elif name in SUMS:
-                key.append(int(self._sum(np.array([coil]), parts[None, :], name)[0]))
-            else:
-                worst, ways = _least_worst(ways, getattr(ways.columns, name), 1, problem.bands)
-                key.append(int(worst[0]))
         columns, closed = [], []
         for band in range(problem.bands):
             own = ways.take(ways.band == band)
-            row = min(
+            first = min(
                 range(len(own.mask)), key=lambda r: (column_content(problem, own.columns, r), int(own.mask[r]))
             )
-            columns.append(own.columns.take(np.array([row])))
-            closed.append(tuple(i for i in range(len(parts)) if int(own.mask[row]) >> i & 1))
+            columns.append(own.columns.take(np.array([first])))
+            closed.append(tuple(i for i in range(len(parts)) if int(own.mask[first]) >> i & 1))
+        values = iter(figures.tolist())
+        key: list[int | tuple[object, ...]] = []
+        for name in order:
+            key.append(tuple(next(values) for _ in range(3)) if name == "effort" else next(values))
         members = tuple(int(part) for part in parts)
-        key.append(self._content(coil, members, tuple(columns)))
-        return SharedChoice(tuple(key), (coil,), tuple(columns), members, tuple(closed))
+        coils = tuple(sorted(int(coil) for coil in mounts.coils[row] if coil >= 0))
+        key.append(self._content(coils, members, tuple(columns)))
+        return SharedChoice(tuple(key), coils, tuple(columns), members, tuple(closed))
 
-    def _content(self, coil: int, members: tuple[int, ...], columns: tuple[Columns, ...]) -> tuple[object, ...]:
-        """Return the last step of the order: the coil, the set, then each band's subset by frequency."""
+    def _content(
+        self, coils: tuple[int, ...], members: tuple[int, ...], columns: tuple[Columns, ...]
+    ) -> tuple[object, ...]:
+        """Return the last step of the order: the coils, the set, then each band's subset by frequency."""
         problem = self.problem
         values = tuple(sorted(problem.part_value[part] for part in members))
         ranks = tuple(int(problem.part_rank[part]) for part in members)
         by_frequency = np.argsort(problem.frequency, kind="stable")
         used = tuple(column_content(problem, columns[band], 0) for band in by_frequency)
-        return (int(problem.coil_rank[coil]),), values, ranks, used
+        return tuple(sorted(int(problem.coil_rank[coil]) for coil in coils)), values, ranks, used
 
 
 def _least_worst(ways: _Ways, figure: Ints, sets: int, bands: int) -> tuple[Ints, _Ways]:
@@ -234,12 +253,12 @@ def _least_worst(ways: _Ways, figure: Ints, sets: int, bands: int) -> tuple[Ints
     return worst, ways.take(figure <= worst[ways.owner])
 
 
-def _first_of_each(coil: Ints, keys: Ints, alive: Bools) -> list[int]:
-    """Return the rows that come first for their coil, all of those that tie."""
+def _first_of_each(row: Ints, keys: Ints, alive: Bools) -> list[int]:
+    """Return the sets that come first for their plan, all of those that tie."""
     rows = np.flatnonzero(alive)
     if not len(rows):
         return []
-    order = rows[np.lexsort((*keys[rows].T[::-1], coil[rows]))]
-    new = np.concatenate([[True], coil[order[1:]] != coil[order[:-1]]])
+    order = rows[np.lexsort((*keys[rows].T[::-1], row[rows]))]
+    new = np.concatenate([[True], row[order[1:]] != row[order[:-1]]])
     leader = order[np.flatnonzero(new)[np.cumsum(new) - 1]]
-    return [int(row) for row in order[(keys[order] == keys[leader]).all(axis=1)]]
+    return [int(place) for place in order[(keys[order] == keys[leader]).all(axis=1)]]

@@ -1,10 +1,11 @@
-"""All stacks of some coils as one layered graph, and the stages of the order on it.
+"""All stacks of some plans as one layered graph, and the stages of the order on it.
 
-A layer is a band, from the highest frequency down; a node is what is in circuit there; an edge is
-what the band adds. Circuits that every later band sees alike are one node (`StackNodes`). A figure of
-a band belongs to a node, a sum over the pieces to the edges, so that each step of the order is a
-shortest path (a sum) or a path whose largest node is least (a worst value), coil by coil; edges that
-no such path uses are dropped, and the next step goes on with the rest.
+A layer is a step: a band of one stack, from the highest target down, stack after stack. A node is what
+is in circuit there; an edge is what the band adds, and the mount (`mounts.py`) that it is then on.
+Circuits that every later band sees alike are one node (`StackNodes`). A figure of a band belongs to a
+circuit on its mount, a sum over the pieces to the edges, so that each step of the order is a shortest
+path (a sum) or a path whose largest figure is least (a worst value), plan by plan; edges that no such
+path uses are dropped, and the next step goes on with the rest.
 """
 
 from __future__ import annotations
@@ -16,77 +17,114 @@ from numpy.typing import NDArray
 
 from partpick.search.choose import ORDERS, SUMS
 from partpick.search.circuits import Circuits
+from partpick.search.mounts import Mounts
 from partpick.search.problem import NEVER, Bools, Ints
 
 ROWS = 20_000  # circuits whose figures are worked out at one time
 WORST = tuple(name for name in ORDERS["error"] if name not in SUMS and name != "effort")
-_FAR = np.int64(1) << 60
+FAR = np.int64(1) << 60
+Shorts = NDArray[np.int16]
+
+
+@dataclass(frozen=True, eq=False)
+class Spots:
+    """Circuits on their mounts, (s,): what the figures of a band belong to."""
+
+    place: Ints
+    parts: Shorts  # (s, w) across the coil, -1 where there are fewer
+    padder: Ints  # in series with the tuning element, -1: none
+
+    def take(self, chosen: Ints | Bools) -> Spots:
+        """Return the spots chosen by a mask or an index array."""
+        return Spots(self.place[chosen], self.parts[chosen], self.padder[chosen])
+
+    def __len__(self) -> int:
+        return len(self.place)
 
 
 @dataclass(eq=False)
 class Layer:
-    """The nodes of one band, (n,), and the edges that end in them, (e,)."""
+    """The nodes of one step, (n,), the edges that end in them, (e,), and the spots that edges pass, (s,)."""
 
-    band: int
-    coil: Ints  # (n,) place of the coil among those of the graph
-    parts: NDArray[np.int16]  # (n, w) one circuit of each node, -1 where there are fewer
+    number: int  # of the step
+    row: Ints  # (n,) place of the plan among those of the graph
+    pieces: Ints  # (n,) fewest capacitors that lead there
     tail: NDArray[np.int32]  # (e,) node of the layer before
     head: NDArray[np.int32]  # (e,)
-    added: NDArray[np.int16]  # (e, k) parts, -1 where there are fewer
+    spot: NDArray[np.int32]  # (e,)
+    added: Shorts  # (e, k) parts across the coil, -1 where there are fewer
+    spots: Spots
     alive: Bools = field(init=False)  # (e,)
-    figures: dict[str, Ints] = field(init=False)  # (n,) each, once `StackGraph.describe` was called
+    figures: dict[str, Ints] = field(init=False)  # (s,) each, once `StackGraph.describe` was called
     sums: dict[str, Ints] = field(init=False)  # (e,) each, likewise
 
     def __post_init__(self) -> None:
         """Start with every edge."""
         self.alive = np.ones(len(self.tail), dtype=np.bool_)
 
-
     def copy(self) -> Layer:
         """Return a layer that may be cut without changing this one."""
-        return Layer(self.band, self.coil, self.parts, self.tail, self.head, self.added)
+        return Layer(self.number, self.row, self.pieces, self.tail, self.head, self.spot, self.added, self.spots)
 
     def only(self, nodes: slice) -> Layer:
         """Return the layer with some of its nodes and the edges that end in those."""
-        number = np.full(len(self.coil), -1, dtype=np.int32)
-        number[nodes] = np.arange(len(self.coil[nodes]))
+        number = np.full(len(self.row), -1, dtype=np.int32)
+        number[nodes] = np.arange(len(self.row[nodes]))
         kept = number[self.head] >= 0
         head = number[self.head[kept]]
-        return Layer(self.band, self.coil[nodes], self.parts[nodes], self.tail[kept], head, self.added[kept])
+        return Layer(
+            self.number,
+            self.row[nodes],
+            self.pieces[nodes],
+            self.tail[kept],
+            head,
+            self.spot[kept],
+            self.added[kept],
+            self.spots,
+        )
 
 
 class StackGraph:
-    """Layers of some coils; what lies on no path is dropped from the start."""
+    """Layers of some plans; what lies on no path is dropped from the start."""
 
-    def __init__(self, coils: Ints, layers: list[Layer]) -> None:
-        self.coils = coils
+    def __init__(self, mounts: Mounts, layers: list[Layer]) -> None:
+        self.mounts = mounts
+        self.rows = len(mounts)
         self.layers = layers
         self.drop_dead_ends()
         self._compress()
 
     def _compress(self) -> None:
-        number = np.arange(len(self.coils))
+        number = np.arange(self.rows)
         for layer in self.layers:
             live = layer.alive
-            used = np.zeros(len(layer.coil), dtype=np.bool_)
+            used = np.zeros(len(layer.row), dtype=np.bool_)
             used[layer.head[live]] = True
+            passed = np.zeros(len(layer.spots), dtype=np.bool_)
+            passed[layer.spot[live]] = True
             layer.tail = number[layer.tail[live]].astype(np.int32)
             number = np.cumsum(used) - 1
             layer.head = number[layer.head[live]].astype(np.int32)
-            layer.coil, layer.parts, layer.added = layer.coil[used], layer.parts[used], layer.added[live]
+            layer.spot = (np.cumsum(passed) - 1)[layer.spot[live]].astype(np.int32)
+            layer.row, layer.pieces, layer.added = layer.row[used], layer.pieces[used], layer.added[live]
+            layer.spots = layer.spots.take(passed)
             layer.alive = np.ones(len(layer.tail), dtype=np.bool_)
 
     def describe(self, circuits: Circuits) -> None:
         """Work out the figures by which the paths are ordered."""
         for layer in self.layers:
             blocks = []
-            for start in range(0, max(1, len(layer.coil)), ROWS):
-                coil = self.coils[layer.coil[start : start + ROWS]]
-                parts = layer.parts[start : start + ROWS]
-                columns, _ = circuits.columns(coil, np.full(len(coil), layer.band), parts)
+            for start in range(0, max(1, len(layer.spots)), ROWS):
+                some = slice(start, start + ROWS)
+                spots = layer.spots
+                columns, _ = self.mounts.columns(
+                    layer.number, spots.place[some], spots.parts[some], spots.padder[some]
+                )
                 blocks.append([getattr(columns, name) for name in WORST])
             layer.figures = {name: np.concatenate(b) for name, b in zip(WORST, zip(*blocks, strict=True), strict=True)}
-            added = layer.added
+            added, padder = layer.added, layer.spots.padder[layer.spot]
+            if (padder >= 0).any():
+                added = np.concatenate([added, padder[:, None].astype(np.int16)], axis=1)
             layer.sums = {
                 "pieces": (added >= 0).sum(axis=1),
                 "commonness": circuits.commonness(added),
@@ -94,18 +132,18 @@ class StackGraph:
             }
 
     def solved(self) -> Bools:
-        """Return whether each coil has a path, (m,)."""
-        found = np.zeros(len(self.coils), dtype=np.bool_)
+        """Return whether each plan has a path, (m,)."""
+        found = np.zeros(self.rows, dtype=np.bool_)
         last = self.layers[-1]
-        found[last.coil[last.head[last.alive]]] = True
+        found[last.row[last.head[last.alive]]] = True
         return found
 
     def drop_dead_ends(self) -> None:
         """Drop the edges that no path from the first to the last layer uses."""
-        reached = np.ones(len(self.coils), dtype=np.bool_)
+        reached = np.ones(self.rows, dtype=np.bool_)
         for layer in self.layers:
             layer.alive &= reached[layer.tail]
-            reached = np.zeros(len(layer.coil), dtype=np.bool_)
+            reached = np.zeros(len(layer.row), dtype=np.bool_)
             reached[layer.head[layer.alive]] = True
         for layer in self.layers[::-1]:
             layer.alive &= reached[layer.head]
@@ -114,7 +152,7 @@ class StackGraph:
             reached[layer.tail[layer.alive]] = True
 
     def least_sum(self, name: str, own: Ints) -> Ints:
-        """Return the least sum of an edge figure for each coil, (m,), and keep to the paths that have it.
+        """Return the least sum of an edge figure for each plan, (m,), and keep to the paths that have it.
 
         A sum of NEVER or more is NEVER, and all such paths stay.
 
@@ -123,58 +161,58 @@ class StackGraph:
         name : str
             Which figure.
         own : (m,) array
-            What each coil itself adds to the sum. [-]
+            What each plan's coils add to the sum. [-]
         """
         forward = self._forward_sums(name)
-        best = self._least_of_coils(forward[-1])
-        unknown = (best < _FAR) & (best + own >= NEVER)
-        back = np.zeros(len(self.layers[-1].coil), dtype=np.int64)
+        best = self._least_of_rows(forward[-1])
+        unknown = (best < FAR) & (best + own >= NEVER)
+        back = np.zeros(len(self.layers[-1].row), dtype=np.int64)
         for place in range(len(self.layers) - 1, -1, -1):
             layer = self.layers[place]
             weight = layer.sums[name]
             through = forward[place][layer.tail] + weight + back[layer.head]
-            coil = layer.coil[layer.head]
+            row = layer.row[layer.head]
             live = layer.alive
-            back_new = np.full(self._size_before(layer), _FAR, dtype=np.int64)
+            back_new = np.full(self._size_before(layer), FAR, dtype=np.int64)
             np.minimum.at(back_new, layer.tail[live], (weight + back[layer.head])[live])
-            layer.alive = live & ((through == best[coil]) | unknown[coil])
+            layer.alive = live & ((through == best[row]) | unknown[row])
             back = back_new
         return np.minimum(best + own, NEVER)
 
     def _forward_sums(self, name: str) -> list[Ints]:
         """Return the least sum up to each node, before the first layer and after each."""
-        sums = [np.zeros(len(self.coils), dtype=np.int64)]
+        sums = [np.zeros(self.rows, dtype=np.int64)]
         for layer in self.layers:
             live = layer.alive
-            least = np.full(len(layer.coil), _FAR, dtype=np.int64)
+            least = np.full(len(layer.row), FAR, dtype=np.int64)
             np.minimum.at(least, layer.head[live], (sums[-1][layer.tail] + layer.sums[name])[live])
             sums.append(least)
         return sums
 
     def least_worst(self, name: str) -> Ints:
-        """Return the least worst node figure for each coil, (m,), and keep to the paths up to it."""
-        best = self._least_of_coils(self.worst_on_the_way(name))
+        """Return the least worst figure of a path of each plan, (m,), and keep to the paths up to it."""
+        best = self._least_of_rows(self.worst_on_the_way(name))
         for layer in self.layers:
-            inside = layer.figures[name] <= best[layer.coil]
-            layer.alive &= inside[layer.head]
+            layer.alive &= layer.figures[name][layer.spot] <= best[layer.row[layer.head]]
         self.drop_dead_ends()
         return best
 
     def worst_on_the_way(self, name: str) -> Ints:
         """Return the least worst figure of a path to each node of the last layer."""
-        worst = np.zeros(len(self.coils), dtype=np.int64)
+        worst = np.zeros(self.rows, dtype=np.int64)
         for layer in self.layers:
             live = layer.alive
-            least = np.full(len(layer.coil), _FAR, dtype=np.int64)
-            np.minimum.at(least, layer.head[live], worst[layer.tail[live]])
-            worst = np.where(least < _FAR, np.maximum(least, layer.figures[name]), _FAR)
+            through = np.maximum(worst[layer.tail], layer.figures[name][layer.spot])
+            least = np.full(len(layer.row), FAR, dtype=np.int64)
+            np.minimum.at(least, layer.head[live], through[live])
+            worst = least
         return worst
 
-    def _least_of_coils(self, of_nodes: Ints) -> Ints:
-        best = np.full(len(self.coils), _FAR, dtype=np.int64)
-        np.minimum.at(best, self.layers[-1].coil, of_nodes)
+    def _least_of_rows(self, of_nodes: Ints) -> Ints:
+        best = np.full(self.rows, FAR, dtype=np.int64)
+        np.minimum.at(best, self.layers[-1].row, of_nodes)
         return best
 
     def _size_before(self, layer: Layer) -> int:
         place = next(i for i, other in enumerate(self.layers) if other is layer)
-        return len(self.layers[place - 1].coil) if place else len(self.coils)
+        return len(self.layers[place - 1].row) if place else self.rows

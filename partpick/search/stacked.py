@@ -3,31 +3,31 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
-from fractions import Fraction
 
 import numpy as np
 
 from partpick.progress import Monitor
-from partpick.search.attempts import SMALLEST_ERROR, Attempt, least_grid_error, search_layout, worth_naming
+from partpick.search.attempts import SMALLEST_ERROR, Attempt, search_layout, worth_naming
 from partpick.search.bands import Found
 from partpick.search.bounds import IMPOSSIBLE
-from partpick.search.choose import ORDERS, SUMS, Choice, Stopped, column_content
-from partpick.search.circuits import Circuits, Windows
+from partpick.search.chains import Chains
+from partpick.search.choose import ORDERS, SUMS, Choice, Stopped
 from partpick.search.columns import ColumnSource
-from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
-from partpick.search.stack_graph import StackGraph
+from partpick.search.mounts import MountMaker, Mounts, steps_of
+from partpick.search.places import PlaceMaker
+from partpick.search.problem import NEVER, Bools, Ints, Problem
+from partpick.search.stack_graph import FAR, StackGraph
 from partpick.search.stack_nodes import StackNodes
+from partpick.search.stack_plan import StackedChoice, inside_shared_limits, named_stack
+from partpick.search.stack_reach import StackReach
+
+__all__ = ["StackedChoice", "search_stacked"]
 
 FRONT_STEP = 1e-9
 FRONT_WORK = 100_000_000  # places for capacitors in the graphs for the front
+TOGETHER = 16  # rows settled under the shared limits at one time
 
-
-@dataclass(frozen=True)
-class StackedChoice(Choice):
-    """A choice of one stack; `columns` name what is in circuit at each band."""
-
-    added: tuple[tuple[int, ...], ...] = ()  # (B, any) parts that each band adds, by content
+Figures = tuple[int, ...]
 
 
 def search_stacked(
@@ -39,14 +39,14 @@ def search_stacked(
     monitor: Monitor,
     front: bool = True,
 ) -> Found:
-    """Return the first `wanted` stacked plans, and the front of error against pieces.
+    """Return the first `wanted` stacked plans, and the front of error (or excess) against pieces.
 
     Parameters
     ----------
     problem : Problem
-        Fixed bands, one coil; `most_parts` is the most that a band may add.
+        `most_parts` is the most that a band may add, a series padder counted in.
     source : ColumnSource, optional
-        Not used: what is in circuit is no network of one band.
+        Knows the sections of coils where bands may use a tap.
     wanted : int
         How many rows. [-]
     all_windings : bool
@@ -59,126 +59,189 @@ def search_stacked(
     Raises
     ------
     ValueError
-        A band is swept, several coils or series networks are asked for.
+        Series networks are asked for.
     """
-    if problem.swept.any() or problem.inductors > 1 or problem.connect_any:
-        raise ValueError("a stack is planned for fixed bands, one coil and parallel capacitors")
-    engine = StackedEngine(problem, monitor, wanted, all_windings)
+    if problem.connect_any:
+        raise ValueError("a stack is planned for parallel capacitors")
+    engine = StackedEngine(problem, source, monitor, wanted, all_windings)
     return search_layout(engine, wanted=wanted, all_windings=all_windings, monitor=monitor, front=front)
 
 
 class StackedEngine:
     """Trials of stacks with more capacitors, larger errors or a higher price."""
 
-    def __init__(self, problem: Problem, monitor: Monitor, wanted: int, all_windings: bool) -> None:
+    def __init__(
+        self, problem: Problem, source: ColumnSource | None, monitor: Monitor, wanted: int, all_windings: bool
+    ) -> None:
         self.problem = problem
         self.monitor = monitor
         self.unproven: list[Choice] = []
         self.front_first = False
-        self.wanted, self.all_windings = wanted, all_windings
-        self.circuits = Circuits(problem)
-        self.nodes = StackNodes(problem, self.circuits, monitor)
+        self.wanted = wanted
+        places = PlaceMaker(problem, source)
+        self.circuits = places.circuits
+        self.maker = MountMaker(problem, places)
+        reach = StackReach(problem, self.maker)
+        self.nodes = StackNodes(problem, self.circuits, reach.sums, monitor)
         every = problem.bands * problem.most_parts
         self.most_pieces = min(every, problem.parts_limit)
         self._parts_limit_binds = self.most_pieces < every
-        every_coil = np.arange(problem.coils)
-        least = self.nodes.least_rest(self._windows(every_coil, np.inf))[:, 0]
-        self.least_pieces = np.minimum(least, IMPOSSIBLE)
-        self.least_error = np.maximum(least_grid_error(problem, self.circuits.acting), self._least_error_at_top())
+        chains = Chains(problem, reach, self.most_pieces)
+        self.rows, self._patterns = chains.rows, chains.patterns
+        self.most_rows = places.rows_at_once(self.rows.coils.shape[1])
+        self._group = self.rows.groups(all_windings)
         # paths multiply band by band, so the more bands, the finer the steps
         self.error_step = float(2.0 ** min(1.0, 4.0 / problem.bands))
+        self._lead = "fine_excess" if problem.led_by_excess else "fine_error"
         prices = problem.part_price[problem.part_price < NEVER]
         self._cheapest = int(prices.min()) if len(prices) else NEVER
 
-    def attempt(self, coils: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
-        """Return the first choice of each coil inside the attempt; see `attempts.Engine`."""
-        best: dict[int, tuple[tuple[int, ...], Choice | None]] = {}
-        budget = self._budget(attempt)
-        count = self._parts_limit_binds and by != "build"
-        windows = self._windows(coils, attempt.error)
-        for graph in self._kept(self._graphs(coils, windows, budget, attempt.price, count), best):
-            keys, inside = self._settle(graph, ORDERS[by], attempt.price)
-            worth = worth_naming(self.problem, coils, keys, inside, self.wanted, self.all_windings)
+    def attempt(self, rows: Ints, attempt: Attempt, by: str) -> tuple[dict[int, Choice], Ints]:
+        """Return the first choice of each row inside the attempt; see `attempts.Engine`."""
+        trial = _Trial(rows, self._budget(rows, attempt), attempt, by)
+        mounts = self._mounts(rows, attempt.lead)
+        if self.nodes.scarce:
+            self._settle_under_shared_limits(trial, mounts)
+        else:
+            self._settle_all(trial, mounts, shared=False)
+        made = {int(rows[place]): choice for place, (_, choice) in trial.best.items() if choice is not None}
+        return made, np.sort(rows[list(trial.best)])
+
+    def _settle_all(self, trial: _Trial, mounts: Mounts, *, shared: bool) -> None:
+        """Find the first choice of each row of a trial; without the shared limits where `shared` is false."""
+        count = self._parts_limit_binds and trial.by != "build"
+        order = ORDERS[trial.by]
+        graphs = self.nodes.graphs(mounts, trial.budget, trial.attempt.price, shared=shared, count_pieces=count)
+        for graph in self._kept(graphs, trial):
+            if not graph.solved().any():
+                continue
+            graph.describe(self.circuits)
+            keys, inside = self._settle(graph, order, trial)
+            worth = set(worth_naming(keys, inside, self._group[trial.rows], self.wanted))
             for place in np.flatnonzero(inside).tolist():
-                figures, coil = tuple(keys[place].tolist()), int(coils[place])
-                known = best.get(coil)
+                figures = tuple(keys[place].tolist())
+                known = trial.best.get(place)
                 if known is not None and known[0] < figures:
                     continue
-                named = self._named(graph, place, keys[place], ORDERS[by]) if place in worth else None
-                best[coil] = figures, _first(named, known[1]) if known and known[0] == figures else named
-                if by == "error":
-                    self._narrow(windows, coils, place, figures[0])
-        made = {coil: choice for coil, (_, choice) in best.items() if choice is not None}
-        return made, np.array(sorted(best), dtype=np.int64)
+                named = self._named(graph, place, figures, order) if place in worth else None
+                trial.best[place] = figures, _first(named, known[1]) if known and known[0] == figures else named
+                if trial.by == "error":
+                    mounts.narrow(place, (figures[order.index(self._lead)] + 0.5) * 1e-12)
 
-    def _kept(
-        self, graphs: Iterator[StackGraph], best: dict[int, tuple[tuple[int, ...], Choice | None]]
-    ) -> Iterator[StackGraph]:
+    def _settle_under_shared_limits(self, trial: _Trial, mounts: Mounts) -> None:
+        """Find first choices without the shared limits, then with them those that these rule out.
+
+        A row is not worth a closer look once `wanted` others rank before what it has without them.
+        """
+        free = trial.again(trial.rows)
+        self._settle_all(free, mounts, shared=False)
+        ranked = sorted(free.best, key=lambda place: free.best[place][0])
+        found: dict[int, Figures] = {}
+        group = self._group[trial.rows]
+        while ranked:
+            if len(found) >= self.wanted and sorted(found.values())[self.wanted - 1] < free.best[ranked[0]][0]:
+                break
+            some, ranked = ranked[:TOGETHER], ranked[TOGETHER:]
+            for place in some:
+                figures, choice = free.best[place]
+                if choice is not None and inside_shared_limits(self.problem, choice):
+                    trial.best[place] = figures, choice
+            rest = np.array([place for place in some if place not in trial.best], dtype=np.int64)
+            if len(rest):
+                closer = trial.again(trial.rows[rest], rest)
+                try:
+                    self._settle_all(closer, self._mounts(closer.rows, trial.attempt.lead), shared=True)
+                finally:
+                    trial.best |= {int(rest[place]): known for place, known in closer.best.items()}
+            for place in some:
+                if place in trial.best:
+                    key = int(group[place])
+                    found[key] = min(found.get(key, trial.best[place][0]), trial.best[place][0])
+        for place in ranked:  # behind the rows wanted, whatever the shared limits say
+            trial.best[place] = free.best[place][0], None
+
+    def _kept(self, graphs: Iterator[StackGraph], trial: _Trial) -> Iterator[StackGraph]:
         """Hand on graphs; where a stop ends them, leave what was found so far in `unproven`."""
         try:
             yield from graphs
         except Stopped:
-            self.unproven = [choice for _, choice in best.values() if choice is not None]
+            known = [choice for _, choice in trial.best.values() if choice is not None]
+            self.unproven += [choice for choice in known if inside_shared_limits(self.problem, choice)]
             raise
 
-    def _narrow(self, windows: Windows, coils: Ints, place: int, fine: int) -> None:
-        """Leave out what is worse than a stack already found."""
-        row = np.array([place])
-        rows = self.circuits.windows(np.array([(fine + 0.5) * 1e-12]), coils[row])
-        for side, new in zip(windows, rows, strict=True):
-            for end, value in zip(side, new, strict=True):
-                end[row] = value
-
-    def front(self, coils: Ints, emit: Callable[[Choice], None]) -> None:
-        """Hand over the least worst error for each number of pieces; see `attempts.Engine`.
+    def front(self, rows: Ints, emit: Callable[[Choice], None]) -> None:
+        """Hand over the least leading figure for each number of pieces; see `attempts.Engine`.
 
         Larger and larger errors are tried with fewer and fewer capacitors: what has more than the
         least number found at a smaller error cannot be on the front again.
         """
-        corners: list[tuple[int, int, list[int]]] = []  # capacitors, fine error, coils that reach it
-        budget = self.most_pieces
-        least = float(self.least_error[coils].min(initial=np.inf))
-        error = max(SMALLEST_ERROR, least * (1 + 1e-9))
-        fewest = int(self.least_pieces[coils].min(initial=IMPOSSIBLE))
-        top = float(self.problem.error_limit.max())
+        corners: list[tuple[int, int, list[int]]] = []  # pieces, leading figure, rows that reach it
+        own = self.rows
+        budget = self.most_pieces + int(own.size.max(initial=1))
+        least = float(own.least_error[rows].min(initial=np.inf))
+        lead = max(SMALLEST_ERROR, least * (1 + 1e-9))
+        fewest = int((own.least_pieces + own.size)[rows].min(initial=IMPOSSIBLE))
+        p = self.problem
+        top = p.excess_limit if p.led_by_excess else float(p.error_limit[~p.swept].max())
         self.nodes.allow(FRONT_WORK)
         stopped: Stopped | None = None
         while budget >= fewest and stopped is None:
-            error = error if error < min(0.5, top) else np.inf
-            self.monitor.report(f"the least error with {budget + 1} pieces or fewer")
+            lead = lead if lead < min(0.5, top) else np.inf
+            self.monitor.report(f"the least error with {budget} pieces or fewer")
             try:
-                reached = self._least_by_pieces(coils, error, budget)
+                reached = self._least_by_pieces(rows, lead, budget)
             except Stopped as stop:
                 stopped = stop
                 break
             corners += [(pieces, fine, who) for pieces, (fine, who) in sorted(reached.items())]
             budget = min([budget, *(pieces - 1 for pieces in reached)])
-            if error == np.inf:
+            if lead == np.inf:
                 break
-            error *= self.error_step
+            lead *= self.error_step
         self.nodes.allow(FRONT_WORK)
         self._emit_front(corners, emit)  # those with most pieces are certain even after a stop
         if stopped is not None:
             raise stopped
 
-    def _least_by_pieces(self, coils: Ints, error: float, budget: int) -> dict[int, tuple[int, list[int]]]:
-        """Return the least fine error of any coil for each number of capacitors, and who reaches it."""
-        p = self.problem
-        near = coils[(self.least_error[coils] <= error) & (self.least_pieces[coils] <= budget)]
-        price = np.full(p.coils, p.price_limit)
+    def _alike(self, rows: Ints) -> Iterator[Ints]:
+        """Yield rows of one pattern, some at a time."""
+        order = rows[np.argsort(self.rows.pattern[rows], kind="stable")]
+        for own in np.split(order, np.flatnonzero(np.diff(self.rows.pattern[order])) + 1):
+            yield from (own[start : start + self.most_rows] for start in range(0, len(own), self.most_rows))
+
+    def _least_by_pieces(self, rows: Ints, lead: float, budget: int) -> dict[int, tuple[int, list[int]]]:
+        """Return the least leading figure of any row for each number of pieces, and who reaches it."""
+        own = self.rows
+        near = rows[(own.least_error[rows] <= lead) & ((own.least_pieces + own.size)[rows] <= budget)]
         reached: dict[int, tuple[int, list[int]]] = {}
-        for graph in self._graphs(near, self._windows(near, error), np.full(p.coils, budget), price, True):
-            worst = graph.worst_on_the_way("fine_error")
-            last = graph.layers[-1]
-            for node in np.flatnonzero(worst < NEVER):
-                pieces, fine = int((last.parts[node] >= 0).sum()), int(worst[node])
-                coil = int(graph.coils[last.coil[node]])
-                known = reached.get(pieces)
-                if known is None or fine < known[0]:
-                    reached[pieces] = (fine, [coil])
-                elif fine == known[0] and coil not in known[1]:
-                    known[1].append(coil)
+        for some in self._alike(near):
+            price = np.full(len(some), self.problem.price_limit)
+            left = np.minimum(budget - own.size[some], self.most_pieces)
+            mounts = self._mounts(some, lead)
+            for graph in self._all_graphs(mounts, left, price):
+                worst = graph.worst_on_the_way(self._lead)
+                last = graph.layers[-1]
+                for node in np.flatnonzero(worst < FAR):
+                    row = int(some[last.row[node]])
+                    pieces, fine = int(last.pieces[node] + own.size[row]), int(worst[node])
+                    known = reached.get(pieces)
+                    if known is None or fine < known[0]:
+                        reached[pieces] = (fine, [row])
+                    elif fine == known[0] and row not in known[1]:
+                        known[1].append(row)
         return reached
+
+    def _all_graphs(self, mounts: Mounts, budget: Ints, price: Ints) -> Iterator[StackGraph]:
+        """Yield graphs, with figures, of every stack by number of pieces under all limits."""
+        if self.nodes.scarce:  # most rows fall out without a look at the shared limits
+            solved = np.zeros(len(mounts), dtype=np.bool_)
+            for graph in self.nodes.graphs(mounts, budget, price, count_pieces=True):
+                solved |= graph.solved()
+            budget = np.where(solved, budget, -1)
+        for graph in self.nodes.graphs(mounts, budget, price, shared=self.nodes.scarce, count_pieces=True):
+            if graph.solved().any():
+                graph.describe(self.circuits)
+                yield graph
 
     def _emit_front(
         self, corners: list[tuple[int, int, list[int]]], emit: Callable[[Choice], None]
@@ -187,136 +250,73 @@ class StackedEngine:
         for pieces, fine, who in sorted(corners):
             if fine * 1e-12 >= last - FRONT_STEP + 1e-12:
                 continue
-            best = self._at_error(np.array(who), fine, pieces)
-            error = max(abs(float(columns.error[0])) for columns in best.columns)
-            if error < last - FRONT_STEP:
-                last = error
+            best = self._at_lead(np.array(who), fine, pieces)
+            name = "excess" if self.problem.led_by_excess else "error"
+            lead = max(abs(float(getattr(columns, name)[0])) for columns in best.columns)
+            if lead < last - FRONT_STEP:
+                last = lead
                 emit(best)
 
-    def _at_error(self, coils: Ints, fine: int, pieces: int) -> Choice:
-        """Return the first choice by error of some coils that reach an error with so many capacitors."""
-        p = self.problem
-        price, budget = np.full(p.coils, p.price_limit), np.full(p.coils, pieces)
+    def _at_lead(self, rows: Ints, fine: int, pieces: int) -> Choice:
+        """Return the first choice by error of some rows that reach a leading figure with so many pieces."""
         named: list[Choice] = []
-        windows = self._windows(coils, (fine + 0.5) * 1e-12)
-        for graph in self._graphs(coils, windows, budget, price, True):
-            keys, inside = self._settle(graph, ORDERS["error"], price)
-            for place in worth_naming(p, graph.coils, keys, inside, 1, True):
-                named.append(self._named(graph, place, keys[place], ORDERS["error"]))
+        for some in self._alike(rows):
+            price, budget = np.full(len(some), self.problem.price_limit), pieces - self.rows.size[some]
+            trial = _Trial(some, budget, Attempt(pieces, np.inf, price), "error")
+            for graph in self._all_graphs(self._mounts(some, (fine + 0.5) * 1e-12), budget, price):
+                keys, inside = self._settle(graph, ORDERS["error"], trial)
+                for place in worth_naming(keys, inside, np.arange(len(some)), 1):
+                    named.append(self._named(graph, place, tuple(keys[place].tolist()), ORDERS["error"]))
         return min(named, key=lambda choice: choice.key)
 
-    def _least_error_at_top(self) -> Floats:
-        """Return the least error of each coil at the highest band, whose capacitors stand alone, (J,)."""
-        p, band = self.problem, int(self.nodes.order[0])
-        fixed = p.fixed_capacitance()[:, band]
-        if p.lead_inductance > 0:
-            return np.zeros(p.coils)
-        best = np.full(p.coils, np.inf)
-        for sums in self.nodes.sums.stored(band)[: p.most_parts + 1]:
-            place = np.searchsorted(sums, p.wanted[:, band] - fixed)
-            for side in (np.maximum(place - 1, 0), np.minimum(place, len(sums) - 1)):
-                total = np.maximum(fixed + sums[side], 1e-30)
-                best = np.minimum(best, np.abs(np.sqrt(p.wanted[:, band] / total) - 1.0))
-        return best if self.nodes.sums.complete(band, p.most_parts) else np.zeros(p.coils)
-
-    def _budget(self, attempt: Attempt) -> Ints:
-        budget = np.full(self.problem.coils, attempt.pieces, dtype=np.int64)
+    def _budget(self, rows: Ints, attempt: Attempt) -> Ints:
+        budget = np.full(len(rows), attempt.pieces, dtype=np.int64)
         if 0 < self._cheapest < NEVER:
-            afford = (attempt.price - self.problem.coil_price) // self._cheapest
+            afford = (attempt.price - self.rows.price[rows]) // self._cheapest
             budget = np.where(attempt.price < NEVER, np.minimum(budget, afford), budget)
         return budget
 
-    def _graphs(
-        self,
-        coils: Ints,
-        windows: Windows,
-        budget: Ints,
-        price: Ints,
-        count_pieces: bool,
-    ) -> Iterator[StackGraph]:
-        """Yield graphs with figures that together hold every stack of the coils."""
-        if self.nodes.scarce:  # most coils fall out without a look at the shared limits
-            solved = np.zeros(len(coils), dtype=np.bool_)
-            for graph in self.nodes.graphs(coils, windows, budget, price, count_pieces=count_pieces):
-                solved |= graph.solved()
-            if not solved.any():
-                return
-            windows[0][0][~solved] = windows[1][0][~solved] = np.inf
-        scarce = self.nodes.scarce
-        for graph in self.nodes.graphs(coils, windows, budget, price, shared=scarce, count_pieces=count_pieces):
-            if graph.solved().any():
-                graph.describe(self.circuits)
-                yield graph
+    def _mounts(self, rows: Ints, lead: float) -> Mounts:
+        """Return the mounts of rows of one pattern within a leading figure."""
+        pattern = self._patterns[int(self.rows.pattern[rows[0]])] if len(rows) else self._patterns[0]
+        coils = self.rows.coils[rows, : max(pattern) + 1]
+        return self.maker.mounts(coils, steps_of(self.problem, pattern), np.full(len(rows), lead))
 
-    def _windows(self, coils: Ints, error: float) -> Windows:
-        return self.circuits.windows(np.full(len(coils), error), coils)
-
-    def _settle(self, graph: StackGraph, order: tuple[str, ...], price: Ints) -> tuple[Ints, Bools]:
-        """Return the figures in the order of every coil, (m, steps), and which have a stack inside the price."""
-        p, coils = self.problem, graph.coils
+    def _settle(self, graph: StackGraph, order: tuple[str, ...], trial: _Trial) -> tuple[Ints, Bools]:
+        """Return the figures in the order of every row, (m, steps), and which have a stack inside the price."""
+        own, rows, price = self.rows, trial.rows, trial.attempt.price
         inside = graph.solved()
         figures: list[Ints] = []
         for name in order:
             if name == "effort":
-                figures += list(p.effort[coils].T)
+                figures += list(own.effort[rows].T)
             elif name in SUMS:
-                own = p.coil_price[coils] if name == "price" else np.full(len(coils), int(name == "pieces"))
-                least = graph.least_sum(name, own)
-                if name == "price":
-                    inside = inside & ((price[coils] >= NEVER) | (least <= price[coils]))
+                coils = {"price": own.price[rows], "pieces": own.size[rows]}
+                least = graph.least_sum(name, coils.get(name, np.zeros(len(rows), dtype=np.int64)))
+                if name == order[0] == "price":  # where it comes last, a dearer first choice may hide another
+                    inside = inside & ((price >= NEVER) | (least <= price))
                 figures.append(least)
             else:
                 figures.append(graph.least_worst(name))
         return np.stack(figures, axis=1), inside
 
-    def _named(self, graph: StackGraph, place: int, figures: Ints, order: tuple[str, ...]) -> StackedChoice:
-        """Return the one choice of a coil: equal stacks are settled by content, lowest frequency first."""
-        p, coil = self.problem, int(graph.coils[place])
-        added = self._first_by_content(graph, place)
-        in_circuit: list[int] = []
-        columns, own = {}, {}
-        where = np.array([coil])
-        for layer, new in zip(graph.layers, added, strict=True):
-            in_circuit = sorted([*in_circuit, *new], key=lambda part: int(p.part_rank[part]))
-            band = np.array([layer.band])
-            row = np.array([in_circuit], dtype=np.int64).reshape(1, len(in_circuit))
-            columns[layer.band], _ = self.circuits.columns(where, band, row)
-            own[layer.band] = new
-        key: list[int | tuple[object, ...]] = []
-        values = iter(int(figure) for figure in figures)
-        for name in order:
-            key.append(tuple(next(values) for _ in range(3)) if name == "effort" else next(values))
-        rising = tuple(self._content(coil, own[int(band)]) for band in np.argsort(p.frequency, kind="stable"))
-        key.append(((int(p.coil_rank[coil]),), rising))
-        bands = range(p.bands)
-        return StackedChoice(
-            tuple(key), (coil,), tuple(columns[band] for band in bands), tuple(own[band] for band in bands)
-        )
+    def _named(self, graph: StackGraph, place: int, figures: Figures, order: tuple[str, ...]) -> StackedChoice:
+        return named_stack(self.problem, graph, place, figures, order)
 
-    def _by_content(self, parts: tuple[int, ...]) -> tuple[list[Fraction], list[int]]:
-        p = self.problem
-        return sorted(p.part_value[part] for part in parts), [int(p.part_rank[part]) for part in parts]
 
-    def _content(self, coil: int, parts: tuple[int, ...]) -> tuple[object, ...]:
-        row = np.array([parts], dtype=np.int64).reshape(1, len(parts))
-        columns, _ = self.circuits.columns(np.array([coil]), np.array([0]), row)
-        return column_content(self.problem, columns, 0)
+class _Trial:
+    """Rows that are tried together, and the first choice of each so far by its place among them."""
 
-    def _first_by_content(self, graph: StackGraph, place: int) -> list[tuple[int, ...]]:
-        """Return what each layer adds on the path that comes first by content."""
-        p = self.problem
-        nodes = np.flatnonzero(graph.layers[-1].coil == place)
-        kept: list[tuple[int, ...]] = []
-        for layer in graph.layers[::-1]:
-            edges = np.flatnonzero(layer.alive & np.isin(layer.head, nodes))
-            ways: dict[tuple[int, ...], list[int]] = {}
-            for edge in edges:
-                parts = [int(part) for part in layer.added[edge] if part >= 0]
-                ways.setdefault(tuple(sorted(parts, key=lambda part: int(p.part_rank[part]))), []).append(int(edge))
-            first = min(ways, key=self._by_content)
-            nodes = np.unique(layer.tail[ways[first]])
-            kept.append(first)
-        return kept[::-1]
+    def __init__(self, rows: Ints, budget: Ints, attempt: Attempt, by: str) -> None:
+        self.rows, self.budget, self.attempt, self.by = rows, budget, attempt, by
+        self.best: dict[int, tuple[Figures, Choice | None]] = {}
+
+    def again(self, rows: Ints, places: Ints | None = None) -> _Trial:
+        """Return the trial of all its rows, or of those at some places, with nothing found."""
+        if places is None:
+            return _Trial(rows, self.budget, self.attempt, self.by)
+        attempt = self.attempt._replace(price=self.attempt.price[places])
+        return _Trial(rows, self.budget[places], attempt, self.by)
 
 
 def _first(one: Choice | None, other: Choice | None) -> Choice | None:
