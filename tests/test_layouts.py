@@ -78,9 +78,8 @@ def test_sharing_never_needs_more_pieces_than_separate_capacitors() -> None:
 @pytest.mark.parametrize(
     ("switching", "tables", "named"),
     [
-        ("stacked", {"limits": {"inductors": 2}}, "inductors"),
-        ("shared", {"coil": {"taps": True}}, "taps"),
-        ("stacked", {"capacitors": {"connect": "any"}}, "connect"),
+        ("stacked", {"capacitors": {"connect": "any"}}, "in parallel"),
+        ("shared", {"capacitors": {"connect": "any"}}, "in parallel"),
     ],
 )
 def test_what_a_layout_is_not_planned_with_is_refused_by_name(switching: str, tables: dict, named: str) -> None:

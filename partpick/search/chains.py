@@ -97,9 +97,9 @@ class Chains:
         self.patterns += [patterns[place] for place in usable]
         packed, cells = [], []
         for number, place in enumerate(usable):
-            for bound, cell, count in _joined(p, made[place], self.most_pieces):
+            for bound, cell, ways in _joined(p, made[place], self.most_pieces):
                 packed.append(bound)
-                cells.append(np.column_stack([np.full(len(bound), first + number), count, cell]))
+                cells.append(np.column_stack([np.full(len(bound), first + number), ways, cell]))
         if not packed:
             return []
         bound, table = np.concatenate(packed), np.concatenate(cells)
@@ -136,24 +136,26 @@ class Chains:
             error = 2.0 ** (np.floor(np.log2(np.maximum(error, 1e-12)) * 8) / 8)
         price = p.coil_price[coils]
         if p.by == "price":
-            price = np.where(price < NEVER, np.floor(1.05 ** np.floor(np.log(np.maximum(price, 1)) / np.log(1.05))), NEVER)
+            steps = np.floor(np.log(np.maximum(price, 1)) / np.log(1.05) - 1e-9)
+            price = np.where(price < NEVER, np.floor(1.05**steps), NEVER)
         figures = {
             "pieces": pieces[coils],
             "error_class": coarse_error(error * (1 - 1e-9), p.floor),
             "fine_error": fine_error(error * (1 - 1e-9)) - 1,
-            "q_class": reach.q_class[np.ix_(coils, own)].max(axis=1, initial=0),
-            "stray_class": reach.stray_class[np.ix_(coils, own)].max(axis=1, initial=0),
-            "reactance_class": reach.reactance_class[np.ix_(coils, own)].max(axis=1, initial=0),
+            "q_class": reach.q_class[coils][:, own].max(axis=1, initial=0),
+            "stray_class": reach.stray_class[coils][:, own].max(axis=1, initial=0),
+            "reactance_class": reach.reactance_class[coils][:, own].max(axis=1, initial=0),
             "price": price.astype(np.int64),
         }
         figures |= dict(zip(("forms", "wires", "volume"), p.effort[coils].T, strict=True))
-        figures |= {name: np.zeros(len(coils), dtype=np.int64) for name in ("excess_class", "fine_excess", "coarse_excess")}
+        nothing = np.zeros(len(coils), dtype=np.int64)
+        figures |= {name: nothing for name in ("excess_class", "fine_excess", "coarse_excess")}
         return _Groups(coils, figures, pack(figures, packed_fields(p, p.by)))
 
     def _bounded(self, coils: Ints, pattern: Ints) -> PlanRows:
         p, reach, count = self.problem, self.reach, len(coils)
         pieces, error = np.zeros(count, dtype=np.int64), np.zeros(count)
-        classes = [np.zeros(count, dtype=np.int64) for _ in range(3)]
+        classes = tuple(np.zeros(count, dtype=np.int64) for _ in range(3))
         tables = reach.q_class, reach.stray_class, reach.reactance_class
         order = np.argsort(pattern, kind="stable")
         for rows in np.split(order, np.flatnonzero(np.diff(pattern[order])) + 1):
@@ -166,9 +168,10 @@ class Chains:
                 pieces[rows] += reach.least_pieces(bands)[coil]
                 error[rows] = np.maximum(error[rows], reach.worst_error(bands)[coil])
                 for kept, table in zip(classes, tables, strict=True):
-                    kept[rows] = np.maximum(kept[rows], table[np.ix_(coil, list(bands))].max(axis=1, initial=0))
+                    kept[rows] = np.maximum(kept[rows], table[coil][:, list(bands)].max(axis=1, initial=0))
         least = np.minimum(pieces, IMPOSSIBLE)
-        return PlanRows(p, coils, pattern, least, error, *classes, omitted=self.omitted)
+        q, strays, reactance = classes
+        return PlanRows(p, coils, pattern, least, error, q, strays, reactance, self.omitted)
 
 
 class _Groups:

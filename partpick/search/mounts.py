@@ -11,7 +11,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from partpick.search.circuits import Windows
+from partpick.search.circuits import AnyInts, Windows
 from partpick.search.figures import Columns
 from partpick.search.grades import Grades
 from partpick.search.places import PlaceMaker
@@ -128,7 +128,7 @@ class Mounts:
         start = np.searchsorted(row, np.arange(len(self) + 1))
         return MountsOfStep(row, place, padder, low, high, bare, start)
 
-    def columns(self, number: int, place: Ints, parts: Ints, padder: Ints) -> tuple[Columns, Bools]:
+    def columns(self, number: int, place: Ints, parts: AnyInts, padder: Ints) -> tuple[Columns, Bools]:
         """Return the figures of circuits at one step, and whether each is inside every limit of the band.
 
         Coils and taps are those of the whole problem.

@@ -55,7 +55,8 @@ class SetMounts:
         low = np.where(self.bare[member], np.minimum(some[0], 0.0), self.low[member])
         first = np.searchsorted(which, np.arange(len(rows)))
         self.least[rows] = np.minimum.reduceat(low, first, axis=0)
-        self.most[rows] = np.maximum.reduceat(np.where(self.low[member] <= self.high[member], self.high[member], -np.inf), first, axis=0)
+        high = np.where(self.low[member] <= self.high[member], self.high[member], -np.inf)
+        self.most[rows] = np.maximum.reduceat(high, first, axis=0)
 
     def at(self, band: int, rows: Ints) -> tuple[Ints, Ints]:
         """Return the usable mounts of each row at a band, and the position of the row: row by row."""

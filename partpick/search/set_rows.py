@@ -59,7 +59,7 @@ class CoilReach:
         """Return what lies around all that some coils want at each band, (R, B) each. [F]"""
         return self._over(rows, self.least, np.inf, np.minimum), self._over(rows, self.most, -np.inf, np.maximum)
 
-    def _over(self, rows: SetRows, figure: Any, none: object, best: np.ufunc) -> Any:
+    def _over(self, rows: SetRows, figure: Any, none: float, best: np.ufunc) -> Any:
         """Return the best figure of any coil that a row has for each band, (R, B)."""
         kept = np.full((len(rows.coils), self.problem.bands), none, dtype=figure.dtype)
         for slot in range(rows.coils.shape[1]):
@@ -72,10 +72,10 @@ class CoilReach:
         least, most = self.intervals(rows)
         pieces = np.where((least <= most).all(axis=1), np.minimum(least_pieces, IMPOSSIBLE), IMPOSSIBLE)
         tables = self.q_class, self.stray_class, self.reactance_class
-        classes = [self._over(rows, table, 99, np.minimum).max(axis=1) for table in tables]
+        q, strays, reactance = (self._over(rows, table, 99, np.minimum).max(axis=1) for table in tables)
         error = self._over(rows, self.least_error, np.inf, np.minimum).max(axis=1)
         pattern = np.zeros(len(rows.coils), dtype=np.int64)
-        return PlanRows(self.problem, rows.coils, pattern, pieces, error, *classes, omitted=omitted)
+        return PlanRows(self.problem, rows.coils, pattern, pieces, error, q, strays, reactance, omitted)
 
 
 @dataclass(frozen=True, eq=False)
@@ -122,7 +122,7 @@ def sets_of_coils(reach: CoilReach) -> tuple[SetRows, bool]:
             chosen, complete = _promising(reach, useful, count), False
         every = list(itertools.permutations(chosen.tolist(), size))
         table = np.array(every, dtype=np.int64).reshape(len(every), size)
-        table = table[reach.serves[table].any(axis=1).all(axis=1)]
+        table = table[np.all(reach.serves[table].any(axis=1), axis=1)]
         coils.append(np.repeat(table, len(ways), axis=0))
         firsts.append(np.tile(ways, (len(table), 1)))
     pads = [((0, 0), (0, most - table.shape[1])) for table in coils]

@@ -1,9 +1,10 @@
 """Every set of capacitors of which each band can switch in a subset that puts it on frequency.
 
 Bands are taken from the highest frequency down. A set so far that can serve a band, on any coil of the
-plan or a section of one, goes on as it is; one that cannot grows by every multiset that, with some subset of it, falls into the band's interval.
-All limits hold for a subset where they hold for the whole (fewer parts, values, pieces of one kind, a
-lower price), so every set that serves all bands contains one that is found here.
+plan or a section of one, goes on as it is; one that cannot grows by every multiset that, with some subset
+of it, falls into the band's interval. All limits hold for a subset where they hold for the whole (fewer
+parts, values, pieces of one kind, a lower price), so every set that serves all bands contains one that is
+found here.
 """
 
 from __future__ import annotations

@@ -77,7 +77,8 @@ class StackNodes:
                 left = left[~some]
             if step.fresh:
                 own[made.bare] = 0
-                low, high = np.where(made.bare, np.minimum(low, 0.0), low), np.where(made.bare, np.maximum(high, 0.0), high)
+                low = np.where(made.bare, np.minimum(low, 0.0), low)
+                high = np.where(made.bare, np.maximum(high, 0.0), high)
             np.minimum.at(fewest[:, place], made.row, own)
             if not step.last:
                 least, most = np.full(rows, np.inf), np.full(rows, -np.inf)
@@ -220,7 +221,9 @@ class StackNodes:
         else:
             first, head = self._heads(row, parts, used, spent, pieces, step, rules)
         nodes = _Nodes(row[first], parts[first], used[first], *_least(head, len(first), pieces, spent))
-        return self._kept(number, nodes, Layer(number, row[first], nodes.pieces, tail, head, spot, added, spots), rules)
+        first_end, end, passed = (side.astype(np.int32) for side in (tail, head, spot))
+        layer = Layer(number, nodes.row, nodes.pieces, first_end, end, passed, added, spots)
+        return self._kept(number, nodes, layer, rules)
 
     def _kept(self, number: int, nodes: _Nodes, layer: Layer, rules: _Rules) -> tuple[Layer, _Nodes] | None:
         """Drop the nodes beyond a limit that plans share, and the edges that end in them."""
@@ -245,9 +248,9 @@ class StackNodes:
             number=number,
             row=nodes.row,
             pieces=nodes.pieces,
-            tail=layer.tail[edge].astype(np.int32),
+            tail=layer.tail[edge],
             head=(np.cumsum(keep) - 1)[layer.head[edge]].astype(np.int32),
-            spot=layer.spot[edge].astype(np.int32),
+            spot=layer.spot[edge],
             added=layer.added[edge],
             spots=Spots(spots.place, np.ascontiguousarray(spots.parts[:, :width]), spots.padder),
         )

@@ -116,7 +116,7 @@ class _Path:
         ways: dict[Content, list[int]] = {}
         for edge in edges:
             ways.setdefault(self._edge_content(number, edge), []).append(edge)
-        self.edges[number] = np.array(ways[min(ways)], dtype=np.int64)  # type: ignore[type-var]
+        self.edges[number] = np.array(ways[min(ways)], dtype=np.int64)
 
     def _drop_dead_ends(self) -> None:
         layers = self.graph.layers

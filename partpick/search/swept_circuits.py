@@ -24,6 +24,7 @@ class SweptCircuits:
         self.circuits = circuits
         self._acting = [acting_parts(problem), _acting_low(problem)]  # high end, low end
         self._finite = np.isfinite(self._acting[0]) & np.isfinite(self._acting[1])
+        self._gain = [problem.part_gain(), problem.part_gain(low_end=True)]
         self._fixed = problem.fixed_capacitance()
         self._need, self._most = problem.least_at_low_end, problem.most_at_high_end
         self._strays = problem.self_capacitance[:, None] + problem.stray[None, :]
@@ -156,9 +157,12 @@ class SweptCircuits:
         tuned = np.where(np.isfinite(tuned), tuned, 0.0)
         own = (p.tuning_high if low_end else p.tuning_low)[band]
         total = np.maximum(network + tuned + self._fixed[place, band], 1e-30)
-        weight = value / np.maximum(nominal, 1e-30)[:, None] * (network / total)[:, None]
+        gain = np.append(self._gain[int(low_end)][band], 1.0)
+        alone = np.maximum(nominal, 1e-30)  # behind leads what is in circuit grows faster than its parts
+        weight = value / alone[:, None] * gain[parts] * (network / alone * network / total)[:, None]
         series = acting[padder]
-        of_padder = np.where(padder >= 0, tuned / np.where(series > 0, series, 1.0) * tuned / total, 0.0)
+        behind = tuned / np.where(series > 0, series, 1.0) * tuned / total * gain[padder]
+        of_padder = np.where(padder >= 0, behind, 0.0)
         of_element = tuned / own * tuned / total if own > 0 else np.zeros(len(place))
         middle = (p.trimmer_low[band] + p.trimmer_high[band]) / 2
         part_loss = np.append((p.part_loss_low if low_end else p.part_loss)[band], 0.0)

@@ -76,7 +76,8 @@ def swept_circuit(problem: Problem, coil: int, band: int, parts: tuple[int, ...]
     if not problem.in_play[coil, band]:
         return None
     of_part = {part: s for s, options in enumerate(problem.options) for part in options}
-    if not all(math.isfinite(problem.species[band][of_part[p]]) for p in (*parts, *([padder] if padder is not None else []))):
+    every = parts if padder is None else (*parts, padder)
+    if not all(math.isfinite(problem.species[band][of_part[p]]) for p in every):
         return None
     column = swept_column(problem, coil, band, of_part, padder, parts, 0)
     return None if column is None else {**column, "parts": parts}
