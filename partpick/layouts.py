@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import partial
 
 from partpick.circuit import Design, Network
 from partpick.errors import RequestError
 from partpick.progress import Monitor
+from partpick.receiver import is_receiver, receiver_bands
 from partpick.request import Request
 from partpick.search.bands import Found, search_bands
 from partpick.search.choose import Choice
@@ -55,7 +57,11 @@ def search_layout(
 ) -> Found:
     """Return the first `wanted` plans of the request's layout, and the front."""
     search: Search = search_bands
-    if request.switching == "stacked":
+    if is_receiver(request):
+        from partpick.search.receivers import search_receivers
+
+        search = partial(search_receivers, bands=receiver_bands(request))
+    elif request.switching == "stacked":
         from partpick.search.stacked import search_stacked as search
     elif request.switching == "shared":
         from partpick.search.shared import search_shared as search

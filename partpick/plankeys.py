@@ -319,6 +319,7 @@ FURTHER: dict[str, dict[str, Key]] = {
     "receiver": {
         "intermediate": Key(read=parse_frequency, required=True),
         "side": Key(read=_choice("above", "below"), default="above"),
+        "tracking": Key(read=parse_bandwidth),  # largest tracking error
     },
     "temperature": {
         "from": Key(read=parse_temperature, required=True),  # degrees Celsius

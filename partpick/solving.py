@@ -16,18 +16,22 @@ from partpick.nothing_fits import explain
 from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet
+from partpick.receiver import is_receiver, of_one_section, with_oscillators
 from partpick.request import LEAST_WOUND, Band, Request
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
 from partpick.search.bands import Found, pieces_of_bound
 from partpick.search.choose import ORDERS, Choice
 from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
+from partpick.search.tracking import FINE
+from partpick.search.tracking import ORDERS as RECEIVER_ORDERS
 from partpick.stress import with_stress
 from partpick.tapping import column_source
+from partpick.tracking_figures import with_tracking
 
 LOW_FREQUENCY = 1e3  # Hz
 TOO_SMALL = "its leads decide: no coil for a tank"
-PLANNED_TABLES = ("temperature", "spread", "drive")  # of the further tables of a plan
+PLANNED_TABLES = ("temperature", "spread", "drive", "receiver")  # of the further tables of a plan
 
 
 def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Monitor | None = None) -> Result:
@@ -60,6 +64,8 @@ def _solved(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) 
         _refuse_unplanned(with_bands(request, 1))
         return cover(request, catalogue, lambda made: _planned(made, catalogue, top, monitor), _again, monitor)
     _refuse_unplanned(request)
+    if is_receiver(request):
+        request = of_one_section(request)
     result = _planned(request, catalogue, top, monitor)
     if result.candidates or result.proof.stopped_by is not None:
         return result
@@ -70,6 +76,7 @@ def _solved(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) 
 def _planned(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) -> Result:
     """Return the result of one search, without a word on why nothing fits."""
     monitor.report("every coil that the stock can wind")
+    request = with_oscillators(request) if is_receiver(request) else request
     coils, capacitors, problem, source = _prepared(request, catalogue)
     found = search_layout(request, problem, source, wanted=top, monitor=monitor)
     pool = _refit_pool(request, catalogue)
@@ -78,6 +85,7 @@ def _planned(request: Request, catalogue: Catalogue, top: int, monitor: Monitor)
 
 def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidate | None:
     """Return the first candidate of a request with other limits; None where nothing fits."""
+    request = with_oscillators(request) if is_receiver(request) else request
     coils, capacitors, problem, source = _prepared(request, catalogue)
     found = search_layout(request, problem, source, wanted=1, monitor=monitor, front=False)
     least_is_asked = request.by != "build"
@@ -160,7 +168,7 @@ def _result(
     contents = [choice.key[-1] for choice in found.choices]
     on_front = {choice.key[-1] for choice in found.front}
     candidates = tuple(
-        replace(candidate, rank=place, on_front=choice.key[-1] in on_front, order=_order(problem, choice))
+        replace(candidate, rank=place, on_front=choice.key[-1] in on_front, order=_order(request, problem, choice))
         for place, (candidate, choice) in enumerate(zip(ranked, found.choices, strict=True), 1)
     )
     front = tuple(
@@ -178,9 +186,10 @@ def _result(
     )
 
 
-def _order(problem: Problem, choice: Choice) -> tuple[tuple[str, object], ...]:
+def _order(request: Request, problem: Problem, choice: Choice) -> tuple[tuple[str, object], ...]:
     """Return the steps of the order by name with a choice's figures, all but the last, which is its content."""
-    return tuple(zip(ORDERS[problem.by], choice.key, strict=False))
+    orders = RECEIVER_ORDERS if is_receiver(request) else ORDERS
+    return tuple(zip(orders[problem.by], choice.key, strict=False))
 
 
 def _error_bound(found: Found, first: Candidate, front: tuple[Candidate, ...]) -> float | None:
@@ -208,6 +217,9 @@ def _candidate(
     worst_error = max(abs(float(columns.error[0])) for columns in choice.columns)
     worst_excess = max(float(columns.excess[0]) for columns in choice.columns)
     recheck(candidate, worst_error, worst_excess)
+    if is_receiver(request):
+        shares = dict(zip(RECEIVER_ORDERS[request.by], choice.key, strict=False))["fine_tracking"]
+        candidate = with_tracking(request, candidate, FINE * float(str(shares)))
     looked_at = with_outlook(candidate, outlook(request, coils, capacitors, design, candidate, first=first, pool=pool))
     return with_stress(request, looked_at)
 
@@ -215,6 +227,11 @@ def _candidate(
 def _searched(request: Request, coils: Coils, problem: Problem) -> str:
     """Return in words what was exhausted."""
     searched = f"every one of {coils.considered} coils"
+    if is_receiver(request):
+        return (
+            f"for each band {searched} for the signal with every other for the oscillator, each with up to "
+            f"{problem.most_parts} capacitors, for nominal values"
+        )
     if problem.inductors > 1 and problem.bands > 1:
         searched += f", alone and up to {problem.inductors} together"
     if request.coil.taps:
@@ -246,6 +263,18 @@ def _proof(
     return Proof(status=status, searched=searched, stages=tuple(stages), stopped_by=found.stopped_by)
 
 
+def _tracking_stage(problem: Problem, found: Found, first: Candidate, front: tuple[Candidate, ...]) -> Stage:
+    """Return the worst tracking error and, of one band, the least that as few pieces can have. [Hz]
+
+    Errors closer than a step of the order are equal to it, so that the first plan may be above the least.
+    """
+    worst = float(str(first.extra["worst_tracking_hz"]))
+    pieces = first.piece_count if problem.by == "build" else max(c.piece_count for c in (first, *front))
+    least = [float(str(c.extra["worst_tracking_hz"])) for c in front if c.piece_count <= pieces]
+    proven = found.stopped_by is None and problem.bands == 2 and front
+    return Stage(objective="worst_tracking", value=worst, bound=min([worst, *least]) if proven else None)
+
+
 def _stages(problem: Problem, found: Found, first: Candidate, front: tuple[Candidate, ...]) -> list[Stage]:
     """Value and bound of each objective in the order's sequence; a bound is proven, or null."""
     proven = found.stopped_by is None or found.settled
@@ -256,7 +285,9 @@ def _stages(problem: Problem, found: Found, first: Candidate, front: tuple[Candi
     stages = [Stage(objective="pieces", value=pieces, bound=bound)]
     if first.worst_error is not None:
         stages.append(Stage(objective="worst_error", value=error, bound=_error_bound(found, first, front)))
-    if first.worst_excess is not None:
+    if "worst_tracking_hz" in first.extra:
+        stages.append(_tracking_stage(problem, found, first, front))
+    elif first.worst_excess is not None:
         excess = first.worst_excess
         stages.append(Stage(objective="worst_excess", value=excess, bound=excess if proven else None))
     if problem.by == "error":

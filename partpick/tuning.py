@@ -69,6 +69,8 @@ def _variable_capacitor(tuning: Tuning) -> ElementEnds:
     sections = _stated(tuning, "sections") or 1.0
     low, high = (float(sections_in_parallel(_number(tuning, key), sections)) for key in ("low", "high"))
     words = f"variable capacitor, {sections:.0f} sections in parallel" if sections > 1 else "variable capacitor"
+    if gang := _stated(tuning, "gang"):  # of a receiver: a section for each circuit
+        words = f"variable capacitor of {gang:.0f} equal sections, one for each circuit, each"
     return ElementEnds(low=low, high=high, q=VARIABLE_Q, tempco=_stated(tuning, "tempco"), words=words)
 
 

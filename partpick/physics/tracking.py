@@ -310,11 +310,41 @@ def best_tracking(plain: PlainCircuit, low: float, high: float, distance: float,
     against a general minimiser in tests/test_physics_tracking.py.
     """
     grid = np.linspace(low, high, _GRID)
-    chosen = np.array([0, _GRID // 4, _GRID - 1 - _GRID // 4, _GRID - 1])
+    return best_padded_circuit(section_capacitance(plain, grid), grid + distance, across)
+
+
+def best_padded_circuit(section: ArrayLike, wanted: ArrayLike, across: float = 0.0) -> BestTracking:
+    """Return the padded circuit whose resonance stays closest to wanted frequencies, worst error counted.
+
+    Parameters
+    ----------
+    section : (n,) array
+        Capacitance of the gang section at rising frequency, strictly falling; some tens of settings at least. [F]
+    wanted : (n,) array
+        Resonance wanted at each. [Hz]
+    across : float
+        Strays and self-capacitance across the coil. [F]
+
+    Returns
+    -------
+    best : BestTracking
+        Circuit and worst error; nan where no padder above zero does it. [H, F, Hz]
+
+    Notes
+    -----
+    As `best_tracking`, for any other circuit on the gang, a padded one too.
+
+    References
+    ----------
+    E. Ya. Remez, Comptes Rendus Acad. Sci. Paris 198 (1934) 2063 (exchange method; from memory).
+    """
+    x, target = np.asarray(section, float), np.asarray(wanted, float)
+    last = len(target) - 1
+    chosen = np.array([0, last // 4, last - last // 4, last])
     best = BestTracking(PaddedCircuit(*(np.array(np.nan),) * 3, np.asarray(across, float)), np.inf)
     for _ in range(_EXCHANGES):
-        circuit = _equal_swings(plain, grid[chosen], distance, across)
-        error = tracking_error(plain, circuit, grid, distance)
+        circuit = _equal_swings(x[chosen], target[chosen], across)
+        error = padded_frequency(circuit, x) - target
         worst = float(np.max(np.abs(error)))
         if not worst < best.worst_error * (1.0 - 1e-9):
             break
@@ -326,23 +356,21 @@ def best_tracking(plain: PlainCircuit, low: float, high: float, distance: float,
     return best if np.isfinite(best.worst_error) else best._replace(worst_error=float("nan"))
 
 
-def _equal_swings(plain: PlainCircuit, points: FloatArray, distance: float, across: float) -> PaddedCircuit:
+def _equal_swings(section: FloatArray, target: FloatArray, across: float) -> PaddedCircuit:
     """Return the circuit whose error at four frequencies is +e, -e, +e, -e for some e."""
-    section = section_capacitance(plain, points)
     sign = np.array([1.0, -1.0, 1.0, -1.0])
 
     def circuit_for(swing: float) -> PaddedCircuit:
-        return three_point_circuit(section[:3], (points + distance + sign * swing)[:3], across)
+        return three_point_circuit(section[:3], (target + sign * swing)[:3], across)
 
     def miss(swing: float) -> float:
-        tuned = padded_frequency(circuit_for(swing), section[3])
-        return float(tuned - points[3] - distance - sign[3] * swing)
+        return float(padded_frequency(circuit_for(swing), section[3]) - target[3] - sign[3] * swing)
 
-    before, after = 0.0, 1e-4 * float(points[-1] - points[0])
+    before, after = 0.0, 1e-4 * float(target[-1] - target[0])
     miss_before = miss(before)
     for _ in range(30):  # secant: nearly linear in the swing
         miss_after = miss(after)
-        if not abs(miss_after) > 1e-12 * points[-1] or miss_after == miss_before:
+        if not abs(miss_after) > 1e-12 * target[-1] or miss_after == miss_before:
             break
         before, after, miss_before = (
             after,
