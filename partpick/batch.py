@@ -38,6 +38,7 @@ class Order:
     outputs: tuple[str, ...]  # names, "table" among them where it is shown
     why: int | None = None
     dial: str | None = None
+    tracking: str | None = None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -118,7 +119,7 @@ def _solved(order: Order, catalogue: Catalogue, errand: _Errand) -> Answer:
         return Answer(interrupted=True)
     try:
         result = solve(order.request, catalogue, top=max(order.top, order.why or 0), monitor=errand)
-        render = renderers(result, order.why, None, order.dial)
+        render = renderers(result, order.why, None, order.dial, order.tracking)
         texts = {name: render[name]() for name in order.outputs}
     except PartpickError as error:
         return Answer(complaint=str(error), exit_code=error.exit_code)

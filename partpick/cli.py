@@ -141,6 +141,9 @@ _NETLIST = click.option(
     "--netlist", "netlist_path", type=_PATH, metavar="FILE", help="Write its tanks as a SPICE deck."
 )
 _DIAL = click.option("--dial", "dial_path", type=_PATH, metavar="FILE", help="Write its dial chart (.csv or .json).")
+_TRACKING = click.option(
+    "--tracking", "tracking_path", type=_PATH, metavar="FILE", help="Write a receiver's tracking error (.csv or .json)."
+)
 _WHY = click.option(
     "--why", type=click.IntRange(min=1), metavar="RANK", help="Say why the candidate of a rank stands there."
 )
@@ -222,6 +225,7 @@ def pair(frequency: str, top: int, drawer: str | None, by: str, all_windings: bo
 
 @cli.command()
 @click.argument("plans", type=_PATH, metavar="PLAN...", nargs=-1, required=True)
+@_TRACKING
 @_common
 @_WORKERS
 @_examples(
@@ -331,15 +335,12 @@ def _solve_and_write(
     why = given["why"]
     if why is not None and not outputs.shows_table:
         raise RequestError("--why is told below the table, and stdout (-) is taken by another output")
-    if (dial := outputs.paths.get("dial")) is not None:
-        from partpick.report.dial import check_dial
-
-        check_dial(dial, request)
+    dial, tracking = _checked_charts(outputs, request)
     before = _earlier(given["against"], outputs)
     with Terminal(given["time_limit"]) as monitor:
         result = solve(request, catalogue, top=max(top, why or 0), monitor=monitor)
         monitor.writing()
-        outputs.write(**renderers(result, why, before, dial))
+        outputs.write(**renderers(result, why, before, dial, tracking))
     if monitor.elapsed >= TOO_SHORT_TO_TELL:
         click.echo(f"took {monitor.elapsed:.1f} s", err=True)
     return _exit_code(result, monitor)
@@ -385,12 +386,9 @@ def _order(request: Request, outputs: Outputs, top: int, given: Mapping[str, Any
     """Return what is wanted of one of several plans."""
     from partpick.batch import Order
 
-    dial = outputs.paths.get("dial")
-    if dial is not None:
-        from partpick.report.dial import check_dial
-
-        check_dial(dial, request)
-    return Order(request=request, top=top, outputs=("table", *outputs.paths), why=given["why"], dial=dial)
+    dial, tracking = _checked_charts(outputs, request)
+    wanted = ("table", *outputs.paths)
+    return Order(request=request, top=top, outputs=wanted, why=given["why"], dial=dial, tracking=tracking)
 
 
 def _write_answer(plan: str, answer: Answer, outputs: Outputs, monitor: Terminal) -> int:
@@ -409,6 +407,20 @@ def _write_answer(plan: str, answer: Answer, outputs: Outputs, monitor: Terminal
 def _complain_of(plan: str, text: str, code: int) -> int:
     _complain(text if plan in text else f"{plan}: {text}")
     return code
+
+
+def _checked_charts(outputs: Outputs, request: Request) -> tuple[str | None, str | None]:
+    """Return where the dial chart and the tracking error go, refused where the plan has none."""
+    dial, tracking = outputs.paths.get("dial"), outputs.paths.get("tracking")
+    if dial is not None:
+        from partpick.report.dial import check_dial
+
+        check_dial(dial, request)
+    if tracking is not None:
+        from partpick.report.tracking import check_tracking
+
+        check_tracking(tracking, request)
+    return dial, tracking
 
 
 def _earlier(path: str | None, outputs: Outputs) -> Mapping[str, Any] | None:

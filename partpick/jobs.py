@@ -10,7 +10,9 @@ from typing import Any
 from partpick.errors import RequestError
 from partpick.report.files import STDOUT, Output, check_outputs, write_outputs
 
-_ENDINGS = {"json": ".json", "bom": ".csv", "sheet": ".html", "netlist": ".cir", "dial": ".csv"}
+_ENDINGS = {
+    "json": ".json", "bom": ".csv", "sheet": ".html", "netlist": ".cir", "dial": ".csv", "tracking": ".csv"
+}  # fmt: skip
 
 
 class Outputs:
@@ -78,7 +80,7 @@ def plan_files(plans: Sequence[str]) -> list[str]:
 
 def paths_of(given: Mapping[str, Any]) -> dict[str, str | None]:
     """Return where each output of a ranking command goes, from its options."""
-    return {name: given[f"{name}_path"] for name in _ENDINGS}
+    return {name: given.get(f"{name}_path") for name in _ENDINGS}
 
 
 def outputs_of_plans(plans: Sequence[str], drawer: str | None, given: Mapping[str, Any]) -> list[Outputs]:

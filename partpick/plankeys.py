@@ -255,9 +255,18 @@ TABLES: dict[str, dict[str, Key]] = {
 
 # ---------------------------------------------------------------- further tables, kept with their own keys
 
+
+
+def _sections(given: object) -> int:
+    """Read how many sections a gang has; they are equal."""
+    if isinstance(given, (list, tuple)):
+        raise refusal(given, "sections that differ are not planned; state low and high of one, and how many are equal")
+    return parse_count(given, 1, 6)
+
+
 _LAWS = ("straight-line capacitance", "straight-line wavelength", "straight-line frequency")
 TUNING_OF_ANY_KIND = {
-    "sections": Key(read=_count(1, 6), default=1),
+    "sections": Key(read=_sections, default=1),
     "law": Key(read=_choice(*_LAWS)),
     "tolerance": Key(read=_fraction()),
     "tempco": Key(read=parse_tempco),

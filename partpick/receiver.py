@@ -77,6 +77,7 @@ def receiver_bands(request: Request) -> tuple[ReceiverBand, ...]:
             oscillator=place + 1,
             offset=offset_of(request),
             limit=tracking_limit(request, request.bands[place]),
+            hint=least_error(request.bands[place].lowest, request.bands[place].highest, offset_of(request)),
         )
         for place in range(0, len(request.bands), 2)
     )
@@ -114,7 +115,7 @@ def _check_plan(request: Request) -> None:
         (request.coil.taps, "coil.taps = true", "a coil for each circuit"),
         (request.capacitors.connect == "any", 'capacitors.connect = "any"', 'capacitors.connect = "parallel"'),
         (request.by == "price", "the order by price", "build or error"),
-        *((name in extra, f"the table [{name}]", "a plan of its own for it") for name in ("cover", "oscillator", "drive")),
+        *((name in extra, f"the table [{name}]", "a plan of its own") for name in ("cover", "oscillator", "drive")),
     )
     for asked, what, instead in unplanned:
         if asked:
@@ -186,5 +187,5 @@ def notes_of(request: Request) -> tuple[str, ...]:
         inside = max(band.low, band.low + offset), min(band.high, band.high + offset)
         if inside[0] < inside[1]:
             low, high = (format_quantity(f, "Hz", 4) for f in inside)
-            notes.append(f"{band.name}: the oscillator runs inside the band from {low} to {high}; keep it off the aerial")
+            notes.append(f"{band.name}: the oscillator runs in the band from {low} to {high}; keep it off the aerial")
     return tuple(notes)

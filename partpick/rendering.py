@@ -14,7 +14,11 @@ MODULES = {"bom_csv": "bom"}  # of a function that is not named as its module
 
 
 def renderers(
-    result: Result, why: int | None, before: Mapping[str, Any] | None = None, dial: str | None = None
+    result: Result,
+    why: int | None,
+    before: Mapping[str, Any] | None = None,
+    dial: str | None = None,
+    tracking: str | None = None,
 ) -> dict[str, Callable[[], str]]:
     """Return what writes each output; those that are not wanted are never called, nor loaded.
 
@@ -28,6 +32,8 @@ def renderers(
         First candidate of an earlier result, told against this one below the table.
     dial : str or None
         File of the dial chart: its ending decides the form.
+    tracking : str or None
+        File of a receiver's tracking error, likewise.
     """
 
     def by(function: str) -> Callable[[], str]:
@@ -57,4 +63,9 @@ def renderers(
 
         return dial_text(result, dial or "-")
 
-    return {"table": table, "dial": chart, **{name: by(function) for name, function in REPORTS.items()}}
+    def curve() -> str:
+        from partpick.report.tracking import tracking_text
+
+        return tracking_text(result, tracking or "-")
+
+    return {"table": table, "dial": chart, "tracking": curve, **{name: by(function) for name, function in REPORTS.items()}}

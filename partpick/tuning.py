@@ -70,7 +70,7 @@ def _variable_capacitor(tuning: Tuning) -> ElementEnds:
     low, high = (float(sections_in_parallel(_number(tuning, key), sections)) for key in ("low", "high"))
     words = f"variable capacitor, {sections:.0f} sections in parallel" if sections > 1 else "variable capacitor"
     if gang := _stated(tuning, "gang"):  # of a receiver: a section for each circuit
-        words = f"variable capacitor of {gang:.0f} equal sections, one for each circuit, each"
+        words = f"variable capacitor of {gang:.0f} equal sections"
     return ElementEnds(low=low, high=high, q=VARIABLE_Q, tempco=_stated(tuning, "tempco"), words=words)
 
 
@@ -90,4 +90,6 @@ def _varactor(tuning: Tuning) -> ElementEnds:
         junctions = whole(bias_high, float("inf"))
         tempco = float(network_tempco(junction_tempco(bias_high, potential, grading), junctions, series))
     low, high = whole(bias_high, series), whole(bias_low, series)
-    return ElementEnds(low=low, high=high, q=VARACTOR_Q, tempco=tempco, words="varactor")
+    gang = _stated(tuning, "gang")  # of a receiver: one for each circuit
+    words = f"{gang:.0f} equal varactors on one voltage" if gang else "varactor"
+    return ElementEnds(low=low, high=high, q=VARACTOR_Q, tempco=tempco, words=words)

@@ -20,6 +20,7 @@ from partpick.report.text import (
     slope,
     wrapped,
 )
+from partpick.report.tracking import tracking_lines, worst_tracking
 from partpick.request import Request
 from partpick.result import Candidate, CoilFigures, PartLine, Proof, Result
 
@@ -33,6 +34,7 @@ def result_table(result: Result) -> str:
     if result.candidates:
         first = result.candidates[0]
         blocks += [_ranking(result), _in_full(f"Rank {_rank(first)} in full", first)]
+        blocks += [tracking_lines(first)]
         blocks += [built_units(result.request, first), stress_lines(first), _front(result.front)]
     else:
         blocks += [_nothing(result)]
@@ -117,7 +119,8 @@ def _rank_rows_one(candidates: Sequence[Candidate]) -> tuple[list[str], list[lis
 
 
 def _rank_rows_many(candidates: Sequence[Candidate]) -> tuple[list[str], list[list[str]]]:
-    head = ["rank", "pieces", "values", "worst error", "excess", "least Q", "most strays", "price", "others"]
+    head = ["rank", "pieces", "values", "worst error", "tracking", "excess", "least Q", "most strays", "price"]
+    head.append("others")
     rows = []
     for candidate in candidates:
         shares = [share for band in candidate.bands if (share := share_of_strays(band)) is not None]
@@ -126,6 +129,7 @@ def _rank_rows_many(candidates: Sequence[Candidate]) -> tuple[list[str], list[li
             str(candidate.piece_count),
             str(candidate.value_count),
             "" if candidate.worst_error is None else _size(candidate.worst_error),
+            worst_tracking(candidate),
             "" if candidate.worst_excess is None else format_percent(candidate.worst_excess),
             figure(worst_q(candidate)),
             format_percent(max(shares), 2) if shares else "",
@@ -220,10 +224,13 @@ def _front(front: Sequence[Candidate]) -> list[str]:
         figures = []
         if candidate.worst_error is not None:
             figures.append(_size(candidate.worst_error))
-        if candidate.worst_excess is not None:
+        if tracking := worst_tracking(candidate):
+            figures.append(tracking)
+        elif candidate.worst_excess is not None:
             figures.append(f"excess {format_percent(candidate.worst_excess)}")
         steps.append(f"{plural(candidate.piece_count, 'piece')} {' and '.join(figures)}")
     what = "excess" if front[0].worst_error is None else "error"
+    what = "tracking error" if worst_tracking(front[0]) else what
     return wrapped(f"Least {what} for the number of pieces: {'; '.join(steps)}.", 0, 2)
 
 

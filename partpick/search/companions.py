@@ -15,9 +15,9 @@ from itertools import combinations
 
 import numpy as np
 
-from partpick.search.networks import Rows, Stream, Table
+from partpick.search.networks import Stream, Table
 from partpick.search.problem import Floats, Ints, Problem
-from partpick.search.sections import CHECKS, Circuits
+from partpick.search.sections import CHECKS, Made, Maker, behind_padder
 
 _ROUNDING = 1e-9
 _STEADINESS = (1e-12, 1e-5, 1e-4, 1e-3, 1.0)  # padders by how much their capacitance moves over the range
@@ -29,17 +29,11 @@ class Hits:
     """Companions that may do, (h,) each."""
 
     curve: Ints  # row of the section curves
-    place: Ints  # of the padder among the valid species; their number: none
-    coil: Ints
-    rows: Rows  # networks across the coil
-    circuits: Circuits
+    made: Made
 
     def take(self, chosen: Ints) -> Hits:
         """Return some of the hits."""
-        return Hits(
-            self.curve[chosen], self.place[chosen], self.coil[chosen], self.rows.take(chosen),
-            self.circuits.take(chosen),
-        )  # fmt: skip
+        return Hits(self.curve[chosen], self.made.take(chosen))
 
 
 @dataclass(frozen=True, eq=False)
@@ -82,8 +76,8 @@ class Companions:
         self.low, self.high = float(problem.low_end[band]), float(problem.frequency[band])
         self.coils = np.flatnonzero(problem.in_play[:, band])
         self.fixed = problem.fixed_capacitance()[:, band]
-        self.padder_low = np.append(problem.species_low[band][valid], np.inf)
-        self.padder_high = np.append(problem.species[band][valid], np.inf)
+        self.maker = Maker(problem, valid, band)
+        self.padder_low, self.padder_high = self.maker.padder_low, self.maker.padder_high
         self.steadiness = np.append(1.0 - self.padder_low[:-1] / self.padder_high[:-1], 0.0)
 
     def windows(self, largest: float) -> _Windows:
@@ -188,7 +182,7 @@ class Companions:
     def _with_coils(
         self, section: Floats, curve: Ints, place: Ints, across: int, parts: int, windows: _Windows
     ) -> Iterator[Hits]:
-        acting = _behind(section[curve], self.padder_high[place][:, None])
+        acting = behind_padder(section[curve], self.padder_high[place][:, None])
         least, most = self._lines(windows, float(self.steadiness[place].max(initial=0.0)))
         inductance_least, inductance_most = np.zeros(len(curve)), np.full(len(curve), np.inf)
         for a, c in combinations(range(len(CHECKS)), 2):
@@ -232,7 +226,7 @@ class Companions:
         lower = np.where(lower > 0, lower * (1 - windows.moving * windows.beyond), lower)
         if parts:
             strays = (p.self_capacitance[coil] + p.stray[band]) / p.share
-            end = _behind(np.full(len(coil), p.tuning_low[band]), self.padder_high[place])
+            end = behind_padder(np.full(len(coil), p.tuning_low[band]), self.padder_high[place])
             lower = np.maximum(lower, (strays - end) * (1 - _ROUNDING) - self.fixed[coil])
         leads = (2 * np.pi * self.high) ** 2 * p.lead_inductance
         lower, upper = (side / (1 + leads * np.maximum(side, 0.0)) for side in (lower, upper))
@@ -240,28 +234,8 @@ class Companions:
         lower, upper = lower - grain, upper + grain
         some = np.flatnonzero((lower <= upper) & (upper >= 0))
         rows, which = self.tables[across].inside_each(lower[some], upper[some])
-        rows = Rows(rows.value, self.valid[rows.species].astype(np.int16), rows.shape)
         kept = some[which]
-        return Hits(curve[kept], place[kept], coil[kept], rows, self._circuits(coil[kept], place[kept], rows))
-
-    def _circuits(self, coil: Ints, place: Ints, rows: Rows) -> Circuits:
-        p, band = self.problem, self.band
-        low = p.species_low[band][rows.species].sum(axis=1) if rows.species.shape[1] else np.zeros(len(coil))
-        return Circuits(
-            low=self.low,
-            high=self.high,
-            inductance_low=p.inductance_low[coil, band],
-            inductance_high=p.inductance_high[coil, band],
-            fixed=self.fixed[coil],
-            across_low=p.behind_leads(low, band, low_end=True),
-            across_high=p.behind_leads(rows.value, band),
-            padder_low=self.padder_low[place],
-            padder_high=self.padder_high[place],
-        )
-
-
-def _behind(section: Floats, padder: Floats) -> Floats:
-    return np.asarray(section / (1.0 + section / padder))
+        return Hits(curve[kept], self.maker.made(coil[kept], place[kept], rows))
 
 
 def _ranges(first: Ints, last: Ints) -> tuple[Ints, Ints]:

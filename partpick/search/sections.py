@@ -11,11 +11,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from partpick.search.figures import Columns
+from partpick.search.networks import Rows
 from partpick.search.problem import Floats, Ints, Problem
 
 POINTS = 121  # frequencies at which a tracking error is looked at, denser towards the ends
 CHECKS = (0, 40, 80, 120)  # those at the extremes of a third Chebyshev polynomial: the error's usual ones
-_ROUNDS = 6  # of the resonance with what depends on frequency: each gains two to three digits
+_ROUNDS = 60  # of the resonance with what depends on frequency: each gains one to three digits
+_CLOSE = 1e-14  # of the frequency
 
 
 def band_points(low: float, high: float) -> Floats:
@@ -57,7 +59,9 @@ class Circuits:
         for _ in range(_ROUNDS):
             inductance, others, elastance = self._at(frequency)
             total = others + section / (1.0 + section * elastance)
-            frequency = 1.0 / (2 * np.pi * np.sqrt(inductance * total))
+            last, frequency = frequency, 1.0 / (2 * np.pi * np.sqrt(inductance * total))
+            if np.abs(frequency / last - 1.0).max(initial=0.0) < _CLOSE:
+                break
         return np.asarray(frequency)
 
     def _at(self, frequency: Floats) -> tuple[Floats, Floats, Floats]:
@@ -70,6 +74,56 @@ class Circuits:
         inductance = line(self.inductance_low, self.inductance_high)
         others = self.fixed[:, None] + line(self.across_low, self.across_high)
         return inductance, others, line(1.0 / self.padder_low, 1.0 / self.padder_high)
+
+
+@dataclass(frozen=True, eq=False)
+class Made:
+    """Circuits of one band by what they are made of, (m,) each; grades are left open."""
+
+    coil: Ints
+    place: Ints  # of the padder among the valid species; their number: none
+    rows: Rows  # networks across the coil, species among the valid ones
+    circuits: Circuits
+
+    def __len__(self) -> int:
+        return len(self.coil)
+
+    def take(self, chosen: Ints) -> Made:
+        """Return some of the circuits."""
+        return Made(self.coil[chosen], self.place[chosen], self.rows.take(chosen), self.circuits.take(chosen))
+
+
+class Maker:
+    """Makes the circuits of one swept band."""
+
+    def __init__(self, problem: Problem, valid: Ints, band: int) -> None:
+        self.problem, self.band = problem, band
+        self.value_low = problem.species_low[band][valid]
+        self.padder_low = np.append(self.value_low, np.inf)
+        self.padder_high = np.append(problem.species[band][valid], np.inf)
+        self.fixed = problem.fixed_capacitance()[:, band]
+
+    def made(self, coil: Ints, place: Ints, rows: Rows) -> Made:
+        """Return circuits of coils, padders and networks."""
+        p, band = self.problem, self.band
+        low = self.value_low[rows.species].sum(axis=1) if rows.species.shape[1] else np.zeros(len(coil))
+        circuits = Circuits(
+            low=float(p.low_end[band]),
+            high=float(p.frequency[band]),
+            inductance_low=p.inductance_low[coil, band],
+            inductance_high=p.inductance_high[coil, band],
+            fixed=self.fixed[coil],
+            across_low=p.behind_leads(low, band, low_end=True),
+            across_high=p.behind_leads(rows.value, band),
+            padder_low=self.padder_low[place],
+            padder_high=self.padder_high[place],
+        )
+        return Made(coil, place, rows, circuits)
+
+
+def behind_padder(section: Floats, padder: Floats) -> Floats:
+    """Return a section in series with a padder. [F]"""
+    return np.asarray(section / (1.0 + section / padder))
 
 
 def circuits_of(problem: Problem, band: int, columns: Columns, species_of_part: Ints) -> Circuits:

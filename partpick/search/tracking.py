@@ -1,7 +1,7 @@
 """Receivers: signal circuit and oscillator of one band, picked together for the least worst tracking error.
 
 For each number of capacitors every signal circuit that covers its band is met with every oscillator that
-the windows of `companions.py` leave. A largest error, first small, then four times as large, keeps the work
+the windows of `companions.py` leave. A largest error, first small, then wider, keeps the work
 small: what a pass has found below its largest error is certain.
 """
 
@@ -18,7 +18,8 @@ from partpick.search.columns import ColumnSource
 from partpick.search.companions import Companions, Hits
 from partpick.search.figures import Columns
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
-from partpick.search.sections import CHECKS, band_points, circuits_of, species_of_parts
+from partpick.search.sections import CHECKS, Made, band_points, circuits_of, species_of_parts
+from partpick.search.signals import Signals
 from partpick.search.swept import SweptColumns
 
 Key = tuple[int, ...]
@@ -26,9 +27,8 @@ Group = tuple[int, int]
 
 STEP = 1e-3  # of the limit: tracking errors closer than this are equal to the order by build
 FINE = 1e-9
-DEEPER = (1 / 64, 1 / 16, 1 / 4, 1.0)  # largest errors tried, of the limit
+DEEPER = ((1.0, 1 / 64), (1.1, 1 / 16), (1.0, 1.0))  # largest errors tried: shares of the hint and of the limit
 FREE_MARGIN = -0.5  # an oscillator covers what tracking says, not its range with a margin
-_BLOCK = 20_000  # signal circuits at once
 _KEPT = 400_000  # signal circuits of one number of parts that are kept for the next pass
 _BATCH = 4_000  # hits whose whole curve is computed at once
 _MOST_GROUPS = 4_000_000
@@ -48,6 +48,7 @@ class ReceiverBand:
     oscillator: int
     offset: float  # Hz, oscillator above the signal; negative: below
     limit: float  # Hz, largest tracking error
+    hint: float = 0.0  # Hz, about the least that parts of any value reach: where to begin
 
 
 @dataclass(frozen=True)
@@ -94,19 +95,23 @@ class _Level:
 
     def add(self, pair: Pair) -> None:
         """Keep a pair where it improves a row or has the least error so far."""
-        least = self.below if self.least is None else self.least.error
-        if pair.error < least or (self.least and pair.error == least and pair.place < self.least.place):
+        known = self.least
+        if pair.error < self.least_error() or (known and pair.error == known.error and pair.place < known.place):
             self.least = pair
         if self.need and pair.group not in self.taken:
-            known = self.rows.get(pair.group)
-            if known is None or pair.place < known.place:
+            row = self.rows.get(pair.group)
+            if row is None or pair.place < row.place:
                 self.rows[pair.group] = pair
                 if len(self.rows) > 4 * self.need + 100:
                     self.rows = {pair.group: pair for pair in self.first()}
 
+    def least_error(self) -> float:
+        """Return the error below which a pair is of interest for its error alone. [Hz]"""
+        return self.below if self.least is None else self.least.error
+
     def cut(self) -> float:
         """Return the largest error that may still matter. [Hz]"""
-        least = self.below if self.least is None else self.least.error
+        least = self.least_error()
         if self.need == 0:
             return least
         first = self.first()
@@ -116,14 +121,16 @@ class _Level:
         return max(least, (step + 0.5) * self.unit)
 
 
-class _Oscillators(SweptColumns):
-    """Columns of given oscillators."""
+class _Exact(SweptColumns):
+    """Columns of given circuits."""
 
-    def exactly(self, coil: int, band: int, across: int, place: int, value: float) -> Columns:
-        """Return every choice of grades for networks of one value behind one padder, inside the limits."""
-        sides = np.full(len(self.valid[band]) + 1, value)
-        grain = 1e-13 * value
-        return self._block(coil, band, across, np.array([place]), sides - grain, sides + grain)
+    def exactly(self, band: int, made: Made, row: int) -> Columns:
+        """Return every choice of grades for one circuit inside the limits of its band."""
+        value = float(made.rows.value[row])
+        sides, grain = np.full(len(self.valid[band]) + 1, value), 1e-13 * value
+        place = np.array([int(made.place[row])])
+        across = made.rows.species.shape[1]
+        return self._block(int(made.coil[row]), band, across, place, sides - grain, sides + grain)
 
 
 class BandSearch:
@@ -132,29 +139,22 @@ class BandSearch:
     def __init__(
         self, problem: Problem, source: ColumnSource, band: ReceiverBand, all_windings: bool, monitor: Monitor
     ) -> None:
-        self.problem, self.source, self.band = problem, source, band
+        self.problem, self.band = problem, band
         self.all_windings, self.monitor = all_windings, monitor
         self.points = band_points(float(problem.low_end[band.signal]), float(problem.frequency[band.signal]))
         self.target = self.points + band.offset
+        self.checks = self.target[list(CHECKS)]
         free = replace(problem, margin=FREE_MARGIN, excess_limit=float("inf"))
-        self.oscillators = _Oscillators(free, source.tables, source.valid, source.grades)
-        tables, valid = source.tables[band.oscillator], source.valid[band.oscillator]
-        self.companions = Companions(problem, tables, valid, band.oscillator, self.target)
-        self.species = species_of_parts(problem)
-        self.signal_coils = np.flatnonzero(self._may_cover())
-        self._kept: dict[int, list[tuple[Columns, Floats]]] = {}
-        self._columns: dict[tuple[int, int, int, float], Columns] = {}
+        common = source.tables, source.valid, source.grades
+        self.exact = {band.signal: _Exact(problem, *common), band.oscillator: _Exact(free, *common)}
+        signal, oscillator = ((source.tables[b], source.valid[b], b) for b in (band.signal, band.oscillator))
+        self.signals = Signals(problem, *signal)
+        self.companions = Companions(problem, *oscillator, self.target)
+        self._kept: dict[int, list[tuple[Made, Floats]]] = {}
+        self._columns: dict[object, Columns] = {}
         supports = len(problem.support_stock)
         few = not all_windings and supports**2 <= _MOST_GROUPS
         self._supports = supports if few else 0
-
-    def _may_cover(self) -> Bools:
-        """Return which coils leave enough swing for the signal, (J,)."""
-        p, band = self.problem, self.band.signal
-        need, most = p.least_at_low_end[:, band], p.most_at_high_end[:, band]
-        swing = p.tuning_high[band] - p.tuning_low[band]
-        fixed = p.fixed_capacitance()[:, band]
-        return np.asarray(p.in_play[:, band] & (need - most <= swing * (1 + 1e-9)) & (fixed <= most * (1 + 1e-9)))
 
     # ------------------------------------------------------------ the passes
 
@@ -166,40 +166,42 @@ class BandSearch:
         Stopped
             The monitor said so; the level holds what was found.
         """
-        for share in DEEPER:
-            largest = self.band.limit * share
+        band = self.band
+        steps = [min(band.limit, band.hint * more + band.limit * share) for more, share in DEEPER]
+        for largest in steps if level.need else [band.limit]:
             self._pass(level, splits, largest)
             if level.cut() <= largest:
                 return
 
     def _pass(self, level: _Level, splits: list[tuple[int, int]], largest: float) -> None:
-        windows, reach = self.companions.windows(largest), largest
+        reach = min(level.cut(), largest)
+        windows = self.companions.windows(reach)
         for own, companion in splits:
-            for columns, section in self._signals(own):
+            for made, section in self._signals(own):
                 if min(level.cut(), largest) < 0.8 * reach:
                     reach = min(level.cut(), largest)
                     windows = self.companions.windows(reach)
                 for behind in (True, False):
                     for hits in self.companions.hits(section, companion, behind, windows):
                         self._stop_where_asked()
-                        self._take(level, columns, section, hits, largest)
+                        self._take(level, made, section, hits, largest)
 
     def _stop_where_asked(self) -> None:
         reason = self.monitor.stopped()
         if reason is not None:
             raise Stopped(reason)
 
-    def _signals(self, parts: int) -> Iterator[tuple[Columns, Floats]]:
+    def _signals(self, parts: int) -> Iterator[tuple[Made, Floats]]:
         """Yield the signal circuits of so many capacitors in blocks, each with its sections at the checks."""
         if parts in self._kept:
             yield from self._kept[parts]
             return
-        kept: list[tuple[Columns, Floats]] | None = []
+        kept: list[tuple[Made, Floats]] | None = []
         size = 0
-        for columns in self._signal_blocks(parts):
-            circuits = circuits_of(self.problem, self.band.signal, columns, self.species)
-            block = columns, circuits.section(self.points[list(CHECKS)])
-            size += len(columns)
+        for made in self.signals.blocks(parts):
+            self._stop_where_asked()
+            block = made, made.circuits.section(self.points[list(CHECKS)])
+            size += len(made)
             if kept is not None:
                 kept.append(block)
                 kept = kept if size <= _KEPT else None
@@ -207,36 +209,20 @@ class BandSearch:
         if kept is not None:
             self._kept[parts] = kept
 
-    def _signal_blocks(self, parts: int) -> Iterator[Columns]:
-        waiting: list[Columns] = []
-        size = 0
-        for count, coil in enumerate(self.signal_coils.tolist()):
-            if count % 64 == 0:
-                self._stop_where_asked()
-            columns = self.source.columns(coil, self.band.signal, parts)
-            if len(columns):
-                waiting.append(columns)
-                size += len(columns)
-            if size >= _BLOCK:
-                yield Columns.join(waiting)
-                waiting, size = [], 0
-        if waiting:
-            yield Columns.join(waiting)
-
     # ------------------------------------------------------------ from hits to pairs
 
-    def _take(self, level: _Level, columns: Columns, section: Floats, hits: Hits, largest: float) -> None:
+    def _take(self, level: _Level, made: Made, section: Floats, hits: Hits, largest: float) -> None:
         """Add what matters of some hits, by rising error."""
-        target = self.target[list(CHECKS)]
-        least = np.abs(hits.circuits.tuned(section[hits.curve], target) - target).max(axis=1, initial=0.0)
+        tuned = hits.made.circuits.tuned(section[hits.curve], self.checks)
+        least = np.abs(tuned - self.checks).max(axis=1, initial=0.0)
         best = self._best_of_groups(level)
-        chosen = np.flatnonzero(self._matters(level, columns, hits, least, largest, best))
+        chosen = np.flatnonzero(self._matters(level, made, hits, least, largest, best))
         chosen = chosen[np.argsort(least[chosen], kind="stable")]
         for start in range(0, len(chosen), _BATCH):
             some = chosen[start : start + _BATCH]
             if least[some[0]] > min(level.cut(), largest):
                 return
-            self._take_batch(level, columns, hits.take(some), largest)
+            self._take_batch(level, made, hits.take(some), largest)
 
     def _best_of_groups(self, level: _Level) -> Floats | None:
         """Return the error up to which each group is of interest, flat by its two supports."""
@@ -250,56 +236,55 @@ class BandSearch:
         return best
 
     def _matters(
-        self, level: _Level, columns: Columns, hits: Hits, error: Floats, largest: float, best: Floats | None
+        self, level: _Level, made: Made, hits: Hits, error: Floats, largest: float, best: Floats | None
     ) -> Bools:
         """Return which hits may still matter, of errors that are at least `error`."""
-        inside = (error <= min(level.cut(), largest)) & (columns.coil[hits.curve] != hits.coil)
+        own, companion = made.coil[hits.curve], hits.made.coil
+        inside = (error <= min(level.cut(), largest)) & (own != companion)
         if best is None:
             return np.asarray(inside)
-        support = self.problem.support
-        group = support[columns.coil[hits.curve]] * self._supports + support[hits.coil]
-        least = level.below if level.least is None else level.least.error
-        return np.asarray(inside & ((error <= best[group]) | (error <= least)))
+        group = self.problem.support[own] * self._supports + self.problem.support[companion]
+        return np.asarray(inside & ((error <= best[group]) | (error <= level.least_error())))
 
-    def _take_batch(self, level: _Level, columns: Columns, hits: Hits, largest: float) -> None:
-        own = circuits_of(self.problem, self.band.signal, columns.take(hits.curve), self.species)
+    def _take_batch(self, level: _Level, made: Made, hits: Hits, largest: float) -> None:
+        own = made.take(hits.curve)
         target = self.target[None, :]
-        error = np.abs(hits.circuits.tuned(own.section(self.points), target) - target).max(axis=1, initial=0.0)
-        matters = self._matters(level, columns, hits, error, largest, self._best_of_groups(level))
-        order = np.flatnonzero(matters)
+        tuned = hits.made.circuits.tuned(own.circuits.section(self.points), target)
+        error = np.abs(tuned - target).max(axis=1, initial=0.0)
+        order = np.flatnonzero(self._matters(level, made, hits, error, largest, self._best_of_groups(level)))
         cut = level.cut()
         for row in order[np.argsort(error[order], kind="stable")].tolist():
             if error[row] > cut:
                 return
-            if self._add(level, columns, hits, row, float(error[row])):
+            if self._add(level, own, hits.made, row, float(error[row])):
                 cut = level.cut()
 
-    def _add(self, level: _Level, columns: Columns, hits: Hits, row: int, error: float) -> bool:
+    def _add(self, level: _Level, own: Made, companion: Made, row: int, error: float) -> bool:
         """Add every choice of grades of one hit; return whether there was any."""
-        signal = columns.take(hits.curve[row : row + 1])
-        group = self._group(int(signal.coil[0]), int(hits.coil[row]))
+        group = self._group(int(own.coil[row]), int(companion.coil[row]))
         known = level.rows.get(group)
         worse = known is not None and round(error / level.unit) > round(known.error / level.unit)
-        least = level.below if level.least is None else level.least.error
-        if error >= least and (worse or group in level.taken or not level.need):
+        if error >= level.least_error() and (worse or group in level.taken or not level.need):
             return False
-        companions = self._companion_columns(hits, row)
+        signals = self._columns_of(self.band.signal, own, row)
+        companions = self._columns_of(self.band.oscillator, companion, row) if len(signals) else signals
         added = False
-        for place in range(len(companions)):
-            pair = self._pair(signal, companions.take(np.array([place])), error, group)
-            if pair is not None:
-                level.add(pair)
-                added = True
+        for one in range(len(signals)):
+            for two in range(len(companions)):
+                both = signals.take(np.array([one])), companions.take(np.array([two]))
+                pair = self._pair(both, error, group)
+                if pair is not None:
+                    level.add(pair)
+                    added = True
         return added
 
-    def _companion_columns(self, hits: Hits, row: int) -> Columns:
-        coil, place, value = int(hits.coil[row]), int(hits.place[row]), float(hits.rows.value[row])
-        across = hits.rows.species.shape[1]
-        key = coil, place, across, value
+    def _columns_of(self, band: int, made: Made, row: int) -> Columns:
+        rows = made.rows
+        key = band, int(made.coil[row]), int(made.place[row]), rows.species.shape[1], float(rows.value[row])
         if key not in self._columns:
             if len(self._columns) > 50_000:
                 self._columns.clear()
-            self._columns[key] = self.oscillators.exactly(coil, self.band.oscillator, across, place, value)
+            self._columns[key] = self.exact[band].exactly(band, made, row)
         return self._columns[key]
 
     def _group(self, signal: int, oscillator: int) -> Group:
@@ -307,11 +292,10 @@ class BandSearch:
             return signal, oscillator
         return int(self.problem.support[signal]), int(self.problem.support[oscillator])
 
-    def _pair(self, signal: Columns, oscillator: Columns, error: float, group: Group) -> Pair | None:
+    def _pair(self, both: tuple[Columns, Columns], error: float, group: Group) -> Pair | None:
         """Return a pair, None where stock or a limit of the whole plan does not allow it."""
         p = self.problem
-        coils = int(signal.coil[0]), int(oscillator.coil[0])
-        both = signal, oscillator
+        coils = int(both[0].coil[0]), int(both[1].coil[0])
         if not inside_shared_limits(p, Choice((), coils, both)) or not coils_in_stock(p, coils):
             return None
         figures = pair_figures(p, coils, both, error, self.band.limit)
