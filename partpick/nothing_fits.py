@@ -9,6 +9,7 @@ from partpick.candidates import realisable_coils
 from partpick.parts import Catalogue
 from partpick.progress import Monitor
 from partpick.quantities import format_quantity
+from partpick.receiver import is_receiver, with_widest_tracking
 from partpick.request import LEAST_WOUND, Request
 from partpick.result import Candidate, RuledOut
 from partpick.tuning_range import beyond_reach
@@ -76,6 +77,9 @@ def _trials(request: Request) -> Iterator[_Trial]:
         # A default limit is off where a trimmer stands; a very wide one keeps the rest comparable.
         wide = replace(request, by="error", limits=replace(limits, error=0.9, error_stated=True))
         yield _Trial("error", wide, lambda c: c.worst_error, _error_words)
+    if is_receiver(request):
+        wide = replace(with_widest_tracking(request), by="error")
+        yield _Trial("tracking", wide, lambda c: float(str(c.extra["worst_tracking_hz"])), _tracking_words)
     yield from _swept_trials(request)
     yield from _count_trials(request)
     yield from _quality_trials(request)
@@ -139,7 +143,8 @@ def _quality_trials(request: Request) -> Iterator[_Trial]:
         free = replace(request, limits=replace(limits, alignable=None))
         yield _Trial("alignable", free, lambda _: "none", lambda _: _alignable_words(request))
     if limits.price is not None:
-        free = replace(request, by="price", limits=replace(limits, price=None))
+        by = request.by if is_receiver(request) else "price"
+        free = replace(request, by=by, limits=replace(limits, price=None))
         yield _Trial("price", free, lambda c: c.price, _price_words)
     if request.stray.share is not None:
         free = replace(request, stray=replace(request.stray, share=None))
@@ -168,6 +173,11 @@ def _coil_trials(request: Request) -> Iterator[_Trial]:
 def _excess_words(candidate: Candidate) -> str:
     assert candidate.worst_excess is not None
     return f"the least that these parts reach is {100 * candidate.worst_excess:.3g} %"
+
+
+def _tracking_words(candidate: Candidate) -> str:
+    worst = float(str(candidate.extra["worst_tracking_hz"]))
+    return f"the least that these parts reach is {format_quantity(worst, 'Hz')}"
 
 
 def _error_words(candidate: Candidate) -> str:

@@ -92,6 +92,15 @@ def tracking_limit(request: Request, band: Band) -> float:
     return max(LEAST_SHARE * band.low, ROOM * least_error(band.low, band.high, offset_of(request)))
 
 
+def with_widest_tracking(request: Request) -> Request:
+    """Return a receiver's request with the largest tracking error that any plan may state."""
+    offset = min(offset_of(request), 0.0)
+    widest = min(LARGEST_SHARE * (band.lowest + offset) for band in request.bands)
+    extra = dict(request.extra)
+    extra["receiver"] = tuple({**dict(extra["receiver"]), "tracking": widest}.items())
+    return replace(request, extra=tuple(extra.items()))
+
+
 @cache
 def least_error(low: float, high: float, offset: float) -> float:
     """Return the worst tracking error with any coils and capacitors, one of the two circuits padded. [Hz]
