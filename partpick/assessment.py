@@ -17,6 +17,7 @@ from partpick.objective import TRIMMER_Q
 from partpick.parts import Capacitor
 from partpick.physics.resonance import resonance_frequency
 from partpick.quantities import format_quantity
+from partpick.receiver import is_receiver
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 from partpick.search.networks import PARALLEL, SHUNTED
@@ -131,7 +132,8 @@ def _contacts(tank: Tank) -> tuple[str, ...]:
     if tank.design.closed:
         higher = [i for i, band in enumerate(tank.request.bands) if band.lowest >= tank.band.lowest]
         return tuple(f"S{i + 1}" for i in higher)
-    return (f"S{tank.index + 1}",) if len(tank.request.bands) > 1 else ()
+    alone = 2 if is_receiver(tank.request) else 1  # a receiver of one band has two circuits and no switch
+    return (f"S{tank.index + 1}",) if len(tank.request.bands) > alone else ()
 
 
 def _capacitor_line(reference: str, part: Capacitor, bands: tuple[str, ...]) -> PartLine:

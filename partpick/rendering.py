@@ -68,4 +68,5 @@ def renderers(
 
         return tracking_text(result, tracking or "-")
 
-    return {"table": table, "dial": chart, "tracking": curve, **{name: by(function) for name, function in REPORTS.items()}}
+    charts = {"dial": chart, "tracking": curve}
+    return {"table": table, **charts, **{name: by(function) for name, function in REPORTS.items()}}

@@ -93,7 +93,13 @@ def with_tracking(request: Request, candidate: Candidate, shares: float) -> Cand
     entries = [_entry(request, candidate, curve) for curve in curves]
     worst = max(curve.worst for curve in curves)
     extra = {**candidate.extra, "worst_tracking_hz": worst, "tracking": entries}
-    return replace(candidate, extra=extra, warnings=(*candidate.warnings, *notes_of(request)))
+    signals = {curve.oscillator: curve.band for curve in curves}
+    bands = tuple(
+        replace(band, extra={**band.extra, "follows": signals[band.name]}) if band.name in signals else band
+        for band in candidate.bands
+    )
+    warnings = (*candidate.warnings, *notes_of(request))
+    return replace(candidate, bands=bands, extra=extra, warnings=warnings)
 
 
 def _entry(request: Request, candidate: Candidate, curve: TrackingCurve) -> dict[str, object]:

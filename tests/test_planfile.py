@@ -149,7 +149,7 @@ def test_every_key_of_a_plan_reaches_the_request() -> None:
     driven = {"power": 5.0, "voltage": None, "current": None, "supply": 12.0, "class": "C", "modulation": 0.0}
     assert further["drive"] == driven
     assert further["oscillator"]["transconductance"] == 5e-3
-    assert further["receiver"] == {"intermediate": 455e3, "side": "above"}
+    assert further["receiver"] == {"intermediate": 455e3, "side": "above", "tracking": None}
     assert further["temperature"] == {"from": -10.0, "to": 40.0, "measured_drift": -18e-6}
     assert further["spread"] == {"builds": 5000, "seed": 7, "parts": "normal", "batch": 0.5}
 

@@ -65,7 +65,7 @@ def _grades(candidate: Candidate, request: Request) -> Iterator[str]:
 
 def _tuning(band: BandFigures, wanted: Band, request: Request) -> Iterator[str]:
     if band.error is None:
-        excess = band.extra.get("excess")
+        excess = None if "follows" in band.extra else band.extra.get("excess")
         if isinstance(excess, float) and _over(excess, request.limits.excess):
             yield f"an excess of {excess:.9g}, {request.limits.excess:g} is allowed"
         return

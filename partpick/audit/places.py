@@ -35,7 +35,13 @@ def _overlooked(result: Result) -> Iterator[str]:
 
 
 def _figures(candidate: Candidate) -> tuple[float, ...]:
-    """Return what leads the front: the worst error, then the worst excess of a plan that has both."""
+    """Return what leads the front: the worst error, then the worst excess of a plan that has both.
+
+    Of a receiver it is the worst tracking error as a share of its limit.
+    """
+    tracking = candidate.extra.get("tracking")
+    if isinstance(tracking, list):
+        return (max(float(entry["worst_error_hz"]) / float(entry["limit_hz"]) for entry in tracking),)
     return tuple(figure for figure in (candidate.worst_error, candidate.worst_excess) if figure is not None)
 
 

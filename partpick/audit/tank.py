@@ -75,6 +75,8 @@ def _swept(candidate: Candidate, band: BandFigures, tree: Connection | None, req
     excess = max(low - tuned["low"], tuned["high"] - high) / (high - low)
     if abs(figure.get("excess", math.inf) - excess) > AGREE * max(1.0, abs(excess)):
         yield f"{band.name}: excess is {figure.get('excess')}, its parts give {excess:.9g}"
+    if "follows" in band.extra:
+        return  # an oscillator covers what tracking asks of it
     margin = request.limits.margin
     if tuned["low"] > low * (1 - margin) * (1 + AGREE) or tuned["high"] < high * (1 + margin) * (1 - AGREE):
         yield f"{band.name}: tunes {tuned['low']:.9g} to {tuned['high']:.9g} Hz, which leaves no margin of {margin:g}"

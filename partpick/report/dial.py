@@ -153,7 +153,8 @@ def dial_of(tuning: Tuning, candidate: Candidate, figures: BandFigures) -> Dial:
     """
     element, setting = _element_at(candidate, figures), _law(tuning)
     ends = [_number(figures, key) for key in ("tuned_low_hz", "tuned_high_hz")]
-    wanted = [_number(figures, key) for key in ("low_hz", "high_hz")]
+    wanted = [f for key in ("low_hz", "high_hz") if ends[0] <= (f := _number(figures, key)) <= ends[1]]  # a receiver's
+    # oscillator may be off by its tracking error, so that an end of its range is beyond those of the element
     steps = np.linspace(ends[0], ends[1], STEPS + 1)
     frequency = np.unique(np.concatenate([steps, wanted]))
     near = SLOPE_STEP * (ends[1] - ends[0])

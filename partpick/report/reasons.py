@@ -14,6 +14,7 @@ from partpick.quantities import format_percent
 from partpick.report.bands_table import share_of_strays, worst_q
 from partpick.report.charts import spread_of
 from partpick.report.text import figure, plural, quantity, signed_percent, wrapped
+from partpick.report.tracking import worst_tracking
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, Result
 
@@ -155,17 +156,39 @@ def _by_price(step: _Step) -> str:
     return f"price: {ahead} against {after}."
 
 
+def _by_tracking(step: _Step) -> str:
+    ahead, after = (worst_tracking(candidate) for candidate in (step.first, step.second))
+    return f"the worst tracking error: {ahead} against {after}."
+
+
+def _by_forms(step: _Step) -> str:
+    return f"the kind of winding, rank {step.first.rank} the easier: {_BEFORE}."
+
+
+def _by_wires(step: _Step) -> str:
+    return "wire: fewer coils with wire outside 0.3 to 1.0 mm."
+
+
+def _by_volume(step: _Step) -> str:
+    return f"the size of the coils, in steps of 25 %: rank {step.first.rank} has the smaller."
+
+
 _STEPS: dict[str, Callable[[_Step], str]] = {
     "pieces": _by_pieces,
     "error_class": _by_error,
     "error_rank": _by_error,
     "fine_error": _by_error,
+    "tracking": _by_tracking,
+    "fine_tracking": _by_tracking,
     "excess_class": _by_excess,
     "fine_excess": _by_excess,
     "q_class": _by_q,
     "stray_class": _by_strays,
     "reactance_class": _by_reactance,
     "effort": _by_effort,
+    "forms": _by_forms,
+    "wires": _by_wires,
+    "volume": _by_volume,
     "commonness": _by_commonness,
     "price": _by_price,
 }
@@ -242,8 +265,20 @@ def _limits_of_band(request: Request, band: BandFigures, least_q: float | None) 
 # ---------------------------------------------------------------- pieces, tolerance, neighbours
 
 
+def _more_tracking(result: Result, candidate: Candidate) -> str:
+    """Return the next step of a receiver's front."""
+    own = float(str(candidate.extra["worst_tracking_hz"]))
+    for other in result.front:
+        more = other.piece_count - candidate.piece_count
+        if more > 0 and float(str(other.extra["worst_tracking_hz"])) < own:
+            return f"{plural(more, 'piece')} more would bring the tracking error to {worst_tracking(other)}."
+    return "More pieces would buy nothing that these limits allow." if result.proof.status == "optimal" else ""
+
+
 def _more_pieces(result: Result, candidate: Candidate) -> str:
     """Return the next step of the front, and whether tolerance leaves anything of it."""
+    if "tracking" in candidate.extra:
+        return _more_tracking(result, candidate)
     swept = candidate.worst_error is None
     own = candidate.worst_excess if swept else candidate.worst_error
     better = [

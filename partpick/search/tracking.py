@@ -145,7 +145,7 @@ class BandSearch:
         self.target = self.points + band.offset
         self.checks = self.target[list(CHECKS)]
         free = replace(problem, margin=FREE_MARGIN, excess_limit=float("inf"))
-        common = source.tables, source.valid, source.grades
+        common = source.tables, source.valid, source.grades, source.gain
         self.exact = {band.signal: _Exact(problem, *common), band.oscillator: _Exact(free, *common)}
         signal, oscillator = ((source.tables[b], source.valid[b], b) for b in (band.signal, band.oscillator))
         self.signals = Signals(problem, *signal)

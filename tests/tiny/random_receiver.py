@@ -33,7 +33,7 @@ def random_receiver(seed: int, *, bands: int = 1, coupled: bool = False) -> tupl
         extra, side = float(rng.choice([0.0, 10e-12, 22e-12, 47e-12])), pick(1.0, 1.0, -1.0)
         one, two = rng.permutation(coils)[:2] if bands == 1 else (2 * band, 2 * band + 1)
         swing = (most + fixed + extra) / (least + fixed + extra)
-        ratio = max(np.sqrt(swing) * rng.uniform(0.6, 0.9) * (1 - margin) / (1 + margin), 1.1)
+        ratio = max(np.sqrt(swing) * rng.uniform(0.6, 0.9 if bands == 1 else 0.7) * (1 - margin) / (1 + margin), 1.1)
         if side < 0:  # the oscillator has the larger ratio: leave it room
             ratio = max(ratio**0.6, 1.05)
         top = 1 / (2 * np.pi * np.sqrt(inductance[one] * (least + fixed + extra))) / (1 + margin)
@@ -67,6 +67,9 @@ def random_receiver(seed: int, *, bands: int = 1, coupled: bool = False) -> tupl
         "values_limit": int(rng.integers(1, 3)) if coupled and rng.random() < 0.5 else NEVER,
         "price_limit": int(rng.integers(20, 90)) if coupled and rng.random() < 0.5 else NEVER,
     }
+    # of several bands each usually has coils of its own: one winding in two places is no plan
+    apart = np.arange(coils)[:, None] // 2 == np.arange(2 * bands)[None, :] // 2
+    own_coils = apart if bands > 1 and rng.random() < 0.9 else np.ones(shape, dtype=np.bool_)
     trimmed = float(rng.random() < 0.2)
     supports = int(rng.integers(1, coils + 1))
     stocked = coupled or bands == 1
@@ -80,7 +83,7 @@ def random_receiver(seed: int, *, bands: int = 1, coupled: bool = False) -> tupl
         self_capacitance=np.full(coils, 1e-12) * rng.uniform(0.5, 1.5, coils),
         trimmer_low=plain.trimmer_low * trimmed,
         trimmer_high=plain.trimmer_high * trimmed,
-        in_play=rng.random(shape) < 0.95,
+        in_play=(rng.random(shape) < 0.95) & own_coils,
         coil_loss=1 / rng.choice([60.0, 110.0, 160.0, 250.0], shape),
         coil_loss_low=1 / rng.choice([60.0, 110.0, 160.0, 250.0], shape),
         reactance_class=rng.integers(0, 2, shape),
@@ -109,24 +112,25 @@ def random_receiver(seed: int, *, bands: int = 1, coupled: bool = False) -> tupl
         least_parts=0,
         connect_any=False,
         lead_inductance=pick(0.0, 0.0, 30e-9),
-        share=pick(np.inf, np.inf, 0.5, 0.3),
+        share=pick(np.inf, np.inf, 0.5, 0.3) if bands == 1 else np.inf,
         tuning_low=np.full(2 * bands, least),
         tuning_high=np.full(2 * bands, most),
         tuning_loss=np.full(2 * bands, 1 / 500),
         tuning_tempco=np.zeros(2 * bands),
         margin=margin,
         excess_limit=pick(np.inf, np.inf, np.inf, 1.0),
-        q_limit=np.full(2 * bands, pick(0.0, 0.0, 0.0, 70.0)),
+        q_limit=np.full(2 * bands, pick(0.0, 0.0, 0.0, 70.0) if bands == 1 else 0.0),
         drift_limit=pick(np.inf, np.inf, np.inf, 200e-6),
         by=pick("build", "error"),
         **limits,
     )
+    shares = [0.02, 0.06, 0.15] if bands == 1 else [0.1, 0.15]
     belong = tuple(
         ReceiverBand(
             signal=2 * band,
             oscillator=2 * band + 1,
             offset=offsets[band],
-            limit=float(low[2 * band : 2 * band + 2].min() * rng.choice([0.02, 0.06, 0.15])),
+            limit=float(low[2 * band : 2 * band + 2].min() * rng.choice(shares)),
         )
         for band in range(bands)
     )
