@@ -53,7 +53,7 @@ def assess(
     used = design.capacitors
     errors = [abs(b.error) for b in bands if b.error is not None]
     excesses = [excess for band in bands if isinstance(excess := band.extra.get("excess"), float)]
-    prices = [line.unit_price for line in (*lines, *coil_lines)]
+    prices = [line.unit_price for line in parts]
     return Candidate(
         rank=None,
         on_front=False,
@@ -177,22 +177,24 @@ def _trimmer_lines(request: Request) -> list[PartLine]:
     for band in request.bands:
         if band.trimmer is None:
             continue
-        label = f"{format_quantity(band.trimmer.low, 'F')} to {format_quantity(band.trimmer.high, 'F')}"
+        trimmer = band.trimmer
+        label = f"{format_quantity(trimmer.low, 'F')} to {format_quantity(trimmer.high, 'F')}"
         lines.append(
             PartLine(
                 reference=f"CT{len(lines) + 1}",
                 kind="trimmer",
-                value=band.trimmer.middle,
+                value=trimmer.middle,
                 unit="F",
                 label=label,
-                description=f"trimmer capacitor {label}",
+                description=trimmer.name or f"trimmer capacitor {label}",
                 grade=None,
                 tolerance=None,
-                tempco=band.trimmer.tempco,
+                tempco=trimmer.tempco,
                 bands=(band.name,),
-                unit_price=0.0,
-                source="stated in the plan",
-                q=band.trimmer.q or TRIMMER_Q,
+                unit_price=trimmer.unit_price,
+                source=trimmer.source,
+                q=trimmer.q or TRIMMER_Q,
+                voltage=trimmer.voltage,
             )
         )
     return lines
@@ -304,6 +306,9 @@ def _warnings(
         for index in network.pieces:
             for note in capacitors[index].notes:
                 found[f"{capacitors[index].label}: {note}"] = None
+    for trimmer in (band.trimmer for band in request.bands if band.trimmer):
+        for note in trimmer.notes:
+            found[f"{trimmer.name}: {note}"] = None
     for coil in dict.fromkeys(design.coils):
         support = coils.supports[int(coils.support[coil])]
         for note in support.notes:

@@ -22,9 +22,10 @@ _READERS: dict[str, tuple[Sequence[tuple[str, ...]], Callable[[Any], tuple[Any, 
     "wires.csv": (kinds.WIRE_SIZES, kinds.wires),
     "formers.csv": (kinds.FORMER_SIZES, kinds.formers),
     "cores.csv": (kinds.CORE_SIZES, kinds.cores),
+    "trimmers.csv": (kinds.TRIMMER_ENDS, kinds.trimmers),
 }
 # Shipped too and fine in a drawer, but no command reads them yet.
-_NOT_READ_YET = ("trimmers.csv", "variable_capacitors.csv", "varactors.csv")
+_NOT_READ_YET = ("variable_capacitors.csv", "varactors.csv")
 KNOWN_FILES = (*_READERS, *_NOT_READ_YET)
 
 STEADY_TEMPCO = 60e-6  # 1/K; grades beyond it are offered only where drift is a limit or a drawer is given
@@ -63,6 +64,7 @@ def load_catalogue(drawer: str | Path | None = None) -> Catalogue:
         wires=parts["wires.csv"],
         formers=parts["formers.csv"],
         cores=parts["cores.csv"],
+        trimmers=parts["trimmers.csv"],
         drawer=drawer is not None,
         drawer_files=tuple(name for name in _READERS if name in own),
     )

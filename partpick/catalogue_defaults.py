@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+TRIMMER_Q = 400.0  # film and ceramic trimmers
 PRACTICE = "common practice"
 CLASS_1 = "EIA-198 class 1"
 

@@ -28,13 +28,14 @@ from partpick.catalogue_defaults import (
     GRADES,
     INDUCTOR_TOLERANCE,
     PRACTICE,
+    TRIMMER_Q,
     UNKNOWN_GRADE,
     Grade,
     core_tolerance,
 )
 from partpick.catalogue_labels import labelled, only_once
 from partpick.catalogue_table import Row
-from partpick.parts import Capacitor, Core, Former, Inductor, Wire
+from partpick.parts import Capacitor, Core, Former, Inductor, TrimmerPart, Wire
 from partpick.quantities import (
     format_percent,
     format_quantity,
@@ -55,12 +56,13 @@ VALUE_OR_FAMILY = (("value",), ("series", "from", "to"))
 WIRE_SIZES = (("name", "bare_diameter", "overall_diameter"),)
 FORMER_SIZES = (("name", "diameter", "winding_length"),)
 CORE_SIZES = (("name", "outer_diameter"),)
+TRIMMER_ENDS = (("name", "low", "high"),)
 SUPPORTS = ("tube", "ribbed", "mandrel")
 SHAPES = ("ring", "pot", "rod")
 MOST_LOSS_TANGENT = 0.5  # damp wood; more is a slip of the pen
 _HEIGHT_OF = {"pot": "of both halves together", "rod": "its length"}
 
-Named = TypeVar("Named", Wire, Former, Core)
+Named = TypeVar("Named", Wire, Former, Core, TrimmerPart)
 
 
 # ---------------------------------------------------------------- capacitors
@@ -176,6 +178,41 @@ def _inductors_of_row(row: Row) -> Iterator[Inductor]:
 def _inductor_label(part: Inductor) -> tuple[str, ...]:
     current = "" if part.current is None else format_quantity(part.current, "A")
     return value_words(part.value, "H"), "inductor", format_percent(part.tolerance), current
+
+
+# ---------------------------------------------------------------- trimmers
+
+
+def trimmers(rows: Iterable[Row]) -> tuple[TrimmerPart, ...]:
+    """Return the trimmers of a file."""
+    return _named(rows, _trimmer)
+
+
+def _trimmer(row: Row) -> TrimmerPart:
+    low, high = row.need("low", parse_capacitance), row.need("high", parse_capacitance)
+    if not low < high:
+        raise row.wrong("high", f"read {row.cells['high']}: not above low")
+    tempco, tempco_tolerance = read_tempco(row)
+    q = read_positive(row, "q")
+    notes: list[str] = []
+    if q is None:
+        notes.append(note_taken("Q", f"{TRIMMER_Q:g}", "a trimmer", PRACTICE))
+    if tempco is None:
+        notes.append(note_taken("tempco", "", "a trimmer", PRACTICE))
+    return TrimmerPart(
+        name=row.text("name"),
+        low=low,
+        high=high,
+        tempco=tempco,
+        tempco_tolerance=tempco_tolerance,
+        q=q,
+        voltage=row.read("voltage", parse_voltage),
+        quantity=row.read("quantity", parse_count),
+        unit_price=read_price(row, "unit_price"),
+        label=row.text("label"),
+        source=row.text("source"),
+        notes=tuple(notes),
+    )
 
 
 # ---------------------------------------------------------------- wires, formers, cores

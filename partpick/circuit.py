@@ -226,6 +226,8 @@ class Tank:
             own = math.nan if element.tempco is None else element.tempco
             capacitance += self.element_weight(total) * own
         spread = float(self.coils.tempco_spread[self.coil])
+        if self.band.trimmer:
+            spread += trimmer / total * (self.band.trimmer.tempco_tolerance or 0.0)
         for part, weight in self.weights(total):
             capacitance += weight * (math.nan if part.tempco is None else part.tempco)
             spread += weight * (part.tempco_tolerance or 0.0)

@@ -6,6 +6,7 @@ Rules marked "common practice" have no source.
 
 from __future__ import annotations
 
+from dataclasses import replace
 from fractions import Fraction
 from typing import Any
 
@@ -15,12 +16,13 @@ from partpick.candidates import Coils
 from partpick.parts import Capacitor
 from partpick.physics.resonance import effective_capacitance
 from partpick.preferred import commonness
-from partpick.request import Band, Request
+from partpick.request import CHOSEN_ALIGNS, Band, Request, Trimmer
 from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
 from partpick.tuning import element_ends, element_tolerance
 
 LEAST_FLOOR = 0.001
 TRIMMER_Q = 400.0  # film and ceramic trimmers, common practice, no source
+MOST_TRIM = 0.5  # a trimmer that is chosen: range over what is in circuit; it trims, it does not tune
 MOST_ADJUST = 0.95  # of the inductance either way
 NEAR_OWN_RESONANCE = 0.25  # of 1 in w^2 Ls C: nobody counts on a capacitor within half of it
 
@@ -237,7 +239,8 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         by=_search_order(request, coil_price, part_price),
         margin=limits.margin,
         excess_limit=float("inf") if limits.excess is None else limits.excess,
-        alignable=_alignable_share(limits.alignable),
+        alignable=alignable_share(request),
+        aligned=aligned_bands(request),
         coil_spread=coils.spread,
         coil_adjust=np.array([min(s.adjust or 0.0, MOST_ADJUST) for s in coils.supports], dtype=float)[coils.support],
         part_tolerance=np.array([c.tolerance for c in capacitors]),
@@ -246,11 +249,41 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
     )
 
 
-def _alignable_share(limit: str | float | None) -> float:
+def alignable_share(request: Request) -> float:
     """Return the share of builds that must come on frequency: 1 at all corners, 0 where none is asked for."""
+    limit = request.limits.alignable
     if limit is None:
-        return 0.0
+        return CHOSEN_ALIGNS if any(_chooses(band) for band in request.bands) else 0.0
     return 1.0 if isinstance(limit, str) else float(limit)
+
+
+def aligned_bands(request: Request) -> Bools:
+    """Return for which bands that is asked, (B,): all, or where the plan sets no limit those that choose a trimmer."""
+    stated = request.limits.alignable is not None
+    return np.array([stated or _chooses(band) for band in request.bands], dtype=np.bool_)
+
+
+def _chooses(band: Band) -> bool:
+    return band.trimmer is not None and (band.trimmer.to_choose or band.trimmer.name is not None)
+
+
+def with_trimmer(request: Request, problem: Problem, trimmer: Trimmer, *, others: bool) -> Problem:
+    """Return the problem with one trimmer in every band that chooses; `others`: the other bands are in play too."""
+    choosing = np.array([band.trimmer is not None and band.trimmer.to_choose for band in request.bands])
+
+    def here(value: float, elsewhere: Floats) -> Floats:
+        return np.where(choosing, value, elsewhere)
+
+    return replace(
+        problem,
+        trimmer_low=here(trimmer.low, problem.trimmer_low),
+        trimmer_high=here(trimmer.high, problem.trimmer_high),
+        trimmer_loss=here(1.0 / (trimmer.q or TRIMMER_Q), problem.trimmer_loss),
+        trimmer_tempco=here(_nan(trimmer.tempco), problem.trimmer_tempco),
+        trimmer_tempco_spread=here(trimmer.tempco_tolerance or 0.0, problem.trimmer_tempco_spread),
+        trim_share=here(MOST_TRIM, problem.trim_share),
+        in_play=problem.in_play & (choosing | others)[None, :],
+    )
 
 
 def _swept_figures(

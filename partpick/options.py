@@ -54,7 +54,7 @@ PAIR_OPTIONS = (
     PlanOption("--stray", "stray.capacitance", "C", "Wiring, switch and device (5 pF)."),
     PlanOption("--stray-share", "stray.share", "SHARE", "Strays of all capacitance, at most (20 %)."),
     PlanOption("--stray-tempco", "stray.tempco", "PPM", "Of the strays, per kelvin (100 ppm)."),
-    PlanOption("--trimmer", "trimmer", "LOW..HIGH", "A trimmer, such as 3pF..20pF."),
+    PlanOption("--trimmer", "trimmer", "LOW..HIGH", "A trimmer, such as 3pF..20pF; choose: one of those in stock."),
     PlanOption("--tuning", "tuning", "KIND:LOW..HIGH", 'Such as "variable capacitor:12pF..150pF".'),
     PlanOption("--load", "load.resistance", "R", "Resistance across the tank."),
     PlanOption("--loaded-q", "load.loaded_q", "Q", "Q wanted with the load."),

@@ -117,6 +117,24 @@ class Core:
 
 
 @dataclass(frozen=True, kw_only=True)
+class TrimmerPart:
+    """One trimmer capacitor."""
+
+    name: str
+    low: float  # F
+    high: float  # F
+    tempco: float | None  # 1/K
+    tempco_tolerance: float | None  # 1/K, size
+    q: float | None
+    voltage: float | None  # V, peak
+    quantity: int | None
+    unit_price: float | None
+    label: str
+    source: str
+    notes: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, kw_only=True)
 class Catalogue:
     """All parts in use, in file order."""
 
@@ -127,3 +145,4 @@ class Catalogue:
     cores: tuple[Core, ...]
     drawer: bool  # whether any file came from a drawer
     drawer_files: tuple[str, ...] = ()  # names of the files that did
+    trimmers: tuple[TrimmerPart, ...] = ()

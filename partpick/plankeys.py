@@ -185,8 +185,8 @@ def as_given(given: object) -> object:
 _QUALITY = _positive(100_000)
 DIP = {"at": Key(read=parse_frequency, required=True), "with": Key(read=_capacitance_or_zero, required=True)}
 TRIMMER = {
-    "low": Key(read=parse_capacitance, required=True),
-    "high": Key(read=parse_capacitance, required=True),
+    "low": Key(read=parse_capacitance),  # neither low nor high: one of those in stock
+    "high": Key(read=parse_capacitance),
     "tempco": Key(read=parse_tempco),
     "q": Key(read=_QUALITY),
 }

@@ -15,6 +15,7 @@ from partpick.errors import QuantityError, RequestError
 from partpick.plankeys import Key, nearest
 from partpick.quantities import format_quantity, parse_capacitance, parse_inductance, parse_range, shown
 from partpick.request import (
+    CHOOSE,
     Band,
     CapacitorRules,
     CoilRules,
@@ -95,7 +96,8 @@ def read_limits(reader: TableReader, raw: object, connect: str, band_count: int)
     """Return [limits]; "none" for a count stands for the most that the plan could use."""
     stated = reader.table(raw, plankeys.TABLES["limits"], "limits")
     most = plankeys.MOST_PARTS_IN_NETWORK if connect == "any" else plankeys.MOST_PARTS_PER_BAND
-    for name, without in (("parts_per_band", most), ("inductors", max(1, band_count)), ("margin", 0.0)):
+    without_limit = {"parts_per_band": most, "inductors": max(1, band_count), "margin": 0.0, "alignable": 0.0}
+    for name, without in without_limit.items():
         if name in stated and stated[name] is None:
             stated[name] = without
     limits = Limits(**stated, error_stated="error" in stated, inductors_stated="inductors" in stated)
@@ -159,12 +161,24 @@ def read_stray(reader: TableReader, raw: object, capacitance: float) -> Stray:
 
 
 def read_trimmer(reader: TableReader, raw: object, path: str) -> Trimmer | None:
-    """Return a trimmer, from a table or from "3 pF..20 pF"."""
+    """Return a trimmer, from a table or from "3 pF..20 pF"; `CHOOSE` for "choose" or a table without its ends."""
     if raw is None:
         return None
+    if isinstance(raw, str) and raw.strip().casefold() == "choose":
+        return CHOOSE
+    if isinstance(raw, str) and not any(letter.isdigit() for letter in raw):
+        raise reader.fail(path, f'read {shown(raw)}: a range such as 3 pF..20 pF, or "choose", is wanted')
     if isinstance(raw, str):
         low, high = reader.value(raw, Key(read=lambda given: parse_range(given, parse_capacitance)), path)
         return Trimmer(low=low, high=high)
+    stated = reader.table(raw, plankeys.TRIMMER, path)
+    if not {"low", "high"} & stated.keys():
+        for name in stated:
+            raise reader.fail(f"{path}.{name}", "goes with low and high; a trimmer that is chosen has its own")
+        return CHOOSE
+    for name in ("low", "high"):
+        if name not in stated:
+            raise reader.fail(f"{path}.{name}", "is missing")
     return Trimmer(**reader.complete(raw, plankeys.TRIMMER, path))
 
 

@@ -11,17 +11,33 @@ from dataclasses import dataclass, field
 
 @dataclass(frozen=True, kw_only=True)
 class Trimmer:
-    """A trimmer that the plan states: set on the bench, middle of its range in nominal figures."""
+    """A trimmer, stated in the plan or chosen from the parts: middle of its range in nominal figures."""
 
     low: float  # F
     high: float  # F
     tempco: float | None = None  # 1/K
     q: float | None = None
+    tempco_tolerance: float | None = None  # 1/K, size
+    name: str | None = None  # of a part of catalogue or drawer; None: stated in the plan
+    unit_price: float | None = 0.0  # what the plan states costs nothing
+    quantity: int | None = None
+    voltage: float | None = None  # V, peak
+    source: str = "stated in the plan"
+    notes: tuple[str, ...] = ()
+
+    @property
+    def to_choose(self) -> bool:
+        """Whether the plan asks for a trimmer without saying which (`CHOOSE`)."""
+        return self.high == 0.0
 
     @property
     def middle(self) -> float:
         """Capacitance taken for nominal figures. [F]"""
         return (self.low + self.high) / 2
+
+
+CHOOSE = Trimmer(low=0.0, high=0.0)  # one of those in stock
+CHOSEN_ALIGNS = 0.99  # of the builds, where the plan sets no limit `alignable`
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -40,7 +56,7 @@ class Limits:
     price: float | None = None
     excess: float | None = None
     margin: float = 0.03
-    alignable: str | float | None = None  # "worst case" or a share
+    alignable: str | float | None = None  # "worst case" or a share; 0: none, said so
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -17,7 +17,7 @@ from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet
 from partpick.receiver import is_receiver, of_one_section, with_oscillators
-from partpick.request import LEAST_WOUND, Band, Request
+from partpick.request import LEAST_WOUND, Band, Request, Trimmer
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
 from partpick.search.bands import Found, pieces_of_bound
 from partpick.search.choose import ORDERS, Choice
@@ -28,6 +28,7 @@ from partpick.search.tracking import ORDERS as RECEIVER_ORDERS
 from partpick.stress import with_stress
 from partpick.tapping import column_source
 from partpick.tracking_figures import with_tracking
+from partpick.trimming import problem_with_trimmers, trimmers_on_offer, with_chosen
 
 LOW_FREQUENCY = 1e3  # Hz
 TOO_SMALL = "its leads decide: no coil for a tank"
@@ -79,8 +80,8 @@ def _planned(request: Request, catalogue: Catalogue, top: int, monitor: Monitor)
     request = with_oscillators(request) if is_receiver(request) else request
     coils, capacitors, problem, source = _prepared(request, catalogue)
     found = search_layout(request, problem, source, wanted=top, monitor=monitor)
-    pool = _refit_pool(request, catalogue)
-    return _result(request, coils, capacitors, problem, found, pool)
+    pool, trimmers = _refit_pool(request, catalogue), trimmers_on_offer(request, catalogue)
+    return _result(request, coils, capacitors, problem, found, pool, trimmers)
 
 
 def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidate | None:
@@ -91,7 +92,9 @@ def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidat
     least_is_asked = request.by != "build"
     if not found.choices or (least_is_asked and not found.settled):
         return None  # the least so far is not the least
-    return _candidate(request, coils, capacitors, found.choices[0])
+    first = found.choices[0]
+    chosen = with_chosen(request, trimmers_on_offer(request, catalogue), first)
+    return _candidate(chosen, coils, capacitors, first)
 
 
 def _prepared(request: Request, catalogue: Catalogue) -> tuple[Coils, tuple[Capacitor, ...], Problem, ColumnSource]:
@@ -101,7 +104,7 @@ def _prepared(request: Request, catalogue: Catalogue) -> tuple[Coils, tuple[Capa
     floor = tolerance_floor(coils, capacitors, request.limits.error)
     problem = build_problem(request, coils, capacitors, floor)
     source = column_source(request, coils, problem)
-    return coils, capacitors, problem, source
+    return coils, capacitors, *problem_with_trimmers(request, problem, source, trimmers_on_offer(request, catalogue))
 
 
 def windings(
@@ -160,9 +163,10 @@ def _result(
     problem: Problem,
     found: Found,
     pool: tuple[Capacitor, ...],
+    trimmers: tuple[Trimmer, ...],
 ) -> Result:
     ranked = [
-        _candidate(request, coils, capacitors, choice, first=place == 0, pool=pool)
+        _candidate(with_chosen(request, trimmers, choice), coils, capacitors, choice, first=place == 0, pool=pool)
         for place, choice in enumerate(found.choices)
     ]
     contents = [choice.key[-1] for choice in found.choices]
@@ -174,7 +178,9 @@ def _result(
     front = tuple(
         candidates[contents.index(choice.key[-1])]
         if choice.key[-1] in contents
-        else replace(_candidate(request, coils, capacitors, choice, pool=pool), on_front=True)
+        else replace(
+            _candidate(with_chosen(request, trimmers, choice), coils, capacitors, choice, pool=pool), on_front=True
+        )
         for choice in found.front
     )
     return Result(

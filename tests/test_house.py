@@ -21,7 +21,7 @@ STAGES = [
     {"starter"},
     {"forms", "candidates"},
     {"search"},
-    {"objective", "tapping"},
+    {"objective", "tapping", "trimming"},
     {"circuit", "layouts", "receiver", "assessment", "tank_figures", "tracking_figures", "tuning_range", "nothing_fits",
      "cover"},
     {"built", "conduction", "stress"},

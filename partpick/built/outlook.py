@@ -100,7 +100,7 @@ def outlook(
             candidate,
             request.units,
             aligned.share if aligned is not None else spreads.inside,
-            _stock(capacitors, coils, design, candidate),
+            _stock(request, capacitors, coils, design, candidate),
         ),
         notes=varying.notes,
     )
@@ -120,7 +120,7 @@ def _adjust(varying: Variation, coils: Coils, design: Design, candidate: Candida
 
 
 def _stock(
-    capacitors: Sequence[Capacitor], coils: Coils, design: Design, candidate: Candidate
+    request: Request, capacitors: Sequence[Capacitor], coils: Coils, design: Design, candidate: Candidate
 ) -> dict[str, int | None]:
     """Return how many pieces there are of each reference."""
     stock: dict[str, int | None] = {}
@@ -128,6 +128,10 @@ def _stock(
         stock[band.coil] = coils.supports[int(coils.support[coil])].quantity
         for reference, part in references(design, index, band.capacitors):
             stock[reference] = capacitors[part].quantity
+    trimmers = {band.name: band.trimmer for band in request.bands if band.trimmer}
+    for line in candidate.parts:
+        if line.kind == "trimmer":
+            stock[line.reference] = trimmers[line.bands[0]].quantity
     return stock
 
 

@@ -62,7 +62,9 @@ def band_drift(variation: Variation, tank: VaryingTank, kelvin: float) -> BandDr
         sizes.append(0.5 * weight * source.tempco_size)
     if tank.trimmer is not None:
         own = math.nan if tank.trimmer.tempco is None else tank.trimmer.tempco
-        nominal -= 0.5 * trimmer / (tank.nominal_fixed() + trimmer) * own
+        weight = trimmer / (tank.nominal_fixed() + trimmer)
+        nominal -= 0.5 * weight * own
+        sizes.append(0.5 * weight * (tank.trimmer.tempco_tolerance or 0.0))
     if not math.isfinite(nominal):
         return None
     points, shares = uniform_sum_distribution(sizes)

@@ -23,6 +23,7 @@ def parts_table(catalogue: Catalogue) -> str:
         ("wires.csv", _wire_kind, catalogue.wires, lambda part: part.bare_diameter, length),
         ("formers.csv", lambda part: part.support, catalogue.formers, lambda part: part.diameter, length),
         ("cores.csv", _core_kind, catalogue.cores, lambda part: part.outer_diameter, length),
+        ("trimmers.csv", lambda part: "trimmer", catalogue.trimmers, lambda part: part.high, _farad),
     )  # fmt: skip
     for file, kind, parts, size, show in blocks:
         lines += ["", *_block(file, _origin_of(file, catalogue), kind, parts, size, show)]
@@ -111,6 +112,7 @@ def _notes(catalogue: Catalogue) -> list[str]:
         *catalogue.inductors,
         *catalogue.formers,
         *catalogue.cores,
+        *catalogue.trimmers,
     )
     for part in parts:
         for note in part.notes:

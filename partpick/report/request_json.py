@@ -6,7 +6,7 @@ import math
 from collections.abc import Mapping
 from dataclasses import asdict
 
-from partpick.request import Band, MeasuredDips, Request
+from partpick.request import CHOSEN_ALIGNS, Band, MeasuredDips, Request, Trimmer
 
 _KEY = {"low": "from", "high": "to"}  # fields that have another name in the plan
 _SELF_RESONANCE_BOUGHT = 2.0  # default for bought and multilayer coils
@@ -29,6 +29,7 @@ def request_as_json(request: Request) -> dict[str, object]:
     """
     tuning = request.tuning
     limits = asdict(request.limits)
+    limits["alignable"] = limits["alignable"] or None
     for flag in ("error_stated", "inductors_stated"):
         limits.pop(flag)
     tables: dict[str, object] = {
@@ -42,7 +43,7 @@ def request_as_json(request: Request) -> dict[str, object]:
         "coil": _coil(request),
         "capacitors": {_KEY.get(name, name): value for name, value in asdict(request.capacitors).items()},
         "stray": asdict(request.stray),
-        "trimmer": None if request.trimmer is None else asdict(request.trimmer),
+        "trimmer": _trimmer(request, request.trimmer),
         "tuning": None if tuning is None else {"kind": tuning.kind, **dict(tuning.keys)},
         "load": None if request.load is None else asdict(request.load),
         "bands": [_band(request, band) for band in request.bands],
@@ -63,9 +64,20 @@ def _coil(request: Request) -> dict[str, object]:
     return coil
 
 
+def _trimmer(request: Request, trimmer: Trimmer | None) -> dict[str, object] | None:
+    """Return a trimmer as stated, or what one that is to be chosen must do."""
+    if trimmer is None:
+        return None
+    if trimmer.to_choose:
+        asked = request.limits.alignable
+        return {"choose": True, "alignable": CHOSEN_ALIGNS if asked is None else asked or None}
+    return {"low": trimmer.low, "high": trimmer.high, "tempco": trimmer.tempco, "q": trimmer.q}
+
+
 def _band(request: Request, band: Band) -> dict[str, object]:
     """Return a band with the limits in force on it."""
     values: dict[str, object] = {_KEY.get(name, name): value for name, value in asdict(band).items()}
+    values["trimmer"] = _trimmer(request, band.trimmer)
     off = band.trimmer is not None and not request.limits.error_stated
     values["error"] = None if off or band.swept else request.limits.error
     return values

@@ -63,7 +63,7 @@ class Deeper(Exception):  # noqa: N818 - the columns at hand were too few
 
 
 def column_content(problem: Problem, columns: Columns, row: int) -> tuple[object, ...]:
-    """Return what orders equal columns: values, connection, grades, coil, tap; never row numbers.
+    """Return what orders equal columns: values, connection, grades, coil, tap, trimmer; never row numbers.
 
     The connection is the shape of the network, then the place by content of the series padder, -1 for none.
     """
@@ -73,7 +73,9 @@ def column_content(problem: Problem, columns: Columns, row: int) -> tuple[object
     padder = columns.series_padder(row)
     in_series = -1 if padder is None else int(problem.part_rank[padder])
     connection = int(columns.shape[row]), in_series
-    return values, connection, ranks, int(problem.coil_rank[columns.coil[row]]), int(columns.tap[row])
+    coil = int(problem.coil_rank[columns.coil[row]]), int(columns.tap[row])
+    trimmer = int(columns.trimmer[row])  # by rising range
+    return (values, connection, ranks, *coil) if trimmer < 0 else (values, connection, ranks, *coil, trimmer)
 
 
 def plan_effort(problem: Problem, coils: tuple[int, ...]) -> tuple[int, ...]:
@@ -203,6 +205,9 @@ def inside_shared_limits(problem: Problem, choice: Choice) -> bool:
     """Whether a choice keeps to stock, parts, values and price of the whole plan."""
     used = Counter(int(part) for columns in choice.columns for part in columns.parts[0] if part >= 0)
     if any(count > problem.part_stock[part] for part, count in used.items()):
+        return False
+    trimmers = Counter(int(columns.trimmer[0]) for columns in choice.columns if columns.trimmer[0] >= 0)
+    if any(count > problem.trimmer_stock[trimmer] for trimmer, count in trimmers.items()):
         return False
     if used.total() > problem.parts_limit:
         return False

@@ -32,6 +32,8 @@ from partpick.search.swept import SweptColumns
 class ColumnMaker(Protocol):
     """What makes the columns of a coil at a band."""
 
+    problem: Problem
+
     def columns(self, coil: int, band: int, parts: int, lead: float | None = None) -> Columns:
         """Return every column of `parts` parts inside all limits of one band."""
 
@@ -207,7 +209,8 @@ class ColumnSource:
         if np.isfinite(p.drift_limit):
             nominal, spread = self.drift(coil, band, chosen, share_of_parts, network)
             keep &= np.abs(nominal) + spread <= p.drift_limit * (1 + 1e-12)
-        if p.alignable > 0:
+        keep &= p.trimmer_span[band] <= p.trim_share[band] * total * (1 + 1e-12)
+        if p.alignable > 0 and p.aligned[band]:
             keep &= alignable(p, coil, band, values, chosen, rows.shape)
         whole = np.zeros(len(chosen), dtype=np.int64)
         columns = Columns(
@@ -253,4 +256,5 @@ class ColumnSource:
         capacitance = (weight * p.part_tempco[chosen]).sum(axis=1) + fixed
         nominal = -0.5 * (p.coil_tempco[coil, band] + capacitance)
         parts_spread = (weight * p.part_tempco_spread[chosen]).sum(axis=1)
+        parts_spread = parts_spread + trimmer / total * p.trimmer_tempco_spread[band]
         return nominal, 0.5 * (p.coil_tempco_spread[coil] + parts_spread)

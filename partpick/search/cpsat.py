@@ -274,6 +274,7 @@ class _ColumnModel:
         for piece, terms in use.items():
             names, counts = zip(*terms, strict=True)
             model.add(cp_model.LinearExpr.weighted_sum(names, counts) <= int(problem.part_stock[piece]))
+        self._add_trimmer_stock(model, picks)
         if problem.values_limit < NEVER:
             used = {value: model.new_bool_var("") for _, value in holders}
             for (_, value), every in holders.items():
@@ -286,6 +287,15 @@ class _ColumnModel:
             model.add(self._sum(picks, "price") <= problem.price_limit - coils)
         for name, total in self.fixed:
             model.add(self._sum(picks, name) == total)
+
+    def _add_trimmer_stock(self, model: cp_model.CpModel, picks: list[list[cp_model.IntVar]]) -> None:
+        use: dict[int, list[cp_model.IntVar]] = {}
+        for columns, picked in zip(self.bands, picks, strict=True):
+            for trimmer, pick in zip(columns.trimmer.tolist(), picked, strict=True):
+                if trimmer >= 0 and self.problem.trimmer_stock[trimmer] < len(picks):
+                    use.setdefault(trimmer, []).append(pick)
+        for trimmer, every in use.items():
+            model.add(cp_model.LinearExpr.sum(every) <= int(self.problem.trimmer_stock[trimmer]))
 
     def _sum(self, picks: list[list[cp_model.IntVar]], name: str) -> cp_model.LinearExprT:
         flat = [pick for band in picks for pick in band]

@@ -5,7 +5,7 @@ The figures are whole numbers, so that ranks agree across machines.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -37,6 +37,12 @@ class Columns:
     price: Ints
     excess_class: Ints  # round(excess 1e9)
     fine_excess: Ints  # round(excess 1e12)
+    trimmer: Ints = field(default_factory=lambda: np.empty(0, np.int64))  # which of those in stock, -1: none of them
+
+    def __post_init__(self) -> None:
+        """Fill what columns without a trimmer to choose leave out."""
+        if len(self.trimmer) != len(self.network):
+            object.__setattr__(self, "trimmer", np.full(len(self.network), -1, dtype=np.int64))
 
     def __len__(self) -> int:
         return len(self.network)

@@ -97,7 +97,12 @@ class Problem:
     part_tolerance: Floats = field(default_factory=_unset)  # (P,) fraction, size
     stray_tolerance: float = 0.0
     tuning_tolerance: float = 0.0  # of the element's capacitance
+    aligned: Bools = field(default_factory=lambda: np.empty(0, np.bool_))  # (B,) bands for which it is asked
     coil_adjust: Floats = field(default_factory=_unset)  # (J,) fraction of the inductance, either way
+    # trimmers to choose from
+    trim_share: Floats = field(default_factory=_unset)  # (B,) most range over what is in circuit, inf: no limit
+    trimmer_tempco_spread: Floats = field(default_factory=_unset)  # (B,) 1/K
+    trimmer_stock: Ints = field(default_factory=lambda: np.empty(0, np.int64))  # (T,) pieces per unit built
     coil_alone: bool = True  # a coil serves the one band alone, so that its adjustment is free for it
 
     def __post_init__(self) -> None:
@@ -117,6 +122,9 @@ class Problem:
             "coil_spread": np.zeros(len(self.self_capacitance)),
             "part_tolerance": np.zeros(len(self.part_value)),
             "coil_adjust": np.zeros(len(self.self_capacitance)),
+            "aligned": np.ones(len(self.frequency), dtype=np.bool_),
+            "trim_share": np.full(len(self.frequency), np.inf),
+            "trimmer_tempco_spread": nothing,
         }
         for name, value in defaults.items():
             if getattr(self, name).size == 0:
@@ -133,6 +141,11 @@ class Problem:
                 slope = acting / float(self.part_value[options[0]])
                 gain[:, list(options)] = np.where(np.isfinite(slope), slope, 1.0)[:, None]
         return gain
+
+    @property
+    def trimmer_span(self) -> Floats:
+        """Range of each band's trimmer, (B,), 0 without one. [F]"""
+        return self.trimmer_high - self.trimmer_low
 
     @property
     def inductance_high(self) -> Floats:
@@ -200,7 +213,9 @@ class Problem:
             low = np.maximum(low, strays / self.share - fixed)
         if self.alignable > 0:
             least, most = self._alignable_window(strays) if self.alignable >= 1.0 else self._window_of_share()
-            low, high = np.maximum(low, least), np.minimum(high, most)
+            low = np.where(self.aligned, np.maximum(low, least), low)
+            high = np.where(self.aligned, np.minimum(high, most), high)
+        low = np.maximum(low, self.trimmer_span / self.trim_share - fixed)
         grain = 1e-12 * self.wanted  # rounding of the limits themselves
         low, high = low - grain, high + grain
         in_play = self.in_play & ~self.swept[None, :]  # swept.py has its own intervals
@@ -284,7 +299,7 @@ class Problem:
         wide = 1.0 / ((2 * np.pi * self.low_end[None, :]) ** 2 * self.inductance_low)
         swing = (self.tuning_high - self.tuning_low)[None, :] * (1.0 - self.tuning_tolerance)
         enough: Bools = self.coil_ends[0][:, None] * swing >= wide - self.wanted - 1e-11 * wide
-        return enough
+        return enough | ~self.aligned[None, :]
 
     def _before_leads(self, network: Floats) -> Floats:
         """Return the network that acts as `network` behind the leads' inductance."""

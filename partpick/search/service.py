@@ -17,17 +17,17 @@ from partpick.search.figures import Columns
 class _Served:
     """Columns where some coils have one band each to themselves and the others serve the rest."""
 
-    def __init__(self, alone: ColumnMaker, shared: ColumnMaker, own: dict[int, int], most_parts: int) -> None:
+    def __init__(self, alone: ColumnMaker, shared: ColumnMaker, own: dict[int, int]) -> None:
+        self.problem = alone.problem
         self._alone, self._shared = alone, shared
         self._coil_of = own  # by band
-        self._most_parts = most_parts
 
     def columns(self, coil: int, band: int, parts: int, lead: float | None = None) -> Columns:
         """Return the columns of a coil at a band, none where another coil serves it or the coil another band."""
         if self._coil_of.get(band) == coil:
             return self._alone.columns(coil, band, parts, lead)
         if band in self._coil_of or coil in self._coil_of.values():
-            return Columns.empty(self._most_parts)
+            return Columns.empty(self.problem.most_parts)
         return self._shared.columns(coil, band, parts, lead)
 
     def for_shared_coils(self) -> ColumnMaker | None:
@@ -41,18 +41,18 @@ def ways_to_serve(source: ColumnMaker, coils: tuple[int, ...]) -> Iterator[Colum
     The source's own columns, where the adjustment of the coils makes no difference or each has one band.
     """
     shared = source.for_shared_coils()
-    problem = getattr(source, "problem", None)
-    if shared is None or problem is None:
+    if shared is None:
         yield source
         return
-    adjustable = [coil for coil in coils if problem.coil_adjust[coil] > 0]
-    if not adjustable or len(coils) == problem.bands:
+    bands_in_all = source.problem.bands
+    adjustable = [coil for coil in coils if source.problem.coil_adjust[coil] > 0]
+    if not adjustable or len(coils) == bands_in_all:
         yield source
         return
     for count in range(len(adjustable) + 1):
         if count == len(coils):
             break  # fewer coils than bands: some coil serves several
         for alone in itertools.combinations(adjustable, count):
-            for bands in itertools.permutations(range(problem.bands), count):
+            for bands in itertools.permutations(range(bands_in_all), count):
                 own = dict(zip(bands, alone, strict=True))
-                yield _Served(source, shared, own, problem.most_parts) if own else shared
+                yield _Served(source, shared, own) if own else shared

@@ -153,7 +153,8 @@ class SweptColumns:
         if np.isfinite(p.drift_limit):
             nominal, spread = self._drift(coil, band, chosen, at_high, high_end)
             keep &= np.abs(nominal) + spread <= p.drift_limit * (1 + _GRAIN)
-        if p.alignable > 0:
+        keep &= p.trimmer_span[band] <= p.trim_share[band] * high_end.total * (1 + _GRAIN)
+        if p.alignable > 0 and p.aligned[band]:
             keep &= self._alignable(coil, band, rows, chosen, behind)
         whole, none = np.zeros(len(chosen), dtype=np.int64), np.zeros(len(chosen))
         columns = Columns(
@@ -255,4 +256,5 @@ class SweptColumns:
         capacitance += weights[1] * p.tuning_tempco[band]
         nominal = -0.5 * (p.coil_tempco[coil, band] + capacitance)
         spread = (weights[0] * p.part_tempco_spread[chosen]).sum(axis=1)
+        spread = spread + middle / end.total * p.trimmer_tempco_spread[band]
         return nominal, np.asarray(0.5 * (p.coil_tempco_spread[coil] + spread))

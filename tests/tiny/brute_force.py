@@ -121,6 +121,7 @@ def band_columns(problem: Problem, coil: int, band: int):
             spread = problem.coil_tempco_spread[coil] + sum(
                 x * net / whole * problem.part_tempco_spread[p] for x, p in zip(w, parts, strict=True)
             )
+            spread += set_to / whole * problem.trimmer_tempco_spread[band]
             size = abs(problem.coil_tempco[coil, band] + tempco) / 2 + spread / 2
             if not size <= problem.drift_limit:
                 continue
@@ -132,6 +133,7 @@ def band_columns(problem: Problem, coil: int, band: int):
                 "series": None,
                 "coil": coil,
                 "error": error,
+                "total": total,
                 "excess": 0.0,
                 "q_class": q_class_of(problem, band, loss),
                 "stray_class": 0 if share <= 0.1 else 1 if share <= 0.2 else 2,
@@ -221,6 +223,7 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
         tempco = sum(x * problem.part_tempco[p] for p, x in share) + of_element * problem.tuning_tempco[band]
         tempco += (strays * problem.stray_tempco + middle * problem.trimmer_tempco[band]) / total
         spread = problem.coil_tempco_spread[coil] + sum(x * problem.part_tempco_spread[p] for p, x in share)
+        spread += middle / total * problem.trimmer_tempco_spread[band]
         if not abs(problem.coil_tempco[coil, band] + tempco) / 2 + spread / 2 <= problem.drift_limit:
             return None
     return {
@@ -229,6 +232,7 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
         "series": padder,
         "coil": coil,
         "error": 0.0,
+        "total": total,
         "excess": excess,
         "q_class": q_class_of(problem, band, loss),
         "stray_class": 0 if stray_share <= 0.1 else 1 if stray_share <= 0.2 else 2,
@@ -277,6 +281,7 @@ def plan_key(problem: Problem, coils, columns, by):
                 tuple(int(problem.part_rank[p]) for p in columns[b]["parts"]),
                 int(problem.coil_rank[columns[b]["coil"]]),
                 columns[b].get("tap", 0),
+                *((columns[b]["trimmer"],) if "trimmer" in columns[b] else ()),
             )
             for b in order
         ),
@@ -290,7 +295,7 @@ def plan_key(problem: Problem, coils, columns, by):
     return (price, pieces, *rest, content), lead
 
 
-def all_plans(problem: Problem, columns_of=band_columns):
+def all_plans(problem: Problem, columns_of=band_columns, allowed=lambda columns: True):
     """Yield (key, supports, pieces, worst error or excess) of every admissible plan."""
     count = problem.coils
     for size in range(1, min(problem.inductors, problem.bands) + 1):
@@ -305,6 +310,8 @@ def all_plans(problem: Problem, columns_of=band_columns):
                 for columns in itertools.product(*choices):
                     if any(not c.get("shared", True) and assignment.count(c["coil"]) > 1 for c in columns):
                         continue  # right only on a coil that no other band has
+                    if not allowed(columns):
+                        continue
                     keyed = plan_key(problem, coils, columns, problem.by)
                     if keyed is not None:
                         key, worst = keyed
@@ -312,11 +319,11 @@ def all_plans(problem: Problem, columns_of=band_columns):
                         yield key, tuple(sorted(supports.elements())), pieces, worst
 
 
-def ranking(problem: Problem, columns_of=band_columns):
+def ranking(problem: Problem, columns_of=band_columns, allowed=lambda columns: True):
     """Return the best key of each set of supports, best first, and the front against pieces."""
     best: dict[tuple[int, ...], tuple] = {}
     least: dict[int, float] = {}
-    for key, supports, pieces, worst in all_plans(problem, columns_of):
+    for key, supports, pieces, worst in all_plans(problem, columns_of, allowed):
         if supports not in best or key < best[supports]:
             best[supports] = key
         least[pieces] = min(least.get(pieces, math.inf), worst)
