@@ -139,8 +139,9 @@ def _quality_trials(request: Request) -> Iterator[_Trial]:
         assert limits.drift is not None
         wider = replace(request, limits=replace(limits, drift=limits.drift * times))
         yield _Trial("drift", wider, _worst_drift, _drift_words)
-    if limits.alignable or (limits.alignable is None and any(b.trimmer and b.trimmer.to_choose for b in request.bands)):
-        free = replace(request, limits=replace(limits, alignable=0.0))
+    chooses = any(band.trimmer is not None and band.trimmer.to_choose for band in request.bands)
+    if limits.alignable is not None or (chooses and not limits.alignable_off):
+        free = replace(request, limits=replace(limits, alignable=None, alignable_off=True))
         yield _Trial("alignable", free, lambda _: "none", lambda _: _alignable_words(request))
     if limits.price is not None:
         by = request.by if is_receiver(request) else "price"

@@ -252,6 +252,8 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
 def alignable_share(request: Request) -> float:
     """Return the share of builds that must come on frequency: 1 at all corners, 0 where none is asked for."""
     limit = request.limits.alignable
+    if limit is None and request.limits.alignable_off:
+        return 0.0
     if limit is None:
         return CHOSEN_ALIGNS if any(_chooses(band) for band in request.bands) else 0.0
     return 1.0 if isinstance(limit, str) else float(limit)
@@ -259,7 +261,7 @@ def alignable_share(request: Request) -> float:
 
 def aligned_bands(request: Request) -> Bools:
     """Return for which bands that is asked, (B,): all, or where the plan sets no limit those that choose a trimmer."""
-    stated = request.limits.alignable is not None
+    stated = request.limits.alignable_off or request.limits.alignable is not None
     return np.array([stated or _chooses(band) for band in request.bands], dtype=np.bool_)
 
 

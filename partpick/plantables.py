@@ -96,11 +96,13 @@ def read_limits(reader: TableReader, raw: object, connect: str, band_count: int)
     """Return [limits]; "none" for a count stands for the most that the plan could use."""
     stated = reader.table(raw, plankeys.TABLES["limits"], "limits")
     most = plankeys.MOST_PARTS_IN_NETWORK if connect == "any" else plankeys.MOST_PARTS_PER_BAND
-    without_limit = {"parts_per_band": most, "inductors": max(1, band_count), "margin": 0.0, "alignable": 0.0}
+    without_limit = {"parts_per_band": most, "inductors": max(1, band_count), "margin": 0.0}
     for name, without in without_limit.items():
         if name in stated and stated[name] is None:
             stated[name] = without
-    limits = Limits(**stated, error_stated="error" in stated, inductors_stated="inductors" in stated)
+    off = "alignable" in stated and stated["alignable"] is None
+    flags = {f"{name}_stated": name in stated for name in ("error", "inductors")}
+    limits = Limits(**stated, **flags, alignable_off=off)
     if limits.parts_per_band > most:
         where = f' with {reader.name("capacitors.connect")} "any"' if connect == "any" else ""
         raise reader.fail(

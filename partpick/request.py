@@ -56,7 +56,8 @@ class Limits:
     price: float | None = None
     excess: float | None = None
     margin: float = 0.03
-    alignable: str | float | None = None  # "worst case" or a share; 0: none, said so
+    alignable: str | float | None = None  # "worst case" or a share
+    alignable_off: bool = False  # "none", said so; unstated: a trimmer that is chosen aligns `CHOSEN_ALIGNS`
 
 
 @dataclass(frozen=True, kw_only=True)

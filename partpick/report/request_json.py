@@ -29,8 +29,7 @@ def request_as_json(request: Request) -> dict[str, object]:
     """
     tuning = request.tuning
     limits = asdict(request.limits)
-    limits["alignable"] = limits["alignable"] or None
-    for flag in ("error_stated", "inductors_stated"):
+    for flag in ("error_stated", "inductors_stated", "alignable_off"):
         limits.pop(flag)
     tables: dict[str, object] = {
         "command": request.command,
@@ -69,8 +68,8 @@ def _trimmer(request: Request, trimmer: Trimmer | None) -> dict[str, object] | N
     if trimmer is None:
         return None
     if trimmer.to_choose:
-        asked = request.limits.alignable
-        return {"choose": True, "alignable": CHOSEN_ALIGNS if asked is None else asked or None}
+        asked = None if request.limits.alignable_off else CHOSEN_ALIGNS
+        return {"choose": True, "alignable": request.limits.alignable or asked}
     return {"low": trimmer.low, "high": trimmer.high, "tempco": trimmer.tempco, "q": trimmer.q}
 
 
