@@ -233,7 +233,7 @@ def test_pot_cores_and_rods_are_complete() -> None:
 
 @pytest.mark.parametrize("name", ["trimmers.csv", "variable_capacitors.csv"])
 def test_adjustable_capacitors_have_two_readable_ends(name: str) -> None:
-    """Nobody reads these files yet; this keeps them readable until somebody does."""
+    """The lower end below the upper, a spread beside every coefficient."""
     shipped = rows(data_folder() / name)
     assert len({row["name"] for row in shipped}) == len(shipped)
     for row in shipped:

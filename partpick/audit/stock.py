@@ -20,6 +20,8 @@ def stock_faults(candidate: Candidate, units: int, catalogue: Catalogue) -> Iter
         if line.kind == "coil" and (coil := coils.get(line.reference)) is not None:
             bought = ("bought", line.label) if coil.form == "bought" else ("former", coil.former)
             used[bought] += units
+        elif line.kind == "trimmer":
+            used["trimmer", line.description] += units
     for key, quantity in _stock(catalogue):
         if used[key] > quantity:
             yield f"{used[key]} of {key} are used, {quantity} are there"
@@ -30,6 +32,9 @@ def _stock(catalogue: Catalogue) -> Iterator[tuple[object, int]]:
     for part in catalogue.capacitors:
         if part.quantity is not None:
             yield ("capacitor", part.value, part.grade, part.tolerance, part.label), part.quantity
+    for trimmer in catalogue.trimmers:
+        if trimmer.quantity is not None:
+            yield ("trimmer", trimmer.name), trimmer.quantity
     for inductor in catalogue.inductors:
         if inductor.quantity is not None:
             yield ("bought", inductor.label), inductor.quantity
