@@ -18,10 +18,15 @@ from workbench import INDUCTORS, plan, ranked, run, write_drawer
 
 from partpick.built.alignment import Alignment, alignment
 from partpick.built.series import series
-from partpick.built.steps import COIL_FIRST, EVENLY, NOTHING, OWN_TRIMMER, Step, steps
+from partpick.built.steps import COIL_FIRST, EVENLY, HIGH_END, LOW_END, NOTHING, OWN_TRIMMER, Step, steps
 from partpick.built.tank import VaryingTank
 from partpick.built.variation import Variation
+from partpick.catalogue import load_catalogue
+from partpick.parts import Catalogue
+from partpick.planfile import request_from_tables
+from partpick.report.table import result_table
 from partpick.request import Trimmer
+from partpick.solving import solve
 
 BUILDS = 100_000
 WIDE, NARROW = Trimmer(low=2e-12, high=42e-12), Trimmer(low=2e-12, high=12e-12)
@@ -231,6 +236,71 @@ def _two_bands(trimmers: tuple[int, ...]) -> object:
         for place in trimmers
     ]
     return one_candidate(bands=own, coils=(coil(),), parts=tuple(parts))
+
+
+LAYOUTS = {
+    "separate": {"switching": "separate"},
+    "stacked": {"switching": "stacked"},
+    "shared": {"switching": "shared", "limits": {"parts": 3}},
+}
+
+
+@pytest.mark.parametrize("layout", LAYOUTS)
+def test_the_steps_of_each_layout_leave_the_nominal_parts_on_frequency(layout: str) -> None:
+    """Coil and trimmers set as told, one after the other: every band is on its target."""
+    tables = {
+        **LAYOUTS[layout],
+        "coil": {"forms": ["bought"]},
+        "trimmer": "4 pF..60 pF",
+        "band": [{"name": "low", "at": "3.58 MHz"}, {"name": "high", "at": "5.2 MHz"}],
+    }
+    best = solve(request_from_tables(tables, "bands"), _all_adjustable(), top=1).candidates[0]
+    told = best.extra["alignment"]
+    assert isinstance(told, dict)
+    assert [(step["adjust"], step["band"]) for step in told["steps"]] == [
+        ("L1", "low"),
+        ("CT1", "low"),
+        ("CT2", "high"),
+    ]
+    coil_set = told["coils"][0]["inductance_over_nominal"]
+    for band in best.bands:
+        own = band.extra["alignment"]
+        assert isinstance(own, dict) and band.capacitance is not None and band.trimmer is not None
+        total = band.capacitance - band.trimmer + own["trimmer"]["set_to_f"]
+        resonance = 1 / (2 * np.pi * np.sqrt(band.inductance * coil_set * total))
+        assert resonance == pytest.approx(band.target, rel=1e-9)
+
+
+def test_a_swept_band_has_its_low_end_set_by_the_coil_and_its_high_end_by_the_trimmer() -> None:
+    """In turn until both stay; as told, the nominal parts cover the range."""
+    tables = {
+        "coil": {"forms": ["bought"]},
+        "trimmer": "4 pF..60 pF",
+        "tuning": {"kind": "variable capacitor", "low": "12 pF", "high": "150 pF"},
+        "band": [{"name": "coast", "from": "3.5 MHz", "to": "3.9 MHz"}],
+    }
+    result = solve(request_from_tables(tables, "bands"), _all_adjustable(), top=1)
+    (band,), told = result.candidates[0].bands, result.candidates[0].extra["alignment"]
+    assert isinstance(told, dict) and isinstance(band.extra["alignment"], dict)
+    assert [(step["adjust"], step["to_hz"], step["why"]) for step in told["steps"]] == [
+        ("L1", 3.5e6, LOW_END),
+        ("CT1", 3.9e6, HIGH_END),
+    ]
+    moved = band.extra["alignment"]["trimmer"]["set_to_f"] - 32e-12
+    y = told["coils"][0]["inductance_over_nominal"]
+    ends = [
+        1 / (2 * np.pi * np.sqrt(float(str(band.extra[inductance])) * y * (float(str(band.extra[total])) + moved)))
+        for inductance, total in (("inductance_low_h", "capacitance_low_f"), ("inductance_low_h", "capacitance_high_f"))
+    ]
+    assert ends[0] <= 3.5e6 * (1 + 1e-9) and ends[1] >= 3.9e6 * (1 - 1e-3)
+    text = " ".join(result_table(result).split())
+    assert "1. L1 for coast (3.5 MHz), the tuning element closed" in text
+    assert "the low end again, in turn until both stay" in text
+
+
+def _all_adjustable() -> Catalogue:
+    parts = load_catalogue(None)
+    return replace(parts, inductors=tuple(replace(part, adjust=0.15) for part in parts.inductors))
 
 
 # ---------------------------------------------------------------- a series of units

@@ -31,7 +31,7 @@ LOW_END, HIGH_END = "low end by the coil", "high end by the trimmer"
 
 
 def steps(own: Alignment, candidate: Candidate) -> tuple[Step, ...]:
-    """Return the adjustments of separate tanks in order, lowest band of the first coil first."""
+    """Return the adjustments in order, lowest band of the first coil first, for every switching layout."""
     trimmers = {part.bands[0]: part.reference for part in candidate.parts if part.kind == "trimmer"}
     coils = {coil.reference: coil for coil in own.coils}
     figures = dict(zip((band.name for band in candidate.bands), own.bands, strict=True))

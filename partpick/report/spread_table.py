@@ -143,7 +143,8 @@ def _step(step: Mapping[str, Any], candidate: Candidate) -> str:
             return f"{step['adjust']} for {at}: out of its reach with nominal parts"
         set_to = format_quantity(trimmer["set_to_f"], "F")
         per_pf = slope(figures["hertz_per_farad"])
-        return f"{step['adjust']} for {at}: about {set_to}, {_travel(trimmer)}, {per_pf} per pF"
+        again = "; then the low end again, in turn until both stay" if _moves_low_end(step, candidate) else ""
+        return f"{step['adjust']} for {at}: about {set_to}, {_travel(trimmer)}, {per_pf} per pF{again}"
     coils: Sequence[Mapping[str, Any]] = _table(candidate.extra["alignment"])["coils"]
     coil = next(each for each in coils if each["reference"] == step["adjust"])
     per_cent = signed_shift(figures["hertz_per_percent_inductance"])
@@ -152,8 +153,17 @@ def _step(step: Mapping[str, Any], candidate: Candidate) -> str:
     return f"{on}: {_travel(coil)}, {per_cent} for 1 % more inductance"
 
 
+def _moves_low_end(step: Mapping[str, Any], candidate: Candidate) -> bool:
+    """Whether a trimmer at the high end undoes what a coil was set to at the low end of the same band."""
+    steps = _table(candidate.extra["alignment"])["steps"]
+    lows = {each["band"] for each in steps if each["why"] == "low end by the coil"}
+    return step["why"] == "high end by the trimmer" and step["band"] in lows
+
+
 def _travel(setting: Mapping[str, Any]) -> str:
     low, high = (figure(setting[key] * 100, 2) for key in ("travel_5_percent", "travel_95_percent"))
+    if low == high:
+        return f"mostly near {low} % of travel"
     return f"mostly at {low} to {high} % of travel"
 
 
