@@ -31,6 +31,8 @@ def trimmers_on_offer(request: Request, catalogue: Catalogue) -> tuple[Trimmer, 
             f'trimmer: to choose one is planned only with switching = "separate", not "{request.switching}"; '
             "state low and high"
         )
+    if "receiver" in dict(request.extra):
+        raise RequestError("trimmer: to choose one is not planned for the circuits of a receiver; state low and high")
     parts = [part for part in catalogue.trimmers if part.quantity is None or part.quantity >= request.units]
     if not parts:
         raise RequestError(f"trimmer: one is to be chosen, but trimmers.csv has none for {request.units} built")

@@ -251,6 +251,18 @@ def test_a_file_without_trimmers_in_stock_is_told(tmp_path: Path) -> None:
         solve(request, load_catalogue(drawer_with(tmp_path, only)))
 
 
+def test_a_receiver_says_that_it_does_not_choose() -> None:
+    """By name, with what would be accepted."""
+    tables = {
+        "trimmer": "choose",
+        "receiver": {"intermediate": "455 kHz"},
+        "tuning": {"kind": "variable capacitor", "low": "12 pF", "high": "365 pF", "sections": 2},
+        "band": [{"name": "medium wave", "from": "530 kHz", "to": "1.6 MHz"}],
+    }
+    with pytest.raises(RequestError, match="state low and high"):
+        solve(request_from_tables(tables, "bands"), load_catalogue(None))
+
+
 def test_a_layout_of_shared_capacitors_says_that_it_does_not_choose() -> None:
     """By name, with what would be accepted."""
     tables = {
