@@ -9,7 +9,7 @@ from partpick.candidates import realisable_coils
 from partpick.parts import Catalogue
 from partpick.progress import Monitor
 from partpick.quantities import format_quantity
-from partpick.receiver import is_receiver, with_widest_tracking
+from partpick.receiver import is_receiver, oscillators_alone, with_widest_tracking
 from partpick.request import LEAST_WOUND, Request
 from partpick.result import Candidate, RuledOut
 from partpick.tuning_range import beyond_reach
@@ -44,6 +44,10 @@ def explain(
     swept = any(band.swept for band in request.bands)
     if swept and (alone := beyond_reach(request, realisable_coils(request, catalogue))) is not None:
         return None, alone
+    if is_receiver(request):
+        others = oscillators_alone(request)
+        if (alone := beyond_reach(others, realisable_coils(others, catalogue))) is not None:
+            return None, alone
     found: list[tuple[Candidate, RuledOut]] = []
     for trial in _trials(request):
         if monitor.stopped() is not None:
@@ -55,6 +59,9 @@ def explain(
         if candidate is not None:
             text = f"the limit {trial.limit} rules out every choice; {trial.words(candidate)}"
             found.append((candidate, RuledOut(limit=trial.limit, needed=trial.needed(candidate), text=text)))
+    if not found and monitor.stopped() is not None:
+        text = "which limit rules it out was not found before the search was stopped"
+        return None, RuledOut(limit="unknown", needed=None, text=text)
     if not found:
         text = "no single limit rules it out: two or more together do, or there is no coil for these bands at all"
         return None, RuledOut(limit="several", needed=None, text=text)

@@ -18,7 +18,6 @@ from partpick.search.tracking import ReceiverBand
 GANGED = ("variable capacitor", "varactor")
 LEAST_SHARE = 0.005  # of the band's lower end: a tracking error that no signal circuit notices; common practice
 ROOM = 2.0  # times the least error of parts not rounded
-NARROW = 1.5  # ratio of a band's ends up to which an oscillator inside it is of no use; common practice
 CLOSE = 0.02  # of the signal: closer than this no signal circuit holds the oscillator back; common practice
 LARGEST_SHARE = 0.2  # of the oscillator's lowest frequency, for a stated limit
 OSCILLATOR = " oscillator"  # behind the name of the band
@@ -90,6 +89,16 @@ def tracking_limit(request: Request, band: Band) -> float:
         return stated
     assert band.low is not None and band.high is not None
     return max(LEAST_SHARE * band.low, ROOM * least_error(band.low, band.high, offset_of(request)))
+
+
+def oscillators_alone(request: Request) -> Request:
+    """Return the oscillators of a receiver as bands, as narrow as the tracking limit allows, without a margin."""
+    bands = []
+    for signal, band in zip(request.bands, with_oscillators(request).bands[1::2], strict=True):
+        assert band.low is not None and band.high is not None
+        limit = min(tracking_limit(request, signal), 0.45 * (band.high - band.low))
+        bands.append(replace(band, low=band.low + limit, high=band.high - limit))
+    return replace(request, bands=tuple(bands), limits=replace(request.limits, margin=0.0))
 
 
 def with_widest_tracking(request: Request) -> Request:
@@ -173,12 +182,11 @@ def _check_band(request: Request, band: Band) -> None:
         raise RequestError(
             f"{read} it lies inside band {band.name}, {low} to {high}; one below {low} or above {high} is wanted"
         )
-    inside, width = intermediate < band.high - band.low, format_quantity(band.high - band.low, "Hz", 6)
     least = CLOSE * band.high
-    if inside and (band.high < NARROW * band.low or intermediate < least):
-        above = width if band.high < NARROW * band.low else format_quantity(least, "Hz", 6)
+    if intermediate < min(least, band.high - band.low):
         raise RequestError(
-            f"{read} it puts the oscillator inside band {band.name}, {low} to {high}; one above {above} is wanted"
+            f"{read} it puts the oscillator inside band {band.name}, {low} to {high}, next to the signal; one above "
+            f"{format_quantity(least, 'Hz', 6)} is wanted"
         )
     stated = dict(dict(request.extra)["receiver"]).get("tracking")
     most = LARGEST_SHARE * (band.low + min(offset, 0.0))
