@@ -13,6 +13,7 @@ from dataclasses import replace
 from partpick.candidates import Coils, coil_figures, coil_part_line
 from partpick.circuit import Design, Network, Tank, connection_text
 from partpick.errors import InternalError
+from partpick.moved_figures import element_warnings, moving_lines, settings, tuned_keys
 from partpick.objective import TRIMMER_Q
 from partpick.parts import Capacitor
 from partpick.physics.resonance import resonance_frequency
@@ -48,7 +49,7 @@ def assess(
         tank = Tank(request=request, coils=coils, capacitors=capacitors, design=design, index=index)
         bands.append(_band_figures(tank, references[tank.coil], names[index]))
     coil_list, coil_lines = _coil_lines(request, coils, design, references)
-    extras = [*_trimmer_lines(request), *_tuning_lines(request)]
+    extras = [*_trimmer_lines(request), *_tuning_lines(request, coils, design)]
     parts = (*lines, *coil_lines, *extras)
     used = design.capacitors
     errors = [abs(b.error) for b in bands if b.error is not None]
@@ -167,6 +168,8 @@ def _coil_lines(
         served = [i for i, c in enumerate(design.coils) if c == coil]
         lowest = min(served, key=lambda i: request.bands[i].lowest)
         figure = replace(coil_figures(coils, coil, lowest), reference=reference)
+        if coils.moved is not None and any(request.bands[i].swept for i in served):
+            figure = replace(figure, extra={**figure.extra, "tuned": tuned_keys(request, coils.moved, coil)})
         figures.append(figure)
         lines.append(coil_part_line(coils, coil, figure, tuple(request.bands[i].name for i in served)))
     return tuple(figures), lines
@@ -200,11 +203,13 @@ def _trimmer_lines(request: Request) -> list[PartLine]:
     return lines
 
 
-def _tuning_lines(request: Request) -> list[PartLine]:
+def _tuning_lines(request: Request, coils: Coils, design: Design) -> list[PartLine]:
     swept = tuple(band.name for band in request.bands if band.swept)
     if not swept:
         return []
     assert request.tuning is not None
+    if coils.moved is not None:
+        return moving_lines(request, coils.moved, design)
     element = element_ends(request.tuning)
     label = f"{format_quantity(element.low, 'F')} to {format_quantity(element.high, 'F')}"
     return [
@@ -248,7 +253,9 @@ def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFig
         tap_turns=tank.tap_turns,
         contacts=_contacts(tank),
         capacitors=names,
-        connection=_swept_connection(names, network) if swept else connection_text(names, network.shape),
+        connection=_swept_connection(names, network)
+        if swept and tank.coils.moved is None
+        else connection_text(names, network.shape),
         reactance=2 * math.pi * band.highest * tank.inductance(),
         q=q,
         bandwidth=tank_bandwidth(tank, band.highest if swept else resonance),
@@ -274,8 +281,8 @@ def _swept_connection(names: tuple[str, ...], network: Network) -> str:
 
 def _coverage(tank: Tank, tuned_high: float) -> dict[str, object]:
     """Return the keys of a swept band: its ends as asked and as tuned, its padders and the element."""
-    band, network, element = tank.band, tank.network, tank.element()
-    assert element is not None and band.low is not None and band.high is not None
+    band, network, element, moved = tank.band, tank.network, tank.element(), tank.coils.moved
+    assert band.low is not None and band.high is not None
     tuned_low = float(resonance_frequency(tank.inductance(low_end=True), tank.total(low_end=True)))
     excess = max(band.low - tuned_low, tuned_high - band.high) / (band.high - band.low)
     return {
@@ -286,11 +293,12 @@ def _coverage(tank: Tank, tuned_high: float) -> dict[str, object]:
         "excess": excess,
         "series_padder_f": None if network.series is None else tank.capacitors[network.series].value,
         "parallel_padder_f": tank.across() if network.parts else None,
-        "tuning_low_f": element.low,
-        "tuning_high_f": element.high,
+        "tuning_low_f": None if element is None else element.low,
+        "tuning_high_f": None if element is None else element.high,
         "inductance_low_h": tank.inductance(low_end=True),
         "capacitance_low_f": tank.total(low_end=True),
         "capacitance_high_f": tank.total(),
+        **({} if moved is None else settings(tank, moved)),
     }
 
 
@@ -313,6 +321,7 @@ def _warnings(
         support = coils.supports[int(coils.support[coil])]
         for note in support.notes:
             found[f"{support.name}: {note}"] = None
+    found.update(dict.fromkeys(element_warnings(request, coils, design)))
     for index, figures in enumerate(bands):
         if figures.q is None:
             found[f"{figures.name}: Q is unknown, a loss is not stated at this frequency"] = None

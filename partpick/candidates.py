@@ -7,6 +7,7 @@ Which coils are in play for a band is decided here alone.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,6 +27,9 @@ from partpick.physics.self_capacitance import self_resonance_frequency
 from partpick.quantities import format_quantity
 from partpick.request import CoilRules, Request
 from partpick.result import CoilFigures, PartLine
+
+if TYPE_CHECKING:
+    from partpick.moved.coils import MovedCoils
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -70,7 +74,9 @@ class Coils:
     effort_form: Ints  # (J,) 0 bought, 1 ring, 2 tube, 3 other
     rank: Ints  # (J,) place by content: form, former, wire, pitch, turns
     in_play: NDArray[np.bool_]  # (J, B)
+    alone: Floats  # (J, B) H, as `inductance`, but without an element that moves it
     considered: int = 0  # coils that there are, those included which no band can use
+    moved: MovedCoils | None = None  # a tuning element that moves inductance, at swept bands
 
     def __len__(self) -> int:
         return len(self.turns)
@@ -98,6 +104,8 @@ class Coils:
         """Return what each cause in the coil takes, as its share of 1/Q; None where unknown."""
         block, row = self.locate(coil)
         names = ("skin", "proximity", "core", "former")
+        if self.moved is not None and self.moved.swept[band]:  # known of the coil as wound only
+            return dict.fromkeys(names)
         return {name: _known(getattr(block.losses, name)[row, band]) for name in names}
 
     def listed(self, inductance: float | None, *, low_frequency: bool) -> Ints:
@@ -166,7 +174,7 @@ def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
     """Return every coil of the catalogue that some band might use, evaluated at each band's frequency.
 
     Those which the limits on inductance, proportions or self-resonance keep from every band are left out
-    where a plan has no taps: a section of such a coil may do.
+    where a plan has no taps and no element that moves inductance: part of such a coil may do, or more of it.
 
     Parameters
     ----------
@@ -188,13 +196,40 @@ def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
     considered = sum(block.considered for block in blocks)
     blocks = [block for block in blocks if len(block.turns)]
     coils = replace(_joined(frequency, low_end, blocks), considered=considered)
+    if _moved(request) and len(coils):
+        coils = _with_element(request, coils, ends)
     return replace(coils, in_play=_in_play(request, coils))
+
+
+def _with_element(request: Request, coils: Coils, ends: Floats) -> Coils:
+    """Return the coils with the plan's element, which moves their inductance at swept bands."""
+    from partpick.moved.coils import PlainCoils, moved_coils  # its physics asks for scipy
+
+    assert request.tuning is not None
+    plain = PlainCoils(**{name: getattr(coils, name) for name in PlainCoils.__dataclass_fields__})
+    swept = np.array([band.swept for band in request.bands])
+    tuned, moved = moved_coils(request.tuning, coils.blocks, plain, ends, swept)
+    return replace(
+        coils,
+        inductance=tuned.inductance,
+        inductance_low=tuned.inductance_low,
+        q=tuned.q,
+        q_low=tuned.q_low,
+        tempco=tuned.tempco,
+        moved=moved,
+    )
+
+
+def _moved(request: Request) -> bool:
+    """Whether some bands are swept by an element that moves inductance."""
+    tuning = request.tuning
+    return tuning is not None and tuning.moves_inductance and any(band.swept for band in request.bands)
 
 
 def _screen(request: Request) -> Screen:
     """Return the limits that decide on a coil before its loss is known."""
     rules, targets = request.coil, [band.highest for band in request.bands]
-    if rules.taps or not targets:
+    if rules.taps or not targets or _moved(request):
         return Screen()
     times, lowest = rules.self_resonance, min(targets)
     eased = times if times is None or rules.self_resonance_stated else EASED_RESONANCE
@@ -253,6 +288,7 @@ def _joined(frequency: Floats, low_end: Floats, blocks: list[Block]) -> Coils:
         ),
         rank=_content_rank(blocks),
         in_play=np.ones((sum(len(b.turns) for b in blocks), bands), dtype=np.bool_),
+        alone=inductance[:, high],
     )
 
 
@@ -285,7 +321,34 @@ def _in_play(request: Request, coils: Coils) -> NDArray[np.bool_]:
     """Return which coils are inside every limit on coils alone, (J, B)."""
     inside = inside_as_wound(request, coils)
     every = np.arange(len(coils))
-    return inside & inside_in_circuit(request, coils, every, every, coils.self_capacitance)
+    alone = inside_in_circuit(request, coils, every, every, coils.self_capacitance)
+    if coils.moved is None:
+        return inside & alone
+    return inside & np.where(coils.moved.swept[None, :], _inside_at_both_ends(request, coils, coils.moved), alone)
+
+
+def _inside_at_both_ends(request: Request, coils: Coils, moved: MovedCoils) -> NDArray[np.bool_]:
+    """Return which coils are inside the limits with the element at either end of its travel, (J, B).
+
+    Their own resonance has to stand clear of the band's highest frequency where the inductance is most, too.
+    """
+    rules = request.coil
+    highest = np.array([band.highest for band in request.bands])
+    lowest = np.array([band.lowest for band in request.bands])
+    inside = np.repeat(moved.able[:, None], len(highest), axis=1)
+    ends = ((coils.inductance, moved.own_high, highest), (coils.inductance_low, moved.own_low, lowest))
+    for inductance, further, frequency in ends:
+        inside &= _within(inductance, rules.inductance)
+        inside &= inductance >= rules.least_wound * (1 - LIMIT_ROUNDING)
+        inside &= _within(2 * np.pi * frequency[None, :] * inductance, rules.reactance)
+        if rules.self_resonance is not None:
+            with np.errstate(divide="ignore"):
+                own = self_resonance_frequency(inductance, coils.self_capacitance[:, None] + further)
+            inside &= own >= _resonance_times(rules, coils)[:, None] * highest[None, :] * (1 - LIMIT_ROUNDING)
+    for index, band in enumerate(request.bands):
+        if band.q:
+            inside[:, index] &= np.minimum(coils.q, coils.q_low)[:, index] >= band.q * (1 - LIMIT_ROUNDING)
+    return inside
 
 
 def inside_as_wound(request: Request, coils: Coils) -> NDArray[np.bool_]:
@@ -372,7 +435,7 @@ def coil_figures(coils: Coils, coil: int, band: int) -> CoilFigures:
         wire=wire.name if wire else None,
         winding_length=length if length > 0 else None,
         wire_length=wire_length + 2 * TAIL if wire_length > 0 else None,
-        inductance=float(coils.inductance[coil, band]),
+        inductance=float(coils.alone[coil, band]),
         inductance_dc=_known(coils.inductance_dc[coil]),
         self_capacitance=_known(coils.self_capacitance[coil]),
         pitch=_positive(block.pitch[row]),

@@ -83,10 +83,17 @@ class Tank:
 
     @property
     def self_capacitance(self) -> float:
-        """Across what is in circuit. [F]"""
-        if self.tap_turns is None:
-            return float(self.coils.self_capacitance[self.coil])
-        return float(self.coils.section_self_capacitance(self.coil, self.tap_turns))
+        """Across what is in circuit, of a swept band at its upper end. [F]"""
+        return self.own_capacitance()
+
+    def own_capacitance(self, *, low_end: bool = False) -> float:
+        """Return the self-capacitance across what is in circuit. [F]"""
+        if self.tap_turns is not None:
+            return float(self.coils.section_self_capacitance(self.coil, self.tap_turns))
+        own, moved = float(self.coils.self_capacitance[self.coil]), self.coils.moved
+        if moved is None:
+            return own
+        return own + float((moved.own_low if low_end else moved.own_high)[self.coil, self.index])
 
     @property
     def network(self) -> Network:
@@ -95,7 +102,7 @@ class Tank:
 
     @property
     def strays(self) -> float:
-        """Wiring and self-capacitance. [F]"""
+        """Wiring and self-capacitance, of a swept band at its upper end. [F]"""
         return self.band.stray + self.self_capacitance
 
     @property
@@ -118,8 +125,8 @@ class Tank:
         return network_capacitance(self.capacitors, self.network, self.frequency(low_end=low_end), leads)
 
     def element(self) -> ElementEnds | None:
-        """Return the tuning element of a swept band, None for a fixed one."""
-        if not self.band.swept:
+        """Return the tuning element of a swept band, None for a fixed one or where the coil itself is tuned."""
+        if not self.band.swept or self.coils.moved is not None:
             return None
         assert self.request.tuning is not None
         return element_ends(self.request.tuning)
@@ -139,7 +146,8 @@ class Tank:
 
     def total(self, *, low_end: bool = False) -> float:
         """Return all capacitance in circuit. [F]"""
-        return self.across(low_end=low_end) + self.tuned(low_end=low_end) + self.strays + self.trimmer
+        strays = self.band.stray + self.own_capacitance(low_end=low_end)
+        return self.across(low_end=low_end) + self.tuned(low_end=low_end) + strays + self.trimmer
 
     def weights(self, total: float, *, low_end: bool = False) -> list[tuple[Capacitor, float]]:
         """Return each capacitor with d ln(total) / d ln(its own), the series padder last.

@@ -55,7 +55,9 @@ def with_bands(request: Request, count: int) -> Request:
     )
     limits = request.limits
     if not limits.inductors_stated:
-        limits = replace(limits, inductors=max(limits.inductors, count))
+        tuning = request.tuning
+        most = tuning.sections if tuning is not None and tuning.moves_inductance else count
+        limits = replace(limits, inductors=max(limits.inductors, min(count, most)))
     extra = tuple((name, values) for name, values in request.extra if name != "cover")
     return replace(request, bands=bands, limits=limits, extra=extra)
 

@@ -39,6 +39,12 @@ def check_layout(request: Request) -> None:
         )
     if layout == "shared" and any(band.swept for band in request.bands):
         raise RequestError('switching = "shared": a range goes with switching "separate" or "stacked" only')
+    tuning = request.tuning
+    if tuning is not None and tuning.moves_inductance and any(band.swept for band in request.bands):
+        raise RequestError(
+            f'switching = "{layout}": a {tuning.kind} is planned only with switching = "separate", where every band '
+            "has its own capacitors"
+        )
     if request.limits.alignable is not None:
         raise RequestError(
             f'switching = "{layout}": limits.alignable is read and understood, but this version plans it only with '

@@ -126,7 +126,9 @@ def _count_trials(request: Request) -> Iterator[_Trial]:
     if limits.parts_per_band < most:
         more = replace(request, limits=replace(limits, parts_per_band=min(most, limits.parts_per_band + 2)))
         yield _Trial("parts_per_band", more, _most_in_a_band, lambda c: f"{_most_in_a_band(c)} would do")
-    if limits.inductors < 2 and len(request.bands) > 1:
+    moved = request.tuning is not None and request.tuning.moves_inductance
+    able = not moved or (request.tuning is not None and request.tuning.sections > 1)
+    if limits.inductors < 2 and len(request.bands) > 1 and able:
         two = replace(request, limits=replace(limits, inductors=2))
         yield _Trial("inductors", two, lambda c: c.inductor_count, lambda c: f"{c.inductor_count} would do")
     if limits.parts is not None:

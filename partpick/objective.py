@@ -297,6 +297,8 @@ def _swept_figures(
         return {}
     assert request.tuning is not None
     element = element_ends(request.tuning)
+    moved = coils.moved
+    tempco = 0.0 if moved is not None else _nan(element.tempco)  # else the coils have it
     low_end = np.array([band.lowest for band in request.bands])
     return {
         "swept": swept,
@@ -304,8 +306,9 @@ def _swept_figures(
         "tuning_low": np.where(swept, element.low, 0.0),
         "tuning_high": np.where(swept, element.high, 0.0),
         "tuning_loss": np.where(swept, 1.0 / element.q, 0.0),
-        "tuning_tempco": np.where(swept, _nan(element.tempco), 0.0),
+        "tuning_tempco": np.where(swept, tempco, 0.0),
         "tuning_tolerance": element_tolerance(request.tuning),
+        **({} if moved is None else {"moved_own_low": moved.own_low, "moved_own_high": moved.own_high}),
         "inductance_low": coils.inductance_low,
         "coil_loss_low": 1.0 / coils.q_low,
         "species_low": np.array([_effective(first, float(f)) for f in low_end]).reshape(len(low_end), len(first)),

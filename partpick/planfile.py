@@ -30,7 +30,7 @@ from partpick.plantables import (
     read_tuning,
 )
 from partpick.quantities import shown
-from partpick.request import Request
+from partpick.request import Request, Tuning
 
 _LARGEST_FILE = 250_000  # bytes; a plan of 64 bands has about 20,000
 _MOST_DOTS = 100  # in a line; the time to read a dotted key grows with the square of its parts
@@ -196,6 +196,30 @@ def _check_bands(reader: TableReader, request: Request) -> None:
     for number, band in enumerate(request.bands, 1):
         if band.swept and request.tuning is None:
             raise reader.fail(f"band.{number}", f"a range needs {reader.name('tuning')}, which is not set")
+    if request.tuning is not None and request.tuning.moves_inductance:
+        _check_moved(reader, request, request.tuning, cover)
+
+
+def _check_moved(reader: TableReader, request: Request, tuning: Tuning, cover: bool) -> None:
+    """Refuse what an element that moves the coil's inductance cannot go with."""
+    swept = sum(band.swept for band in request.bands)
+    if not swept and not cover:
+        return
+    if request.coil.taps:
+        raise reader.fail("coil.taps", f"a {tuning.kind} goes with coils without taps")
+    if request.coil.measured is not None:
+        text = f"an inductance alone does not say what a {tuning.kind} makes of the coil; leave it out"
+        raise reader.fail("coil.measured", text)
+    if request.limits.alignable is not None:
+        raise reader.fail("limits.alignable", f"is not planned with a {tuning.kind}, only with tuned capacitances")
+    coils = request.limits.inductors if cover else min(request.limits.inductors, swept)
+    if coils > tuning.sections:
+        many = "one coil" if tuning.sections == 1 else f"{tuning.sections} coils"
+        raise reader.fail(
+            "limits.inductors",
+            f"read {request.limits.inductors}: the {tuning.kind} tunes {many}; as many as "
+            f"{reader.name('tuning.sections')} says that move together",
+        )
 
 
 def _check_layout(reader: TableReader, request: Request) -> None:

@@ -175,6 +175,13 @@ def _drift(given: object) -> float:
     return parse_tempco(given, signed=False)
 
 
+def _half_turn(given: object) -> float:
+    angle = parse_angle(given)
+    if not 0.0 <= angle <= 180.0:
+        raise refusal(given, "0 (aiding) to 180 degrees (opposing) is wanted")
+    return angle
+
+
 def as_given(given: object) -> object:
     """Leave a value to `planfile.py`, which reads it as a table of its own."""
     return given
@@ -266,7 +273,7 @@ def _sections(given: object) -> int:
 
 _LAWS = ("straight-line capacitance", "straight-line wavelength", "straight-line frequency")
 TUNING_OF_ANY_KIND = {
-    "sections": Key(read=_sections, default=1),
+    "sections": Key(read=_sections, default=1),  # that move together
     "law": Key(read=_choice(*_LAWS)),
     "tolerance": Key(read=_fraction()),
     "tempco": Key(read=parse_tempco),
@@ -276,6 +283,7 @@ TUNING: dict[str, dict[str, Key]] = {
         "low": Key(read=parse_capacitance, required=True),
         "high": Key(read=parse_capacitance, required=True),
         **TUNING_OF_ANY_KIND,
+        "parallel": Key(read=_count(1, 6)),  # of the sections; all where unstated
         "law": Key(read=_choice(*_LAWS), default=_LAWS[0]),
     },
     "varactor": {
@@ -293,7 +301,8 @@ TUNING: dict[str, dict[str, Key]] = {
         "diameter": Key(read=parse_length, required=True),
         "length": Key(read=parse_length, required=True),
         "permeability": Key(read=_positive(1e6, low=1), required=True),
-        "travel": Key(read=parse_length, required=True),
+        "travel": Key(read=parse_length, required=True),  # from where it stands just outside the winding
+        "q": Key(read=_QUALITY),  # of its material
         **TUNING_OF_ANY_KIND,
     },
     "moving contact": {
@@ -304,8 +313,10 @@ TUNING: dict[str, dict[str, Key]] = {
     },
     "variometer": {
         "rotor": Key(read=parse_length, required=True),  # mean diameter of the turning coil
-        "from": Key(read=parse_angle, required=True),  # degrees, as in the plan
-        "to": Key(read=parse_angle, required=True),
+        "turns": Key(read=_count(1, 1000)),  # of the rotor; as the stator, or as many as turn inside it
+        "connection": Key(read=_choice("series", "parallel"), default="series"),
+        "from": Key(read=_half_turn, required=True),  # degrees between the axes, 0: aiding
+        "to": Key(read=_half_turn, required=True),
         **TUNING_OF_ANY_KIND,
     },
 }

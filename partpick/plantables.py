@@ -207,7 +207,24 @@ def read_tuning(reader: TableReader, raw: object) -> Tuning | None:
         raise reader.fail("tuning.kind", f"is missing; one of {', '.join(plankeys.TUNING)} is wanted")
     kind = reader.value(table["kind"], plankeys.SECTIONS["tuning"]["kind"], "tuning.kind")
     rest = {name: value for name, value in table.items() if name != "kind"}
-    return Tuning(kind=kind, keys=tuple(reader.complete(rest, plankeys.TUNING[kind], "tuning").items()))
+    tuning = Tuning(kind=kind, keys=tuple(reader.complete(rest, plankeys.TUNING[kind], "tuning").items()))
+    _check_element(reader, tuning)
+    return tuning
+
+
+def _check_element(reader: TableReader, tuning: Tuning) -> None:
+    """Refuse an element whose keys contradict each other."""
+    parallel = tuning.get("parallel")
+    if isinstance(parallel, int) and parallel > tuning.sections:
+        there = "is only 1 section" if tuning.sections == 1 else f"are only {tuning.sections} sections"
+        raise reader.fail("tuning.parallel", f"read {parallel}: there {there} ({reader.name('tuning.sections')})")
+    length, travel = tuning.get("length"), tuning.get("travel")
+    if isinstance(length, float) and isinstance(travel, float) and length > travel * (1 + 1e-9):
+        raise reader.fail(
+            "tuning.length",
+            f"read {format_quantity(length, 'm')}: longer than the travel of {format_quantity(travel, 'm')} allows; "
+            "a core that starts outside the coil would never be all the way in",
+        )
 
 
 def _tuning_table(reader: TableReader, text: str) -> dict[str, object]:
@@ -217,7 +234,8 @@ def _tuning_table(reader: TableReader, text: str) -> dict[str, object]:
     for item in filter(None, (part.strip() for part in rest.split(";"))):
         name, equals, value = item.partition("=")
         if equals:
-            table[name.strip()] = value.strip()
+            stated = value.strip()
+            table[name.strip()] = {"true": True, "false": False}.get(stated.casefold(), stated)
         elif item.count("..") == 1:
             ends = ("low", "high") if kind.strip().casefold() == "variable capacitor" else ("from", "to")
             table.update(zip(ends, (end.strip() for end in item.split("..")), strict=True))

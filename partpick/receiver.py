@@ -164,6 +164,8 @@ def _check_gang(request: Request) -> None:
             f"tuning.sections: read {sections}: a receiver has one section for the signal and an equal one for the "
             "oscillator; 2 is wanted (further signal circuits are built like the first)"
         )
+    if tuning.get("parallel") not in (None, 1):
+        raise RequestError("tuning.parallel: each section of a receiver tunes a circuit of its own; leave it out")
 
 
 def _check_band(request: Request, band: Band) -> None:

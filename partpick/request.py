@@ -129,6 +129,17 @@ class Tuning:
     kind: str  # "variable capacitor", "varactor", "sliding core", "moving contact", "variometer"
     keys: tuple[tuple[str, object], ...] = ()
 
+    @property
+    def moves_inductance(self) -> bool:
+        """Whether the coil is tuned, not the capacitance."""
+        return self.kind in ("sliding core", "moving contact", "variometer")
+
+    @property
+    def sections(self) -> int:
+        """How many sections of the element move together."""
+        stated = self.get("sections")
+        return stated if isinstance(stated, int) else 1
+
     def get(self, name: str, default: object = None) -> object:
         """Return one key of the element."""
         return dict(self.keys).get(name, default)

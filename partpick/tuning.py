@@ -1,27 +1,46 @@
 """The tuning element of a plan as the search sees it: two ends, a loss and a tempco.
 
-So far the capacitive kinds; an inductive one moves L and is another kind of search.
+An element that moves inductance has no capacitance: what it does is in the figures of the coils (`moved/`).
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 
-from partpick.errors import RequestError
 from partpick.physics.varactor import junction_capacitance, junction_tempco, network_capacitance, network_tempco
 from partpick.physics.variable_capacitor import sections_in_parallel
 from partpick.request import Tuning
 
 VARIABLE_Q = 1000.0  # an air-spaced variable capacitor; common practice, no source
 VARACTOR_Q = 150.0  # common practice, no source
-# of the capacitance of an element whose plan states no tolerance; common practice, no source
-TOLERANCE = {"variable capacitor": 0.05, "varactor": 0.10}
-KINDS_PLANNED = ("variable capacitor", "varactor")
+CORE_Q = 150.0  # of a sliding core's material where the plan states none; common practice, no source
+# of what the element sets, where the plan states no tolerance; common practice, no source
+TOLERANCE = {
+    "variable capacitor": 0.05,
+    "varactor": 0.10,
+    "sliding core": 0.10,
+    "moving contact": 0.01,
+    "variometer": 0.02,
+}
+TOLERANCE_OF = {
+    "variable capacitor": "the capacitance",
+    "varactor": "the capacitance",
+    "sliding core": "the inductance that the core adds",
+    "moving contact": "the inductance in use",
+    "variometer": "the mutual inductance",
+}
+SETTING_UNITS = {
+    "variable capacitor": "degree",
+    "varactor": "V",
+    "sliding core": "mm",
+    "moving contact": "turn",
+    "variometer": "degree",
+}
 
 
 @dataclass(frozen=True, kw_only=True)
 class ElementEnds:
-    """What an element of capacitance spans."""
+    """What an element of capacitance spans; nothing for one that moves inductance."""
 
     low: float  # F
     high: float  # F
@@ -31,27 +50,40 @@ class ElementEnds:
 
 
 def element_ends(tuning: Tuning) -> ElementEnds:
-    """Return the ends of a tuning element.
-
-    Raises
-    ------
-    RequestError
-        The element is of a kind that moves an inductance, or its ends are the wrong way round.
-    """
+    """Return the ends of a tuning element."""
     if tuning.kind == "variable capacitor":
         return _variable_capacitor(tuning)
     if tuning.kind == "varactor":
         return _varactor(tuning)
-    raise RequestError(
-        f'tuning.kind: "{tuning.kind}" is read and understood, but this version plans only '
-        + " and ".join(f'"{kind}"' for kind in KINDS_PLANNED)
-    )
+    return ElementEnds(low=0.0, high=0.0, q=float("inf"), tempco=None, words=tuning.kind)
+
+
+def element_notes(tuning: Tuning) -> tuple[str, ...]:
+    """Return what must be said of an element that moves inductance, whatever coil it goes with."""
+    notes = {
+        "sliding core": (
+            "sliding core: permeability and loss are taken as the same at every frequency; the former's bore as "
+            "0.9 of its diameter (common practice)",
+        ),
+        "moving contact": (
+            "moving contact: bare the wire along the track of the contact, or take bare wire",
+            *(("moving contact: the loss of the open unused turns is not counted",) if _rest_open(tuning) else ()),
+        ),
+        "variometer": ("variometer: the former's bore is taken as 0.9 of its diameter (common practice)",),
+    }
+    own_q = tuning.kind == "sliding core" and tuning.get("q") is None
+    taken = (f"sliding core: tuning.q is not stated, {CORE_Q:.0f} taken (common practice)",) if own_q else ()
+    return (*notes.get(tuning.kind, ()), *taken)
+
+
+def _rest_open(tuning: Tuning) -> bool:
+    return tuning.get("unused") == "open"
 
 
 def element_tolerance(tuning: Tuning) -> float:
-    """Return the tolerance of an element's capacitance, the kind's default where the plan states none. [fraction]"""
+    """Return the tolerance of what an element sets, the kind's default where the plan states none. [fraction]"""
     stated = tuning.get("tolerance")
-    return float(stated) if isinstance(stated, (int, float)) else TOLERANCE.get(tuning.kind, 0.05)
+    return float(stated) if isinstance(stated, (int, float)) else TOLERANCE[tuning.kind]
 
 
 def _number(tuning: Tuning, key: str) -> float:
@@ -66,7 +98,7 @@ def _stated(tuning: Tuning, key: str) -> float | None:
 
 
 def _variable_capacitor(tuning: Tuning) -> ElementEnds:
-    sections = _stated(tuning, "sections") or 1.0
+    sections = _stated(tuning, "parallel") or _stated(tuning, "sections") or 1.0
     low, high = (float(sections_in_parallel(_number(tuning, key), sections)) for key in ("low", "high"))
     words = f"variable capacitor, {sections:.0f} sections in parallel" if sections > 1 else "variable capacitor"
     if gang := _stated(tuning, "gang"):  # of a receiver: a section for each circuit

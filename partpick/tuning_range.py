@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -12,6 +13,9 @@ from partpick.quantities import format_quantity
 from partpick.request import Band, Request
 from partpick.result import RuledOut
 from partpick.tuning import ElementEnds, element_ends
+
+if TYPE_CHECKING:
+    from partpick.moved.coils import MovedCoils
 
 MOST_BANDS_TOLD = 12
 _GRAIN = 1e-9  # a design exactly on a limit is inside it
@@ -25,13 +29,17 @@ class Reach:
     inductance of leads makes capacitors act larger towards high frequencies. So this is a bound.
     """
 
+    kind: str
     element: ElementEnds
     strays: float  # F, the least: wiring, trimmer at its middle, self-capacitance of the best coil
     coil_ratio: float  # inductance at the low end over that at the high end, the greatest of any coil
+    moved_ratio: float | None = None  # of an element that moves inductance: highest over lowest frequency
 
     @property
     def frequency_ratio(self) -> float:
         """Highest over lowest frequency. [-]"""
+        if self.moved_ratio is not None:
+            return self.moved_ratio
         capacitance = (self.element.high + self.strays) / (self.element.low + self.strays)
         return math.sqrt(capacitance * self.coil_ratio)
 
@@ -55,11 +63,36 @@ def reach(request: Request, coils: Coils, index: int) -> Reach | None:
     known = ratio[np.isfinite(ratio)]
     trimmer = band.trimmer.middle if band.trimmer else 0.0
     own = 0.0 if request.coil.taps else float(coils.self_capacitance.min())  # a section has less than its coil
+    strays = band.stray + trimmer + own
+    if coils.moved is not None:
+        widest, moved_ratio = _moved_ratios(coils, coils.moved, index, band.stray + trimmer)
+        return Reach(
+            kind=request.tuning.kind,
+            element=element_ends(request.tuning),
+            strays=strays,
+            coil_ratio=widest,
+            moved_ratio=moved_ratio,
+        )
     return Reach(
+        kind=request.tuning.kind,
         element=element_ends(request.tuning),
-        strays=band.stray + trimmer + own,
+        strays=strays,
         coil_ratio=max(1.0, float(known.max(initial=1.0))),
     )
+
+
+def _moved_ratios(coils: Coils, moved: MovedCoils, index: int, strays: float) -> tuple[float, float]:
+    """Return the greatest ratio of inductance, and of frequency with any network, of all coils with the element.
+
+    A network adds as much or less at the low end, so that the capacitances differ most with the strays alone.
+    """
+    rows = np.flatnonzero(moved.able)
+    if not len(rows):
+        return 1.0, 1.0
+    ratio = coils.inductance_low[rows, index] / coils.inductance[rows, index]
+    own = coils.self_capacitance[rows] + strays
+    capacitance = (own + moved.own_low[rows, index]) / (own + moved.own_high[rows, index])
+    return float(ratio.max()), math.sqrt(max(1.0, float((ratio * np.maximum(capacitance, 1.0)).max())))
 
 
 def needed_ratio(band: Band, margin: float) -> float:
@@ -87,6 +120,14 @@ def beyond_reach(request: Request, coils: Coils) -> RuledOut | None:
         split = f"{_COUNTS.get(count, str(count))} bands, " if count and count <= MOST_BANDS_TOLD else ""
         needed = needed_ratio(band, margin)
         with_margin = f" with {100 * margin:.3g} % at each end" if margin else ""
+        if far.moved_ratio is not None:
+            reached = (
+                f"the {far.kind} moves the inductance {_down(far.coil_ratio)} to 1 at most, on the coil that suits it "
+                f"best, which gives at most {_down(far.moved_ratio)} in frequency"
+            )
+            ways = f"{split}or {_WIDER[far.kind]}"
+            text = f"{reached}; band {band.name} needs {_up(needed)}{with_margin}: {ways}"
+            return RuledOut(limit="tuning", needed=needed, text=text)
         text = (
             f"the capacitance ratio {far.element.high / far.element.low:.2g} with "
             f"{format_quantity(far.strays, 'F', digits=2)} of strays gives at most {_down(far.frequency_ratio)} in "
@@ -96,6 +137,11 @@ def beyond_reach(request: Request, coils: Coils) -> RuledOut | None:
     return None
 
 
+_WIDER = {
+    "sliding core": "a core that fills its coil better, or moves further",
+    "moving contact": "longer coils, or fewer turns that stay in use",
+    "variometer": "a rotor that fits its stator closer, or turns further",
+}
 _COUNTS = {2: "two", 3: "three", 4: "four", 5: "five", 6: "six"}
 
 

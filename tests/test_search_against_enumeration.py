@@ -8,7 +8,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from tiny.brute_force import band_columns, ranking
-from tiny.random_problem import random_problem, random_swept_problem
+from tiny.random_problem import random_moved_problem, random_problem, random_swept_problem
 
 from partpick.progress import Quiet
 from partpick.search.bands import Found, leading_figure, search_bands
@@ -38,6 +38,14 @@ SWEPT_SHAPES = {
     "two coils for a mixed plan": {"bands": 2, "swept": 1, "inductors": 2},
 }
 
+MOVED_SHAPES = {
+    "one band on a moving inductance": {"bands": 1, "moved": 1},
+    "two bands on one": {"bands": 2, "moved": 2},
+    "one on it and a fixed one": {"bands": 2, "moved": 1},
+    "under shared limits": {"bands": 2, "moved": 2, "coupled": True},
+    "two coils": {"bands": 2, "moved": 2, "inductors": 2},
+}
+
 
 def found_in(problem: Problem) -> Found:
     found = search_bands(
@@ -52,7 +60,8 @@ def pieces_of(choice: Choice) -> int:
 
 
 def agree(seed: int, shape: dict[str, int]) -> int:
-    problem = random_swept_problem(seed, **shape) if "swept" in shape else random_problem(seed, **shape)
+    kinds = {"swept": random_swept_problem, "moved": random_moved_problem}
+    problem = next((make for kind, make in kinds.items() if kind in shape), random_problem)(seed, **shape)
     wanted, front = ranking(problem)
     found = found_in(problem)
     assert [choice.key for choice in found.choices] == wanted, f"seed {seed}, by {problem.by}"
@@ -74,6 +83,21 @@ def test_swept_and_mixed_plans_equal_plain_enumeration(name: str) -> None:
     """Padders, coverage and excess are enumerated with loops that know no interval and no crossing."""
     answered = sum(agree(seed, SWEPT_SHAPES[name]) > 0 for seed in range(40))
     assert answered > 4, "the sample must hold plans, not only refusals"
+
+
+@pytest.mark.parametrize("name", MOVED_SHAPES)
+def test_bands_of_a_moving_inductance_equal_plain_enumeration(name: str) -> None:
+    """Sliding core, moving contact and variometer: L and the self-capacitance differ at the two ends."""
+    answered = sum(agree(seed, MOVED_SHAPES[name]) > 0 for seed in range(40))
+    assert answered > 4, "the sample must hold plans, not only refusals"
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("name", MOVED_SHAPES)
+def test_bands_of_a_moving_inductance_equal_plain_enumeration_at_length(name: str) -> None:
+    """The same over more instances than the default suite has time for."""
+    for seed in range(1000, 1300):
+        agree(seed, MOVED_SHAPES[name])
 
 
 @pytest.mark.slow

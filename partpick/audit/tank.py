@@ -70,6 +70,8 @@ def _swept(candidate: Candidate, band: BandFigures, tree: Connection | None, req
     tuned = {}
     for end, frequency, own, inductance in ends:
         total = _total_with_element(candidate, band, tree, request, frequency, figure.get(own))
+        # a coil that is tuned may have another self-capacitance at each end
+        total += figure.get(f"self_capacitance_{end}_f", band.self_capacitance)
         tuned[end] = _frequency(inductance, total)
         yield from _compare(band.name, f"tuned {end} end", figure.get(f"tuned_{end}_hz"), tuned[end])
     excess = max(low - tuned["low"], tuned["high"] - high) / (high - low)
@@ -90,14 +92,14 @@ def _total_with_element(
     frequency: float,
     element: float | None,
 ) -> float:
-    """Return all that is in circuit with the tuning element at one end. [F]"""
+    """Return all but the self-capacitance that is in circuit with the tuning element at one end. [F]"""
     values = {line.reference: line for line in candidate.parts}
     across, tuned = tree, 0.0
     if tree is not None and ELEMENT in references_of(tree):
         own, across = without(tree, ELEMENT)
         tuned = _acting(own, values, frequency, element)
     others = _behind(_acting(across, values, frequency), request.stray.inductance, frequency)
-    return others + tuned + band.stray + band.self_capacitance + (band.trimmer or 0.0)
+    return others + tuned + band.stray + (band.trimmer or 0.0)
 
 
 def _acting(

@@ -5,14 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
-from partpick.built.tank import Swept, VaryingTank
+from partpick.built.tank import Moved, Swept, VaryingTank
 from partpick.built.variation import CAPACITOR, COIL, SELF_CAPACITANCE, TUNING, WIRING, Source, Variation
 from partpick.candidates import Coils
 from partpick.circuit import Design, Tank
 from partpick.parts import Capacitor
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate
-from partpick.tuning import element_tolerance
+from partpick.tuning import TOLERANCE_OF, element_tolerance
 
 
 def variation(
@@ -107,7 +107,8 @@ def _varying(
         wiring=sources.place(_stray_source(request, WIRING, band.name)),
         wiring_capacitance=band.stray,
         winding=sources.place(_stray_source(request, SELF_CAPACITANCE, figures.coil)),
-        winding_capacitance=figures.self_capacitance,
+        winding_capacitance=tank.own_capacitance(low_end=low_end),
+        moved=_moved(tank, figures.coil, sources, low_end=low_end),
         trimmer=band.trimmer,
         swept=_swept(tank, pieces, sources, low_end=low_end),
     )
@@ -136,12 +137,29 @@ def _swept(tank: Tank, pieces: Sequence[int], sources: _Sources, *, low_end: boo
     )
 
 
+def _moved(tank: Tank, coil: str, sources: _Sources, *, low_end: bool) -> Moved | None:
+    """Return how an element that moves inductance shares in the deviations of a swept band's coil."""
+    moved, tuning = tank.coils.moved, tank.request.tuning
+    if moved is None or tuning is None or not tank.band.swept:
+        return None
+    own, element = (
+        (moved.share_low, moved.element_share_low) if low_end else (moved.share_high, moved.element_share_high)
+    )
+    reference = "T" if tuning.sections == 1 else f"T of {coil}"
+    source = Source(reference=reference, kind=TUNING, label=tuning.kind, size=element_tolerance(tuning), tempco=0.0)
+    return Moved(
+        source=sources.place(source),
+        coil_share=float(own[tank.coil, tank.index]),
+        element_share=float(element[tank.coil, tank.index]),
+    )
+
+
 def _notes(request: Request) -> tuple[str, ...]:
     tuning = request.tuning
     if tuning is None or tuning.get("tolerance") is not None or not any(band.swept for band in request.bands):
         return ()
     taken = element_tolerance(tuning) * 100
-    return (f"tuning.tolerance not stated: {taken:g} % of the capacitance taken (common practice)",)
+    return (f"tuning.tolerance not stated: {taken:g} % of {TOLERANCE_OF[tuning.kind]} taken (common practice)",)
 
 
 def _coil_source(tank: Tank, reference: str, candidate: Candidate) -> Source:

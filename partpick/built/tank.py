@@ -36,6 +36,15 @@ class Swept:
 
 
 @dataclass(frozen=True, kw_only=True)
+class Moved:
+    """An element that moves inductance, at one end of its travel."""
+
+    source: int
+    coil_share: float  # d ln L / d ln of the coil as wound
+    element_share: float  # d ln L / d ln of what the element has a tolerance of
+
+
+@dataclass(frozen=True, kw_only=True)
 class VaryingTank:
     """One band, a swept one at its upper end; `coil`, `parts` and the rest are places among the sources."""
 
@@ -55,6 +64,7 @@ class VaryingTank:
     winding_capacitance: float  # F
     trimmer: Trimmer | None
     swept: Swept | None = None
+    moved: Moved | None = None
     low_end: VaryingTank | None = None  # of a swept band
 
     def network(self, x: Floats) -> Floats:
@@ -76,7 +86,10 @@ class VaryingTank:
 
     def built_inductance(self, x: Floats) -> Floats:
         """Return the inductance. [H]"""
-        return self.inductance * (1.0 + x[self.coil])
+        if self.moved is None:
+            return self.inductance * (1.0 + x[self.coil])
+        off = self.moved.coil_share * x[self.coil] + self.moved.element_share * x[self.moved.source]
+        return np.asarray(self.inductance * (1.0 + off))
 
     def resonance(self, x: Floats) -> Floats:
         """Return the resonance with the trimmer at the middle of its range. [Hz]"""
@@ -92,7 +105,8 @@ class VaryingTank:
         return 1.0 / ((2.0 * np.pi * self.frequency) ** 2 * inductance)
 
     def _nothing_off(self) -> Floats:
-        others = () if self.swept is None else (self.swept.source, self.swept.padder or 0)
+        others: tuple[int, ...] = () if self.swept is None else (self.swept.source, self.swept.padder or 0)
+        others += () if self.moved is None else (self.moved.source,)
         return np.zeros((1 + max((self.coil, self.wiring, self.winding, *self.parts, *others)), 1))
 
     def weights(self, trimmer: float) -> dict[int, float]:
@@ -100,7 +114,7 @@ class VaryingTank:
         across = float(self.network(self._nothing_off())[0])
         total = self.nominal_fixed() + trimmer
         found = {
-            self.coil: 1.0,
+            self.coil: 1.0 if self.moved is None else self.moved.coil_share,
             self.wiring: self.wiring_capacitance / total,
             self.winding: self.winding_capacitance / total,
         }
@@ -108,6 +122,8 @@ class VaryingTank:
             found[part] = found.get(part, 0.0) + slope / total
         if self.swept is not None:
             found |= self._swept_weights(self.swept, total)
+        if self.moved is not None:  # of the inductance, but it counts alike
+            found[self.moved.source] = self.moved.element_share
         return found
 
     def _swept_weights(self, swept: Swept, total: float) -> dict[int, float]:

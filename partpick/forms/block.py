@@ -108,6 +108,7 @@ class Block:
     volume: Floats  # m3
     wire_diameter: Floats  # m bare
     proportions: Floats | None = None  # winding length / mean diameter, single layers only
+    bore: Floats | None = None  # m, inside diameter of the former of a single layer, nan: it has none
     label: Callable[[int], str] = field(repr=False)
     cautions: Callable[[int, float], tuple[str, ...]] = field(repr=False, default=_nothing_to_say)  # at a Hz
 

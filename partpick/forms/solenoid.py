@@ -45,6 +45,7 @@ MANDREL_PITCH = 1.3  # in wire diameters, at least; common practice, no source
 # How far pitch and diameter stray from what is meant, fractions: common practice, no source.
 PITCH_TOLERANCE = {"close": 0.03, "twin": 0.03, "groove": 0.005, "mandrel": 0.05}
 SPRINGBACK = 0.02  # a coil opens when it leaves its mandrel
+BORE = 0.9  # of the outside diameter of a tube or ribbed former: common practice, no source
 WIRE_TOLERANCE = 0.02  # of the overall diameter: the largest of the grade stands in the tables
 # Where the published proximity table is doubtful: turns that nearly touch, on a short coil.
 DOUBTFUL_D_OVER_S, DOUBTFUL_L_OVER_D = 0.7, 1.0
@@ -136,6 +137,7 @@ def solenoid_block(catalogue: Catalogue, frequency: Floats, units: int, screen: 
         volume=np.pi / 4 * (coil.mean + sizes.overall) ** 2 * coil.length,
         wire_diameter=sizes.bare,
         proportions=coil.l_over_d,
+        bore=column([_bore(former) for former in formers])[support],
         label=label,
         cautions=coil.cautions,
     )
@@ -172,6 +174,11 @@ def _single_layers(
     sizes = WireColumns.of(wires, layouts.wire)
     mean = column([former.diameter for former in formers])[layouts.support] + sizes.overall
     return SingleLayer(turns, mean[layout], layouts.pitch[layout], sizes.take(layout))
+
+
+def _bore(former: Former) -> float | None:
+    """Return the inside diameter of a former, None for a mandrel, which is drawn out or solid. [m]"""
+    return None if former.support == "mandrel" else BORE * former.diameter
 
 
 def _layouts(formers: list[Former], wires: tuple[Wire, ...]) -> Layouts:

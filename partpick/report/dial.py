@@ -1,8 +1,9 @@
 """The dial chart of the best candidate: where the tuning element stands at each frequency, CSV or JSON.
 
 A variable capacitor is told in degrees of rotation (0: plates out, 180: plates in), a varactor in volts of
-reverse bias. Inductance, padders and strays are taken as the candidate has them at both ends of a band and
-as straight lines against frequency between them.
+reverse bias, a sliding core in millimetres that it is pushed in, a moving contact in turns in use, a variometer
+in degrees between the axes (0: aiding). What is not tuned is taken as the candidate has it at both ends of a
+band and as straight lines against frequency between them.
 """
 
 from __future__ import annotations
@@ -24,9 +25,10 @@ from partpick.physics.resonance import effective_capacitance
 from partpick.physics.varactor import bias_for, junction_for_network
 from partpick.physics.variable_capacitor import rotation_for
 from partpick.quantities import shown
+from partpick.report.dial_moved import inductance_at, positions, setting_for, single_valued
 from partpick.request import Request, Tuning
 from partpick.result import BandFigures, Candidate, Result
-from partpick.tuning import element_ends
+from partpick.tuning import SETTING_UNITS, element_ends
 
 Floats = NDArray[np.float64]
 
@@ -34,9 +36,22 @@ DIAL_FORMAT = 1
 STEPS = 20  # equal steps of frequency between the tuned ends
 FINE_STEPS = 400  # for the straightness
 SLOPE_STEP = 1e-5  # of the tuned span, to either side
-COLUMNS = ("band", "frequency_hz", "setting", "unit", "hz_per_unit", "element_f", "point", "straightness")
+COLUMNS = (
+    "band",
+    "frequency_hz",
+    "setting",
+    "unit",
+    "hz_per_unit",
+    "element_f",
+    "point",
+    "straightness",
+    "element_h",
+)
 BETWEEN = "inductance, padders and strays: straight lines against frequency between the tuned ends"
-UNITS = {"variable capacitor": "degree", "varactor": "V"}
+BETWEEN_MOVED = (
+    "capacitances but the coil's own: straight lines against frequency between the tuned ends; inductance and the "
+    "coil's own capacitance by setting: a table with a smooth curve through it, within 0.05 % of the frequency"
+)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -44,9 +59,9 @@ class DialPoint:
     """One line of the chart."""
 
     frequency: float  # Hz
-    setting: float  # degree or V
-    rate: float  # Hz per degree or per volt, signed
-    element: float  # F, the tuning element alone
+    setting: float  # degree, V, mm or turns
+    rate: float  # Hz per degree, volt, mm or turn, signed
+    element: float  # F, the tuning element alone; H where it moves the inductance
     point: str  # "tuned end", "wanted end", "step"
 
 
@@ -57,6 +72,7 @@ class Dial:
     band: str
     unit: str
     straightness: float  # largest departure from a straight dial, fraction of the tuned span
+    moved: bool  # whether the inductance is tuned
     points: tuple[DialPoint, ...]  # rising frequency
 
 
@@ -74,9 +90,6 @@ def check_dial(path: str | None, request: Request) -> None:
         raise RequestError(f"--dial: read {shown(path)}: a name that ends in .csv or .json is wanted, or -")
     if not any(band.swept for band in request.bands) and "cover" not in dict(request.extra):
         raise RequestError("--dial: no band has a range, so no dial is turned; a band with from and to is wanted")
-    assert request.tuning is not None
-    if request.tuning.kind not in UNITS:
-        raise RequestError(f"--dial: charts are for {' and '.join(UNITS)}, not yet for {request.tuning.kind}")
 
 
 def dial_text(result: Result, path: str = "-") -> str:
@@ -94,7 +107,8 @@ def dial_csv(result: Result) -> str:
             name = f"'{dial.band}" if dial.band[:1] in "=+-@" else dial.band  # else a spreadsheet runs it
             row = (p.frequency, p.setting, p.rate, p.element, dial.straightness)
             frequency, setting, rate, element, straightness = (format(value, ".9g") for value in row)
-            writer.writerow((name, frequency, setting, dial.unit, rate, element, p.point, straightness))
+            farad, henry = ("", element) if dial.moved else (element, "")
+            writer.writerow((name, frequency, setting, dial.unit, rate, farad, p.point, straightness, henry))
     return text.getvalue()
 
 
@@ -110,7 +124,8 @@ def dial_json(result: Result) -> str:
                     "frequency_hz": p.frequency,
                     "setting": p.setting,
                     "hz_per_unit": p.rate,
-                    "element_f": p.element,
+                    "element_f": None if dial.moved else p.element,
+                    "element_h": p.element if dial.moved else None,
                     "point": p.point,
                 }
                 for p in dial.points
@@ -118,7 +133,9 @@ def dial_json(result: Result) -> str:
         }
         for dial in dials(result)
     ]
-    entry = {"partpick_dial": DIAL_FORMAT, "version": partpick.__version__, "between_the_ends": BETWEEN, "bands": bands}
+    tuning = result.request.tuning
+    between = BETWEEN_MOVED if tuning is not None and tuning.moves_inductance else BETWEEN
+    entry = {"partpick_dial": DIAL_FORMAT, "version": partpick.__version__, "between_the_ends": between, "bands": bands}
     return json.dumps(entry, indent=2, ensure_ascii=False, allow_nan=False) + "\n"
 
 
@@ -138,7 +155,7 @@ def dial_of(tuning: Tuning, candidate: Candidate, figures: BandFigures) -> Dial:
     Parameters
     ----------
     tuning : Tuning
-        The element, a variable capacitor or a varactor.
+        The element.
     candidate : Candidate
         Whose part list holds the series padder of the band.
     figures : BandFigures
@@ -147,11 +164,18 @@ def dial_of(tuning: Tuning, candidate: Candidate, figures: BandFigures) -> Dial:
     Returns
     -------
     dial : Dial
-        21 points in equal steps of frequency from one tuned end to the other, and both ends asked for.
-        The tuning rate is the slope there. Straightness compares with a scale that is straight from one
-        tuned end to the other, at the same setting.
+        21 points in equal steps of frequency from one tuned end to the other, and both ends asked for; of a
+        contact that steps from turn to turn one point a turn. The tuning rate is the slope there. Straightness
+        compares with a scale that is straight from one tuned end to the other, at the same setting.
     """
-    element, setting = _element_at(candidate, figures), _law(tuning)
+    if tuning.moves_inductance:
+        table = positions(candidate, figures)
+        stepped = tuning.kind == "moving contact" and tuning.get("continuous") is not True
+        if stepped or not single_valued(table[0], table[2]):
+            return _stepped(tuning, figures, *table)
+        element, setting = inductance_at(table[0], table[2]), setting_for(table[1], table[2])
+    else:
+        element, setting = _element_at(candidate, figures), _law(tuning)
     ends = [_number(figures, key) for key in ("tuned_low_hz", "tuned_high_hz")]
     wanted = [f for key in ("low_hz", "high_hz") if ends[0] <= (f := _number(figures, key)) <= ends[1]]  # a receiver's
     # oscillator may be off by its tracking error, so that an end of its range is beyond those of the element
@@ -174,7 +198,37 @@ def dial_of(tuning: Tuning, candidate: Candidate, figures: BandFigures) -> Dial:
     turned = setting(element(fine))
     share = (turned - turned[0]) / (turned[-1] - turned[0])
     straightness = float(np.max(np.abs((fine - ends[0]) / (ends[1] - ends[0]) - share)))
-    return Dial(band=figures.name, unit=UNITS[tuning.kind], straightness=straightness, points=points)
+    return Dial(
+        band=figures.name,
+        unit=SETTING_UNITS[tuning.kind],
+        straightness=straightness,
+        moved=tuning.moves_inductance,
+        points=points,
+    )
+
+
+def _stepped(tuning: Tuning, figures: BandFigures, frequency: Floats, turns: Floats, inductance: Floats) -> Dial:
+    """Return the chart of an element by its places, one point each; the rate is that to its neighbours."""
+    rate = np.gradient(frequency, turns)
+    along = (turns - turns[0]) / (turns[-1] - turns[0])
+    tuned = (frequency - frequency[0]) / (frequency[-1] - frequency[0])
+    ends = (turns[0], turns[-1])
+    return Dial(
+        band=figures.name,
+        unit=SETTING_UNITS[tuning.kind],
+        straightness=float(np.max(np.abs(tuned - along))),
+        moved=True,
+        points=tuple(
+            DialPoint(
+                frequency=float(f),
+                setting=float(turn),
+                rate=float(slope),
+                element=float(own),
+                point="tuned end" if turn in ends else "step",
+            )
+            for f, turn, slope, own in zip(frequency, turns, rate, inductance, strict=True)
+        ),
+    )
 
 
 def _element_at(candidate: Candidate, figures: BandFigures) -> Callable[[Floats], Floats]:

@@ -60,12 +60,13 @@ def _tanks(request: Request, candidate: Candidate) -> Iterator[_Tank]:
         for frequency, element, words in _points(band):
             count += 1
             tank = _Tank(node=f"t{count}", expected=frequency)
+            inductance, own = _at_end(band, frequency)
             tank.lines += ["*", f"* {tank.node}: {_comment(band.name)}{words}, {format_quantity(frequency, 'Hz', 7)}"]
             tank.lines.append(f"I{tank.node} 0 {tank.node} DC 0 AC 1")
-            _coil(tank, band)
+            _coil(tank, band, inductance)
             _network(tank, request, candidate, band, element)
             _plain(tank, "strays", band.stray)
-            _plain(tank, "self", band.self_capacitance)
+            _plain(tank, "self", own)
             if band.trimmer is not None:
                 trimmer = next((p for p in candidate.parts if p.kind == "trimmer" and band.name in p.bands), None)
                 _capacitor(tank, "trimmer", band.trimmer, trimmer, tank.node, "0")
@@ -82,21 +83,30 @@ def _points(band: BandFigures) -> list[tuple[float, float | None, str]]:
         ("tuned_high_hz", "tuning_low_f", " tuned to its high end"),
     ):
         frequency, own = band.extra.get(key), band.extra.get(element)
-        if isinstance(frequency, (int, float)) and isinstance(own, (int, float)):
-            points.append((float(frequency), float(own), words))
+        if isinstance(frequency, (int, float)):  # no capacitance where the coil itself is tuned
+            points.append((float(frequency), float(own) if isinstance(own, (int, float)) else None, words))
     return points
 
 
-def _coil(tank: _Tank, band: BandFigures) -> None:
+def _at_end(band: BandFigures, frequency: float) -> tuple[float, float]:
+    """Return inductance and self-capacitance of a band's coil where it is tuned to its low end, or else. [H, F]"""
+    if frequency != band.extra.get("tuned_low_hz"):
+        return band.inductance, band.self_capacitance
+    inductance, own = band.extra["inductance_low_h"], band.extra.get("self_capacitance_low_f", band.self_capacitance)
+    assert isinstance(inductance, float) and isinstance(own, float)
+    return inductance, own
+
+
+def _coil(tank: _Tank, band: BandFigures, inductance: float) -> None:
     middle = tank.new_node()
     tap = "" if band.tap_turns is None else f", tapped at turn {band.tap_turns}"
     if band.coil_q is None:
         tank.lines.append(f"* loss of {band.coil}{tap} is unknown: none is taken, so the peak is too high")
-        tank.lines.append(f"L{tank.node} {tank.node} 0 {band.inductance!r}")
+        tank.lines.append(f"L{tank.node} {tank.node} 0 {inductance!r}")
         return
-    resistance = 2 * math.pi * tank.expected * band.inductance / band.coil_q
+    resistance = 2 * math.pi * tank.expected * inductance / band.coil_q
     tank.lines.append(f"* {band.coil}{tap}, Q {band.coil_q:.4g}")
-    tank.lines.append(f"L{tank.node} {tank.node} {middle} {band.inductance!r}")
+    tank.lines.append(f"L{tank.node} {tank.node} {middle} {inductance!r}")
     tank.lines.append(f"RL{tank.node} {middle} 0 {resistance!r}")
 
 

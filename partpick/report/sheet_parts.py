@@ -186,9 +186,11 @@ def _test_points(coil: CoilFigures, bands: Sequence[BandFigures]) -> list[tuple[
     own = [band for band in bands if band.coil == coil.reference]
     points: dict[float, float] = {}
     for band in (min(own, key=_frequency), max(own, key=_frequency)):
-        wanted = 1 / ((2 * math.pi * _frequency(band)) ** 2 * band.inductance)
+        # a coil that is tuned is looked at by itself
+        inductance = coil.inductance if "setting_unit" in band.extra else band.inductance
+        wanted = 1 / ((2 * math.pi * _frequency(band)) ** 2 * inductance)
         nearest = min(TEST_CAPACITORS, key=lambda value: abs(math.log(value / wanted)))
-        points.setdefault(nearest, band.inductance)
+        points.setdefault(nearest, inductance)
     return list(points.items())
 
 

@@ -149,7 +149,7 @@ class ColumnSource:
         loss = np.where(p.swept[None, :], worse, p.coil_loss)
         error = np.minimum(p.error_limit, 0.999)[None, :]
         most = np.where(p.swept[None, :], p.most_at_high_end, p.wanted / (1 - error) ** 2)
-        strays = p.self_capacitance[:, None] + p.stray[None, :]
+        strays = p.strays()
         return quality_class(loss, p.q_enough[None, :]), stray_class(strays / most), p.reactance_class.copy()
 
     def columns(self, coil: int, band: int, parts: int, lead: float | None = None) -> Columns:

@@ -63,6 +63,10 @@ class Table:
         self.value = rows.value[self._order]
         self.parts = rows.species.shape[1]
 
+    def acting_as(self, values: Floats) -> Floats:
+        """Return every network's capacitance with other capacitances of the species, in the order of `value`. [F]"""
+        return network_values(values[self._rows.species], self._rows.shape)[self._order]
+
     def any_inside(self, low: Floats, high: Floats) -> NDArray[np.bool_]:
         """Whether some network lies in each closed interval [low, high]."""
         if len(self.value) == 0:

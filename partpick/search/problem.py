@@ -89,6 +89,9 @@ class Problem:
     coil_loss_low: Floats = field(default_factory=_unset)  # (J, B) 1/Q
     species_low: Floats = field(default_factory=_unset)  # (B, n) F
     part_loss_low: Floats = field(default_factory=_unset)  # (B, P) 1/Q
+    # an element that moves inductance (`moved`): what it adds to the self-capacitance at both ends, (J, B) F
+    moved_own_low: Floats = field(default_factory=_unset)
+    moved_own_high: Floats = field(default_factory=_unset)
     margin: float = 0.0  # coverage beyond each end, fraction of f
     excess_limit: float = float("inf")
     # alignment: whether each band can be brought right whatever the parts are within tolerance
@@ -188,10 +191,21 @@ class Problem:
         """Whether any limit ties the bands together (stock is tested on each answer)."""
         return min(self.parts_limit, self.values_limit, self.price_limit) < NEVER
 
-    def fixed_capacitance(self) -> Floats:
+    @property
+    def moved(self) -> Bools:
+        """Which bands are swept by an element that moves inductance: no capacitance is tuned, (B,)."""
+        return np.asarray(self.swept & (self.tuning_high <= 0))
+
+    def strays(self, *, low_end: bool = False) -> Floats:
+        """Return strays and self-capacitance at each band, or at its lower end, (J, B). [F]"""
+        own = self.moved_own_low if low_end else self.moved_own_high
+        both = self.self_capacitance[:, None] + self.stray[None, :]
+        return both + own if own.size else both
+
+    def fixed_capacitance(self, *, low_end: bool = False) -> Floats:
         """Return strays, self-capacitance and middle of the trimmer, (J, B). [F]"""
         middle = (self.trimmer_low + self.trimmer_high) / 2
-        return self.self_capacitance[:, None] + (self.stray + middle)[None, :]
+        return self.strays(low_end=low_end) + middle[None, :]
 
     def windows(self, parts: int) -> tuple[Floats, Floats]:
         """Return the closed interval of network capacitance inside the error and share limits, (J, B).

@@ -1,4 +1,7 @@
-"""Columns of swept bands: every series padder, or none, with every parallel network that covers."""
+"""Columns of swept bands: every series padder, or none, with every parallel network that covers.
+
+An element that moves inductance has no capacitance, so that nothing can stand in series with it.
+"""
 
 from __future__ import annotations
 
@@ -51,7 +54,8 @@ class SweptColumns:
         self.valid = valid
         self.grades = grades
         self.gain, self.gain_low = gain
-        self.fixed = problem.fixed_capacitance()
+        self.fixed, self.fixed_low = problem.fixed_capacitance(), problem.fixed_capacitance(low_end=True)
+        self.strays = problem.strays()
         self.most, self.need = problem.most_at_high_end, problem.least_at_low_end
         self.inductance_high = problem.inductance_high
         self.padders = {b: self._padders(b) for b in np.flatnonzero(problem.swept).tolist()}
@@ -82,7 +86,7 @@ class SweptColumns:
         lower, upper = self._intervals(coil, band, parts, excess)
         alone = len(self.valid[band])
         blocks = [self._block(coil, band, parts, np.array([alone]), lower, upper)]
-        if parts:
+        if parts and not p.moved[band]:
             fits = np.flatnonzero((lower <= upper)[:alone] & (upper >= 0)[:alone])
             blocks.append(self._block(coil, band, parts - 1, fits, lower, upper))
         columns = Columns.join(blocks)
@@ -91,11 +95,12 @@ class SweptColumns:
     def _intervals(self, coil: int, band: int, parts: int, excess: float | None) -> tuple[Floats, Floats]:
         """Return the interval of the network for each padder, wide enough for rounding and inductance. [F]"""
         p, padders, fixed = self.problem, self.padders[band], self.fixed[coil, band]
+        fixed_low = self.fixed_low[coil, band]
         low, high, margin = p.low_end[band], p.frequency[band], p.margin
         need, most = self.need[coil, band], self.most[coil, band]
         least_high, most_low = 0.0, np.inf
         if parts:
-            least_high = (p.self_capacitance[coil] + p.stray[band]) / p.share
+            least_high = self.strays[coil, band] / p.share
         limit = p.excess_limit if excess is None else min(excess, p.excess_limit)
         if np.isfinite(limit):
             span = (high - low) * limit
@@ -103,12 +108,12 @@ class SweptColumns:
             if low > span:
                 most_low = need * (low * (1 - margin) / (low - span)) ** 2
         alike = p.lead_inductance == 0 and p.species_low is p.species
-        lower = np.maximum(need - padders.at_low_end, least_high - padders.at_high_end) - fixed
-        upper = most - padders.at_high_end
+        lower = np.maximum(need - padders.at_low_end - fixed_low, least_high - padders.at_high_end - fixed)
+        upper = most - padders.at_high_end - fixed
         if alike:  # else the network acts less at the low end; `_figures` tells
-            upper = np.minimum(upper, most_low - padders.at_low_end)
+            upper = np.minimum(upper, most_low - padders.at_low_end - fixed_low)
         grain = 3 * _GRAIN * (need + most)
-        lower, upper = lower - grain, upper - fixed + grain
+        lower, upper = lower - grain, upper + grain
         leads = (2 * np.pi * high) ** 2 * p.lead_inductance
         lower, upper = (side / (1 + leads * np.maximum(side, 0.0)) for side in (lower, upper))
         return lower, upper
@@ -136,7 +141,7 @@ class SweptColumns:
         span = p.frequency[band] - p.low_end[band]
         worse = np.maximum(p.low_end[band] - low_end.frequency, high_end.frequency - p.frequency[band])
         excess = worse / span
-        strays = p.self_capacitance[coil] + p.stray[band]
+        strays = self.strays[coil, band]
         keep = low_end.total >= self.need[coil, band] * (1 - _GRAIN)
         keep &= high_end.total <= self.most[coil, band] * (1 + _GRAIN)
         keep &= excess <= p.excess_limit * (1 + _GRAIN)
@@ -191,14 +196,15 @@ class SweptColumns:
 
     def _ends(self, coil: int, band: int, rows: Rows, across: Species, padder: Ints) -> tuple[_End, _End]:
         """Return what is in circuit at the low end and at the high end."""
-        p, padders, fixed = self.problem, self.padders[band], float(self.fixed[coil, band])
+        p, padders = self.problem, self.padders[band]
+        fixed_low, fixed = float(self.fixed_low[coil, band]), float(self.fixed[coil, band])
         high = p.behind_leads(rows.value, band)
         own = rows.value
         if p.species_low is not p.species:
             own = network_values(p.species_low[band][across], rows.shape)
         low = p.behind_leads(own, band, low_end=True)
         return (
-            _End(padders.at_low_end[padder], low, fixed, float(p.inductance_low[coil, band])),
+            _End(padders.at_low_end[padder], low, fixed_low, float(p.inductance_low[coil, band])),
             _End(padders.at_high_end[padder], high, fixed, float(self.inductance_high[coil, band])),
         )
 
@@ -249,7 +255,7 @@ class SweptColumns:
     ) -> tuple[Floats, Floats]:
         """Return df/f per kelvin at the high end, nominal (signed) and spread (size), (m,) each. [1/K]"""
         p = self.problem
-        strays = p.self_capacitance[coil] + p.stray[band]
+        strays = self.strays[coil, band]
         middle = (p.trimmer_low[band] + p.trimmer_high[band]) / 2
         others = (strays * p.stray_tempco + middle * p.trimmer_tempco[band]) / end.total
         capacitance = (weights[0] * p.part_tempco[chosen]).sum(axis=1) + others

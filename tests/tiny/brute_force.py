@@ -156,6 +156,8 @@ def swept_columns(problem: Problem, coil: int, band: int):
     """Return every series padder, or none, with every network that covers a swept band."""
     of_part = {part: s for s, options in enumerate(problem.options) for part in options}
     padders = [None, *(p for p in of_part if math.isfinite(problem.species[band][of_part[p]]))]
+    if problem.tuning_high[band] == 0:  # the coil is tuned: there is nothing to be in series with
+        padders = [None]
     found = []
     for padder in padders:
         taken = 0 if padder is None else 1
@@ -174,21 +176,23 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
     """Return the figures of one choice for a swept band, None where a limit rules it out."""
     asked_low, asked_high, margin = problem.low_end[band], problem.frequency[band], problem.margin
     middle = (problem.trimmer_low[band] + problem.trimmer_high[band]) / 2
-    strays = problem.self_capacitance[coil] + problem.stray[band]
+    further = problem.moved_own_low, problem.moved_own_high
+    own = [problem.self_capacitance[coil] + (each[coil, band] if each.size else 0.0) for each in further]
+    strays_at = [each + problem.stray[band] for each in own]
     parts = across if padder is None else (*across, padder)
     if any(count > problem.part_stock[p] for p, count in Counter(parts).items()):
         return None
     inductance_high = 1 / ((2 * math.pi * asked_high) ** 2 * problem.wanted[coil, band])
     ends = (
-        (problem.tuning_high, problem.species_low, problem.inductance_low[coil, band], asked_low),
-        (problem.tuning_low, problem.species, inductance_high, asked_high),
+        (problem.tuning_high, problem.species_low, problem.inductance_low[coil, band], asked_low, strays_at[0]),
+        (problem.tuning_low, problem.species, inductance_high, asked_high, strays_at[1]),
     )
     losses = (
         (problem.coil_loss_low, problem.part_loss_low),
         (problem.coil_loss, problem.part_loss),
     )
     tuned_to, loss = [], 0.0
-    for (element, species, inductance, frequency), (coil_loss, part_loss) in zip(ends, losses, strict=True):
+    for (element, species, inductance, frequency, strays), (coil_loss, part_loss) in zip(ends, losses, strict=True):
         c = [species[band][of_part[p]] for p in across]
         raw = value(shape, c) if c else 0.0
         net = acting(problem, raw, frequency)
@@ -203,7 +207,7 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
         share = [(p, w * net / total) for p, w in zip(across, slopes, strict=True)]
         if padder is not None:
             share.append((padder, tuned / float(problem.part_value[padder]) * tuned / total))
-        of_element = tuned / t * tuned / total
+        of_element = tuned / t * tuned / total if t else 0.0
         own = coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
         own += of_element * problem.tuning_loss[band] + sum(x * part_loss[band][p] for p, x in share)
         loss = math.nan if math.isnan(own) or math.isnan(loss) else max(loss, own)

@@ -93,6 +93,40 @@ def acting(values: np.ndarray, leads: float, frequency: np.ndarray) -> np.ndarra
     return values / (1 - (2 * np.pi * frequency[:, None]) ** 2 * leads * values)
 
 
+def random_moved_problem(seed: int, *, bands: int, moved: int, **shape: object) -> Problem:
+    """Return a problem whose first `moved` bands are swept by an element that moves inductance, by the seed alone.
+
+    Both ends of the inductance and of the self-capacitance are drawn for each coil; no tuned capacitance.
+    """
+    plain = random_swept_problem(seed, bands=bands, swept=moved, **shape)
+    rng = np.random.default_rng(seed + 2 * 10**6)
+    which = plain.swept
+    coils = plain.coils
+    own_low, own_high = (np.where(which, rng.choice([0.0, 0.0, 2e-12, -0.6e-12], (coils, bands)), 0.0) for _ in "lh")
+    wanted, inductance_low = plain.wanted.copy(), plain.inductance_low.copy()
+    low_end = plain.low_end.copy()
+    for band in np.flatnonzero(which):
+        low_end[band] = plain.frequency[band] / rng.uniform(1.05, 2.5)
+        for coil in range(coils):
+            across = rng.choice(plain.species[band]) * rng.integers(0, 3) + plain.fixed_capacitance()[coil, band]
+            ends = [across + own[coil, band] for own in (own_low, own_high)]
+            wanted[coil, band] = ends[1] * (1 + plain.margin) ** 2 * rng.uniform(1.0, 1.15)
+            reach = (2 * np.pi * low_end[band] * (1 - plain.margin)) ** 2 * ends[0]
+            inductance_low[coil, band] = rng.uniform(1.0, 1.15) / reach
+    return replace(
+        plain,
+        wanted=wanted,
+        inductance_low=inductance_low,
+        low_end=low_end,
+        tuning_low=np.zeros(bands),
+        tuning_high=np.zeros(bands),
+        tuning_loss=np.zeros(bands),
+        tuning_tempco=np.zeros(bands),
+        moved_own_low=own_low,
+        moved_own_high=own_high,
+    )
+
+
 def random_swept_problem(seed: int, *, bands: int, swept: int, **shape: object) -> Problem:
     """Return a problem whose first `swept` bands are swept by one variable capacitor, by the seed alone.
 
