@@ -211,7 +211,8 @@ class ColumnSource:
             keep &= np.abs(nominal) + spread <= p.drift_limit * (1 + 1e-12)
         keep &= p.trimmer_span[band] <= p.trim_share[band] * total * (1 + 1e-12)
         if p.alignable > 0 and p.aligned[band]:
-            keep &= alignable(p, coil, band, values, chosen, rows.shape)
+            left = np.flatnonzero(keep)
+            keep[left] = alignable(p, coil, band, values[left], chosen[left], rows.shape[left])
         whole = np.zeros(len(chosen), dtype=np.int64)
         columns = Columns(
             coil=whole + coil,
