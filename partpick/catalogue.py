@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from difflib import get_close_matches
 from pathlib import Path
 from typing import Any
 
@@ -150,6 +149,8 @@ def _wanted_grades(parts: Sequence[Capacitor], grades: Sequence[str]) -> set[str
     present = {part.grade.casefold(): part.grade for part in parts if part.grade}
     for grade in grades:
         if grade.casefold() not in present:
+            from difflib import get_close_matches  # needed for a misspelt grade alone
+
             near = get_close_matches(grade.casefold(), present, n=1)
             hint = f"; {present[near[0]]}?" if near else ""
             there = ", ".join(present.values()) or "none"

@@ -4,16 +4,13 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Callable, Iterable, Iterator
-from dataclasses import replace
-from typing import TypeVar
 
 from partpick.catalogue_table import Row
 from partpick.errors import CatalogueError
-from partpick.parts import Capacitor, Inductor
+from partpick.parts import P, labelled_copy
 
 MOST_PARTS = 200_000  # of one file, families written out
 
-P = TypeVar("P", Capacitor, Inductor)
 Words = Callable[[P], tuple[str, ...]]  # of a label: value, kind, then what may be left out
 
 
@@ -53,7 +50,7 @@ def labelled(rows: Iterable[Row], read: Callable[[Row], Iterator[P]], words: Wor
         single = row.has("value")
         for part in read(row):
             if part.label:
-                part = part if single else replace(part, label=f"{words(part)[0]} {part.label}")
+                part = part if single else labelled_copy(part, f"{words(part)[0]} {part.label}")
                 only_once(first, part.label, row, "label")
             parts.append(part)
             if len(parts) > MOST_PARTS:
@@ -61,7 +58,7 @@ def labelled(rows: Iterable[Row], read: Callable[[Row], Iterator[P]], words: Wor
                     f"{row.file}, row {row.number}: more than {MOST_PARTS} parts, the most that is read"
                 )
     made = _made_labels([words(part) for part in parts if not part.label], set(first))
-    return tuple(part if part.label else replace(part, label=next(made)) for part in parts)
+    return tuple(part if part.label else labelled_copy(part, next(made)) for part in parts)
 
 
 def _made_labels(words: list[tuple[str, ...]], taken: set[str]) -> Iterator[str]:

@@ -318,14 +318,9 @@ def _swept_figures(
     }
 
 
-def _effective(parts: list[Capacitor], frequency: float) -> list[float]:
+def _effective(parts: list[Capacitor], frequency: float) -> Floats:
     """Return how each capacitor acts at a frequency; inf where it is near its own resonance. [F]"""
-    acting = []
-    for part in parts:
-        inductance = part.series_inductance or 0.0
-        near = (2 * np.pi * frequency) ** 2 * inductance * part.value
-        if near > NEAR_OWN_RESONANCE:
-            acting.append(float("inf"))
-        else:
-            acting.append(float(effective_capacitance(part.value, inductance, frequency)))
-    return acting
+    value = np.array([part.value for part in parts])
+    inductance = np.array([part.series_inductance or 0.0 for part in parts])
+    near = (2 * np.pi * frequency) ** 2 * inductance * value > NEAR_OWN_RESONANCE
+    return np.where(near, np.inf, effective_capacitance(value, inductance, frequency))

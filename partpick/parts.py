@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from fractions import Fraction
+from typing import TypeVar
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -51,6 +52,9 @@ class Inductor:
     label: str
     source: str
     notes: tuple[str, ...] = ()
+
+
+P = TypeVar("P", Capacitor, Inductor)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -114,6 +118,13 @@ class Core:
     unit_price: float | None
     source: str
     notes: tuple[str, ...] = ()
+
+
+def labelled_copy(part: P, label: str) -> P:
+    """Return the same part under a label; hundreds are made at each start, so that nothing is checked again."""
+    made: P = object.__new__(type(part))
+    made.__dict__.update(part.__dict__, label=label)
+    return made
 
 
 @dataclass(frozen=True, kw_only=True)

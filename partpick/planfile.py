@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import re
 import sys
-import tomllib
 from collections.abc import Mapping
 from typing import Any, BinaryIO
 
@@ -94,6 +93,8 @@ def _read_bytes(path: str, source: str, stdin: BinaryIO | None) -> bytes:
 
 
 def _parse(data: bytes, source: str) -> dict[str, Any]:
+    import tomllib  # a single tank has no plan file
+
     try:
         text = data.decode("utf-8-sig")
         if any(line.count(".") > _MOST_DOTS for line in text.splitlines()):

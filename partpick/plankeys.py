@@ -7,7 +7,6 @@ itself live in `request.py`; only keys of the further tables carry theirs here.
 
 from __future__ import annotations
 
-import difflib
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 
@@ -60,6 +59,8 @@ def nearest(name: str, known: Iterable[str]) -> str:
     """Return the known name most like `name`."""
     names = list(known)
     folded = {each.casefold(): each for each in reversed(names)}
+    import difflib  # needed for a misspelt name alone
+
     return folded[difflib.get_close_matches(name[:80].casefold(), list(folded), n=1, cutoff=0.0)[0]]
 
 

@@ -10,6 +10,7 @@ from __future__ import annotations
 from bisect import bisect_left
 from fractions import Fraction
 from functools import cache
+from math import ceil, floor
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
@@ -79,7 +80,8 @@ def series_values(name: str, low: float | Fraction, high: float | Fraction) -> t
     values: list[Fraction] = []
     for decade in range(_decade_below(bottom), _decade_below(top) + 1):
         scale = Fraction(10) ** (decade - 2)
-        values.extend(figures * scale for figures in SERIES[name] if bottom <= figures * scale <= top)
+        least, most = ceil(bottom / scale), floor(top / scale)  # the figures are whole numbers
+        values.extend(figures * scale for figures in SERIES[name] if least <= figures <= most)
     return tuple(values)
 
 

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 from fractions import Fraction
+from functools import lru_cache
 
 from partpick.errors import QuantityError
 from partpick.units import (
@@ -188,6 +189,16 @@ def _tolerance_letter(text: str, value: Fraction, kind: Kind) -> str | None:
 
 def read_exact(given: object, kind: Kind, zero: bool = False) -> Fraction:
     """Return the value in SI, exact, after all checks of the kind."""
+    return _read_text(given, kind, zero) if isinstance(given, str) else _read_given(given, kind, zero)
+
+
+@lru_cache(maxsize=4096)
+def _read_text(given: str, kind: Kind, zero: bool) -> Fraction:
+    """Return the value of a text: files of parts hold the same few texts over and over."""
+    return _read_given(given, kind, zero)
+
+
+def _read_given(given: object, kind: Kind, zero: bool) -> Fraction:
     wanted = f"{kind.noun} such as {kind.example}"
     text = text_of(given, wanted)
     code = split_code(text, kind)

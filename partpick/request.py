@@ -70,7 +70,7 @@ class MeasuredDips:
 
 # A wound coil with less inductance than three times that of one centimetre of lead (8 nH) does not measure as
 # computed: its leads decide. Common practice, no source.
-LEAST_WOUND = 3 * 8e-9  # H
+LEAST_WOUND = 24e-9  # H
 
 
 @dataclass(frozen=True, kw_only=True)

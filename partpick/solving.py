@@ -9,10 +9,8 @@ from partpick.audit import audit
 from partpick.built.outlook import outlook, with_outlook
 from partpick.candidates import LIMIT_ROUNDING, Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
-from partpick.cover import cover, span_of, with_bands
 from partpick.errors import RequestError
 from partpick.layouts import check_layout, design_of, search_layout
-from partpick.nothing_fits import explain
 from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet
@@ -23,11 +21,7 @@ from partpick.search.bands import Found, pieces_of_bound
 from partpick.search.choose import ORDERS, Choice
 from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
-from partpick.search.tracking import FINE
-from partpick.search.tracking import ORDERS as RECEIVER_ORDERS
-from partpick.stress import with_stress
 from partpick.tapping import column_source
-from partpick.tracking_figures import with_tracking
 from partpick.trimming import problem_with_trimmers, trimmers_on_offer, with_chosen
 
 LOW_FREQUENCY = 1e3  # Hz
@@ -61,7 +55,9 @@ def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Mon
 
 def _solved(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) -> Result:
     """Return the result of a request, with a word on why where nothing fits."""
-    if span_of(request) is not None:
+    if dict(request.extra).get("cover"):
+        from partpick.cover import cover, with_bands  # few plans ask for it: imported where used
+
         _refuse_unplanned(with_bands(request, 1))
         return cover(request, catalogue, lambda made: _planned(made, catalogue, top, monitor), _again, monitor)
     _refuse_unplanned(request)
@@ -70,6 +66,8 @@ def _solved(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) 
     result = _planned(request, catalogue, top, monitor)
     if result.candidates or result.proof.stopped_by is not None:
         return result
+    from partpick.nothing_fits import explain  # likewise
+
     nearest, ruled_out = explain(request, catalogue, _again, monitor)
     return replace(result, nearest_miss=nearest, ruled_out_by=ruled_out)
 
@@ -192,9 +190,18 @@ def _result(
     )
 
 
+def _orders(request: Request) -> dict[str, tuple[str, ...]]:
+    """Return the steps of each order."""
+    if not is_receiver(request):
+        return ORDERS
+    from partpick.search import tracking  # few plans ask for it: imported where used
+
+    return tracking.ORDERS
+
+
 def _order(request: Request, problem: Problem, choice: Choice) -> tuple[tuple[str, object], ...]:
     """Return the steps of the order by name with a choice's figures, all but the last, which is its content."""
-    orders = RECEIVER_ORDERS if is_receiver(request) else ORDERS
+    orders = _orders(request)
     return tuple(zip(orders[problem.by], choice.key, strict=False))
 
 
@@ -224,9 +231,16 @@ def _candidate(
     worst_excess = max(float(columns.excess[0]) for columns in choice.columns)
     recheck(candidate, worst_error, worst_excess)
     if is_receiver(request):
-        shares = dict(zip(RECEIVER_ORDERS[request.by], choice.key, strict=False))["fine_tracking"]
+        from partpick.search.tracking import FINE  # likewise
+        from partpick.tracking_figures import with_tracking
+
+        shares = dict(zip(_orders(request)[request.by], choice.key, strict=False))["fine_tracking"]
         candidate = with_tracking(request, candidate, FINE * float(str(shares)))
     looked_at = with_outlook(candidate, outlook(request, coils, capacitors, design, candidate, first=first, pool=pool))
+    if not dict(request.extra).get("drive"):
+        return looked_at
+    from partpick.stress import with_stress  # likewise
+
     return with_stress(request, looked_at)
 
 

@@ -30,7 +30,7 @@ def mantissa(value: Fraction) -> Fraction:
     return figures
 
 
-@dataclass(frozen=True, kw_only=True)
+@dataclass(frozen=True, kw_only=True, eq=False)
 class Kind:
     """One kind of quantity: how its unit is written and what range makes sense."""
 

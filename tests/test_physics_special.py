@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 from scipy.special import ellipe, ellipkm1, jve
 
-from partpick.physics.special import bessel_quotients, elliptic_integrals
+from partpick.physics.special import bessel_quotients, distinct_values, elliptic_integrals
 
 
 def test_elliptic_integrals_equal_those_of_scipy() -> None:
@@ -40,3 +42,11 @@ def test_bessel_quotients_equal_those_of_scipy(most: float) -> None:
 def test_bessel_quotients_at_zero_are_zero() -> None:
     """J1 and J2 fall with z and z squared."""
     assert bessel_quotients(0.0) == (0.0, 0.0)
+
+
+@given(st.lists(st.sampled_from([0.1, 0.2, 3.0, float("inf"), 0.0]), max_size=30))
+def test_distinct_values_put_together_are_the_values(values: list[float]) -> None:
+    """Rising, each once, and every value in its place, whatever their order."""
+    distinct, where = distinct_values(values)
+    assert list(distinct) == sorted(set(values))
+    assert list(distinct[where]) == values

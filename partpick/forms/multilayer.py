@@ -58,8 +58,10 @@ def multilayer_block(catalogue: Catalogue, frequency: Floats, units: int, screen
     layout, turns = layouts.coils()
     every = _section(formers, catalogue.wires, layouts, layout, turns)
     kept = screen.kept(every.inductance, every.inductance, every.self_capacitance, eased=True)
-    layout, turns = layout[kept], turns[kept]
-    coil = _section(formers, catalogue.wires, layouts, layout, turns)
+    coil = every
+    if len(kept) < len(turns):
+        layout, turns = layout[kept], turns[kept]
+        coil = _section(formers, catalogue.wires, layouts, layout, turns)
     support, wire, sizes, length = layouts.support[layout], layouts.wire[layout], coil.wire, coil.length
     inductance = at_every(coil.inductance, frequency)
     self_capacitance = coil.self_capacitance

@@ -51,7 +51,9 @@ def pot_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Scree
     layout, turns = layouts.coils()
     every = _Filled(cores, catalogue.wires, layouts, layout, turns)
     kept = screen.kept(every.low_frequency, every.low_frequency, every.self_capacitance)
-    coil = _Filled(cores, catalogue.wires, layouts, layout[kept], turns[kept])
+    coil = every
+    if len(kept) < len(turns):
+        coil = _Filled(cores, catalogue.wires, layouts, layout[kept], turns[kept])
     turns, support, wire, sizes = coil.turns, coil.support, coil.wire, coil.sizes
     outer, height, self_capacitance = coil.outer, coil.height, coil.self_capacitance
     wire_length = layered_wire_length(turns, coil.window.inner_diameter, coil.depth)

@@ -12,7 +12,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from partpick.physics.special import bessel_quotients
+from partpick.physics.special import bessel_quotients, distinct_values
 
 FloatArray = NDArray[np.float64]
 
@@ -193,8 +193,8 @@ def _per_distinct(function: Callable[[FloatArray], FloatArray], argument: ArrayL
     values = np.asarray(argument, float)
     if values.size < 2:
         return function(np.atleast_1d(values)).reshape(values.shape)[()]
-    distinct, where = np.unique(values, return_inverse=True)
-    return function(distinct)[where.reshape(values.shape)]
+    distinct, where = distinct_values(values)
+    return function(distinct)[where]
 
 
 def _bessel_quotient(x: FloatArray) -> NDArray[np.complex128]:

@@ -13,7 +13,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from partpick.physics.filaments import loop_inductance, mutual_inductance
 from partpick.physics.skin import MU_0
-from partpick.physics.special import bessel_quotients
+from partpick.physics.special import bessel_quotients, distinct_values
 
 FloatArray = NDArray[np.float64]
 
@@ -208,9 +208,9 @@ def reaction_ratio(a_over_delta: ArrayLike) -> FloatArray:
     alternating field; from memory).
     """
     values = np.asarray(a_over_delta, float)
-    distinct, where = np.unique(values, return_inverse=True)  # thousands of windings share a few wires
+    distinct, where = distinct_values(values)  # thousands of windings share a few wires
     z = (1.0 - 1.0j) * np.clip(np.nan_to_num(distinct), 0.0, _ASYMPTOTIC_ABOVE)
     thick = np.maximum(distinct, 1.0)
     first, second = bessel_quotients(z)
     ratio = np.where(distinct > _ASYMPTOTIC_ABOVE, 1.0 - 1.0 / thick, np.real(-second * first))
-    return np.where(distinct >= 0.0, ratio, np.nan)[where.reshape(values.shape)][()]
+    return np.where(distinct >= 0.0, ratio, np.nan)[where][()]

@@ -11,8 +11,43 @@ from numpy.typing import ArrayLike, NDArray
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 
+IntArray = NDArray[np.intp]
+
 _CLOSE = 1e-9  # of the two means; one step more and they are alike to the last digit
 _EXTRA_ORDERS = 30  # of the Bessel functions above |z|, where they fall faster than any power
+
+
+def distinct_values(values: ArrayLike) -> tuple[FloatArray, IntArray]:
+    """Return the different values of an array whose neighbours are mostly equal, such as the wires of windings.
+
+    Parameters
+    ----------
+    values : array
+        Any shape. [any]
+
+    Returns
+    -------
+    distinct : (m,) array
+        Rising, nan last. [any]
+    where : array of int
+        The place of each value among them, in the shape of `values`. [-]
+
+    Notes
+    -----
+    Exact, any values; runs of equal neighbours are sorted as one, which is what makes it fast.
+
+    References
+    ----------
+    Definition; numpy.unique does the same value by value.
+    """
+    whole = np.asarray(values, float)
+    flat = whole.ravel()
+    begins = np.ones(flat.shape, dtype=np.bool_)
+    begins[1:] = flat[1:] != flat[:-1]
+    starts = np.flatnonzero(begins)
+    distinct, place = np.unique(flat[starts], return_inverse=True)
+    where = np.repeat(place.ravel(), np.diff(np.append(starts, len(flat))))
+    return distinct, where.reshape(whole.shape)
 
 
 def elliptic_integrals(complement: ArrayLike) -> tuple[FloatArray, FloatArray]:

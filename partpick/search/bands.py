@@ -267,7 +267,7 @@ def _by_error(
     """Yield coils and sets of coils by rising least error (or excess) with at most `cap` pieces."""
     alone = bounds.staircase(cap - 1)
     order = np.argsort(alone, kind="stable")
-    singles = [(float(alone[j]), (int(j),)) for j in order[: np.count_nonzero(alone < below)]]
+    singles = ((float(alone[j]), (int(j),)) for j in order[: np.count_nonzero(alone < below)])
     sets = (group.by_error(cap - group.size, below) for group in together)
     return merge(singles, *sets, key=_bound_of)
 

@@ -7,6 +7,7 @@ so that no choice ever ranks before its bound.
 from __future__ import annotations
 
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 
@@ -160,31 +161,39 @@ def _whole(rule: object, error: Floats) -> Ints:
     return np.where(finite, rule(np.where(finite, error, 0.0)), OUT_OF_REACH).astype(np.int64)
 
 
-def pack(figures: dict[str, Ints], fields: tuple[str, ...], *, after_full: int = 0) -> Ints:
-    """Return the leading steps of the order in one whole number each.
+def pack(figures: dict[str, Ints], fields: tuple[str, ...]) -> Ints:
+    """Return the leading steps of the order in one whole number each, none above what it stands for.
 
-    A figure too wide for its field fills it; what follows it then says nothing, so it is set to the
-    least for a bound (`after_full` 0) and to the most for a choice that was made (1).
+    A figure too wide for its field fills it; what follows it then says nothing, so it is set to the least.
     """
     packed = np.zeros_like(next(iter(figures.values())))
     full = np.zeros(packed.shape, dtype=np.bool_)
     for name in fields:
         width = _BITS[name]
         most = (1 << width) - 1
-        value = np.where(full, after_full * most, np.clip(figures[name], 0, most))
+        value = np.where(full, 0, np.clip(figures[name], 0, most))
         full = full | (figures[name] >= most)
         packed = (packed << width) | value
     return packed
 
 
 def packed_key(choice: Choice, problem: Problem) -> int:
-    """Return the same whole number for a choice that was made: comparable with any bound. [-]"""
-    figures: dict[str, Ints] = {}
+    """Return the same whole number for a choice that was made: comparable with any bound. [-]
+
+    What follows a figure too wide for its field is set to the most. Plain numbers: it is asked for each choice.
+    """
+    figures: dict[str, int] = {}
     for name, value in zip(ORDERS[problem.by], choice.key, strict=False):
         if isinstance(value, tuple):
-            figures |= {n: np.array([v]) for n, v in zip(("forms", "wires", "volume"), value, strict=True)}
-        else:
-            figures[name] = np.array([value])
-    worst = max(int(columns.fine_excess[0]) for columns in choice.columns)
-    figures["coarse_excess"] = np.array([worst // _COARSE])
-    return int(pack(figures, packed_fields(problem, problem.by), after_full=1)[0])
+            effort: tuple[Any, ...] = value
+            figures |= {part: int(v) for part, v in zip(("forms", "wires", "volume"), effort, strict=True)}
+        elif isinstance(value, (int, np.integer)):
+            figures[name] = int(value)
+    figures["coarse_excess"] = max(int(columns.fine_excess[0]) for columns in choice.columns) // _COARSE
+    packed, full = 0, False
+    for name in packed_fields(problem, problem.by):
+        most = (1 << _BITS[name]) - 1
+        figure = figures[name]
+        packed = packed << _BITS[name] | (most if full else min(max(figure, 0), most))
+        full = full or figure >= most
+    return packed

@@ -54,6 +54,8 @@ class Columns:
     @staticmethod
     def join(blocks: list[Columns]) -> Columns:
         """Return all columns of several blocks."""
+        if len(blocks) == 1:
+            return blocks[0]
         names = Columns.__dataclass_fields__
         return Columns(*(np.concatenate([getattr(b, name) for b in blocks]) for name in names))
 

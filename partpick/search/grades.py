@@ -13,6 +13,7 @@ class Grades:
 
     def __init__(self, problem: Problem) -> None:
         self.problem = problem
+        self._figures = self._in_full()
         useful = [self.useful(options) for options in problem.options]
         self._starts = np.concatenate([[0], np.cumsum([len(o) for o in useful])]).astype(np.int64)
         self._flat = np.array([p for o in useful for p in o], dtype=np.int64)
@@ -25,20 +26,24 @@ class Grades:
         for part in sorted(options, key=lambda i: int(p.part_rank[i])):
             if p.part_stock[part] < 1:
                 continue
-            figures = (
-                tuple(np.nan_to_num(p.part_loss[:, part], nan=-1.0)),
-                tuple(np.nan_to_num(p.part_loss_low[:, part], nan=-1.0)),
-                float(np.nan_to_num(p.part_tempco[part], nan=9.0)) if np.isfinite(p.drift_limit) else 0.0,
-                float(p.part_tempco_spread[part]) if np.isfinite(p.drift_limit) else 0.0,
-                int(p.part_price[part]),
-                float(p.part_tolerance[part]) if p.alignable > 0 else 0.0,
-            )
+            figures = self._figures[part]
             if figures in seen:
                 continue
             if p.part_stock[part] >= PLENTY:
                 seen.add(figures)
             kept.append(part)
         return tuple(kept)
+
+    def _in_full(self) -> list[tuple[float, ...]]:
+        """Return every figure of each part that the order or a limit asks for."""
+        p = self.problem
+        figures = [*np.nan_to_num(p.part_loss, nan=-1.0), *np.nan_to_num(p.part_loss_low, nan=-1.0)]
+        figures.append(p.part_price.astype(float))
+        if np.isfinite(p.drift_limit):
+            figures += [np.nan_to_num(p.part_tempco, nan=9.0), p.part_tempco_spread]
+        if p.alignable > 0:
+            figures.append(p.part_tolerance)
+        return [tuple(row) for row in np.stack(figures, axis=1).tolist()]
 
     def expand(self, rows: Rows, *, last_apart: bool = False) -> tuple[Ints, Ints]:
         """Return the row of each choice of grades, (m,), and the parts chosen, (m, k).
