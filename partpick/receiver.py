@@ -8,12 +8,15 @@ from __future__ import annotations
 
 from dataclasses import replace
 from functools import cache
+from typing import TYPE_CHECKING
 
 from partpick.errors import RequestError
 from partpick.physics.tracking import best_tracking, plain_circuit
 from partpick.quantities import format_quantity
 from partpick.request import Band, Request, Tuning
-from partpick.search.tracking import ReceiverBand
+
+if TYPE_CHECKING:
+    from partpick.search.tracking import ReceiverBand
 
 GANGED = ("variable capacitor", "varactor")
 LEAST_SHARE = 0.005  # of the band's lower end: a tracking error that no signal circuit notices; common practice
@@ -70,6 +73,8 @@ def with_oscillators(request: Request) -> Request:
 
 def receiver_bands(request: Request) -> tuple[ReceiverBand, ...]:
     """Return which bands of a request with oscillators belong together, and how far each may be off."""
+    from partpick.search.tracking import ReceiverBand  # imported where a receiver is planned
+
     return tuple(
         ReceiverBand(
             signal=place,

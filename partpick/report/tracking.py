@@ -6,6 +6,7 @@ import csv
 import io
 import json
 import os
+from typing import TYPE_CHECKING
 
 import partpick
 from partpick.errors import RequestError
@@ -14,7 +15,9 @@ from partpick.receiver import is_receiver
 from partpick.report.text import clean, columns, cut, signed_shift, wrapped
 from partpick.request import Request
 from partpick.result import Candidate, Result
-from partpick.tracking_figures import TrackingCurve, tracking_curves
+
+if TYPE_CHECKING:
+    from partpick.tracking_figures import TrackingCurve
 
 TRACKING_FORMAT = 1
 LONGEST_NAME = 14
@@ -101,6 +104,8 @@ def _hertz(value: float) -> str:
 
 
 def _curves(result: Result) -> tuple[TrackingCurve, ...]:
+    from partpick.tracking_figures import tracking_curves  # imported where a receiver is planned
+
     return tracking_curves(result.request, result.candidates[0]) if result.candidates else ()
 
 
