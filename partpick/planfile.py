@@ -213,6 +213,10 @@ def _check_moved(reader: TableReader, request: Request, tuning: Tuning, cover: b
         raise reader.fail("coil.measured", text)
     if request.limits.alignable is not None:
         raise reader.fail("limits.alignable", f"is not planned with a {tuning.kind}, only with tuned capacitances")
+    chosen = [band.trimmer for band in request.bands if band.trimmer is not None and band.trimmer.to_choose]
+    if chosen or (cover and request.trimmer is not None and request.trimmer.to_choose):
+        text = f"to choose one is planned only with tuned capacitances, not with a {tuning.kind}; state low and high"
+        raise reader.fail("trimmer", text)
     coils = request.limits.inductors if cover else min(request.limits.inductors, swept)
     if coils > tuning.sections:
         many = "one coil" if tuning.sections == 1 else f"{tuning.sections} coils"

@@ -263,6 +263,19 @@ def test_a_receiver_says_that_it_does_not_choose() -> None:
         solve(request_from_tables(tables, "bands"), load_catalogue(None))
 
 
+def test_an_element_that_moves_inductance_says_that_no_trimmer_is_chosen() -> None:
+    """What its tolerance does to both ends is not known to the search."""
+    tables = {
+        "trimmer": "choose",
+        "tuning": {
+            "kind": "sliding core", "diameter": "6 mm", "length": "15 mm", "permeability": 20, "travel": "15 mm",
+        },
+        "band": [{"name": "coast", "from": "3.5 MHz", "to": "3.8 MHz"}],
+    }  # fmt: skip
+    with pytest.raises(RequestError, match="state low and high"):
+        request_from_tables(tables, "bands")
+
+
 def test_a_layout_of_shared_capacitors_says_that_it_does_not_choose() -> None:
     """By name, with what would be accepted."""
     tables = {
