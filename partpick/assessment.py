@@ -10,6 +10,7 @@ import math
 from collections.abc import Sequence
 from dataclasses import replace
 
+from partpick.band_switch import closed_at, contacts_of, switch_entry
 from partpick.candidates import Coils, coil_figures, coil_part_line
 from partpick.circuit import Design, Network, Tank, connection_text
 from partpick.errors import InternalError
@@ -18,7 +19,6 @@ from partpick.objective import TRIMMER_Q
 from partpick.parts import Capacitor
 from partpick.physics.resonance import resonance_frequency
 from partpick.quantities import format_quantity
-from partpick.receiver import is_receiver
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 from partpick.search.networks import PARALLEL, SHUNTED
@@ -44,10 +44,12 @@ def assess(
     """
     references = _coil_references(request, design)
     names, lines = _capacitor_lines(request, capacitors, design)
+    contacts = contacts_of(request, design)
     bands = []
     for index in range(len(request.bands)):
         tank = Tank(request=request, coils=coils, capacitors=capacitors, design=design, index=index)
-        bands.append(_band_figures(tank, references[tank.coil], names[index]))
+        closed = closed_at(contacts, index)
+        bands.append(replace(_band_figures(tank, references[tank.coil], names[index]), contacts=closed))
     coil_list, coil_lines = _coil_lines(request, coils, design, references)
     extras = [*_trimmer_lines(request), *_tuning_lines(request, coils, design)]
     parts = (*lines, *coil_lines, *extras)
@@ -70,6 +72,7 @@ def assess(
         coils=coil_list,
         parts=parts,
         warnings=_warnings(request, coils, capacitors, design, bands),
+        extra=switch_entry(request, contacts, bands, coil_list),
     )
 
 
@@ -124,17 +127,6 @@ def _shared_lines(
         bands = [b.name for b, closed in zip(request.bands, design.closed, strict=True) if place in closed]
         lines.append(_capacitor_line(f"C{place + 1}", capacitors[index], tuple(bands)))
     return [tuple(f"C{place + 1}" for place in closed) for closed in design.closed], lines
-
-
-def _contacts(tank: Tank) -> tuple[str, ...]:
-    """Return the switch contacts that close at a band: its own, those of its stack, or one a capacitor."""
-    if tank.design.closed and tank.request.switching == "shared":
-        return tuple(f"S{place + 1}" for place in tank.design.closed[tank.index])
-    if tank.design.closed:
-        higher = [i for i, band in enumerate(tank.request.bands) if band.lowest >= tank.band.lowest]
-        return tuple(f"S{i + 1}" for i in higher)
-    alone = 2 if is_receiver(tank.request) else 1  # a receiver of one band has two circuits and no switch
-    return (f"S{tank.index + 1}",) if len(tank.request.bands) > alone else ()
 
 
 def _capacitor_line(reference: str, part: Capacitor, bands: tuple[str, ...]) -> PartLine:
@@ -251,7 +243,7 @@ def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFig
         trimmer=tank.trimmer if band.trimmer else None,
         coil=reference,
         tap_turns=tank.tap_turns,
-        contacts=_contacts(tank),
+        contacts=(),
         capacitors=names,
         connection=_swept_connection(names, network)
         if swept and tank.coils.moved is None

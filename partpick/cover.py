@@ -8,7 +8,7 @@ from dataclasses import replace
 from partpick.candidates import realisable_coils
 from partpick.nothing_fits import Again, explain
 from partpick.parts import Catalogue
-from partpick.progress import Monitor
+from partpick.progress import Monitor, Unsettled
 from partpick.quantities import format_quantity
 from partpick.request import Band, Request
 from partpick.result import Proof, Result, RuledOut
@@ -122,8 +122,11 @@ def _first_alone(trial: Request, catalogue: Catalogue, again: Again, monitor: Mo
         if monitor.stopped() is not None:
             return None
         monitor.report(f"whether {_range_words(band)}, one of {len(trial.bands)}, can be tuned")
-        if again(_alone(trial, band), catalogue, monitor) is None and monitor.stopped() is None:
-            return band
+        try:
+            if again(_alone(trial, band), catalogue, monitor) is None:
+                return band
+        except Unsettled:
+            continue
     return None
 
 

@@ -50,6 +50,17 @@ def check_layout(request: Request) -> None:
             f'switching = "{layout}": limits.alignable is read and understood, but this version plans it only with '
             'switching = "separate"'
         )
+    if _contacts_unplanned(request):
+        raise RequestError(
+            f'switching = "{layout}": limits.contacts is planned for one coil without taps and bands with at only, or '
+            'with switching = "separate"'
+        )
+
+
+def _contacts_unplanned(request: Request) -> bool:
+    """Whether the number of contacts depends on more than the layout."""
+    varies = request.limits.inductors > 1 or request.coil.taps or any(band.swept for band in request.bands)
+    return request.limits.contacts is not None and varies
 
 
 def search_layout(

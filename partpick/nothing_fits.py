@@ -2,20 +2,25 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 
 from partpick.candidates import realisable_coils
+from partpick.errors import RequestError
+from partpick.layouts import check_layout
 from partpick.parts import Catalogue
-from partpick.progress import Monitor
+from partpick.progress import Monitor, Unsettled
 from partpick.quantities import format_quantity
 from partpick.receiver import is_receiver, oscillators_alone, with_widest_tracking
-from partpick.request import LEAST_WOUND, Request
+from partpick.request import LEAST_WOUND, Band, CoilRules, Request
 from partpick.result import Candidate, RuledOut
 from partpick.tuning_range import beyond_reach
 
 LADDER = (1.1, 1.25, 1.5, 2.0, 3.0, 5.0, 1e6)  # how far Q and drift are eased, step by step, until a plan exists
 LEADS_DECIDE = f"of a wound coil below {format_quantity(LEAST_WOUND, 'H')} the leads decide"
+MOST_COILS = 3  # more together are not looked at one by one
+MORE_IN_A_SET = 3  # capacitors tried beyond the size asked for
 CLOSE_MISS = 5  # times the error limit: up to here a wider error limit is the first thing to think of
 
 Again = Callable[[Request, Catalogue, Monitor], Candidate | None]
@@ -49,25 +54,41 @@ def explain(
         if (alone := beyond_reach(others, realisable_coils(others, catalogue))) is not None:
             return None, alone
     found: list[tuple[Candidate, RuledOut]] = []
+    open_ends: dict[str, None] = {}
     for trial in _trials(request):
         if monitor.stopped() is not None:
-            break
-        if found and found[-1][1].limit == trial.limit:
+            open_ends[trial.limit] = None
+            continue
+        if (found and found[-1][1].limit == trial.limit) or not _is_planned(trial.relaxed):
             continue  # a smaller step was enough
         monitor.report(f"whether a plan exists without the limit {trial.limit}")
-        candidate = again(trial.relaxed, trial.catalogue(catalogue), monitor)
+        try:
+            candidate = again(trial.relaxed, trial.catalogue(catalogue), monitor)
+        except Unsettled:
+            open_ends[trial.limit] = None
+            continue
         if candidate is not None:
             text = f"the limit {trial.limit} rules out every choice; {trial.words(candidate)}"
             found.append((candidate, RuledOut(limit=trial.limit, needed=trial.needed(candidate), text=text)))
-    if not found and monitor.stopped() is not None:
-        text = "which limit rules it out was not found before the search was stopped"
-        return None, RuledOut(limit="unknown", needed=None, text=text)
+    unsettled = tuple(name for name in open_ends if name not in {ruled.limit for _, ruled in found})
+    if not found and unsettled:
+        text = f"which limit rules it out is not known, the search was stopped before: {', '.join(unsettled)}"
+        return None, RuledOut(limit="unknown", needed=None, text=text, unsettled=unsettled)
     if not found:
         text = "no single limit rules it out: two or more together do, or there is no coil for these bands at all"
         return None, RuledOut(limit="several", needed=None, text=text)
     first = _most_helpful(request, [ruled for _, ruled in found])
     nearest, ruled_out = found.pop(first)
-    return nearest, replace(ruled_out, others=tuple(ruled for _, ruled in found))
+    return nearest, replace(ruled_out, others=tuple(ruled for _, ruled in found), unsettled=unsettled)
+
+
+def _is_planned(request: Request) -> bool:
+    """Whether the layout is planned with what a trial allows."""
+    try:
+        check_layout(request)
+    except RequestError:
+        return False
+    return True
 
 
 def _most_helpful(request: Request, found: list[RuledOut]) -> int:
@@ -123,20 +144,38 @@ def _margin_of(candidate: Candidate) -> float:
 def _count_trials(request: Request) -> Iterator[_Trial]:
     limits = request.limits
     most = 3 if request.capacitors.connect == "any" else 6
-    if limits.parts_per_band < most:
-        more = replace(request, limits=replace(limits, parts_per_band=min(most, limits.parts_per_band + 2)))
+    most = min(most, limits.parts_per_band + 2) if request.switching != "shared" else 0  # no such limit on a set
+    for count in range(limits.parts_per_band + 1, most + 1):
+        more = replace(request, limits=replace(limits, parts_per_band=count))
         yield _Trial("parts_per_band", more, _most_in_a_band, lambda c: f"{_most_in_a_band(c)} would do")
+    if limits.contacts is not None:
+        free = replace(request, limits=replace(limits, contacts=None))
+        yield _Trial("contacts", free, _contacts, lambda c: f"{_contacts(c)} would do")
     moved = request.tuning is not None and request.tuning.moves_inductance
     able = not moved or (request.tuning is not None and request.tuning.sections > 1)
-    if limits.inductors < 2 and len(request.bands) > 1 and able:
-        two = replace(request, limits=replace(limits, inductors=2))
-        yield _Trial("inductors", two, lambda c: c.inductor_count, lambda c: f"{c.inductor_count} would do")
-    if limits.parts is not None:
-        free = replace(request, limits=replace(limits, parts=None))
-        yield _Trial("parts", free, lambda c: c.part_count, lambda c: f"{c.part_count} would do")
+    if limits.inductors < min(len(request.bands), MOST_COILS) and able:
+        more = replace(request, limits=replace(limits, inductors=limits.inductors + 1))
+        yield _Trial("inductors", more, lambda c: c.inductor_count, lambda c: f"{c.inductor_count} would do")
+    for parts in _more_parts(request):
+        more = replace(request, limits=replace(limits, parts=parts))
+        yield _Trial("parts", more, lambda c: c.part_count, lambda c: f"{c.part_count} would do")
     if limits.values is not None:
         free = replace(request, limits=replace(limits, values=None))
         yield _Trial("values", free, lambda c: c.value_count, lambda c: f"{c.value_count} would do")
+
+
+def _more_parts(request: Request) -> tuple[int | None, ...]:
+    """Return the limits on parts to try: none, or some more where a shared set must have a size."""
+    if request.limits.parts is None:
+        return ()
+    if request.switching != "shared":
+        return (None,)
+    return tuple(range(request.limits.parts + 1, request.limits.parts + 1 + MORE_IN_A_SET))
+
+
+def _contacts(candidate: Candidate) -> int:
+    switch = candidate.extra.get("switch")
+    return int(switch["contacts"]) if isinstance(switch, dict) else 0
 
 
 def _quality_trials(request: Request) -> Iterator[_Trial]:
@@ -163,21 +202,106 @@ def _quality_trials(request: Request) -> Iterator[_Trial]:
 
 def _coil_trials(request: Request) -> Iterator[_Trial]:
     rules = request.coil
-    lifted = (
-        ("self_resonance", rules.self_resonance, replace(rules, self_resonance=None)),
-        ("reactance", rules.reactance, replace(rules, reactance=None)),
-        ("inductance", rules.inductance, replace(rules, inductance=None)),
-        ("proportions", rules.proportions, replace(rules, proportions=None)),
+    lifted: tuple[tuple[str, object, CoilRules, Callable[[Candidate], float | str | None]], ...] = (
+        ("self_resonance", rules.self_resonance, replace(rules, self_resonance=None), _self_resonance),
+        ("reactance", rules.reactance, replace(rules, reactance=None), _reactances),
+        ("inductance", rules.inductance, replace(rules, inductance=None), _inductances),
+        ("proportions", rules.proportions, replace(rules, proportions=None), _proportions),
     )
-    for name, value, without in lifted:
+    for name, value, without, needed in lifted:
         if value is not None:
-            yield _Trial(name, replace(request, coil=without), lambda _: None, _coil_words)
+            yield _Trial(name, replace(request, coil=without), needed, _with_coil(needed))
     if rules.least_wound > 0:
         every = replace(request, coil=replace(rules, least_wound=0.0))
         yield _Trial("least_wound", every, _least_coil, _leads_words)
     if rules.forms is not None:
         free = replace(rules, forms=None)
-        yield _Trial("forms", replace(request, coil=free), lambda c: c.coils[0].form, _coil_words)
+        yield _Trial("forms", replace(request, coil=free, bands=_any_form(request)), _forms, _coil_words)
+    yield from _capacitor_trials(request)
+
+
+def _any_form(request: Request) -> tuple[Band, ...]:
+    """Return the bands without the limit on forms that they have from the plan."""
+    own = request.coil.forms
+    return tuple(replace(band, forms=None) if band.forms == own else band for band in request.bands)
+
+
+def _capacitor_trials(request: Request) -> Iterator[_Trial]:
+    rules = request.capacitors
+    if rules.grades is not None:
+        yield _Trial("grades", replace(request, capacitors=replace(rules, grades=None)), _grades, _grade_words)
+    if rules.low is not None:
+        free = replace(rules, low=None)
+        yield _Trial("from", replace(request, capacitors=free), lambda c: min(_values(c), default=None), _from_words)
+    if rules.high is not None:
+        free = replace(rules, high=None)
+        yield _Trial("to", replace(request, capacitors=free), lambda c: max(_values(c), default=None), _to_words)
+
+
+def _values(candidate: Candidate) -> list[float]:
+    return [part.value for part in candidate.parts if part.kind == "capacitor" and part.value is not None]
+
+
+def _grades(candidate: Candidate) -> str:
+    return ", ".join(dict.fromkeys(part.grade for part in candidate.parts if part.grade))
+
+
+def _grade_words(candidate: Candidate) -> str:
+    return f"{_grades(candidate)} would do"
+
+
+def _from_words(candidate: Candidate) -> str:
+    return f"{format_quantity(min(_values(candidate), default=0.0), 'F')} would do"
+
+
+def _to_words(candidate: Candidate) -> str:
+    return f"{format_quantity(max(_values(candidate), default=0.0), 'F')} would do"
+
+
+def _forms(candidate: Candidate) -> str:
+    return ", ".join(dict.fromkeys(coil.form for coil in candidate.coils))
+
+
+def _self_resonance(candidate: Candidate) -> float | None:
+    """Return the least self-resonance of the coils, as a multiple of the highest frequency of their bands."""
+    times = []
+    for band in candidate.bands:
+        frequency = band.target if band.target is not None else float(str(band.extra["high_hz"]))
+        if band.self_capacitance > 0:
+            own = 1.0 / (2.0 * math.pi * math.sqrt(band.inductance * band.self_capacitance))
+            times.append(own / frequency)
+    return min(times, default=None)
+
+
+def _reactances(candidate: Candidate) -> str:
+    return _span([band.reactance for band in candidate.bands], "\u03a9")
+
+
+def _inductances(candidate: Candidate) -> str:
+    return _span([coil.inductance for coil in candidate.coils], "H")
+
+
+def _proportions(candidate: Candidate) -> str:
+    known = [c for c in candidate.coils if c.winding_length is not None and c.mean_diameter]
+    ratios = sorted(coil.winding_length / coil.mean_diameter for coil in known)  # type: ignore[operator]
+    return " to ".join(dict.fromkeys(f"{ratio:.3g}" for ratio in (ratios[:1] + ratios[-1:])))
+
+
+def _span(values: list[float], unit: str) -> str:
+    ends = (format_quantity(min(values), unit, 3), format_quantity(max(values), unit, 3))
+    return " to ".join(dict.fromkeys(ends))
+
+
+def _with_coil(needed: Callable[[Candidate], float | str | None]) -> Callable[[Candidate], str]:
+    """Return what makes words of a figure that would do, and of the coil that has it."""
+
+    def words(candidate: Candidate) -> str:
+        figure = needed(candidate)
+        shown = f"{figure:.3g}" if isinstance(figure, float) else figure
+        coils = "; ".join(coil.label for coil in candidate.coils)
+        return f"{shown} would do: {coils}" if shown else f"without it: {coils}"
+
+    return words
 
 
 def _excess_words(candidate: Candidate) -> str:

@@ -199,7 +199,9 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         trimmer_tempco=np.array([_nan(t.tempco) if t else 0.0 for t in trimmers]),
         wanted=1.0 / (omega[None, :] ** 2 * coils.inductance),
         self_capacitance=coils.self_capacitance,
-        in_play=coils.in_play & _affordable(request, coil_price, part_price)[:, None],
+        in_play=coils.in_play
+        & _affordable(request, coil_price, part_price)[:, None]
+        & _layout_has_contacts(request),
         coil_loss=1.0 / coils.q,
         reactance_class=np.stack(
             [reactance_class(omega[b] * coils.inductance[:, b], frequency[b]) for b in range(len(bands))],
@@ -231,8 +233,9 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         share=float("inf") if stray.share is None else stray.share,
         stray_tempco=stray.tempco,
         drift_limit=limits.drift if drift_set and limits.drift is not None else float("inf"),
-        parts_limit=NEVER if limits.parts is None else limits.parts,
+        parts_limit=_parts_limit(request),
         values_limit=NEVER if limits.values is None else limits.values,
+        contacts_limit=NEVER if limits.contacts is None else limits.contacts,
         price_limit=_price_limit(request),
         inductors=limits.inductors,
         floor=floor,
@@ -247,6 +250,31 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         stray_tolerance=stray.tolerance,
         **_swept_figures(request, coils, capacitors, first),
     )
+
+
+def contacts_of_layout(request: Request) -> int:
+    """Return the contacts that a stack or a shared set on one whole coil needs beside those of a set's capacitors. [-]
+
+    A stack has one for each band but the highest; each trimmer has its own, since it is in circuit at one band.
+    """
+    if len(request.bands) < 2 or request.switching == "separate":
+        return 0
+    trimmers = sum(band.trimmer is not None for band in request.bands)
+    return trimmers + (len(request.bands) - 1 if request.switching == "stacked" else 0)
+
+
+def _layout_has_contacts(request: Request) -> bool:
+    """Whether the layout alone keeps to the limit on contacts."""
+    limit = request.limits.contacts
+    return limit is None or contacts_of_layout(request) <= limit
+
+
+def _parts_limit(request: Request) -> int:
+    """Return the most capacitors: each of a shared set has a contact of its own."""
+    limit = NEVER if request.limits.parts is None else request.limits.parts
+    if request.switching != "shared" or request.limits.contacts is None or len(request.bands) < 2:
+        return limit
+    return min(limit, max(0, request.limits.contacts - contacts_of_layout(request)))
 
 
 def alignable_share(request: Request) -> float:

@@ -227,6 +227,7 @@ TABLES: dict[str, dict[str, Key]] = {
         "parts_per_band": Key(read=_count(0, MOST_PARTS_PER_BAND), none=True),
         "parts": Key(read=_count(0, 10_000), none=True),
         "values": Key(read=_count(0, 10_000), none=True),
+        "contacts": Key(read=_count(0, 10_000), none=True),
         "inductors": Key(read=_count(1, MOST_BANDS), none=True),
         "q": Key(read=_QUALITY, none=True),
         "drift": Key(read=_drift, none=True),

@@ -7,6 +7,10 @@ from collections.abc import Callable
 from typing import Protocol
 
 
+class Unsettled(Exception):  # noqa: N818 - a stop that was asked for is no error
+    """A search for one candidate ended before it was known whether there is any."""
+
+
 class Monitor(Protocol):
     """What a search may ask of whoever started it."""
 

@@ -138,6 +138,7 @@ def _check_plan(request: Request) -> None:
         (request.coil.taps, "coil.taps = true", "a coil for each circuit"),
         (request.capacitors.connect == "any", 'capacitors.connect = "any"', 'capacitors.connect = "parallel"'),
         (request.limits.alignable is not None, "limits.alignable", "a plan of each circuit by itself"),
+        (request.limits.contacts is not None, "limits.contacts", "no limit"),
         (request.by == "price", "the order by price", "build or error"),
         *((name in extra, f"the table [{name}]", "a plan of its own") for name in ("cover", "oscillator", "drive")),
     )

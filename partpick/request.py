@@ -49,6 +49,7 @@ class Limits:
     parts_per_band: int = 2
     parts: int | None = None
     values: int | None = None
+    contacts: int | None = None  # of the band switch
     inductors: int = 1
     inductors_stated: bool = False  # [cover] gives every band that it makes a coil where this is unstated
     q: float | None = None

@@ -133,6 +133,7 @@ class RuledOut:
     limit: str  # key of the plan, "error", "parts_per_band", ...
     needed: float | int | str | None
     text: str  # one sentence for the bench
+    unsettled: tuple[str, ...] = ()  # limits of which the search was stopped before it was known
     others: tuple[RuledOut, ...] = ()  # further limits, each of which alone would let a plan through
 
 

@@ -13,7 +13,7 @@ from partpick.errors import RequestError
 from partpick.layouts import check_layout, design_of, search_layout
 from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
-from partpick.progress import Monitor, Quiet
+from partpick.progress import Monitor, Quiet, Unsettled
 from partpick.receiver import is_receiver, of_one_section, with_oscillators
 from partpick.request import LEAST_WOUND, Band, Request, Trimmer
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
@@ -88,8 +88,10 @@ def _again(request: Request, catalogue: Catalogue, monitor: Monitor) -> Candidat
     coils, capacitors, problem, source = _prepared(request, catalogue)
     found = search_layout(request, problem, source, wanted=1, monitor=monitor, front=False)
     least_is_asked = request.by != "build"
-    if not found.choices or (least_is_asked and not found.settled):
-        return None  # the least so far is not the least
+    if found.stopped_by is not None and (not found.choices or (least_is_asked and not found.settled)):
+        raise Unsettled  # the least so far is not the least
+    if not found.choices:
+        return None
     first = found.choices[0]
     chosen = with_chosen(request, trimmers_on_offer(request, catalogue), first)
     return _candidate(chosen, coils, capacitors, first)

@@ -69,7 +69,10 @@ def _ruled_out(ruled_out: RuledOut | None) -> Entry | None:
     if ruled_out is None:
         return None
     others = [_ruled_out(other) for other in ruled_out.others]
-    return {"limit": ruled_out.limit, "needed": ruled_out.needed, "text": ruled_out.text, "others": others}
+    return {
+        "limit": ruled_out.limit, "needed": ruled_out.needed, "text": ruled_out.text, "others": others,
+        "unsettled": list(ruled_out.unsettled),
+    }
 
 
 def _candidate(candidate: Candidate) -> Entry:

@@ -15,6 +15,7 @@ from partpick.report.pictures import HOW_TO_GET, Picture, pictures
 from partpick.report.sheet_style import STYLE
 from partpick.report.spread_table import alignment_steps
 from partpick.report.stress_table import cautions, stress_rows
+from partpick.report.switch_text import switch_in_words
 from partpick.report.table import how_sure
 from partpick.report.text import plural
 from partpick.result import Candidate, Result
@@ -70,7 +71,10 @@ def _circuits(candidate: Candidate) -> str:
 
 
 def _switch(candidate: Candidate) -> str:
-    return sheet_parts.switch_table(candidate) if any(band.contacts for band in candidate.bands) else ""
+    if not any(band.contacts for band in candidate.bands):
+        return ""
+    said = "".join(html.paragraph(f"{text[0].upper()}{text[1:]}.") for text in switch_in_words(candidate))
+    return said + sheet_parts.switch_table(candidate)
 
 
 def _readings(candidate: Candidate) -> tuple[str, ...]:

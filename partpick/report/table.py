@@ -8,6 +8,7 @@ from partpick.quantities import format_percent, format_quantity
 from partpick.report.bands_table import bands_in_full, share_of_strays, swept_range, with_labels, worst_q
 from partpick.report.spread_table import built_units
 from partpick.report.stress_table import stress_lines
+from partpick.report.switch_text import switch_lines
 from partpick.report.text import (
     clean,
     columns,
@@ -172,7 +173,7 @@ def _in_full(heading: str, candidate: Candidate) -> list[str]:
         lines += wrapped(f"{coil.reference}  {coil_in_words(coil)}{_for_bands(coil, candidate)}", 2, 4)
     lines += _parts(candidate.parts)
     lines += bands_in_full(candidate)
-    return lines
+    return lines + switch_lines(candidate)
 
 
 def coil_in_words(coil: CoilFigures) -> str:
@@ -246,6 +247,8 @@ def _nothing(result: Result) -> list[str]:
     lines = wrapped(f"Nothing fits{reason}.", 0, 2)
     for other in result.ruled_out_by.others if result.ruled_out_by else ():
         lines += wrapped(f"Or: {other.text.rstrip('.')}.", 0, 2)
+    if result.ruled_out_by is not None and result.ruled_out_by.others and result.ruled_out_by.unsettled:
+        lines += wrapped(f"Not known, the search was stopped before: {', '.join(result.ruled_out_by.unsettled)}.", 0, 2)
     return lines
 
 

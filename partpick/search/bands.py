@@ -14,9 +14,10 @@ from heapq import merge
 import numpy as np
 
 from partpick.progress import Monitor
-from partpick.search.bounds import BELOW_PIECES, Bounds, packed_key
+from partpick.search.bounds import BELOW_PIECES, IMPOSSIBLE, Bounds, packed_key
 from partpick.search.choose import ORDERS, Choice, Key, Stopped
 from partpick.search.columns import ColumnSource
+from partpick.search.contacts import least_contacts
 from partpick.search.evaluate import Evaluator
 from partpick.search.figures import fine_error, whole_excess
 from partpick.search.pairs import PairBounds
@@ -166,6 +167,8 @@ def _own_up(problem: Problem, bounds: Bounds, found: Found, reason: str | None) 
 def _coils_together(problem: Problem, bounds: Bounds, monitor: Monitor) -> list[PairBounds | SetBounds]:
     """Return the pairs and larger sets of coils that may share the bands."""
     most = min(problem.inductors, problem.bands)
+    if least_contacts(problem, bounds.fewest.min(axis=0, initial=IMPOSSIBLE), 2) > problem.contacts_limit:
+        most = 1
     pairs: list[PairBounds | SetBounds] = [PairBounds(problem, bounds, monitor)] if most >= 2 else []
     return pairs + [SetBounds(problem, bounds, size, monitor) for size in range(3, most + 1)]
 

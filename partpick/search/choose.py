@@ -15,6 +15,7 @@ from fractions import Fraction
 import numpy as np
 
 from partpick.progress import Monitor
+from partpick.search.contacts import contacts_of
 from partpick.search.figures import Columns
 from partpick.search.problem import NEVER, Ints, Problem
 
@@ -202,7 +203,7 @@ def plan_content(problem: Problem, coils: tuple[int, ...], taken: tuple[Columns,
 
 
 def inside_shared_limits(problem: Problem, choice: Choice) -> bool:
-    """Whether a choice keeps to stock, parts, values and price of the whole plan."""
+    """Whether a choice keeps to stock, parts, values, contacts and price of the whole plan."""
     used = Counter(int(part) for columns in choice.columns for part in columns.parts[0] if part >= 0)
     if any(count > problem.part_stock[part] for part, count in used.items()):
         return False
@@ -212,6 +213,8 @@ def inside_shared_limits(problem: Problem, choice: Choice) -> bool:
     if used.total() > problem.parts_limit:
         return False
     if len({problem.part_value[part] for part in used}) > problem.values_limit:
+        return False
+    if problem.contacts_limit < NEVER and contacts_of(problem, choice.coils, choice.columns) > problem.contacts_limit:
         return False
     price = sum(int(columns.price[0]) for columns in choice.columns) + plan_price(problem, choice.coils)
     return problem.price_limit >= NEVER or price <= problem.price_limit

@@ -1,4 +1,4 @@
-"""Choosing columns under shared limits with CP-SAT: parts, values, price and stock.
+"""Choosing columns under shared limits with CP-SAT: parts, values, contacts, price and stock.
 
 The only module that imports ortools. One boolean a column, exactly one column a band; the steps of
 the order are solved one after the other, each fixed before the next. Whole numbers only; the true
@@ -26,6 +26,7 @@ from partpick.search.choose import (
     plan_effort,
     plan_price,
 )
+from partpick.search.contacts import coil_contacts, element_contacts, figures_for_contacts
 from partpick.search.figures import Columns, coarse_error
 from partpick.search.problem import NEVER, Problem
 
@@ -285,6 +286,8 @@ class _ColumnModel:
         if problem.price_limit < NEVER:
             coils = plan_price(problem, self.coils)
             model.add(self._sum(picks, "price") <= problem.price_limit - coils)
+        if problem.contacts_limit < NEVER and problem.bands > 1:
+            self._limit_contacts(model, picks)
         for name, total in self.fixed:
             model.add(self._sum(picks, name) == total)
 
@@ -296,6 +299,23 @@ class _ColumnModel:
                     use.setdefault(trimmer, []).append(pick)
         for trimmer, every in use.items():
             model.add(cp_model.LinearExpr.sum(every) <= int(self.problem.trimmer_stock[trimmer]))
+
+    def _limit_contacts(self, model: cp_model.CpModel, picks: list[list[cp_model.IntVar]]) -> None:
+        """A pole that any pick asks for has all its contacts."""
+        problem = self.problem
+        own, tapped, padded = (np.concatenate(figure) for figure in figures_for_contacts(problem, self.bands))
+        flat = [pick for band in picks for pick in band]
+        coil_pole, element_pole = model.new_bool_var(""), model.new_bool_var("")
+        for pole, asks, always in (
+            (coil_pole, tapped, len(self.coils) > 1),
+            (element_pole, padded, problem.mixed),
+        ):
+            if always:
+                model.add(pole == 1)
+            for place in np.flatnonzero(asks):
+                model.add_implication(flat[int(place)], pole)
+        poles = coil_contacts(problem) * coil_pole + element_contacts(problem) * element_pole
+        model.add(cp_model.LinearExpr.weighted_sum(flat, own.tolist()) + poles <= problem.contacts_limit)
 
     def _sum(self, picks: list[list[cp_model.IntVar]], name: str) -> cp_model.LinearExprT:
         flat = [pick for band in picks for pick in band]

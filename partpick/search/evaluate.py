@@ -19,6 +19,7 @@ from partpick.search.choose import (
     inside_shared_limits,
 )
 from partpick.search.columns import ColumnMaker
+from partpick.search.contacts import least_contacts
 from partpick.search.figures import Columns, fine_error
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 from partpick.search.service import ways_to_serve
@@ -170,8 +171,11 @@ class Evaluator:
         p = self.problem
         if self.fewest is None or not p.coupled:
             return False
-        parts = int(self.fewest[list(coils)].min(axis=0).sum())
+        fewest = self.fewest[list(coils)].min(axis=0)
+        parts = int(fewest.sum())
         if parts > p.parts_limit or min(parts, 1) > p.values_limit:
+            return True
+        if p.contacts_limit < NEVER and least_contacts(p, fewest, len(coils)) > p.contacts_limit:
             return True
         if p.price_limit >= NEVER:
             return False

@@ -92,6 +92,7 @@ class Problem:
     # an element that moves inductance (`moved`): what it adds to the self-capacitance at both ends, (J, B) F
     moved_own_low: Floats = field(default_factory=_unset)
     moved_own_high: Floats = field(default_factory=_unset)
+    contacts_limit: int = NEVER  # of the band switch; NEVER: none
     margin: float = 0.0  # coverage beyond each end, fraction of f
     excess_limit: float = float("inf")
     # alignment: whether each band can be brought right whatever the parts are within tolerance
@@ -189,7 +190,7 @@ class Problem:
     @property
     def coupled(self) -> bool:
         """Whether any limit ties the bands together (stock is tested on each answer)."""
-        return min(self.parts_limit, self.values_limit, self.price_limit) < NEVER
+        return min(self.parts_limit, self.values_limit, self.price_limit, self.contacts_limit) < NEVER
 
     @property
     def moved(self) -> Bools:

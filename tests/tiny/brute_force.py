@@ -246,6 +246,26 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
     }
 
 
+def contacts(problem: Problem, coils, columns):
+    """Count what the switch closes: capacitors of each band, its coil or tap, its way to the tuning element."""
+    if problem.bands == 1:
+        return 0
+    closing = 0
+    several_coils_or_taps = len(coils) > 1 or any(c.get("tap", 0) for c in columns)
+    element_is_switched = any(c["series"] is not None for c in columns) or len(set(problem.swept.tolist())) == 2
+    for band, column in enumerate(columns):
+        padders = [p for p in column["parts"]]
+        if column["series"] is not None:
+            padders.remove(column["series"])
+        if padders or problem.trimmer_high[band] > 0:
+            closing += 1
+        if several_coils_or_taps:
+            closing += 1
+        if problem.swept[band] and element_is_switched:
+            closing += 1
+    return closing
+
+
 def plan_key(problem: Problem, coils, columns, by):
     """Return the order of a plan as the contract states it, or None where a shared limit rules it out."""
     used = Counter(p for column in columns for p in column["parts"])
@@ -254,6 +274,8 @@ def plan_key(problem: Problem, coils, columns, by):
     if used.total() > problem.parts_limit:
         return None
     if len({problem.part_value[p] for p in used}) > problem.values_limit:
+        return None
+    if contacts(problem, coils, columns) > problem.contacts_limit:
         return None
     price = sum(column["price"] for column in columns) + sum(int(problem.coil_price[j]) for j in coils)
     price = min(price, NEVER)
