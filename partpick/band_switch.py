@@ -85,8 +85,8 @@ def _coil_pole(request: Request, design: Design) -> list[Contact]:
 def _element_pole(request: Request, design: Design) -> list[Contact]:
     swept = [place for place, band in enumerate(request.bands) if band.swept]
     through_padders = any(network.series is not None for network in design.networks)
-    assert not swept or request.tuning is not None
-    if not swept or (request.tuning is not None and request.tuning.moves_inductance) or (len(swept) == len(request.bands) and not through_padders):
+    moves_coil = request.tuning is not None and request.tuning.moves_inductance
+    if not swept or moves_coil or (len(swept) == len(request.bands) and not through_padders):
         return []
     return [Contact(f"SV{place + 1}", "tuning element", (place,)) for place in swept]
 
