@@ -233,6 +233,8 @@ def _check_layout(reader: TableReader, request: Request) -> None:
         raise reader.fail("by", f"read {shown(request.by)}: one of {', '.join(plankeys.ORDERS)} is wanted")
     if request.command == "pair" and request.limits.parts_per_band < 1:
         raise reader.fail("limits.parts_per_band", "read 0: a pair has at least one capacitor")
+    if request.command == "pair" and request.limits.excess is not None and not any(b.swept for b in request.bands):
+        raise reader.fail("limits.excess", "has no effect at one frequency; it limits a range such as 7.0MHz..7.3MHz")
     if request.switching == "shared" and not request.limits.parts:
         raise reader.fail("limits.parts", 'is missing; switching "shared" needs the size of the shared set')
     first_at: dict[float, int] = {}

@@ -320,3 +320,9 @@ def test_a_tuning_element_that_makes_no_sense_is_refused_by_its_key(element: str
     """Ends the wrong way round, a junction driven into conduction, more sections than there are."""
     line = refused("pair", "7.0MHz..7.3MHz", "--tuning", element, *OUTPUTS)
     assert said in line and "--tuning" in line
+
+
+def test_a_limit_on_the_excess_of_one_frequency_is_refused() -> None:
+    """It would be accepted without effect."""
+    done = run("pair", "7.1MHz", "--excess", "50%")
+    assert done.code == 2 and "--excess" in done.err and "no effect" in done.err

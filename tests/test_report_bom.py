@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+from dataclasses import replace
 
 import handmade
 import pytest
@@ -117,3 +118,13 @@ def test_quotes_and_commas_survive() -> None:
     """RFC 4180, section 2, items 6 and 7: such cells are quoted, quotes doubled."""
     part = handmade.capacitor("C1", description='47 pF, "red" box')
     assert _rows(handmade.result(handmade.candidate(parts=(part,))))[0]["description"] == '47 pF, "red" box'
+
+
+def test_several_units_add_a_column_with_the_pieces_for_all() -> None:
+    """The quantity stays that of one unit; the shop wants the sum."""
+    one = list(csv.reader(io.StringIO(bom_csv(handmade.result(handmade.candidate())))))
+    request = replace(handmade.request("beacon"), units=3)
+    three = list(csv.reader(io.StringIO(bom_csv(handmade.result(handmade.candidate(), request=request)))))
+    assert [row[:-1] for row in three] == one
+    assert three[0][-1] == "quantity_all_units"
+    assert all(int(row[-1]) == 3 * int(row[2]) for row in three[1:])

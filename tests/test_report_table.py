@@ -167,3 +167,12 @@ def test_signs_are_always_written() -> None:
     assert signed_percent(-2e-9) == "-0.0000002 %"
     assert signed_shift(999.9996e3) == "+1000 kHz"
     assert slope(-3.0e16) == "-30 kHz"
+
+
+def test_less_than_a_picofarad_is_told_in_picofarad() -> None:
+    """Nobody at the bench says 500 fF."""
+    from partpick.report.text import quantity
+
+    assert quantity(0.5e-12, "F") == "0.5 pF"
+    assert quantity(1.2e-12, "F") == "1.2 pF"
+    assert quantity(0.66e-12, "F", 2) == "0.66 pF"

@@ -1,7 +1,8 @@
 """The bill of material as CSV (RFC 4180): what to buy, pull or wind, every candidate in rank order.
 
-Figures are for one unit. Wire is a row of its own: its value is the length of one piece, and its price is
-taken out of the price of the coil that it is wound into, so that the column adds up.
+Figures are for one unit; where several are built a last column has the pieces for all of them. Wire is a row
+of its own: its value is the length of one piece, and its price is taken out of the price of the coil that it
+is wound into, so that the column adds up.
 """
 
 from __future__ import annotations
@@ -18,6 +19,8 @@ COLUMNS = (
     "rank", "reference", "quantity", "kind", "value", "value_si", "unit", "tolerance", "description",
     "bands", "unit_price", "line_price", "source",
 )  # fmt: skip
+
+ALL_UNITS = "quantity_all_units"  # a further column where more than one unit is built
 
 # A spreadsheet runs a cell that starts with one of these (the wide forms too) as a formula.
 _FORMULA_STARTS = "=+-@|%\uff1d\uff0b\uff0d\uff20"
@@ -41,9 +44,11 @@ def bom_csv(result: Result) -> str:
     """Return the bill of material of all candidates; the header alone where nothing fits."""
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\r\n")
-    writer.writerow(COLUMNS)
+    units = result.request.units
+    writer.writerow(COLUMNS if units == 1 else (*COLUMNS, ALL_UNITS))
     for candidate in result.candidates:
-        writer.writerows(_rows(candidate))
+        for row in _rows(candidate):
+            writer.writerow(row if units == 1 else [*row, str(int(row[2]) * units)])
     return text.getvalue()
 
 

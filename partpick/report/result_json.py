@@ -44,8 +44,8 @@ def result_entry(result: Result) -> Entry:
         "nearest_miss": None if miss is None else _candidate(miss),
         "ruled_out_by": _ruled_out(result.ruled_out_by),
         "warnings": list(result.warnings),
-        "front": [_candidate(candidate) for candidate in result.front],
-        "candidates": [_candidate(candidate) for candidate in result.candidates],
+        "front": [_for_all(candidate, result.request.units) for candidate in result.front],
+        "candidates": [_for_all(candidate, result.request.units) for candidate in result.candidates],
     }
 
 
@@ -73,6 +73,15 @@ def _ruled_out(ruled_out: RuledOut | None) -> Entry | None:
         "limit": ruled_out.limit, "needed": ruled_out.needed, "text": ruled_out.text, "others": others,
         "unsettled": list(ruled_out.unsettled),
     }
+
+
+def _for_all(candidate: Candidate, units: int) -> Entry:
+    """Return a candidate, with what all units take together where there are several."""
+    entry = _candidate(candidate)
+    if units > 1:
+        price = None if candidate.price is None else units * candidate.price
+        entry["all_units"] = {"units": units, "pieces": units * candidate.piece_count, "price": price}
+    return entry
 
 
 def _candidate(candidate: Candidate) -> Entry:

@@ -10,6 +10,7 @@ from decimal import Decimal
 from partpick.quantities import format_quantity
 
 WIDTH = 80
+FEMTO, PICO = 1e-15, 1e-12
 
 
 def clean(text: str) -> str:
@@ -71,7 +72,9 @@ def figure(value: float | None, digits: int = 3, sign: str = "") -> str:
 
 
 def quantity(value: float | None, unit: str, digits: int = 3) -> str:
-    """Return a quantity with its unit, "?" where it is unknown."""
+    """Return a quantity with its unit, "?" where it is unknown; below 1 pF in pF, as the bench says it."""
+    if value is not None and unit == "F" and FEMTO < abs(value) < PICO:
+        return f"{value / PICO:.{digits}g} pF"
     return "?" if value is None else format_quantity(value, unit, digits)
 
 
