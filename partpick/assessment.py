@@ -19,6 +19,7 @@ from partpick.objective import TRIMMER_Q
 from partpick.parts import Capacitor
 from partpick.physics.resonance import resonance_frequency
 from partpick.quantities import format_quantity
+from partpick.ratings import element_rating, trimmer_rating
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 from partpick.search.networks import PARALLEL, SHUNTED
@@ -189,7 +190,7 @@ def _trimmer_lines(request: Request) -> list[PartLine]:
                 unit_price=trimmer.unit_price,
                 source=trimmer.source,
                 q=trimmer.q or TRIMMER_Q,
-                voltage=trimmer.voltage,
+                voltage=trimmer_rating(trimmer),
             )
         )
     return lines
@@ -219,6 +220,7 @@ def _tuning_lines(request: Request, coils: Coils, design: Design) -> list[PartLi
             unit_price=0.0,
             source="stated in the plan",
             q=element.q,
+            voltage=element_rating(request.tuning),
         )
     ]
 
@@ -290,6 +292,9 @@ def _coverage(tank: Tank, tuned_high: float) -> dict[str, object]:
         "inductance_low_h": tank.inductance(low_end=True),
         "capacitance_low_f": tank.total(low_end=True),
         "capacitance_high_f": tank.total(),
+        "q_low": tank.q_at(low_end=True),
+        "q_high": tank.q_at(),
+        "coil_q_low": tank.coil_q(low_end=True),
         **({} if moved is None else settings(tank, moved)),
     }
 

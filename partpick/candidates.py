@@ -22,6 +22,7 @@ from partpick.forms.rod import rod_block
 from partpick.forms.screen import Screen
 from partpick.forms.solenoid import solenoid_block
 from partpick.parts import Catalogue
+from partpick.physics.heating import bulk_surface, winding_surface
 from partpick.physics.loss import dielectric_loss
 from partpick.physics.self_capacitance import self_resonance_frequency
 from partpick.quantities import format_quantity
@@ -445,8 +446,18 @@ def coil_figures(coils: Coils, coil: int, band: int) -> CoilFigures:
             "q_spread": _below_and_above(coils.q_spread[coil]),
             "self_capacitance_spread": _below_and_above(coils.self_capacitance_spread[coil]),
             "adjust": support.adjust,
+            "surface_m2": _surface(coils, coil, block, row),
+            "core_area_m2": None if block.core_area is None else _known(block.core_area[row]),
         },
     )
+
+
+def _surface(coils: Coils, coil: int, block: Block, row: int) -> float | None:
+    """Return the surface by which a coil cools, None where its size is unknown. [m2]"""
+    diameter, length = float(block.mean_diameter[row]), float(block.winding_length[row])
+    if diameter > 0 and length > 0:
+        return float(winding_surface(diameter, length))
+    return _positive(float(bulk_surface(coils.volume[coil])))
 
 
 def coil_part_line(coils: Coils, coil: int, figures: CoilFigures, bands: tuple[str, ...]) -> PartLine:
@@ -471,6 +482,7 @@ def coil_part_line(coils: Coils, coil: int, figures: CoilFigures, bands: tuple[s
         wire=wire.name if wire else None,
         wire_length=figures.wire_length if wire else None,
         wire_price_per_m=wire.price_per_m if wire else None,
+        rf_current=support.current,
     )
 
 

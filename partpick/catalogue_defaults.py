@@ -5,6 +5,7 @@ Every default taken is said in the part's notes, which reach the warnings of eac
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 
 TRIMMER_Q = 400.0  # film and ceramic trimmers
@@ -55,6 +56,14 @@ GRADES: dict[str, Grade] = {
     "polypropylene": Grade(tempco=-200e-6, tempco_tolerance=100e-6, q=1000, q_below=1e6),
 }
 UNKNOWN_GRADE = Grade()
+
+_CLASS_2 = re.compile(r"[XYZ][2-9][DEFLPRSTUV]|electrolytic|tantalum", re.IGNORECASE)  # letters: EIA-198, from memory
+
+
+def is_class_2(grade: str) -> bool:
+    """Return whether a grade is a class 2 ceramic, such as X7R, or an electrolytic: no capacitor for a tank."""
+    return _CLASS_2.match(grade.strip()) is not None
+
 
 INDUCTOR_TOLERANCE = 0.10  # common practice, no source
 FORMER_TOLERANCE = 0.01  # of the diameter; common practice, no source

@@ -140,8 +140,7 @@ class Tank:
         if self.network.series is None:
             return own
         padder = self.capacitors[self.network.series]
-        frequency = self.frequency(low_end=low_end)
-        acting = float(effective_capacitance(padder.value, padder.series_inductance or 0.0, frequency))
+        acting = acting_capacitance(padder, self.frequency(low_end=low_end))
         return own * acting / (own + acting)
 
     def total(self, *, low_end: bool = False) -> float:
@@ -157,7 +156,7 @@ class Tank:
         """
         chosen = [self.capacitors[i] for i in self.network.parts]
         frequency = self.frequency(low_end=low_end)
-        acting = [float(effective_capacitance(c.value, c.series_inductance or 0.0, frequency)) for c in chosen]
+        acting = [acting_capacitance(part, frequency) for part in chosen]
         shares = network_shares(acting, self.network.shape)
         across = self.across(low_end=low_end)
         leads = across / _combine(acting, self.network.shape) if acting else 1.0
@@ -210,14 +209,15 @@ class Tank:
 
     def q(self) -> float | None:
         """Return the unloaded Q, the worse end of a swept band; None where a loss is unknown. [-]"""
-        ends = [self.losses(), self.losses(low_end=True)] if self.band.swept else [self.losses()]
-        worst = 0.0
-        for end in ends:
-            known = [loss for loss in end.values() if loss is not None]
-            if len(known) < len(end):
-                return None
-            worst = max(worst, math.fsum(known))
-        return 1.0 / worst
+        ends = [self.q_at(low_end=low_end) for low_end in ((False, True) if self.band.swept else (False,))]
+        known = [q for q in ends if q is not None]
+        return min(known) if len(known) == len(ends) else None
+
+    def q_at(self, *, low_end: bool = False) -> float | None:
+        """Return the unloaded Q at the target, or at the lower end; None where a loss is unknown. [-]"""
+        losses = self.losses(low_end=low_end).values()
+        known = [loss for loss in losses if loss is not None]
+        return 1.0 / math.fsum(known) if len(known) == len(losses) else None
 
     def drift(self) -> tuple[float | None, float | None]:
         """Return df/f per kelvin and its spread, trimmer set on frequency; None where a tempco is unknown. [1/K]"""
@@ -243,13 +243,18 @@ class Tank:
         return (nominal, 0.5 * spread) if math.isfinite(nominal) else (None, None)
 
 
+def acting_capacitance(part: Capacitor, frequency: float) -> float:
+    """Return how a capacitor acts at a frequency, its series inductance included. [F]"""
+    return float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency))
+
+
 def network_capacitance(capacitors: Sequence[Capacitor], network: Network, frequency: float, leads: float) -> float:
     """Return how a band's network acts at a frequency, series inductances included. [F]"""
     chosen = [capacitors[i] for i in network.parts]
     if not chosen:
         return 0.0
     if any(part.series_inductance for part in chosen):
-        acting = [float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency)) for part in chosen]
+        acting = [acting_capacitance(part, frequency) for part in chosen]
         whole = _combine(acting, network.shape)
     else:
         whole = float(_combine([part.exact for part in chosen], network.shape))

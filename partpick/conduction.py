@@ -14,8 +14,8 @@ def conduction_warnings(tuning: Tuning | None, bands: Sequence[BandFigures]) -> 
     """Yield one warning a swept band whose varactor the rf drives into conduction, or close to it.
 
     Looked at with the load off, at the least bias, where the junctions hold the least and bear a share of the
-    tank's peak that a series padder and the element's own series capacitor leave them. The peak is that of the
-    upper end of the band. A reserve of 1 V below the peak is common practice, no source.
+    tank's peak that a series padder and the element's own series capacitor leave them. The least bias is that of
+    the band's lower end. A reserve of 1 V below the peak is common practice, no source.
     """
     if tuning is None or tuning.kind != "varactor":
         return
@@ -24,7 +24,8 @@ def conduction_warnings(tuning: Tuning | None, bands: Sequence[BandFigures]) -> 
         if "tuned_low_hz" not in band.extra or not isinstance(stress, Mapping):
             continue
         bias = _number(tuning.get("from"))
-        peak = junction_peak(tuning, band, _number(stress["voltage_load_off_peak_v"]))
+        low_end, _ = stress["ends"]
+        peak = junction_peak(tuning, band, _number(low_end["voltage_load_off_peak_v"]))
         wanted = float(least_bias(peak))
         if bias >= wanted:
             continue

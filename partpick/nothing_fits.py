@@ -12,6 +12,8 @@ from partpick.layouts import check_layout
 from partpick.parts import Catalogue
 from partpick.progress import Monitor, Unsettled
 from partpick.quantities import format_quantity
+from partpick.rating_words import rating_words
+from partpick.ratings import drive_of
 from partpick.receiver import is_receiver, oscillators_alone, with_widest_tracking
 from partpick.request import LEAST_WOUND, Band, CoilRules, Request
 from partpick.result import Candidate, RuledOut
@@ -108,6 +110,7 @@ def _trials(request: Request) -> Iterator[_Trial]:
     if is_receiver(request):
         wide = replace(with_widest_tracking(request), by="error")
         yield _Trial("tracking", wide, lambda c: float(str(c.extra["worst_tracking_hz"])), _tracking_words)
+    yield from _stress_trials(request)
     yield from _swept_trials(request)
     yield from _count_trials(request)
     yield from _quality_trials(request)
@@ -115,6 +118,17 @@ def _trials(request: Request) -> Iterator[_Trial]:
     yield _Trial(
         "quantity", replace(request, units=1), lambda _: "as many as wanted", _stock_words, _in_plenty
     )
+
+
+def _stress_trials(request: Request) -> Iterator[_Trial]:
+    limits = request.limits
+    if drive_of(request) is None or limits.stress is None:
+        return
+    if limits.stress == "derated":
+        full = replace(request, limits=replace(limits, stress="rated"))
+        yield _Trial("stress", full, lambda _: "rated", lambda _: 'limits.stress = "rated", ratings in full, would do')
+    free = replace(request, limits=replace(limits, stress=None))
+    yield _Trial("stress", free, lambda _: "none", lambda c: rating_words(request, c))
 
 
 def _swept_trials(request: Request) -> Iterator[_Trial]:

@@ -6,6 +6,7 @@ Rules marked "common practice" have no source.
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import replace
 from fractions import Fraction
 from typing import Any
@@ -16,7 +17,9 @@ from partpick.candidates import Coils
 from partpick.parts import Capacitor
 from partpick.physics.resonance import effective_capacitance
 from partpick.preferred import commonness
+from partpick.ratings import drive_of, element_rating, trimmer_rating, uses
 from partpick.request import CHOSEN_ALIGNS, Band, Request, Trimmer
+from partpick.search.drive import Drive
 from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
 from partpick.tuning import element_ends, element_tolerance
 
@@ -248,6 +251,7 @@ def build_problem(request: Request, coils: Coils, capacitors: tuple[Capacitor, .
         coil_adjust=np.array([min(s.adjust or 0.0, MOST_ADJUST) for s in coils.supports], dtype=float)[coils.support],
         part_tolerance=np.array([c.tolerance for c in capacitors]),
         stray_tolerance=stray.tolerance,
+        drive=_drive(request, coils, capacitors),
         **_swept_figures(request, coils, capacitors, first),
     )
 
@@ -277,6 +281,42 @@ def _parts_limit(request: Request) -> int:
     return min(limit, max(0, request.limits.contacts - contacts_of_layout(request)))
 
 
+def _drive(request: Request, coils: Coils, capacitors: tuple[Capacitor, ...]) -> Drive | None:
+    """Return what parts must bear, None where nothing is driven or ratings are no limit."""
+    table = drive_of(request)
+    if table is None or request.limits.stress is None:
+        return None
+    kind, amount = next((k, a) for k in ("power", "voltage", "current") if (a := getattr(table, k)) is not None)
+    _, of_current = uses(request)
+
+    def volts(ratings: Iterable[float | None]) -> Floats:
+        return _volts(request, ratings)
+
+    def amperes(ratings: Iterable[float | None]) -> Floats:
+        return np.array([np.inf if a is None else a * of_current for a in ratings])
+
+    return Drive(
+        kind=kind,
+        amount=amount,
+        crest=table.crest,
+        effective=table.effective / np.sqrt(2.0),
+        part_voltage=np.append(volts(part.voltage for part in capacitors), np.inf),
+        part_current=np.append(amperes(part.rf_current for part in capacitors), np.inf),
+        part_capacitance=np.append([part.value for part in capacitors], 1.0),
+        coil_current=amperes(support.current for support in coils.supports)[coils.support],
+        trimmer_voltage=volts(trimmer_rating(band.trimmer) for band in request.bands),
+        element_voltage=float(volts([element_rating(request.tuning)])[0]),
+    )
+
+
+def _volts(request: Request, ratings: Iterable[float | None]) -> Floats:
+    """Return what parts may bear of radio frequency, derated and less the direct voltage across them. [V peak]"""
+    table = drive_of(request)
+    bias = 0.0 if table is None else table.bias
+    of_voltage, _ = uses(request)
+    return np.array([np.inf if v is None else max(v * of_voltage - bias, 0.0) for v in ratings])
+
+
 def alignable_share(request: Request) -> float:
     """Return the share of builds that must come on frequency: 1 at all corners, 0 where none is asked for."""
     limit = request.limits.alignable
@@ -300,12 +340,17 @@ def _chooses(band: Band) -> bool:
 def with_trimmer(request: Request, problem: Problem, trimmer: Trimmer, *, others: bool) -> Problem:
     """Return the problem with one trimmer in every band that chooses; `others`: the other bands are in play too."""
     choosing = np.array([band.trimmer is not None and band.trimmer.to_choose for band in request.bands])
+    drive = problem.drive
+    if drive is not None:
+        volts = _volts(request, [trimmer_rating(trimmer)])[0]
+        drive = replace(drive, trimmer_voltage=np.where(choosing, volts, drive.trimmer_voltage))
 
     def here(value: float, elsewhere: Floats) -> Floats:
         return np.where(choosing, value, elsewhere)
 
     return replace(
         problem,
+        drive=drive,
         trimmer_low=here(trimmer.low, problem.trimmer_low),
         trimmer_high=here(trimmer.high, problem.trimmer_high),
         trimmer_loss=here(1.0 / (trimmer.q or TRIMMER_Q), problem.trimmer_loss),

@@ -197,6 +197,8 @@ TRIMMER = {
     "high": Key(read=parse_capacitance),
     "tempco": Key(read=parse_tempco),
     "q": Key(read=_QUALITY),
+    "voltage": Key(read=parse_voltage),  # rating, V peak
+    "spacing": Key(read=parse_length),  # of its plates in air
 }
 LOAD = {
     "resistance": Key(read=parse_resistance),
@@ -235,6 +237,7 @@ TABLES: dict[str, dict[str, Key]] = {
         "excess": Key(read=_fraction(1000.0), none=True),
         "margin": Key(read=_fraction(0.5), none=True),
         "alignable": Key(read=_alignable, none=True),
+        "stress": Key(read=_choice("derated", "rated"), none=True),
     },
     "coil": {
         "forms": Key(read=_names(*FORMS), none=True),
@@ -287,6 +290,8 @@ TUNING: dict[str, dict[str, Key]] = {
         **TUNING_OF_ANY_KIND,
         "parallel": Key(read=_count(1, 6)),  # of the sections; all where unstated
         "law": Key(read=_choice(*_LAWS), default=_LAWS[0]),
+        "voltage": Key(read=parse_voltage),  # rating, V peak
+        "spacing": Key(read=parse_length),  # of its plates in air
     },
     "varactor": {
         "zero_bias": Key(read=parse_capacitance, required=True),
@@ -330,6 +335,7 @@ FURTHER: dict[str, dict[str, Key]] = {
         "supply": Key(read=parse_voltage),
         "class": Key(read=_choice("A", "B", "C", "E"), default="C"),
         "modulation": Key(read=_fraction(), default=0.0),  # depth of amplitude modulation
+        "bias": Key(read=_voltage_or_zero, default=0.0),  # direct voltage across the tank's capacitors
     },
     "oscillator": {
         "circuit": Key(read=_choice("colpitts", "clapp", "hartley"), required=True),

@@ -101,8 +101,9 @@ def read_limits(reader: TableReader, raw: object, connect: str, band_count: int)
         if name in stated and stated[name] is None:
             stated[name] = without
     off = "alignable" in stated and stated["alignable"] is None
-    flags = {f"{name}_stated": name in stated for name in ("error", "inductors")}
-    limits = Limits(**stated, **flags, alignable_off=off)
+    limits = Limits(
+        **stated, error_stated="error" in stated, inductors_stated="inductors" in stated, alignable_off=off
+    )
     if limits.parts_per_band > most:
         where = f' with {reader.name("capacitors.connect")} "any"' if connect == "any" else ""
         raise reader.fail(

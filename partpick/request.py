@@ -21,7 +21,8 @@ class Trimmer:
     name: str | None = None  # of a part of catalogue or drawer; None: stated in the plan
     unit_price: float | None = 0.0  # what the plan states costs nothing
     quantity: int | None = None
-    voltage: float | None = None  # V, peak
+    voltage: float | None = None  # V peak; None: not rated
+    spacing: float | None = None  # m, between its plates in air
     source: str = "stated in the plan"
     notes: tuple[str, ...] = ()
 
@@ -59,6 +60,7 @@ class Limits:
     margin: float = 0.03
     alignable: str | float | None = None  # "worst case" or a share
     alignable_off: bool = False  # "none", said so; unstated: a trimmer that is chosen aligns `CHOSEN_ALIGNS`
+    stress: str | None = "derated"  # "rated": ratings in full; None: what is over is offered, and flagged
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -241,9 +241,11 @@ def _candidate(
     looked_at = with_outlook(candidate, outlook(request, coils, capacitors, design, candidate, first=first, pool=pool))
     if not dict(request.extra).get("drive"):
         return looked_at
-    from partpick.stress import with_stress  # likewise
+    from partpick.stress import recheck_ratings, with_stress  # likewise
 
-    return with_stress(request, looked_at)
+    stressed = with_stress(request, looked_at)
+    recheck_ratings(request, stressed)
+    return stressed
 
 
 def _searched(request: Request, coils: Coils, problem: Problem) -> str:

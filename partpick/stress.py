@@ -1,7 +1,8 @@
-"""What a drive does to each part of a tank: voltage, current, heat and rating, and the cautions that follow.
+"""What a drive does to each part of a tank: voltage, current, heat, flux, and how much of a rating that takes.
 
 Two states are looked at: with the load as stated, and with the load off at the same drive, which is the
-one that flashes over. A carrier is taken; amplitude modulation raises every peak by its depth.
+one that flashes over. A swept band is looked at at both ends. Peaks are those of full modulation, rms
+figures and heat hold over its period.
 """
 
 from __future__ import annotations
@@ -9,57 +10,46 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
-from typing import Any
 
+from partpick.cautions import cautions_of, stress_warnings
 from partpick.conduction import conduction_warnings
 from partpick.connection import Connection, Parallel, Part, parse_connection
-from partpick.physics.loading import circulating_current, peak_voltage
+from partpick.errors import InternalError
+from partpick.physics.heating import SMALL_CAPACITOR, peak_flux_density, surface_rise, usual_flux_density
+from partpick.physics.loading import circulating_current, loaded_q, peak_voltage
 from partpick.physics.resonance import effective_capacitance
+from partpick.ratings import DriveTable, drive_of, uses
 from partpick.request import Request
-from partpick.result import BandFigures, Candidate, PartLine
-from partpick.units import format_quantity
+from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
+from partpick.stressed import PartStress, Stressed, stressed_parts, worse_of
 
-CAUTION_POWER = 1.0  # W of drive, and
-CAUTION_VOLTAGE = 30.0  # V peak anywhere: from there cautions are told; common practice, no source
-VOLTAGE_USE = 0.5  # of a capacitor's voltage rating, at most; common practice, no source
-CURRENT_USE = 0.7  # of its radio-frequency current rating, at most; common practice, no source
 # Peak voltage of the device over its supply: twice in a tuned stage; class E: N. O. Sokal and A. D. Sokal, Class E,
 # IEEE J. Solid-State Circuits SC-10 (1975) 168-176 (from memory).
 DEVICE_PEAK = {"A": 2.0, "B": 2.0, "C": 2.0, "E": 3.56}
-
-
-LOCAL_RULES = (
-    "Local law, electrical codes and the advice of a licensed or otherwise qualified person come first. A computed "
-    "figure is no permission to energise anything."
-)
+AGREEMENT = 1e-6  # of a rating, between search and recheck
 
 
 @dataclass(frozen=True, kw_only=True)
-class PartStress:
-    """What one part bears at one band; peak volts, rms amperes."""
+class End:
+    """A band's tank at its frequency, or at one end of its range."""
 
-    reference: str
-    kind: str
-    voltage: float  # V peak, loaded
-    current: float  # A rms, loaded
-    voltage_load_off: float  # V peak
-    current_load_off: float  # A rms
-    dissipation: float | None  # W, the larger of both states; None: loss unknown
-    voltage_rating: float | None = None  # V peak
-    current_rating: float | None = None  # A rms
+    frequency: float  # Hz
+    inductance: float  # H
+    q: float | None  # unloaded
+    loaded_q: float | None
+    coil_q: float | None
+    element: float | None = None  # F, the tuning element at its own end
+    total: float | None = None  # F, all in circuit with the element at its own end
 
     @property
-    def verdict(self) -> str:
-        """Return "over", "near", "inside" or "not rated": the derated rating against the worse state."""
-        if self.voltage_rating is None and self.current_rating is None:
-            return "not rated"
-        voltage = self.voltage_load_off / self.voltage_rating if self.voltage_rating else 0.0
-        current = self.current_load_off / self.current_rating if self.current_rating else 0.0
-        if voltage > 1.0 or current > 1.0:
-            return "over"
-        if voltage > VOLTAGE_USE or current > CURRENT_USE:
-            return "near"
-        return "inside" if self.voltage_rating is not None and self.current_rating is not None else "not rated"
+    def omega(self) -> float:
+        """Angular frequency. [1/s]"""
+        return 2 * math.pi * self.frequency
+
+    @property
+    def reactance(self) -> float:
+        """Of the coil. [ohm]"""
+        return self.omega * self.inductance
 
 
 def with_stress(request: Request, candidate: Candidate) -> Candidate:
@@ -68,137 +58,279 @@ def with_stress(request: Request, candidate: Candidate) -> Candidate:
     Adds `stress` to each band's further keys, `cautions` and `device_peak_v` to the candidate's, and a warning
     for each part that is over or near its rating or has none.
     """
-    drive: dict[str, Any] = dict(dict(request.extra).get("drive", ()))
-    if not drive:
+    drive = drive_of(request)
+    if drive is None:
         return candidate
-    parts = {part.reference: part for part in candidate.parts}
-    bands, every = [], []
+    bands: list[BandFigures] = []
+    every: list[Stressed] = []
     for band in candidate.bands:
-        stresses = band_stress(drive, band, parts)
-        every += [(band, stress) for stress in stresses or ()]
-        keys = None if stresses is None else _keys(band, stresses)
+        found = band_stress(drive, band, candidate, request.stray.inductance)
+        every += [Stressed(band.name, part) for part in found or ()]
+        keys = None if found is None else _keys(drive, request, candidate, band, found)
         bands.append(replace(band, extra={**band.extra, "stress": keys}))
-    supply = drive["supply"]
-    device = None if supply is None else supply * DEVICE_PEAK[drive["class"]] * (1 + drive["modulation"])
+    device = None if drive.supply is None else drive.supply * DEVICE_PEAK[drive.klass] * drive.crest
     unknown = [band.name for band in bands if band.extra["stress"] is None]
-    conducts = conduction_warnings(request.tuning, bands)
+    told = stress_warnings(every, unknown)
     return replace(
         candidate,
         bands=tuple(bands),
-        warnings=(*candidate.warnings, *_rating_warnings(every), *_unknown_warnings(unknown), *conducts),
+        warnings=(*candidate.warnings, *told, *conduction_warnings(request.tuning, bands)),
         extra={
             **candidate.extra,
             "device_peak_v": device,
-            "cautions": _cautions(drive, every, device, bool(unknown)),
+            "cautions": cautions_of(drive, every, device, bool(unknown), candidate.parts),
         },
     )
+
+
+def recheck_ratings(request: Request, candidate: Candidate) -> None:
+    """Refuse a candidate of which a part is over what the search had to keep it to.
+
+    Raises
+    ------
+    InternalError
+        It is, by more than rounding.
+    """
+    if request.limits.stress is None:
+        return
+    most_voltage, most_current = uses(request)
+    for band, part in stressed_parts(candidate):
+        use = max((part["voltage_use"] or 0.0) / most_voltage, (part["current_use"] or 0.0) / most_current)
+        if use > 1.0 + AGREEMENT:
+            raise InternalError(
+                f"internal error: {part['reference']} at {band} is over its rating, which the search should have "
+                "kept to; please report this plan"
+            )
 
 
 # ---------------------------------------------------------------- one band
 
 
 def band_stress(
-    drive: Mapping[str, Any], band: BandFigures, parts: Mapping[str, PartLine]
+    drive: DriveTable, band: BandFigures, candidate: Candidate, leads: float = 0.0
 ) -> tuple[PartStress, ...] | None:
-    """Return what each part of a band bears; None where a Q that decides it is unknown.
+    """Return what each part of a band bears, the worse end of a range; None where a Q that decides it is unknown.
 
     Parameters
     ----------
-    drive : mapping
-        Keys of the table [drive], SI: one of `power`, `voltage` and `current`, and `modulation`.
+    drive : DriveTable
+        [drive] of the plan.
     band : BandFigures
         With its unloaded Q, and its `load` among the further keys where one is stated.
-    parts : mapping
-        Every part by its reference.
+    candidate : Candidate
+        Its parts and coils.
+    leads : float
+        Inductance in series with the network across the coil. [H]
     """
-    loaded, load_off = _tank_voltages(drive, band)
-    if loaded is None or load_off is None:
+    worst: dict[str, PartStress] = {}
+    for end in ends_of(band):
+        found = _at_end(drive, band, candidate, leads, end)
+        if found is None:
+            return None
+        for part in found:
+            known = worst.get(part.reference)
+            worst[part.reference] = part if known is None else worse_of(known, part)
+    return tuple(worst.values())
+
+
+def ends_of(band: BandFigures) -> tuple[End, ...]:
+    """Return a band's tank at its frequency, or at the lower and the upper end of its range."""
+    frequency = band.reactance / (2 * math.pi * band.inductance)
+    load = band.extra.get("load")
+    # without a load the loaded state is the unloaded one; with one whose ratio nothing states it is unknown
+    loaded = load.get("loaded_q") if isinstance(load, Mapping) else band.q
+    if "low_hz" not in band.extra:
+        return (
+            End(
+                frequency=frequency,
+                inductance=band.inductance,
+                q=band.q,
+                loaded_q=_known(loaded),
+                coil_q=band.coil_q,
+            ),
+        )
+    across = _resistance_across(band.q, _known(loaded), band.reactance) if isinstance(load, Mapping) else math.inf
+    made = []
+    for low in (True, False):
+        inductance = _known(band.extra["inductance_low_h"]) if low else band.inductance
+        hertz = _known(band.extra["low_hz"]) if low else frequency
+        q = _known(band.extra["q_low" if low else "q_high"])
+        assert inductance is not None and hertz is not None
+        reactance = 2 * math.pi * hertz * inductance
+        made.append(
+            End(
+                frequency=hertz,
+                inductance=inductance,
+                q=q,
+                loaded_q=None if q is None or across is None else float(loaded_q(q, reactance, across)),
+                coil_q=_known(band.extra["coil_q_low"]) if low else band.coil_q,
+                element=_known(band.extra.get("tuning_high_f" if low else "tuning_low_f")),
+                total=_known(band.extra.get("capacitance_low_f" if low else "capacitance_high_f")),
+            )
+        )
+    return tuple(made)
+
+
+def _resistance_across(q: float | None, loaded: float | None, reactance: float) -> float | None:
+    """Return the resistance across the tank that takes its Q down to the loaded one, None where unknown. [ohm]"""
+    if q is None or loaded is None:
         return None
-    stresses = [_coil(band, parts, loaded, load_off)]
-    for reference, share, value, acting in _across(band, parts):
+    return reactance / (1 / loaded - 1 / q) if loaded < q else math.inf
+
+
+def _known(value: object) -> float | None:
+    return float(value) if isinstance(value, (int, float)) else None
+
+
+def carriers(drive: DriveTable, end: End) -> tuple[float | None, float | None]:
+    """Return the peak voltage of the carrier across the tank, loaded and with the load off; None: unknown. [V]"""
+    if drive.voltage is not None:
+        return drive.voltage, drive.voltage
+
+    def volts(q: float | None) -> float | None:
+        if q is None:
+            return None
+        if drive.power is not None:
+            return float(peak_voltage(drive.power, end.reactance, q))
+        assert drive.current is not None
+        return drive.current * q * end.reactance
+
+    return volts(end.loaded_q), volts(end.q)
+
+
+def _at_end(
+    drive: DriveTable, band: BandFigures, candidate: Candidate, leads: float, end: End
+) -> list[PartStress] | None:
+    loaded, load_off = carriers(drive, end)
+    if load_off is None:
+        return None
+    parts = {part.reference: part for part in candidate.parts}
+    coil = next((coil for coil in candidate.coils if coil.reference == band.coil), None)
+    stresses = [_coil(drive, band, coil, parts, end, loaded, load_off)]
+    for reference, share, value, acting in _across(band, parts, leads, end):
         part = parts[reference]
         # behind its own series inductance a capacitor bears more than its terminals
         plates = share * acting / value
-        per_volt = 2 * math.pi * _frequency(band) * acting * share / math.sqrt(2)
-        lost = None if part.q is None or _beyond(part, band) else plates * per_volt / math.sqrt(2) / part.q
+        per_volt = end.omega * acting * share / math.sqrt(2) * drive.effective
+        known = part.q is not None and (part.q_below is None or end.frequency <= part.q_below)
+        resistance = plates / (end.omega * acting * share) / part.q if known and part.q and share else None
+
+        def rms(volts: float | None, per_volt: float = per_volt) -> float | None:
+            return None if volts is None else volts * per_volt
+
+        def heat(volts: float | None, amperes: float = per_volt, ohm: float | None = resistance) -> float | None:
+            return None if volts is None or ohm is None else (volts * amperes) ** 2 * ohm
+
         stresses.append(
             PartStress(
                 reference=reference,
                 kind=part.kind,
-                voltage=loaded * plates,
-                current=loaded * per_volt,
-                voltage_load_off=load_off * plates,
+                frequency=end.frequency,
+                voltage=None if loaded is None else loaded * drive.crest * plates,
+                current=rms(loaded),
+                voltage_load_off=load_off * drive.crest * plates,
                 current_load_off=load_off * per_volt,
-                dissipation=None if lost is None else max(loaded, load_off) ** 2 * lost,
+                heat=heat(loaded),
+                heat_load_off=heat(load_off),
+                kelvin_per_watt=SMALL_CAPACITOR if part.kind == "capacitor" else None,
+                bias=drive.bias,
                 voltage_rating=part.voltage,
                 current_rating=part.rf_current,
             )
         )
-    return tuple(stresses)
+    return stresses
 
 
-def _across(band: BandFigures, parts: Mapping[str, PartLine]) -> Iterator[tuple[str, float, float, float]]:
+def _coil(
+    drive: DriveTable,
+    band: BandFigures,
+    coil: CoilFigures | None,
+    parts: Mapping[str, PartLine],
+    end: End,
+    loaded: float | None,
+    load_off: float,
+) -> PartStress:
+    def rms(volts: float | None) -> float | None:
+        if volts is None:
+            return None
+        return float(circulating_current(volts, end.reactance)) / math.sqrt(2) * drive.effective
+
+    def heat(amperes: float | None) -> float | None:
+        return None if amperes is None or end.coil_q is None else amperes**2 * end.reactance / end.coil_q
+
+    figures = {} if coil is None else coil.extra
+    surface, area = _known(figures.get("surface_m2")), _known(figures.get("core_area_m2"))
+    turns = band.tap_turns or (coil.turns if coil else None)
+    peak = load_off * drive.crest
+    flux = None
+    if area is not None and turns:
+        flux = float(peak_flux_density(peak, end.frequency, turns, area))
+    part = parts.get(band.coil)
+    return PartStress(
+        reference=band.coil,
+        kind="coil",
+        frequency=end.frequency,
+        voltage=None if loaded is None else loaded * drive.crest,
+        current=rms(loaded),
+        voltage_load_off=peak,
+        current_load_off=rms(load_off) or 0.0,
+        heat=heat(rms(loaded)),
+        heat_load_off=heat(rms(load_off)),
+        kelvin_per_watt=None if surface is None else float(surface_rise(1.0, surface)),
+        flux_density=flux,
+        usual_flux_density=None if flux is None else float(usual_flux_density(end.frequency)),
+        current_rating=part.rf_current if part else None,
+    )
+
+
+def _across(
+    band: BandFigures, parts: Mapping[str, PartLine], leads: float, end: End
+) -> Iterator[tuple[str, float, float, float]]:
     """Return each part across the coil: reference, share of the voltage, capacitance, how that acts."""
     values = {reference: part.value or 0.0 for reference, part in parts.items()}
-    lowest = band.extra.get("tuning_low_f")
-    if isinstance(lowest, (int, float)):
-        values["T"] = float(lowest)  # figures are those of the high end of the range
     acting = {
-        reference: float(effective_capacitance(value, parts[reference].series_inductance or 0.0, _frequency(band)))
+        reference: float(effective_capacitance(value, parts[reference].series_inductance or 0.0, end.frequency))
         for reference, value in values.items()
         if parts[reference].unit == "F"
     }
     tree = parse_connection(band.connection)
-    if tree is not None:
-        # leads and switch in series with the network raise the voltage on it
-        rise = 1.0 if band.network is None else band.network / _acting(tree, acting)
-        for reference, share in _voltage_shares(tree, acting, rise):
+    if tree is not None and _holds(tree, "T") and end.element is not None and end.total is not None:
+        values["T"] = acting["T"] = _set_element(tree, acting, end, end.element, end.total)
+    for branch in () if tree is None else _beside_element(tree):
+        network = _acting(branch, acting)
+        # leads and switch in series with the network raise the voltage on it; the element has none
+        rise = 1.0 if _holds(branch, "T") else float(effective_capacitance(network, leads, end.frequency)) / network
+        for reference, share in _voltage_shares(branch, acting, rise):
             yield reference, share, values[reference], acting[reference]
     trimmer = next((p for p in parts.values() if p.kind == "trimmer" and band.name in p.bands), None)
     if trimmer is not None and band.trimmer is not None:
         yield trimmer.reference, 1.0, band.trimmer, band.trimmer
 
 
-def _tank_voltages(drive: Mapping[str, Any], band: BandFigures) -> tuple[float | None, float | None]:
-    """Return the peak voltage across the tank, loaded and with the load off. [V]"""
-    peak = 1.0 + drive["modulation"]
-    if drive["voltage"] is not None:
-        return drive["voltage"] * peak, drive["voltage"] * peak
-    unloaded = band.q
-    load = band.extra.get("load")
-    loaded = load.get("loaded_q") if isinstance(load, Mapping) else unloaded
-    if unloaded is None or not isinstance(loaded, (int, float)):
-        return None, None
-    if drive["power"] is not None:
-        states = [float(peak_voltage(drive["power"], band.reactance, q)) for q in (loaded, unloaded)]
-    else:
-        states = [drive["current"] * q * band.reactance for q in (loaded, unloaded)]
-    return states[0] * peak, states[1] * peak
+def _set_element(tree: Connection, acting: Mapping[str, float], end: End, element: float, total: float) -> float:
+    """Return the tuning element where the tank resonates at the end of the band, short of its own end. [F]"""
+    branch = next(b for b in _beside_element(tree) if _holds(b, "T"))
+    wanted = 1.0 / (end.omega * end.reactance)
+    if isinstance(branch, Part):
+        return element + wanted - total
+    padder = _acting(next(b for b in branch.branches if not _holds(b, "T")), acting)
+    tuned = element * padder / (element + padder) + wanted - total
+    return tuned * padder / (padder - tuned)
 
 
-def _frequency(band: BandFigures) -> float:
-    """Return where the band's figures were taken. [Hz]"""
-    return band.reactance / (2 * math.pi * band.inductance)
+def _beside_element(tree: Connection) -> tuple[Connection, ...]:
+    """Return what lies across the coil: the tuning element's branch apart from the rest, which shares its leads."""
+    if not isinstance(tree, Parallel) or not any(_holds(branch, "T") for branch in tree.branches):
+        return (tree,)
+    element = tuple(branch for branch in tree.branches if _holds(branch, "T"))
+    rest = tuple(branch for branch in tree.branches if not _holds(branch, "T"))
+    return (*element, rest[0] if len(rest) == 1 else Parallel(rest))
 
 
-def _beyond(part: PartLine, band: BandFigures) -> bool:
-    return part.q_below is not None and _frequency(band) > part.q_below
-
-
-def _coil(band: BandFigures, parts: Mapping[str, PartLine], loaded: float, load_off: float) -> PartStress:
-    amperes = [float(circulating_current(volts, band.reactance)) / math.sqrt(2) for volts in (loaded, load_off)]
-    lost = None if band.coil_q is None else max(amperes) ** 2 * band.reactance / band.coil_q
-    part = parts.get(band.coil)
-    return PartStress(
-        reference=band.coil,
-        kind="coil",
-        voltage=loaded,
-        current=amperes[0],
-        voltage_load_off=load_off,
-        current_load_off=amperes[1],
-        dissipation=lost,
-        current_rating=part.rf_current if part else None,
-    )
+def _holds(tree: Connection, reference: str) -> bool:
+    if isinstance(tree, Part):
+        return tree.reference == reference
+    return any(_holds(branch, reference) for branch in tree.branches)
 
 
 def _voltage_shares(tree: Connection, values: Mapping[str, float], share: float = 1.0) -> Iterator[tuple[str, float]]:
@@ -221,93 +353,67 @@ def _acting(tree: Connection, values: Mapping[str, float]) -> float:
     return math.fsum(own) if isinstance(tree, Parallel) else 1 / math.fsum(1 / value for value in own)
 
 
-def _keys(band: BandFigures, stresses: Sequence[PartStress]) -> dict[str, object]:
-    """Return a band's stress as further JSON keys; the contact carries what all of its capacitors do."""
+# ---------------------------------------------------------------- keys of the result
+
+
+def _keys(
+    drive: DriveTable, request: Request, candidate: Candidate, band: BandFigures, stresses: Sequence[PartStress]
+) -> dict[str, object]:
+    """Return a band's stress as further JSON keys."""
     coil = stresses[0]
-    in_contact = [s for s in stresses[1:] if s.kind == "capacitor"]
-    network = band.network or 0.0
-    omega = 2 * math.pi * _frequency(band)
+    contacts = _contacts(request, candidate, band, stresses)
     return {
         "voltage_peak_v": coil.voltage,
-        "current_peak_a": coil.current * math.sqrt(2),
+        "current_peak_a": _crest(drive, coil.current),
         "voltage_load_off_peak_v": coil.voltage_load_off,
-        "current_load_off_peak_a": coil.current_load_off * math.sqrt(2),
-        "contact_rms_a": coil.voltage_load_off * omega * network / math.sqrt(2) if in_contact else None,
-        "parts": [
+        "current_load_off_peak_a": _crest(drive, coil.current_load_off),
+        "contact_rms_a": max((rms for rms in contacts.values()), default=None),
+        "contact_open_peak_v": coil.voltage_load_off if contacts else None,
+        "contacts": [{"contact": name, "load_off_rms_a": rms} for name, rms in contacts.items()],
+        "ends": [
             {
-                "reference": stress.reference,
-                "voltage_peak_v": stress.voltage,
-                "current_rms_a": stress.current,
-                "voltage_load_off_peak_v": stress.voltage_load_off,
-                "current_load_off_rms_a": stress.current_load_off,
-                "dissipation_w": stress.dissipation,
-                "voltage_rating_v": stress.voltage_rating,
-                "current_rating_a": stress.current_rating,
-                "verdict": stress.verdict,
+                "at_hz": end.frequency,
+                "voltage_peak_v": None if volts[0] is None else volts[0] * drive.crest,
+                "voltage_load_off_peak_v": None if volts[1] is None else volts[1] * drive.crest,
             }
-            for stress in stresses
+            for end in ends_of(band)
+            for volts in (carriers(drive, end),)
         ],
+        "parts": [stress.keys() for stress in stresses],
     }
 
 
-# ---------------------------------------------------------------- warnings and cautions
-
-_VERDICTS = {
-    "over": "over the rating",
-    "near": "inside the rating, but past half of its voltage or 0.7 of its current (common practice)",
-    "not rated": "not rated, so that nothing says that it is fine",
-}
+def _crest(drive: DriveTable, rms: float | None) -> float | None:
+    """Return the highest peak of a current from its rms value over the modulation. [A]"""
+    return None if rms is None else rms * math.sqrt(2) / drive.effective * drive.crest
 
 
-def _rating_warnings(every: Sequence[tuple[BandFigures, PartStress]]) -> Iterator[str]:
-    """Return one warning a verdict; no coil that is wound has a rating, and its heat is told instead."""
-    for verdict, words in _VERDICTS.items():
-        found = [
-            f"{stress.reference} at {band.name}"
-            for band, stress in every
-            if stress.verdict == verdict and not (stress.kind == "coil" and verdict == "not rated")
-        ]
-        if found:
-            yield f"at the stated drive, load off, {words}: {', '.join(found)}"
+def _contacts(
+    request: Request, candidate: Candidate, band: BandFigures, stresses: Sequence[PartStress]
+) -> dict[str, float]:
+    """Return the rms current that each closed contact carries, load off: that of the capacitors it switches. [A]
+
+    Of a series network it is that of one part; the element's current where its padder is switched.
+    """
+    order = {own.name: place for place, own in enumerate(candidate.bands)}
+    height = {own.name: own.lowest for own in request.bands}
+    amperes = {stress.reference: stress.current_load_off for stress in stresses}
+    carried: dict[str, float] = {}
+    for name in band.contacts:
+        if request.switching == "shared":
+            switched = {name.replace("S", "C", 1)} & set(band.capacitors)
+        else:  # each capacitor on the contact of the highest band that it serves
+            served = {p.reference: max(p.bands, key=lambda b: height.get(b, 0.0)) for p in candidate.parts if p.bands}
+            switched = {r for r in band.capacitors if f"S{order[served[r]] + 1}" == name}
+        tree = parse_connection(band.connection)
+        if tree is not None and switched:
+            carried[name] = _into(tree, amperes, switched)
+    return carried
 
 
-def _unknown_warnings(names: Sequence[str]) -> Iterator[str]:
-    for name in names:
-        yield f"{name}: stress is unknown, because a Q is; take it for dangerous"
-
-
-def _cautions(
-    drive: Mapping[str, Any], every: Sequence[tuple[BandFigures, PartStress]], device: float | None, unknown: bool
-) -> list[str]:
-    """Return the cautions that apply, each with the figure that triggered it; no option turns them off."""
-    power = drive["power"] or 0.0
-    band, worst = max(every, key=lambda pair: pair[1].voltage_load_off, default=(None, None))
-    volts = worst.voltage_load_off if worst else 0.0
-    volts = max(volts, device or 0.0)
-    if power < CAUTION_POWER and volts < CAUTION_VOLTAGE and not unknown:
-        return []
-    high = "a voltage that is not known"
-    if band is not None and worst is not None:
-        high = f"{format_quantity(worst.voltage_load_off, 'V')} peak on {worst.reference} at {band.name}"
-    drawn = format_quantity(power, "W") if power else high
-    told = [
-        LOCAL_RULES,
-        f"Radio-frequency burns and flash-over: {high} with the load off. Never touch or tune the live tank by hand; "
-        "use insulated tools and shafts, and leave room between plates and turns.",
-        f"Supplies and capacitors hold charge after switching off ({_device(device, drawn)}): unplug, discharge "
-        "through a resistor, measure before touching.",
-        f"Transmitting needs a licence nearly everywhere ({drawn}): test into a shielded dummy load, keep to local "
-        "exposure limits, keep wearers of medical devices away.",
-        "Class 2 ceramic and electrolytic capacitors are no tank capacitors: at this drive they heat and can burst.",
-    ]
-    hottest = max(((s.dissipation or 0.0, b.name, s.reference) for b, s in every), default=(0.0, "", ""))
-    if hottest[0] > 0:
-        told.append(
-            f"Heat: {format_quantity(hottest[0], 'W')} in {hottest[2]} at {hottest[1]}. Keep formers and wire off what "
-            "burns or softens."
-        )
-    return told
-
-
-def _device(device: float | None, drawn: str) -> str:
-    return drawn if device is None else f"the device sees about {format_quantity(device, 'V')} peak"
+def _into(tree: Connection, amperes: Mapping[str, float], switched: set[str]) -> float:
+    """Return the current into the part of a network that is switched. [A]"""
+    if isinstance(tree, Part):
+        return amperes.get(tree.reference, 0.0) if tree.reference in switched else 0.0
+    own = [_into(branch, amperes, switched) for branch in tree.branches]
+    return math.fsum(own) if isinstance(tree, Parallel) else max(own)

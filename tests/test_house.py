@@ -14,7 +14,7 @@ PACKAGE = ROOT / "partpick"
 STAGES = [
     {"errors", "units", "reading", "quantities", "preferred", "progress", "parts", "request", "result", "connection"},
     {"physics"},
-    {"tuning"},
+    {"tuning", "ratings"},
     {"plankeys", "plantables", "planfile"},
     {"report.files"},  # whole files or none: outputs and the starter share it
     {"catalogue", "catalogue_cells", "catalogue_defaults", "catalogue_labels", "catalogue_rows", "catalogue_table"},
@@ -22,9 +22,10 @@ STAGES = [
     {"forms", "moved", "candidates"},
     {"search"},
     {"objective", "tapping", "trimming"},
+    {"stressed", "rating_words", "tuning_range"},
     {"circuit", "band_switch", "layouts", "receiver", "moved_figures", "assessment", "tank_figures",
-     "tracking_figures", "tuning_range", "nothing_fits", "cover"},
-    {"built", "conduction", "stress"},
+     "tracking_figures", "nothing_fits", "cover"},
+    {"built", "cautions", "conduction", "stress"},
     {"audit"},
     {"solving"},
     {"report"},

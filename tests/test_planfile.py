@@ -146,7 +146,8 @@ def test_every_key_of_a_plan_reaches_the_request() -> None:
     assert request.tuning is not None and request.tuning.get("high") == 150e-12
     assert request.load is not None and (request.load.resistance, request.load.connection) == (50.0, "tap")
     further = {name: dict(values) for name, values in request.extra}
-    driven = {"power": 5.0, "voltage": None, "current": None, "supply": 12.0, "class": "C", "modulation": 0.0}
+    driven = {"power": 5.0, "voltage": None, "current": None, "supply": 12.0, "class": "C"}
+    driven |= {"modulation": 0.0, "bias": 0.0}
     assert further["drive"] == driven
     assert further["oscillator"]["transconductance"] == 5e-3
     assert further["receiver"] == {"intermediate": 455e3, "side": "above", "tracking": None}

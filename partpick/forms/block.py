@@ -31,6 +31,7 @@ class Support:
     frequency_low: float | None = None  # Hz, useful range of a core
     frequency_high: float | None = None
     adjust: float | None = None  # fraction of the inductance either way
+    current: float | None = None  # A rms; None: not rated
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -109,6 +110,7 @@ class Block:
     wire_diameter: Floats  # m bare
     proportions: Floats | None = None  # winding length / mean diameter, single layers only
     bore: Floats | None = None  # m, inside diameter of the former of a single layer, nan: it has none
+    core_area: Floats | None = None  # m2, section of a magnetic ring; nan or None: no such core
     label: Callable[[int], str] = field(repr=False)
     cautions: Callable[[int, float], tuple[str, ...]] = field(repr=False, default=_nothing_to_say)  # at a Hz
 

@@ -71,4 +71,11 @@ def _support(part: Inductor) -> Support:
     notes = part.notes
     if part.self_capacitance is None:
         notes = (*notes, "self-capacitance not stated, taken as 0")
-    return Support(name=part.label, quantity=part.quantity, source=part.source, notes=notes, adjust=part.adjust)
+    return Support(
+        name=part.label,
+        quantity=part.quantity,
+        source=part.source,
+        notes=notes,
+        adjust=part.adjust,
+        current=part.current,
+    )

@@ -63,6 +63,7 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Scre
     )
     permeability = column([_leaking_permeability(core) for core in cores])[support]
     leak = ring_leak(turns, outer, inner, height, permeability, sizes.overall)
+    magnetic = np.array([_magnetic(core) for core in cores], np.bool_)[support]
     none = np.zeros(len(turns))
 
     def label(row: int) -> str:
@@ -109,6 +110,7 @@ def ring_block(catalogue: Catalogue, frequency: Floats, units: int, screen: Scre
         price=wound_price([core.unit_price for core in cores], support, catalogue.wires, wire, wire_length),
         volume=np.pi / 4 * outer**2 * height,
         wire_diameter=sizes.bare,
+        core_area=np.where(magnetic, (outer - inner) / 2 * height, np.nan),
         label=label,
         cautions=cautions,
     )
@@ -140,6 +142,11 @@ def _al(core: Core) -> float:
         return core.al
     assert core.inner_diameter is not None and core.height is not None
     return float(ring_al(core.outer_diameter, core.inner_diameter, core.height, core.permeability or 1.0))
+
+
+def _magnetic(core: Core) -> bool:
+    """Return whether a ring is more than a plastic former."""
+    return core.permeability is None or core.permeability > 1.0
 
 
 def _leaking_permeability(core: Core) -> float:

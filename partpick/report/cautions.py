@@ -1,6 +1,6 @@
 """What always stands on a sheet that someone builds from. No plan and no option takes it away."""
 
-from partpick.stress import LOCAL_RULES
+from partpick.cautions import LOCAL_RULES
 
 ALWAYS = (
     LOCAL_RULES,

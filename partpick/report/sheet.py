@@ -14,7 +14,7 @@ from partpick.report.drawing import circuit
 from partpick.report.pictures import HOW_TO_GET, Picture, pictures
 from partpick.report.sheet_style import STYLE
 from partpick.report.spread_table import alignment_steps
-from partpick.report.stress_table import cautions, stress_rows
+from partpick.report.stress_table import FIGURES, GUESS, HEAD, cautions, stress_rows
 from partpick.report.switch_text import switch_in_words
 from partpick.report.table import how_sure
 from partpick.report.text import plural
@@ -131,9 +131,10 @@ def _nothing(result: Result) -> str:
 
 
 def _stress(candidate: Candidate) -> str:
-    head = ("Band", "Part", "Peak", "RMS", "Peak, load off", "RMS, load off", "Heat", "Rating")
     rows = stress_rows(candidate)
-    return html.table(head, rows, figures=(2, 3, 4, 5, 6)) if rows else ""
+    if not rows:
+        return ""
+    return html.table([word.capitalize() for word in HEAD], rows, figures=FIGURES) + html.paragraph(GUESS)
 
 
 def _cautions(candidate: Candidate | None) -> str:

@@ -11,6 +11,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from partpick.search.drive import Drive, borne
 from partpick.search.figures import Columns, coarse_error, fine_error, quality_class, stray_class
 from partpick.search.networks import PARALLEL
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
@@ -133,6 +134,9 @@ class Circuits:
         keep &= ~limited | (loss * p.q_limit[band] <= 1 + _ROUNDING)
         if np.isfinite(p.drift_limit):
             keep &= self._drift(coil, band, parts, share, network) <= p.drift_limit * (1 + _ROUNDING)
+        if p.drive is not None:
+            rise = network / np.maximum(nominal, 1e-30)
+            keep &= self._bears(p.drive, coil, band, parts, rise, loss)
         whole = np.zeros(len(coil), dtype=np.int64)
         columns = Columns(
             coil=coil,
@@ -163,6 +167,15 @@ class Circuits:
         least = np.where(some, low_some[coil, band], low[coil, band])
         most = np.where(some, high_some[coil, band], high[coil, band])
         return np.asarray((nominal >= least) & (nominal <= most))
+
+    def _bears(self, drive: Drive, coil: Ints, band: Ints, parts: AnyInts, rise: Floats, loss: Floats) -> Bools:
+        """Whether rows keep to the ratings of all parts, (m,); each part has the whole voltage."""
+        omega = 2 * np.pi * self.problem.frequency[band]
+        reactance = 1.0 / (omega * self.problem.wanted[coil, band])
+        acting = self._value[band[:, None], parts]
+        most = drive.on_parts(omega[:, None], acting, np.broadcast_to(rise[:, None], acting.shape), parts)
+        carrier = drive.carrier(reactance, loss)
+        return borne(carrier, most, drive.on_coil(reactance, coil), drive.on_trimmer(band))
 
     def _drift(self, coil: Ints, band: Ints, parts: AnyInts, share: Floats, network: Floats) -> Floats:
         """Return |df/f| per kelvin, nominal plus spread, with the trimmer set on frequency. [1/K]"""

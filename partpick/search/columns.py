@@ -12,6 +12,7 @@ from typing import Protocol
 import numpy as np
 
 from partpick.search.alignment import alignable
+from partpick.search.bearing import BearingTables, Cache
 from partpick.search.coverage import LeastExcess
 from partpick.search.drift_bound import steady_enough
 from partpick.search.figures import (
@@ -26,6 +27,7 @@ from partpick.search.figures import (
 from partpick.search.grades import Grades
 from partpick.search.networks import Rows, Stream, Table, network_tables
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
+from partpick.search.ratings import can_bear, inside_ratings
 from partpick.search.swept import SweptColumns
 
 
@@ -58,6 +60,7 @@ class ColumnSource:
             self.tables.append(network_tables(values, most, problem.connect_any))
         self.grades = Grades(problem)
         self.gain = problem.part_gain(), problem.part_gain(low_end=True)
+        self._bearing_cache: Cache = {}
         self._prepare()
 
     def _prepare(self) -> None:
@@ -67,6 +70,8 @@ class ColumnSource:
         self.levels = [
             problem.windows(parts) for parts in (0, 1)
         ]  # windows differ only by the share limit, which a band without capacitors is spared
+        driven = problem.drive is not None and not problem.connect_any
+        self._bearing = BearingTables(problem, self.valid, self._bearing_cache) if driven else None
         self._swept = SweptColumns(problem, self.tables, self.valid, self.grades, self.gain)
         self._least_excess = LeastExcess(problem, self.tables, self.valid)
 
@@ -75,6 +80,7 @@ class ColumnSource:
         other = ColumnSource.__new__(ColumnSource)
         other.problem, other.valid, other.tables, other.grades = problem, self.valid, self.tables, self.grades
         other.gain = self.gain
+        other._bearing_cache = self._bearing_cache
         other._prepare()
         return other
 
@@ -105,34 +111,39 @@ class ColumnSource:
         """
         p = self.problem
         low, high = self.levels[min(parts, 1)]
-        fixed = p.fixed_capacitance()
         best = np.full(low.shape, np.inf)
         for band, tables in enumerate(self.tables):
             if p.swept[band]:
                 covered = np.isfinite(self.least_excesses(parts)[:, band])
                 best[covered, band] = 0.0
                 continue
-            if parts >= len(tables):
-                continue
-            table = tables[parts]
-            if isinstance(table, Stream) and table.deep:  # too many to look through for all coils: a bound
-                best[low[:, band] <= high[:, band], band] = 0.0
-                continue
             rows = np.flatnonzero(low[:, band] <= high[:, band])
-            lower, upper = low[rows, band], high[rows, band]
-            centre = p.wanted[rows, band] - fixed[rows, band]
-            if p.lead_inductance > 0:
-                squared = (2 * np.pi * p.frequency[band]) ** 2 * p.lead_inductance
-                centre = np.where(centre > 0, centre / (1 + squared * np.abs(centre)), centre)
-            centre = np.clip(centre, lower, upper)
-            for side in table.neighbours(centre):
-                inside = (side >= lower) & (side <= upper)
-                network = p.behind_leads(side[inside], band)
-                total = fixed[rows[inside], band] + network
-                error = np.abs(np.sqrt(p.wanted[rows[inside], band] / total) - 1.0)
-                best[rows[inside], band] = np.minimum(best[rows[inside], band], error)
+            groups = iter([(rows, tables)]) if self._bearing is None else self._bearing.by_level(band, rows)
+            for some, own in groups:
+                if parts < len(own):
+                    best[some, band] = self._least_error(band, some, own[parts], low[some, band], high[some, band])
         if np.isfinite(p.drift_limit):
             best[~steady_enough(p, parts)] = np.inf
+        if p.drive is not None:
+            best[~can_bear(p, parts)] = np.inf
+        return best
+
+    def _least_error(self, band: int, rows: Ints, table: Table | Stream, lower: Floats, upper: Floats) -> Floats:
+        """Return the least size of error of some coils with the networks of a table, inf for none inside, (r,). [-]"""
+        p = self.problem
+        if isinstance(table, Stream) and table.deep:  # too many to look through for all coils: a bound
+            return np.zeros(len(rows))
+        wanted = p.wanted[rows, band]
+        fixed = p.self_capacitance[rows] + p.stray[band] + (p.trimmer_low[band] + p.trimmer_high[band]) / 2
+        centre = wanted - fixed
+        if p.lead_inductance > 0:
+            squared = (2 * np.pi * p.frequency[band]) ** 2 * p.lead_inductance
+            centre = np.where(centre > 0, centre / (1 + squared * np.abs(centre)), centre)
+        best = np.full(len(rows), np.inf)
+        for side in table.neighbours(np.clip(centre, lower, upper)):
+            inside = (side >= lower) & (side <= upper)
+            total = fixed[inside] + p.behind_leads(side[inside], band)
+            best[inside] = np.minimum(best[inside], np.abs(np.sqrt(wanted[inside] / total) - 1.0))
         return best
 
     def least_excesses(self, parts: int) -> Floats:
@@ -167,14 +178,16 @@ class ColumnSource:
         if p.swept[band]:
             return self._swept.columns(coil, band, parts, lead if p.led_by_excess else None)
         low, high = (float(side[coil, band]) for side in self.levels[min(parts, 1)])
-        tables = self.tables[band]
+        tables, valid, allowed = self.tables[band], self.valid[band], None
+        if self._bearing is not None:
+            tables, valid, allowed = self._bearing.of(coil, band)
         if low > high or parts >= len(tables):
             return Columns.empty(p.most_parts)
         if lead is not None:
             low, high = self._narrow(coil, band, low, high, lead)
         rows = tables[parts].inside(low, high)
-        rows = Rows(rows.value, self.valid[band][rows.species].astype(np.int16), rows.shape)
-        origin, chosen = self.grades.expand(rows)
+        rows = Rows(rows.value, valid[rows.species].astype(np.int16), rows.shape)
+        origin, chosen = self.grades.expand(rows, allowed=allowed)
         columns, keep = self._figures(coil, band, rows.take(origin), chosen)
         return columns.take(keep)
 
@@ -213,6 +226,9 @@ class ColumnSource:
         if p.alignable > 0 and p.aligned[band]:
             left = np.flatnonzero(keep)
             keep[left] = alignable(p, coil, band, values[left], chosen[left], rows.shape[left])
+        if p.drive is not None:
+            rise = network / np.maximum(rows.value, 1e-30)
+            keep &= inside_ratings(p, coil, band, values, chosen, rows.shape, rise, loss)
         whole = np.zeros(len(chosen), dtype=np.int64)
         columns = Columns(
             coil=whole + coil,

@@ -34,7 +34,7 @@ def steady_enough(problem: Problem, parts: int) -> Bools:
     p = problem
     grades = np.unique(np.stack([p.part_tempco, p.part_tempco_spread], axis=1), axis=0)
     ends = _stray_shares(p)
-    gains = _gains(p)
+    gains = weight_gains(p)
     of_grade = [
         [
             (share * p.stray_tempco + (1.0 - share) * gain * tempco, (1.0 - share) * gain * spread)
@@ -68,7 +68,7 @@ def _least_size(coil_tempco: Floats, corners: list[Corner]) -> Floats:
     return bound
 
 
-def _gains(p: Problem) -> list[Floats]:
+def weight_gains(p: Problem) -> list[Floats]:
     """Return the least and the largest factor by which inductance in series raises a part's weight, (J, B) each."""
     gain = p.part_gain()
     least, most = gain.min(axis=1, initial=1.0), gain.max(axis=1, initial=1.0)

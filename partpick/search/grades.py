@@ -43,9 +43,13 @@ class Grades:
             figures += [np.nan_to_num(p.part_tempco, nan=9.0), p.part_tempco_spread]
         if p.alignable > 0:
             figures.append(p.part_tolerance)
+        if p.drive is not None:
+            figures += [p.drive.part_voltage[:-1], p.drive.part_current[:-1]]
         return [tuple(row) for row in np.stack(figures, axis=1).tolist()]
 
-    def expand(self, rows: Rows, *, last_apart: bool = False) -> tuple[Ints, Ints]:
+    def expand(
+        self, rows: Rows, *, last_apart: bool = False, allowed: Bools | None = None
+    ) -> tuple[Ints, Ints]:
         """Return the row of each choice of grades, (m,), and the parts chosen, (m, k).
 
         Parameters
@@ -54,6 +58,8 @@ class Grades:
             Networks of species. [-]
         last_apart : bool
             The last place is a series padder, which changes places with no other part. [-]
+        allowed : (P,) array of bool, optional
+            Which parts may be taken; all by default. [-]
         """
         count = self._starts[1:] - self._starts[:-1]
         places = rows.species.shape[1]
@@ -69,6 +75,8 @@ class Grades:
             part = self._flat[self._starts[species[origin]] + offset]
             chosen = np.concatenate([chosen[origin], part[:, None]], axis=1)
             keep = self._in_stock(chosen)
+            if allowed is not None:
+                keep = keep & allowed[chosen[:, -1]]
             if place > 0 and not (last_apart and place == places - 1):
                 keep = keep & self._one_spelling(rows.take(source), chosen, place)
             source, chosen = source[keep], chosen[keep]

@@ -14,6 +14,8 @@ from statistics import NormalDist
 import numpy as np
 from numpy.typing import NDArray
 
+from partpick.search.drive import Drive
+
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
@@ -108,6 +110,7 @@ class Problem:
     trimmer_tempco_spread: Floats = field(default_factory=_unset)  # (B,) 1/K
     trimmer_stock: Ints = field(default_factory=lambda: np.empty(0, np.int64))  # (T,) pieces per unit built
     coil_alone: bool = True  # a coil serves the one band alone, so that its adjustment is free for it
+    drive: Drive | None = None  # what parts must bear; None: nothing is driven, or ratings are no limit
 
     def __post_init__(self) -> None:
         """Fill what a problem of fixed bands leaves out."""
@@ -156,6 +159,12 @@ class Problem:
         """Inductance at the target, the upper end of a swept band, (J, B). [H]"""
         return 1.0 / ((2 * np.pi * self.frequency[None, :]) ** 2 * self.wanted)
 
+    def wanted_at_end(self, coil: int, band: int, *, low_end: bool) -> float:
+        """Return the capacitance that resonates at the target, or at the lower end of a swept band. [F]"""
+        if not low_end:
+            return float(self.wanted[coil, band])
+        return float(1.0 / ((2 * np.pi * self.low_end[band]) ** 2 * self.inductance_low[coil, band]))
+
     @property
     def most_at_high_end(self) -> Floats:
         """Most capacitance in circuit with which a swept band reaches its widened upper end, (J, B). [F]"""
@@ -186,6 +195,12 @@ class Problem:
     def coils(self) -> int:
         """Number of coils. [-]"""
         return len(self.self_capacitance)
+
+    @property
+    def by_grade(self) -> bool:
+        """Whether a limit of a band looks at the grades, and not at capacitances alone."""
+        limited = bool((self.q_limit > 0).any()) or bool(np.isfinite(self.drift_limit))
+        return limited or self.drive is not None
 
     @property
     def coupled(self) -> bool:

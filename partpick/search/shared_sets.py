@@ -43,7 +43,7 @@ class Letters:
         """Return the letters of a problem; parts whose price is unknown or above the limit are left out."""
         grades = Grades(problem)
         groups: list[tuple[int, ...]] = []
-        by_part = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+        by_part = problem.by_grade
         by_part = by_part or problem.price_limit < NEVER  # the grade decides whether a set is inside it
         for options in problem.options:
             useful = tuple(p for p in grades.useful(options) if problem.part_price[p] <= price_limit)
@@ -87,7 +87,7 @@ class SetSearch:
         self.order = np.argsort(-problem.frequency, kind="stable")
         self.work = 0
         self.sums = SumTables(letters.acting, highest[None, :], ANSWER)
-        self._exact = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+        self._exact = problem.by_grade
         self.single_parts = all(len(group) == 1 for group in letters.parts)
         self._largest = np.where(np.isfinite(letters.acting), letters.acting, 0.0).max(axis=0, initial=0.0)
         self.first_part = np.array([group[0] for group in letters.parts], dtype=np.int64)

@@ -41,7 +41,7 @@ class StackNodes:
         self.allow(WORK_LIMIT)
         self._cheapest = int(problem.part_price.min(initial=NEVER)) if len(problem.part_price) else 0
         # elsewhere the intervals alone say everything else about a band
-        self._exact = bool((problem.q_limit > 0).any()) or np.isfinite(problem.drift_limit)
+        self._exact = problem.by_grade
 
     def allow(self, work: int) -> None:
         """Set how much may be made from now on, in places for capacitors, before the search stops itself."""
@@ -120,7 +120,9 @@ class StackNodes:
             kind[part] = seen.setdefault(signature, len(seen))
         amount = np.rint(nominal / GRAIN).astype(np.int64)
         exact = np.abs(amount * GRAIN - nominal) <= 1e-12 * nominal
-        return (kind if len(seen) <= MOST_KINDS and exact.all() else None), amount
+        # a large capacitor carries more of the current than two that make as much
+        alike = len(seen) <= MOST_KINDS and exact.all() and p.drive is None
+        return (kind if alike else None), amount
 
     @staticmethod
     def _acting(species: Floats, place: int, nominal: float) -> tuple[float, ...]:

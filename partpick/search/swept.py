@@ -23,6 +23,7 @@ from partpick.search.figures import (
 from partpick.search.grades import Grades
 from partpick.search.networks import Rows, Stream, Table, network_values
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
+from partpick.search.ratings import inside_ratings_at_end, voltage_shares
 
 Species = NDArray[np.int16]
 _GRAIN = 1e-12  # a design exactly on a limit is inside it
@@ -149,10 +150,14 @@ class SweptColumns:
             keep &= strays <= high_end.total * p.share * (1 + _GRAIN)
         at_low = self._weights(band, rows, across, chosen, behind, low_end, at_low_end=True)
         at_high = self._weights(band, rows, across, chosen, behind, high_end, at_low_end=False)
-        loss = np.maximum(  # the worse end, unknown if either is
+        losses = (
             self._loss(band, p.coil_loss_low[coil, band], p.part_loss_low, chosen, at_low, low_end),
             self._loss(band, p.coil_loss[coil, band], p.part_loss, chosen, at_high, high_end),
         )
+        loss = np.maximum(*losses)  # the worse end, unknown if either is
+        if p.drive is not None:
+            for end, own, at_low_end in zip((low_end, high_end), losses, (True, False), strict=True):
+                keep &= self._bears(coil, band, rows, chosen, behind, end, own, at_low_end=at_low_end)
         if p.q_limit[band] > 0:
             keep &= loss * p.q_limit[band] <= 1 + _GRAIN
         if np.isfinite(p.drift_limit):
@@ -193,6 +198,25 @@ class SweptColumns:
         across = acting[0][:, :-1], acting[1][:, :-1]
         padder = acting[0][:, -1], acting[1][:, -1]
         return swept_alignable(p, coil, band, across, chosen[:, :-1], rows.shape, chosen[:, -1], padder)
+
+    def _bears(
+        self, coil: int, band: int, rows: Rows, chosen: Ints, behind: bool, end: _End, loss: Floats, *, at_low_end: bool
+    ) -> Bools:
+        """Return which choices keep to the ratings of all parts at one end, (m,)."""
+        p = self.problem
+        acting = (p.species_low if at_low_end else p.species)[band][rows.species]
+        across = acting[:, :-1] if behind else acting
+        own = np.maximum(network_values(across, rows.shape), 1e-30)
+        share = voltage_shares(across, rows.shape) * (end.network / own)[:, None]
+        on_element = np.ones(len(chosen))
+        if behind:  # the element is set so that the tank resonates at the end of the band, short of its own end
+            tuned = p.wanted_at_end(coil, band, low_end=at_low_end) - (end.total - end.tuned)
+            on_padder = tuned / acting[:, -1]
+            share = np.concatenate([share, on_padder[:, None]], axis=1)
+            on_element = 1.0 - on_padder
+        return inside_ratings_at_end(
+            p, coil, band, acting, share, chosen, on_element, loss, low_end=at_low_end
+        )
 
     def _ends(self, coil: int, band: int, rows: Rows, across: Species, padder: Ints) -> tuple[_End, _End]:
         """Return what is in circuit at the low end and at the high end."""

@@ -9,6 +9,7 @@ from __future__ import annotations
 import numpy as np
 
 from partpick.search.circuits import AnyInts, Circuits, acting_parts, species_of_parts
+from partpick.search.drive import borne
 from partpick.search.figures import Columns, coarse_error, fine_error, quality_class, stray_class, whole_excess
 from partpick.search.networks import PARALLEL
 from partpick.search.problem import Bools, Floats, Ints, Problem
@@ -121,6 +122,7 @@ class SweptCircuits:
             keep &= loss * p.q_limit[band] <= 1 + _ROUNDING
         if np.isfinite(p.drift_limit):
             keep &= high.drift <= p.drift_limit * (1 + _ROUNDING)
+        keep &= low.bears & high.bears
         whole, none = np.zeros(len(place), dtype=np.int64), np.zeros(len(place))
         behind = padder >= 0
         everything = np.concatenate([parts.astype(np.int64), padder[:, None]], axis=1) if behind.any() else parts
@@ -178,14 +180,31 @@ class SweptCircuits:
             others = self._strays[place, band] * p.stray_tempco + middle * p.trimmer_tempco[band]
             own_spread = (weight * spread[parts]).sum(axis=1) + of_padder * spread[padder]
             drift = 0.5 * np.abs(nominal_drift + others / total) + 0.5 * (p.coil_tempco_spread[place] + own_spread)
-        return _End(network, total, 1.0 / (2 * np.pi * np.sqrt(inductance * total)), loss, drift)
+        bears = np.ones(len(place), dtype=np.bool_)
+        if p.drive is not None:
+            omega = 2 * np.pi * float((p.low_end if low_end else p.frequency)[band])
+            # the element is set so that the tank resonates at the end of the band, short of its own end
+            on_padder = (1.0 / (omega**2 * inductance) - (total - tuned)) / np.where(series > 0, series, 1.0)
+            on_padder = np.where(padder >= 0, on_padder, 0.0)
+            share = np.where(parts >= 0, (network / alone)[:, None], 0.0)
+            every = np.concatenate([parts, padder[:, None]], axis=1)
+            most = p.drive.on_parts(
+                omega, acting[every], np.concatenate([share, on_padder[:, None]], axis=1), every
+            )
+            element = p.drive.element_voltage / (p.drive.crest * (1.0 - on_padder))
+            limits = (most, element, p.drive.on_coil(omega * inductance, place), p.drive.on_trimmer(band))
+            bears = borne(p.drive.carrier(omega * inductance, loss), *limits)
+        return _End(network, total, 1.0 / (2 * np.pi * np.sqrt(inductance * total)), loss, drift, bears)
 
 
 class _End:
     """What is in circuit at one end of the band, (m,) each."""
 
-    def __init__(self, network: Floats, total: Floats, frequency: Floats, loss: Floats, drift: Floats) -> None:
+    def __init__(
+        self, network: Floats, total: Floats, frequency: Floats, loss: Floats, drift: Floats, bears: Bools
+    ) -> None:
         self.network, self.total, self.frequency, self.loss, self.drift = network, total, frequency, loss, drift
+        self.bears = bears
 
 
 def _acting_low(problem: Problem) -> Floats:

@@ -116,6 +116,7 @@ def section_problem(problem: Problem, sections: Sections) -> Problem:
         coil_tempco_spread=problem.coil_tempco_spread[own],
         coil_spread=problem.coil_spread[own],
         coil_adjust=problem.coil_adjust[own],
+        drive=None if problem.drive is None else problem.drive.of_coils(own),
         effort=problem.effort[own],
         coil_price=problem.coil_price[own],
         support=problem.support[own],

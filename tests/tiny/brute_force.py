@@ -81,6 +81,53 @@ def weights(problem: Problem, parts, shape, c, frequency):
     return out
 
 
+def shares_of_voltage(shape, c):
+    """Return the voltage on each part with 1 V across the network: from the charge that each carries."""
+    if shape == 0:
+        return [1.0] * len(c)
+    if shape == 1:
+        charge = 1.0 / sum(1 / x for x in c)
+        return [charge / x for x in c]
+    if shape == 2:
+        charge = c[1] * c[2] / (c[1] + c[2])
+        return [1.0, charge / c[1], charge / c[2]]
+    charge = value(3, c)
+    return [charge / c[0], charge / (c[1] + c[2]), charge / (c[1] + c[2])]
+
+
+def bears(problem: Problem, coil, band, frequency, inductance, loss, on_parts, on_element=0.0):
+    """Return whether all parts keep to their ratings; `on_parts`: (part, acting, its share of the tank's voltage)."""
+    drive = problem.drive
+    if drive is None:
+        return True
+    omega = 2 * math.pi * frequency
+    if drive.kind == "voltage":
+        volts = drive.amount
+    elif drive.kind == "power":  # what is stored is P/(w d), all of it in the capacitance at the peak
+        volts = math.sqrt(2 * drive.amount / (omega * loss) * omega**2 * inductance)
+    else:
+        volts = drive.amount * omega * inductance / loss
+    if not math.isfinite(volts):  # not known: only where nothing is rated
+        of_parts = [x[p] for p, *_ in on_parts for x in (drive.part_voltage, drive.part_current)]
+        rated = [*of_parts, drive.coil_current[coil], drive.trimmer_voltage[band]]
+        return all(math.isinf(x) for x in [*rated, *([drive.element_voltage] if on_element else [])])
+    low = 1 - ROUNDING
+    if volts / (omega * inductance) * drive.effective * low > drive.coil_current[coil]:
+        return False
+    if volts * drive.crest * low > drive.trimmer_voltage[band]:
+        return False
+    if volts * on_element * drive.crest * low > drive.element_voltage:
+        return False
+    for part, c, share in on_parts:
+        amperes = volts * share * omega * c  # peak, of the carrier
+        if amperes * drive.effective * low > drive.part_current[part]:
+            return False
+        plates = amperes / (omega * drive.part_capacitance[part])
+        if plates * drive.crest * low > drive.part_voltage[part]:
+            return False
+    return True
+
+
 def band_columns(problem: Problem, coil: int, band: int):
     """Return every admissible network of a coil at a band with its figures."""
     found = []
@@ -112,6 +159,12 @@ def band_columns(problem: Problem, coil: int, band: int):
         loss = problem.coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
         loss += sum(x * net / total * problem.part_loss[band][p] for x, p in zip(w, parts, strict=True))
         if problem.q_limit[band] > 0 and not 1 / loss >= problem.q_limit[band]:
+            continue
+        rise = net / raw if parts else 1.0
+        on_parts = [(p, x, s * rise) for p, x, s in zip(parts, c, shares_of_voltage(shape, c), strict=True)]
+        frequency = problem.frequency[band]
+        inductance = 1 / ((2 * math.pi * frequency) ** 2 * wanted)
+        if not bears(problem, coil, band, frequency, inductance, loss, on_parts):
             continue
         if math.isfinite(problem.drift_limit):
             set_to = min(max(wanted - net - strays, problem.trimmer_low[band]), problem.trimmer_high[band])
@@ -211,6 +264,16 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
         own = coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
         own += of_element * problem.tuning_loss[band] + sum(x * part_loss[band][p] for p, x in share)
         loss = math.nan if math.isnan(own) or math.isnan(loss) else max(loss, own)
+        shares = shares_of_voltage(shape, c)
+        on_parts = [(p, x, v * net / raw) for p, x, v in zip(across, c, shares, strict=True)]
+        on_element = 1.0
+        if padder is not None:  # the element where the tank resonates at the end of the band
+            tuned = 1 / ((2 * math.pi * frequency) ** 2 * inductance) - net - strays - middle
+            set_to = 1 / (1 / tuned - 1 / s)
+            on_parts.append((padder, s, set_to / (set_to + s)))
+            on_element = s / (set_to + s)
+        if not bears(problem, coil, band, frequency, inductance, own, on_parts, on_element):
+            return None
     if tuned_to[0] > asked_low * (1 - margin) * (1 + ROUNDING):
         return None
     if tuned_to[1] < asked_high * (1 + margin) * (1 - ROUNDING):

@@ -12,7 +12,7 @@ from collections import Counter
 from fractions import Fraction
 
 from partpick.search.problem import NEVER, Problem
-from tiny.brute_force import swept_column, weights
+from tiny.brute_force import bears, swept_column, weights
 from tiny.random_sections import places_of
 
 ROUNDING = 1e-11  # a design exactly on a limit is inside it
@@ -46,6 +46,12 @@ def circuit(problem: Problem, coil: int, band: int, parts: tuple[int, ...]):
     loss = problem.coil_loss[coil, band] + middle / total * problem.trimmer_loss[band]
     loss += sum(x * problem.part_loss[band][p] for x, p in zip(portion, parts, strict=True))
     if problem.q_limit[band] > 0 and not 1 / loss >= problem.q_limit[band] * (1 - ROUNDING):
+        return None
+    frequency = problem.frequency[band]
+    inductance = 1 / ((2 * math.pi * frequency) ** 2 * wanted)
+    rise = net / sum(c) if c else 1.0
+    on_parts = [(p, x, rise) for p, x in zip(parts, c, strict=True)]
+    if not bears(problem, coil, band, frequency, inductance, loss, on_parts):
         return None
     if math.isfinite(problem.drift_limit):
         set_to = min(max(wanted - net - strays, low), high)

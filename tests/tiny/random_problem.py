@@ -7,6 +7,7 @@ from fractions import Fraction
 
 import numpy as np
 
+from partpick.search.drive import Drive
 from partpick.search.problem import NEVER, PLENTY, Problem
 
 
@@ -124,6 +125,41 @@ def random_moved_problem(seed: int, *, bands: int, moved: int, **shape: object) 
         tuning_tempco=np.zeros(bands),
         moved_own_low=own_low,
         moved_own_high=own_high,
+    )
+
+
+def driven(problem: Problem, seed: int) -> Problem:
+    """Return the problem with a drive and ratings of which some bind, by the seed alone."""
+    rng = np.random.default_rng(seed + 2 * 10**6)
+    pick = lambda *choices: choices[int(rng.integers(0, len(choices)))]  # noqa: E731
+    kind = pick("power", "voltage", "current")
+    omega = 2 * np.pi * problem.frequency
+    reactance = float(np.median(1 / (omega * problem.wanted)))
+    volts = pick(30.0, 70.0, 100.0)
+    amount = {"power": volts**2 / 200 / reactance, "voltage": volts, "current": volts / 100 / reactance}[kind]
+    acting = np.array([float(value) for value in problem.part_value])
+    usual = 70.0 * float(omega.mean()) * float(np.median(acting)) / np.sqrt(2.0)
+
+    def ratings(count: int, middle: float, without: float) -> np.ndarray:
+        drawn = middle * rng.choice([0.4, 0.7, 1.0, 1.5, 3.0], count)
+        return np.where(rng.random(count) < without, np.inf, drawn)
+
+    parts = len(problem.part_value)
+    modulation = pick(0.0, 0.0, 1.0)
+    return replace(
+        problem,
+        drive=Drive(
+            kind=kind,
+            amount=amount,
+            crest=1 + modulation,
+            effective=np.sqrt((1 + modulation**2 / 2) / 2),
+            part_voltage=np.append(ratings(parts, 100.0, 0.3), np.inf),
+            part_current=np.append(ratings(parts, usual, 0.3), np.inf),
+            part_capacitance=np.append(acting * pick(1.0, 0.99), 1.0),
+            coil_current=ratings(problem.coils, 2 * usual, 0.6),
+            trimmer_voltage=ratings(problem.bands, 150.0, 0.8),
+            element_voltage=float(ratings(1, 100.0, 0.5)[0]),
+        ),
     )
 
 
