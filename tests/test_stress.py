@@ -14,6 +14,7 @@ import pytest
 from test_report_netlist import needs_ngspice, simulate
 
 import partpick
+from partpick.catalogue_defaults import is_class_2
 from partpick.ratings import DriveTable
 from partpick.report.netlist import netlist
 from partpick.report.result_json import result_json
@@ -259,3 +260,43 @@ def test_without_a_drive_nothing_is_added() -> None:
     """A plan that states no drive prints as before."""
     own = handmade.candidate()
     assert with_stress(handmade.request(), own) is own
+
+
+CAUTION_OF_EACH_KIND = {
+    "local rules": "Local law, electrical codes",
+    "burns and flash-over": "burns and flash-over: {volts} peak on C1 at beacon with the load off",
+    "stored charge": "hold charge after switching off ({volts} peak on C1 at beacon)",
+    "licence and exposure": "Transmitting needs a licence nearly everywhere ({volts} peak on C1 at beacon)",
+    "class 2": "no tank capacitors: at this drive ({volts} peak on C1 at beacon, load off)",
+    "heat": "Heat: {heat} in C1 at beacon",
+}
+
+
+@pytest.mark.parametrize("kind", CAUTION_OF_EACH_KIND)
+@pytest.mark.parametrize("limit", ["derated", "rated", None])
+def test_each_caution_tells_the_figure_that_called_for_it(kind: str, limit: str | None) -> None:
+    """At 30 V peak each is there, in table, sheet and JSON, whatever the limits; at 29 V none."""
+    own = rated(series_inductance=2e-9, q=100.0)
+    extra = (("drive", tuple({**QUIET, "voltage": 30.0}.items())),)
+    request = handmade.request(extra=extra)
+    candidate = with_stress(replace(request, limits=replace(request.limits, stress=limit)), own)
+    first = next(part for part in stress_of(candidate)["parts"] if part["reference"] == "C1")
+    shown = partpick.quantities.format_quantity
+    words = CAUTION_OF_EACH_KIND[kind].format(
+        volts=shown(first["voltage_load_off_peak_v"], "V"), heat=shown(first["dissipation_w"], "W")
+    )
+    for text in outputs(candidate):
+        assert words in text
+    assert not driven(own, voltage=29.0).extra["cautions"]
+
+
+def test_class_2_capacitors_that_were_picked_are_named() -> None:
+    """X7R is class 2 (EIA-198, from memory); C0G is not."""
+    assert any("Here: C1, C2." in text for text in driven(rated(grade="X7R"), voltage=100.0).extra["cautions"])
+    assert not any("Here:" in text for text in driven(voltage=100.0).extra["cautions"])
+
+
+@pytest.mark.parametrize("grade", ["C0G", "NP0", "N750", "U2J", "mica", "C0G high voltage", ""])
+def test_no_other_grade_is_called_class_2(grade: str) -> None:
+    """Class 1 and film are tank capacitors."""
+    assert not is_class_2(grade)

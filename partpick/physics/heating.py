@@ -58,6 +58,10 @@ def winding_surface(mean_diameter: ArrayLike, winding_length: ArrayLike) -> Floa
     surface : float or (n,) array
         pi D (l + D/2). [m2]
 
+    Notes
+    -----
+    Exact for a plain cylinder; air through an open coil cools it better.
+
     References
     ----------
     Geometry.
@@ -78,7 +82,11 @@ def bulk_surface(volume: ArrayLike) -> FloatArray:
     Returns
     -------
     surface : float or (n,) array
-        6 V^(2/3); a ball has a fifth less, a flat ring some tenths more. [m2]
+        6 V^(2/3). [m2]
+
+    Notes
+    -----
+    Within a fifth for a ball, some tenths below the surface of a flat ring.
 
     References
     ----------
@@ -105,7 +113,12 @@ def peak_flux_density(voltage: ArrayLike, frequency: ArrayLike, turns: ArrayLike
     Returns
     -------
     flux_density : float or (n,) array
-        V/(2 pi f N A); the mean over the section, a third or so more at the bore of a ring. [T]
+        V/(2 pi f N A). [T]
+
+    Notes
+    -----
+    The mean over the section; a third or so more at the bore of a ring. For a sine, below the core's own loss
+    peak, all flux in the core.
 
     References
     ----------
@@ -127,7 +140,11 @@ def usual_flux_density(frequency: ArrayLike) -> FloatArray:
     Returns
     -------
     flux_density : float or (n,) array
-        15 mT sqrt(1 MHz/f): heat, not saturation, sets it. [T]
+        15 mT sqrt(1 MHz/f). [T]
+
+    Notes
+    -----
+    Heat, not saturation, sets it, so that it is no rating; the range is 0.1 to 30 MHz, in still air.
 
     References
     ----------
