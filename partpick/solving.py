@@ -14,6 +14,7 @@ from partpick.layouts import check_layout, design_of, search_layout
 from partpick.objective import build_problem, tolerance_floor
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet, Unsettled
+from partpick.ratings import drive_of
 from partpick.receiver import is_receiver, of_one_section, with_oscillators
 from partpick.request import LEAST_WOUND, Band, Request, Trimmer
 from partpick.result import Candidate, CoilFigures, Proof, Result, Stage
@@ -147,6 +148,11 @@ def _refuse_unplanned(request: Request) -> None:
     for name, _ in request.extra:
         if name not in PLANNED_TABLES:
             raise RequestError(f"the table [{name}]: read and understood, but this version does not plan it yet")
+    if is_receiver(request) and drive_of(request) is not None and request.limits.stress is not None:
+        raise RequestError(
+            "limits.stress: this version does not keep the circuits of a [receiver] to ratings under [drive]; "
+            'state stress = "none", and what is over a rating is flagged'
+        )
 
 
 def _refit_pool(request: Request, catalogue: Catalogue) -> tuple[Capacitor, ...]:

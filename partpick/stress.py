@@ -391,24 +391,39 @@ def _crest(drive: DriveTable, rms: float | None) -> float | None:
 def _contacts(
     request: Request, candidate: Candidate, band: BandFigures, stresses: Sequence[PartStress]
 ) -> dict[str, float]:
-    """Return the rms current that each closed contact carries, load off: that of the capacitors it switches. [A]
+    """Return the rms current that each closed contact carries, load off: that of what it switches. [A]
 
-    Of a series network it is that of one part; the element's current where its padder is switched.
+    Contacts are named as by `band_switch`. Of a series network it is the current of one part.
     """
-    order = {own.name: place for place, own in enumerate(candidate.bands)}
-    height = {own.name: own.lowest for own in request.bands}
     amperes = {stress.reference: stress.current_load_off for stress in stresses}
+    trimmers = {stress.reference for stress in stresses if stress.kind == "trimmer"}
+    tree = parse_connection(band.connection)
+    across = [branch for branch in (() if tree is None else _beside_element(tree)) if not _holds(branch, "T")]
     carried: dict[str, float] = {}
     for name in band.contacts:
-        if request.switching == "shared":
-            switched = {name.replace("S", "C", 1)} & set(band.capacitors)
-        else:  # each capacitor on the contact of the highest band that it serves
-            served = {p.reference: max(p.bands, key=lambda b: height.get(b, 0.0)) for p in candidate.parts if p.bands}
-            switched = {r for r in band.capacitors if f"S{order[served[r]] + 1}" == name}
-        tree = parse_connection(band.connection)
-        if tree is not None and switched:
-            carried[name] = _into(tree, amperes, switched)
-    return carried
+        if name.startswith("SL"):
+            carried[name] = amperes[band.coil]
+        elif name.startswith("SV"):
+            carried[name] = amperes.get("T", 0.0)
+        elif name.startswith("ST"):
+            carried[name] = math.fsum(amperes[trimmer] for trimmer in trimmers)
+        else:
+            switched = _switched(request, candidate, band, name)
+            own = math.fsum(_into(branch, amperes, switched) for branch in across)
+            if request.switching == "separate":  # its trimmer is on the same contact
+                own += math.fsum(amperes[trimmer] for trimmer in trimmers)
+            carried[name] = own
+    return {name: rms for name, rms in carried.items() if rms > 0.0}
+
+
+def _switched(request: Request, candidate: Candidate, band: BandFigures, name: str) -> set[str]:
+    """Return the capacitors of a band on one contact: in a stack those that the contact's band adds."""
+    if request.switching == "shared":
+        return {name.replace("S", "C", 1)} & set(band.capacitors)
+    height = {own.name: own.lowest for own in request.bands}
+    served = {p.reference: max(p.bands, key=lambda b: height.get(b, 0.0)) for p in candidate.parts if p.bands}
+    number = {own.name: f"S{place + 1}" for place, own in enumerate(candidate.bands)}
+    return {reference for reference in band.capacitors if number.get(served[reference]) == name}
 
 
 def _into(tree: Connection, amperes: Mapping[str, float], switched: set[str]) -> float:

@@ -1,4 +1,4 @@
-"""Ratings as limits, from plan to result: grades that bear it, parts that share it, and what is told where none does."""
+"""Ratings as limits, from plan to result: grades that bear it, parts that share it, what is told where none does."""
 
 from __future__ import annotations
 
@@ -287,8 +287,10 @@ def test_contacts_carry_what_they_switch() -> None:
             found = stress(candidate, place)
             currents = {p["reference"]: p["current_load_off_rms_a"] for p in found["parts"]}
             told = {one["contact"]: one["load_off_rms_a"] for one in found["contacts"]}
-            assert math.fsum(told.values()) == pytest.approx(math.fsum(currents[c] for c in band.capacitors))
-            assert found["contact_open_peak_v"] == pytest.approx(40.0)
+            highest = candidate.bands[1].capacitors if layout == "stacked" else ()  # wired, on no contact
+            switched = math.fsum(currents[c] for c in band.capacitors if c not in highest)
+            assert math.fsum(told.values()) == pytest.approx(switched)
+            assert found["contact_open_peak_v"] == (pytest.approx(40.0) if told else None)
             assert set(told) <= set(band.contacts)
 
 
