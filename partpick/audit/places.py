@@ -34,23 +34,21 @@ def _overlooked(result: Result) -> Iterator[str]:
             yield f"rank {candidate.rank} is better than the front with {candidate.piece_count} pieces"
 
 
-def _figures(candidate: Candidate) -> tuple[float, ...]:
-    """Return what leads the front: the worst error, then the worst excess of a plan that has both.
+def _leading(candidate: Candidate) -> float:
+    """Return what leads the front: the worst error, the worst excess where every band is swept.
 
     Of a receiver it is the worst tracking error as a share of its limit.
     """
     tracking = candidate.extra.get("tracking")
     if isinstance(tracking, list):
-        return (max(float(entry["worst_error_hz"]) / float(entry["limit_hz"]) for entry in tracking),)
-    return tuple(figure for figure in (candidate.worst_error, candidate.worst_excess) if figure is not None)
+        return max(float(entry["worst_error_hz"]) / float(entry["limit_hz"]) for entry in tracking)
+    figure = candidate.worst_excess if candidate.worst_error is None else candidate.worst_error
+    return 0.0 if figure is None else figure
 
 
 def _leads(one: Candidate, other: Candidate) -> bool:
     """Whether one is better than another by more than rounding."""
-    for a, b in zip(_figures(one), _figures(other), strict=True):
-        if abs(a - b) > GAIN:
-            return a < b
-    return False
+    return _leading(one) < _leading(other) - GAIN
 
 
 def proof_faults(result: Result) -> Iterator[str]:
