@@ -86,7 +86,15 @@ def _drawer_files(folder: Path) -> dict[str, Path]:
     own = {name: folder / name for name in names if name in KNOWN_FILES}
     if not own.keys() & _READERS.keys():
         raise CatalogueError(f"drawer {_shown_path(folder)}: no file of parts in it; known are {known}")
+    for path in own.values():
+        _refuse_a_link_outside(path, folder)
     return own
+
+
+def _refuse_a_link_outside(path: Path, folder: Path) -> None:
+    """A drawer that someone else has packed must not have a file read that the command line did not name."""
+    if path.is_symlink() and folder.resolve() not in path.resolve().parents:
+        raise CatalogueError(f"{_shown_path(path)}: a link to a file outside the drawer; copy the file into it")
 
 
 def _shown_path(path: Path) -> str:
