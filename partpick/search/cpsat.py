@@ -209,7 +209,7 @@ class _ColumnModel:
         if self.known is not None:
             for band, row in zip(picks, self.known, strict=True):
                 for place, pick in enumerate(band):
-                    model.add_hint(pick, place == row)
+                    model.add_hint(pick, int(place == row))
         solver = self._run(model)
         if solver is None:
             return None
