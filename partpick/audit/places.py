@@ -6,6 +6,7 @@ from collections.abc import Iterator
 
 from partpick.result import Candidate, Result
 
+FRONT_BELOW = 1.0  # an error of the whole frequency or more is nothing to choose by, and not on a front
 GAIN = 1e-9  # by which a further piece must lower the figure that leads the front
 
 
@@ -29,6 +30,8 @@ def _overlooked(result: Result) -> Iterator[str]:
     if result.proof.status != "optimal" or not result.front:
         return
     for candidate in result.candidates:
+        if candidate.worst_error is not None and candidate.worst_error >= FRONT_BELOW:
+            continue
         within = [f for f in result.front if f.piece_count <= candidate.piece_count]
         if not within or all(_leads(candidate, f) for f in within):
             yield f"rank {candidate.rank} is better than the front with {candidate.piece_count} pieces"

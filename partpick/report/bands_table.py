@@ -20,6 +20,7 @@ from partpick.report.text import (
 from partpick.result import BandFigures, Candidate, PartLine
 
 LONGEST_NAME = 14
+MOST_COLUMNS = 80
 OHM = "\u03a9"
 LEAST_SHARE = 0.005  # of the loss, that is worth a word at the bench
 CAUSES = ("skin", "proximity", "core", "former", "capacitors", "trimmer", "tuning")
@@ -73,6 +74,10 @@ def _block(
         return []
     blank = " " * _INDENT
     figures = columns([head, *rows], left)
+    over = _INDENT + max(map(len, figures)) - MOST_COLUMNS
+    if over > 0:  # figures are not to be broken, a name may be
+        shortest = max(LONGEST_NAME - over, 4)
+        figures = columns([head, *([cut(row[0], shortest), *row[1:]] for row in rows)], left)
     lines = [blank + figures[0]]
     for band, line in zip(bands, figures[1:], strict=True):
         lines.append(blank + line)

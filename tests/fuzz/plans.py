@@ -204,7 +204,7 @@ def run_one(command: str, tables: Table, catalogue: Catalogue, by: str) -> str:
         assert len(str(error).splitlines()) == 1
         return "refused"
     for name, render in renderers(result, 1 if result.candidates else None, None, dial).items():
-        if name == "dial" and dial is None:
+        if (name == "dial" and dial is None) or (name == "tracking" and "receiver" not in tables):
             continue
         told = render()
         assert told.endswith("\n") or told.endswith("\r\n"), name
