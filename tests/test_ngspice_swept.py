@@ -6,6 +6,7 @@ import math
 import os
 import shutil
 import subprocess
+from dataclasses import replace
 from functools import cache
 from pathlib import Path
 from typing import Any
@@ -14,6 +15,9 @@ import numpy as np
 import pytest
 
 import partpick
+from partpick.physics.sliding_core import core_inductance_rise
+from partpick.physics.solenoid import solenoid_family
+from partpick.physics.variometer import coil_rings, tilted_mutual_by_line_integral
 from partpick.planfile import request_from_tables
 from partpick.result import Candidate
 
@@ -66,6 +70,29 @@ PLANS: dict[str, dict[str, Any]] = {
         "coil": {"measured": "1.5 µH", "self_capacitance": "2 pF"},
         "by": "error",
     },
+    "a sliding core": {
+        "band": [{"from": "1.8 MHz", "to": "2.2 MHz"}],
+        "tuning": {
+            "kind": "sliding core",
+            "diameter": "8 mm",
+            "length": "25 mm",
+            "permeability": 10,
+            "travel": "25 mm",
+        },
+    },
+    "a moving contact with the rest shorted": {
+        "band": [{"from": "2 MHz", "to": "4 MHz"}],
+        "tuning": {"kind": "moving contact", "unused": "shorted"},
+        "coil": {"forms": ["solenoid"], "self_resonance": 1.5, "reactance": "none"},
+    },
+    "a variometer in series": {
+        "band": [{"from": "1.6 MHz", "to": "2 MHz"}],
+        "tuning": {"kind": "variometer", "rotor": "25 mm", "from": "0", "to": "180"},
+    },
+    "a variometer in parallel": {
+        "band": [{"from": "1.9 MHz", "to": "2 MHz"}],
+        "tuning": {"kind": "variometer", "rotor": "25 mm", "from": "0", "to": "180", "connection": "parallel"},
+    },
 }
 
 
@@ -74,7 +101,12 @@ def proposed(name: str) -> Candidate:
     tables = dict(PLANS[name])
     by = tables.pop("by", "build")
     request = request_from_tables(tables, "pair", by=by)
-    return partpick.solve(request, partpick.load_catalogue(), top=1).candidates[0]
+    catalogue = partpick.load_catalogue()
+    if request.tuning is not None and request.tuning.moves_inductance:
+        # windings are simulated as they are at direct current: thin wire is the same at these frequencies
+        thin = tuple(wire for wire in catalogue.wires if wire.bare_diameter <= 0.11e-3)
+        catalogue = replace(catalogue, wires=thin)
+    return partpick.solve(request, catalogue, top=1).candidates[0]
 
 
 def farads(text: str) -> float:
@@ -108,8 +140,12 @@ def tank_lines(name: str, low_end: bool) -> list[str]:
     inductance = band.extra["inductance_low_h"] if low_end else band.inductance
     assert isinstance(inductance, float)
     omega = 2 * math.pi * float(str(band.extra["low_hz" if low_end else "high_hz"]))
-    lines = [f"L1 t l {inductance!r}", f"R1 l 0 {omega * inductance / COIL_Q!r}"]
-    lines.append(f"CS t 0 {band.stray + band.self_capacitance!r}")
+    moved = "setting_unit" in band.extra
+    lines = moved_lines(name, low_end) if moved else [f"L1 t l {inductance!r}"]
+    lines.append(f"R1 l 0 {omega * inductance / COIL_Q!r}")
+    own = band.extra.get(f"self_capacitance_{'low' if low_end else 'high'}_f", band.self_capacitance)
+    assert isinstance(own, float)
+    lines.append(f"CS t 0 {band.stray + own!r}")
     leads = PLANS[name].get("stray", {}).get("inductance")
     behind = band.extra["series_padder_f"] is not None
     across = band.capacitors[:-1] if behind else band.capacitors
@@ -130,7 +166,41 @@ def tank_lines(name: str, low_end: bool) -> list[str]:
             upper, lower = ends[part.reference]
             lines.append(f"{part.reference} {upper} {part.reference}x {part.value!r}")
             lines.append(f"L{part.reference} {part.reference}x {lower} {part.series_inductance or 1e-15!r}")
-    return [*lines, *element_lines(name, "e" if behind else "t", low_end)]
+    return lines if moved else [*lines, *element_lines(name, "e" if behind else "t", low_end)]
+
+
+def moved_lines(name: str, low_end: bool) -> list[str]:
+    """Return the coil between t and l by its windings at direct current: coupled coils, or one that a rod fills."""
+    keys, coil = PLANS[name]["tuning"], proposed(name).coils[0]
+    assert coil.turns and coil.mean_diameter and coil.pitch and coil.winding_length
+    wire = next(each for each in partpick.load_catalogue().wires if each.name == coil.wire)
+    family = solenoid_family(coil.turns, coil.mean_diameter, wire.bare_diameter, coil.pitch)
+    setting = proposed(name).bands[0].extra["setting_low" if low_end else "setting_high"]
+    assert isinstance(setting, float)
+    if keys["kind"] == "sliding core":
+        size = coil.turns, coil.mean_diameter, coil.winding_length
+        offset = setting / 1e3 - (coil.winding_length + 0.025) / 2
+        return [f"L1 t l {float(family[-1] + core_inductance_rise(*size, 0.008, 0.025, 10.0, offset))!r}"]
+    if keys["kind"] == "moving contact":
+        used, rest = int(setting), coil.turns - int(setting)
+        if not rest:
+            return [f"L1 t l {float(family[-1])!r}"]
+        own, idle = float(family[used - 1]), float(family[rest - 1])
+        coupling = (float(family[-1]) - own - idle) / 2 / math.sqrt(own * idle)
+        return [f"L1 t l {own!r}", f"L2 x 0 {idle!r}", "RX x 0 1e-6", f"K1 L1 L2 {coupling!r}"]
+    tuned = coil.extra["tuned"]
+    assert isinstance(tuned, dict)
+    count = int(tuned["element"].split()[2])
+    rotor = float(solenoid_family(count, 0.025, wire.bare_diameter, coil.pitch)[-1])
+    rings = coil_rings(coil.turns, coil.mean_diameter, coil.pitch), coil_rings(count, 0.025, coil.pitch)
+    mutual = float(tilted_mutual_by_line_integral(*rings, setting, 180))
+    lower, upper = ("t", "l") if keys.get("connection") == "parallel" else ("y", "l")
+    stator_end = "l" if lower == "t" else "y"
+    return [
+        f"L1 t {stator_end} {float(family[-1])!r}",
+        f"L2 {lower} {upper} {rotor!r}",
+        f"K1 L1 L2 {mutual / math.sqrt(float(family[-1]) * rotor)!r}",
+    ]
 
 
 def peak(lines: list[str], near: float, folder: Path) -> float:
