@@ -55,8 +55,8 @@ def element(kind: str, rng: np.random.Generator) -> dict[str, Any]:
         return {"low": f"{low} pF", "high": f"{high} pF", "sections": 2, "parallel": pick(1, 2)}
     if kind == "varactor":
         series = pick({}, {"series": "100 pF"})
-        return {"zero_bias": pick("120 pF", "500 pF"), "grading": pick(0.5, 1.2), "from": "1 V", "to": "9 V", "count": pick(1, 2),
-                "connection": pick("parallel", "back to back"), **series}  # fmt: skip
+        junction = {"zero_bias": pick("120 pF", "500 pF"), "grading": pick(0.5, 1.2), "from": "1 V", "to": "9 V"}
+        return {**junction, "count": pick(1, 2), "connection": pick("parallel", "back to back"), **series}
     if kind == "sliding core":
         return {"diameter": pick("6 mm", "8 mm"), "length": "20 mm", "permeability": pick(5, 30), "travel": "25 mm"}
     if kind == "moving contact":

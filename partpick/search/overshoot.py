@@ -128,8 +128,9 @@ def _look(
     going = np.arange(len(start))
     for looks in range(_LOOKS + 1):
         going = going[(place[going] >= 0) & (place[going] < len(twin.value))]
-        at, some = place[going], rows.take(going)
-        low, high = low_total[going], high_total[going]
+        at, every = place[going], len(going) == len(start)
+        some = rows if every else rows.take(going)
+        low, high = (low_total, high_total) if every else (low_total[going], high_total[going])
         whole = high + acting(twin.value[at], some.leads)
         if step > 0:  # the overshoot at the low end grows from here on, up to the last that covers at the high end
             reach = some.at_low_end(low + acting(twin.least_from[at], some.leads_low))
@@ -139,19 +140,17 @@ def _look(
             left = low + acting(twin.most_to[at], some.leads_low) >= some.need * (1 - GRAIN)
             left &= whole >= some.strays - GRAIN * some.need
         left &= reach < best[going]
-        going, at = going[left], at[left]
-        if not len(going):
+        if not left.any():
             return
         if looks == _LOOKS:
-            best[going] = reach[left]
+            best[going[left]] = reach[left]
             return
-        some = some.take(left)
-        low_end = low[left] + acting(twin.low[at], some.leads_low)
-        high_end = whole[left]
-        covers = (low_end >= some.need * (1 - GRAIN)) & (high_end <= some.most + GRAIN * some.need)
-        covers &= high_end >= some.strays - GRAIN * some.need
-        found = np.maximum(some.at_low_end(low_end), some.at_high_end(high_end))
+        low_end = low + acting(twin.low[at], some.leads_low)
+        covers = (low_end >= some.need * (1 - GRAIN)) & (whole <= some.most + GRAIN * some.need)
+        covers &= left & (whole >= some.strays - GRAIN * some.need)
+        found = np.maximum(some.at_low_end(low_end), some.at_high_end(whole))
         best[going] = np.where(covers, np.minimum(best[going], found), best[going])
+        going = going[left]
         place[going] += step
 
 
