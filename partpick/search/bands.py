@@ -130,7 +130,7 @@ def search_bands(
             if reason is not None:
                 raise Stopped(reason)
             monitor.report("the best plans", *so_far(ranking, bound))
-            if ranking.worth_it(coils, bound):
+            if coils and ranking.worth_it(coils, bound):
                 choice = evaluator.best(coils, problem.by, ranking.to_beat(coils))
                 if choice is not None:
                     ranking.add(choice)

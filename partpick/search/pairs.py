@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from partpick.progress import Monitor
-from partpick.search.bounds import IMPOSSIBLE, OUT_OF_REACH, Bounds, pack, packed_fields
+from partpick.search.bounds import BELOW_PIECES, IMPOSSIBLE, OUT_OF_REACH, Bounds, pack, packed_fields
 from partpick.search.choose import Stopped
 from partpick.search.problem import NEVER, Floats, Ints, Problem
 
@@ -32,14 +32,25 @@ class PairBounds:
         self.useful = np.flatnonzero(bounds.possible.any(axis=1))
 
     def in_order(self) -> Iterator[tuple[int, tuple[int, ...]]]:
-        """Yield (packed bound, pair of coils) by rising bound."""
+        """Yield (packed bound, pair of coils) by rising bound; at first a bound of all pairs, without coils.
+
+        So that no pair is looked at where single coils alone decide.
+        """
         by = self.problem.by
+        yield self._least(by), ()
         classes = self.bounds.classes(by)
         figures = {name: figure[self.useful] for name, figure in classes.items()}
         if by == "error":
             yield from self._by_worst(figures)
         else:
             yield from self._by_total(figures, by)
+
+    def _least(self, by: str) -> int:
+        """Return a bound of all pairs, from the fewest parts that any coil needs at each band."""
+        if by != "build":
+            return 0
+        fewest = int(self.bounds.fewest.min(axis=0, initial=IMPOSSIBLE).sum())
+        return min(self.size + fewest, (1 << (62 - BELOW_PIECES)) - 1) << BELOW_PIECES
 
     def _by_total(self, figures: dict[str, Ints], by: str) -> Iterator[tuple[int, tuple[int, ...]]]:
         """Waves by number of pieces where that leads the order; inside a wave batches by rising bound."""
