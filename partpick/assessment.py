@@ -16,16 +16,19 @@ from partpick.circuit import Design, Network, Tank, connection_text
 from partpick.errors import InternalError
 from partpick.moved_figures import element_warnings, moving_lines, settings, tuned_keys
 from partpick.objective import TRIMMER_Q
+from partpick.oscillator_figures import oscillator_figures
 from partpick.parts import Capacitor
 from partpick.physics.resonance import resonance_frequency
 from partpick.quantities import format_quantity
 from partpick.ratings import element_rating, trimmer_rating
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
+from partpick.search.divided import CLAPPED, DIVIDED, OWN_PARTS, SPLIT
 from partpick.search.networks import PARALLEL, SHUNTED
 from partpick.tank_figures import load_note, tank_bandwidth, tank_figures
 from partpick.tuning import element_ends
 
+DIVIDER_ROLES = ("output to common", "control to common")
 AGREEMENT = 1e-9  # of the frequency, or of the excess, between search and recheck
 
 
@@ -46,6 +49,7 @@ def assess(
     references = _coil_references(request, design)
     names, lines = _capacitor_lines(request, capacitors, design)
     contacts = contacts_of(request, design)
+    lines = _with_roles(lines, names, design)
     bands = []
     for index in range(len(request.bands)):
         tank = Tank(request=request, coils=coils, capacitors=capacitors, design=design, index=index)
@@ -117,6 +121,22 @@ def _capacitor_lines(
             lines.append(_capacitor_line(reference, capacitors[index], (band.name,)))
         names.append(tuple(own))
     return names, lines
+
+
+def _with_roles(
+    lines: list[PartLine], names: Sequence[tuple[str, ...]], design: Design
+) -> list[PartLine]:
+    """Return the lines, those of a divider saying which half they are."""
+    roles: dict[str, str] = {}
+    for own, network in zip(names, design.networks, strict=True):
+        for place, role in zip(network.divider or (), DIVIDER_ROLES, strict=False):
+            roles[own[place]] = role
+        if network.shape == CLAPPED:
+            roles[own[0]] = "in series with the coil"
+    return [
+        replace(line, description=f"{line.description}, {roles[line.reference]}") if line.reference in roles else line
+        for line in lines
+    ]
 
 
 def _shared_lines(
@@ -240,7 +260,7 @@ def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFig
         inductance=tank.inductance(),
         capacitance=None if swept else tank.total(),
         network=None if swept else tank.across(),
-        stray=band.stray,
+        stray=tank.wiring,
         self_capacitance=tank.self_capacitance,
         trimmer=tank.trimmer if band.trimmer else None,
         coil=reference,
@@ -257,19 +277,26 @@ def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFig
         drift_spread=spread,
         hertz_per_farad=-resonance / (2 * tank.total()),
         coil_q=tank.coil_q(),
-        extra={**(_coverage(tank, resonance) if swept else {}), **tank_figures(tank, resonance)},
+        extra={
+            **(_coverage(tank, resonance) if swept else {}),
+            **tank_figures(tank, resonance),
+            **oscillator_figures(tank, names),
+        },
     )
 
 
 def _swept_connection(names: tuple[str, ...], network: Network) -> str:
     """Return `(T + C3) | C1`: the element with its padder, then what is across the coil."""
+    if network.shape == SPLIT:
+        return " | ".join([f"(T + {names[0]} + {names[1]})", *names[2:]])
     across = names if network.series is None else names[:-1]
     element = "T" if network.series is None else f"(T + {names[-1]})"
     if not across:
         return element
     text = connection_text(across, network.shape)
+    open_shapes = {PARALLEL, SHUNTED, *((DIVIDED,) if len(across) > OWN_PARTS[DIVIDED] else ())}
     return (
-        f"{element} | {text}" if network.shape in (PARALLEL, SHUNTED) or len(across) == 1 else f"{element} | ({text})"
+        f"{element} | {text}" if network.shape in open_shapes or len(across) == 1 else f"{element} | ({text})"
     )
 
 

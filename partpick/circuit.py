@@ -10,9 +10,11 @@ from typing import TypeVar
 
 from partpick.candidates import Coils
 from partpick.objective import TRIMMER_Q
+from partpick.oscillating import oscillator_keys, tap_shares
 from partpick.parts import Capacitor
 from partpick.physics.resonance import effective_capacitance
 from partpick.request import Band, Request
+from partpick.search.divided import CLAPPED, DIVIDED, FIRST_OF_DIVIDER, NO_DEVICE, OWN_PARTS, SPLIT, Device
 from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
 from partpick.tuning import ElementEnds, element_ends
 
@@ -32,6 +34,12 @@ class Network:
         """All capacitors of the band, the series padder last."""
         return self.parts if self.series is None else (*self.parts, self.series)
 
+    @property
+    def divider(self) -> tuple[int, int] | None:
+        """Places of a divider's two capacitors among the pieces, output first; None where there is no divider."""
+        first = FIRST_OF_DIVIDER.get(self.shape)
+        return None if first is None else (first, first + 1)
+
 
 @dataclass(frozen=True, kw_only=True)
 class Design:
@@ -40,6 +48,7 @@ class Design:
     coils: tuple[int, ...]  # (B,) index into Coils
     networks: tuple[Network, ...]  # (B,)
     taps: tuple[int | None, ...] = ()  # (B,) turns of the section in use, None: the whole coil; (): no taps
+    common: tuple[int | None, ...] = ()  # (B,) turns between output and common terminal of a Hartley oscillator
     members: tuple[int, ...] = ()  # the capacitors that there are, where bands share them
     closed: tuple[tuple[int, ...], ...] = ()  # (B, any) places in `members` of those in circuit at each band
 
@@ -101,9 +110,50 @@ class Tank:
         return self.design.networks[self.index]
 
     @property
+    def wiring(self) -> float:
+        """Wiring and switch, and what the device acts as across the coil of a Hartley oscillator. [F]"""
+        return self.band.stray + self.device_across
+
+    @property
     def strays(self) -> float:
         """Wiring and self-capacitance, of a swept band at its upper end. [F]"""
-        return self.band.stray + self.self_capacitance
+        return self.wiring + self.self_capacitance
+
+    @property
+    def common_turns(self) -> int | None:
+        """Turns between output and common terminal of a Hartley oscillator, None in any other circuit."""
+        return self.design.common[self.index] if self.design.common else None
+
+    @property
+    def device(self) -> Device:
+        """Capacitance of the device across the halves of a divider, output first. [F]"""
+        keys = oscillator_keys(self.request)
+        if keys is None or self.network.divider is None:
+            return NO_DEVICE
+        return keys["output_capacitance"], keys["input_capacitance"]
+
+    @property
+    def device_across(self) -> float:
+        """What the device acts as across a coil with its common terminal at a tap. [F]"""
+        keys, turns = oscillator_keys(self.request), self.common_turns
+        if keys is None or turns is None:
+            return 0.0
+        output, control, mutual = tap_shares(self.coils, self.coil, turns)
+        own = (output + mutual) ** 2 * keys["output_capacitance"]
+        return float(own + (control + mutual) ** 2 * keys["input_capacitance"])
+
+    def halves(self, *, low_end: bool = False) -> tuple[float, float]:
+        """Return what both halves of the divider act as, the device included, output first. [F]"""
+        places = self.network.divider
+        assert places is not None
+        output, control = (self.acting(place, low_end=low_end) for place in places)
+        return output + self.device[0], control + self.device[1]
+
+    def acting(self, place: int, *, low_end: bool = False) -> float:
+        """Return what one of the band's pieces acts as. [F]"""
+        part = self.capacitors[self.network.pieces[place]]
+        frequency = self.frequency(low_end=low_end)
+        return float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency))
 
     @property
     def trimmer(self) -> float:
@@ -122,7 +172,9 @@ class Tank:
     def across(self, *, low_end: bool = False) -> float:
         """Return what the band's capacitors across the coil act as. [F]"""
         leads = self.request.stray.inductance
-        return network_capacitance(self.capacitors, self.network, self.frequency(low_end=low_end), leads)
+        return network_capacitance(
+            self.capacitors, self.network, self.frequency(low_end=low_end), leads, self.device
+        )
 
     def element(self) -> ElementEnds | None:
         """Return the tuning element of a swept band, None for a fixed one or where the coil itself is tuned."""
@@ -137,6 +189,9 @@ class Tank:
         if element is None:
             return 0.0
         own = element.high if low_end else element.low
+        if self.network.shape == SPLIT:
+            output, control = self.halves(low_end=low_end)
+            return 1.0 / (1.0 / own + 1.0 / output + 1.0 / control)
         if self.network.series is None:
             return own
         padder = self.capacitors[self.network.series]
@@ -157,17 +212,26 @@ class Tank:
         chosen = [self.capacitors[i] for i in self.network.parts]
         frequency = self.frequency(low_end=low_end)
         acting = [acting_capacitance(part, frequency) for part in chosen]
-        shares = network_shares(acting, self.network.shape)
+        gains = [acts / part.value for part, acts in zip(chosen, acting, strict=True)]
         across = self.across(low_end=low_end)
-        leads = across / _combine(acting, self.network.shape) if acting else 1.0
-        weighted = [
-            (part, share * acts / part.value * leads * across / total)
-            for part, share, acts in zip(chosen, shares, acting, strict=True)
-        ]
+        if self.network.shape == SPLIT:
+            slopes = self._split_weights(acting, total, low_end=low_end)
+        else:
+            shape = self.network.shape
+            shares = network_shares(acting, shape, self.device)
+            whole = _combine(_beside_device(acting, shape, self.device), shape) if acting else 1.0
+            slopes = [share * across / whole * across / total for share in shares]
+        weighted = [(part, slope * gain) for part, slope, gain in zip(chosen, slopes, gains, strict=True)]
         if self.network.series is not None:
             padder, tuned = self.capacitors[self.network.series], self.tuned(low_end=low_end)
             weighted.append((padder, tuned / padder.value * tuned / total))
         return weighted
+
+    def _split_weights(self, acting: list[float], total: float, *, low_end: bool) -> list[float]:
+        """Return d ln(total) / d ln of each part as it acts, where the divider stands with the tuning element. [-]"""
+        tuned, halves = self.tuned(low_end=low_end), self.halves(low_end=low_end)
+        of_halves = [tuned**2 / half**2 * own / total for half, own in zip(halves, acting, strict=False)]
+        return [*of_halves, *(each / total for each in acting[2:])]
 
     def element_weight(self, total: float, *, low_end: bool = False) -> float:
         """Return d ln(total) / d ln(tuning element), 0 in a fixed band. [-]"""
@@ -248,20 +312,42 @@ def acting_capacitance(part: Capacitor, frequency: float) -> float:
     return float(effective_capacitance(part.value, part.series_inductance or 0.0, frequency))
 
 
-def network_capacitance(capacitors: Sequence[Capacitor], network: Network, frequency: float, leads: float) -> float:
+def network_capacitance(
+    capacitors: Sequence[Capacitor],
+    network: Network,
+    frequency: float,
+    leads: float,
+    device: Device = NO_DEVICE,
+) -> float:
     """Return how a band's network acts at a frequency, series inductances included. [F]"""
     chosen = [capacitors[i] for i in network.parts]
     if not chosen:
         return 0.0
     if any(part.series_inductance for part in chosen):
         acting = [acting_capacitance(part, frequency) for part in chosen]
-        whole = _combine(acting, network.shape)
+        whole = _combine(_beside_device(acting, network.shape, device), network.shape)
     else:
-        whole = float(_combine([part.exact for part in chosen], network.shape))
+        exact = _beside_device([part.exact for part in chosen], network.shape, device)
+        whole = float(_combine(exact, network.shape))
     return float(effective_capacitance(whole, leads, frequency)) if leads else whole
 
 
+def _beside_device(c: list[T], shape: int, device: Device) -> list[T]:
+    """Return the parts of a network with the device across the halves of its divider. [F]"""
+    first = FIRST_OF_DIVIDER.get(shape)
+    if first is None or device == NO_DEVICE:
+        return c
+    grown = list(c)
+    for place, own in enumerate(device, first):
+        grown[place] = grown[place] + type(grown[place])(own)
+    return grown
+
+
 def _combine(c: list[T], shape: int) -> T:
+    if shape in OWN_PARTS:
+        own, zero = OWN_PARTS[shape], type(c[0])(0)
+        beside = sum(c[own:], zero)
+        return beside if shape == SPLIT else _combine(c[:own], SERIES) + beside
     if shape == PARALLEL or len(c) == 1:
         total = c[0]
         for value in c[1:]:
@@ -279,9 +365,17 @@ def _combine(c: list[T], shape: int) -> T:
     return c[0] * pair / (c[0] + pair)
 
 
-def network_shares(c: list[float], shape: int) -> list[float]:
+def network_shares(c: list[float], shape: int, device: Device = NO_DEVICE) -> list[float]:
     """Return d ln(network) / d ln(part) of each part of a network of plain capacitances. [-]"""
-    net = _combine(c, shape) if c else 0.0
+    grown = _beside_device(c, shape, device)
+    net = _combine(grown, shape) if c else 0.0
+    if shape in OWN_PARTS:
+        own = OWN_PARTS[shape]
+        beside = [value / net for value in c[own:]]
+        if shape == SPLIT:
+            return [0.0] * own + beside
+        branch = _combine(grown[:own], SERIES)
+        return [branch**2 * c[i] / grown[i] ** 2 / net for i in range(own)] + beside
     if shape == PARALLEL or len(c) == 1:
         return [value / net for value in c]
     if shape == SERIES:
@@ -293,6 +387,11 @@ def network_shares(c: list[float], shape: int) -> list[float]:
     return [net / c[0], net * c[1] / pair**2, net * c[2] / pair**2]
 
 
+def _in_brackets(names: Sequence[str], needed: bool) -> str:
+    text = " + ".join(names)
+    return f"({text})" if needed else text
+
+
 def connection_text(names: Sequence[str], shape: int) -> str:
     """Return a network in words of references: `C1 | (C2 + C3)`; parallel `|`, series `+`."""
     if not names:
@@ -301,4 +400,7 @@ def connection_text(names: Sequence[str], shape: int) -> str:
         return f"{names[0]} | ({names[1]} + {names[2]})"
     if shape == CHAINED:
         return f"{names[0]} + ({names[1]} | {names[2]})"
+    if shape in (DIVIDED, CLAPPED):
+        own = OWN_PARTS[shape]
+        return " | ".join([_in_brackets(names[:own], len(names) > own), *names[own:]])
     return (" | " if shape == PARALLEL else " + ").join(names)

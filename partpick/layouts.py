@@ -7,6 +7,7 @@ from functools import partial
 
 from partpick.circuit import Design, Network
 from partpick.errors import RequestError
+from partpick.oscillating import oscillator_keys
 from partpick.progress import Monitor
 from partpick.receiver import is_receiver, receiver_bands
 from partpick.request import Request
@@ -96,6 +97,9 @@ def design_of(request: Request, choice: Choice) -> Design:
             Network(parts=columns.network_parts(0), shape=int(columns.shape[0]), series=columns.series_padder(0))
             for columns in choice.columns
         )
+        keys = oscillator_keys(request)
+        if keys is not None and keys["circuit"] == "hartley":
+            return Design(coils=coils, networks=networks, common=taps)
         return Design(coils=coils, networks=networks, taps=taps)
     if request.switching == "stacked":
         return _stacks(request, choice, coils, taps)

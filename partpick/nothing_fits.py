@@ -9,6 +9,7 @@ from dataclasses import dataclass, replace
 from partpick.candidates import realisable_coils
 from partpick.errors import RequestError
 from partpick.layouts import check_layout
+from partpick.oscillating import MOST_PARTS, oscillator_keys
 from partpick.parts import Catalogue
 from partpick.progress import Monitor, Unsettled
 from partpick.quantities import format_quantity
@@ -23,6 +24,7 @@ LADDER = (1.1, 1.25, 1.5, 2.0, 3.0, 5.0, 1e6)  # how far Q and drift are eased, 
 LEADS_DECIDE = f"of a wound coil below {format_quantity(LEAST_WOUND, 'H')} the leads decide"
 MOST_COILS = 3  # more together are not looked at one by one
 MORE_IN_A_SET = 3  # capacitors tried beyond the size asked for
+LARGE_TRANSCONDUCTANCE = 1e3  # S, of no device: start-up is left aside
 CLOSE_MISS = 5  # times the error limit: up to here a wider error limit is the first thing to think of
 
 Again = Callable[[Request, Catalogue, Monitor], Candidate | None]
@@ -115,6 +117,7 @@ def _trials(request: Request) -> Iterator[_Trial]:
     yield from _count_trials(request)
     yield from _quality_trials(request)
     yield from _coil_trials(request)
+    yield from _oscillator_trials(request)
     yield _Trial(
         "quantity", replace(request, units=1), lambda _: "as many as wanted", _stock_words, _in_plenty
     )
@@ -158,7 +161,10 @@ def _margin_of(candidate: Candidate) -> float:
 def _count_trials(request: Request) -> Iterator[_Trial]:
     limits = request.limits
     most = 3 if request.capacitors.connect == "any" else 6
-    most = min(most, limits.parts_per_band + 2) if request.switching != "shared" else 0  # no such limit on a set
+    beyond = 2
+    if oscillator_keys(request):  # dividers are many
+        most, beyond = MOST_PARTS, 1
+    most = min(most, limits.parts_per_band + beyond) if request.switching != "shared" else 0  # no such limit on a set
     for count in range(limits.parts_per_band + 1, most + 1):
         more = replace(request, limits=replace(limits, parts_per_band=count))
         yield _Trial("parts_per_band", more, _most_in_a_band, lambda c: f"{_most_in_a_band(c)} would do")
@@ -212,6 +218,28 @@ def _quality_trials(request: Request) -> Iterator[_Trial]:
     if request.stray.share is not None:
         free = replace(request, stray=replace(request.stray, share=None))
         yield _Trial("share", free, _worst_share, lambda c: f"{100 * _worst_share(c):.3g} % would do")
+
+
+def _oscillator_trials(request: Request) -> Iterator[_Trial]:
+    keys = oscillator_keys(request)
+    if keys is None:
+        return
+    eager = tuple((key, LARGE_TRANSCONDUCTANCE if key == "transconductance" else value) for key, value in keys.items())
+    extra = tuple((name, eager if name == "oscillator" else values) for name, values in request.extra)
+    free = replace(request, extra=extra)
+    words = "with {} the first that fits would start, all else as asked for"
+    yield _Trial(
+        "transconductance",
+        free,
+        _transconductance,
+        lambda c: words.format(format_quantity(_transconductance(c), "S", digits=3)),
+    )
+
+
+def _transconductance(candidate: Candidate) -> float:
+    """Return what the device of a candidate must have for its worst band to start with the margin. [S]"""
+    found = [dict(band.extra["oscillator"]) for band in candidate.bands]  # type: ignore[call-overload]
+    return max(float(each["needed_s"]) * float(each["margin_wanted"]) for each in found)
 
 
 def _coil_trials(request: Request) -> Iterator[_Trial]:

@@ -58,6 +58,11 @@ PAIR_OPTIONS = (
     PlanOption("--tuning", "tuning", "KIND:LOW..HIGH", 'Such as "variable capacitor:12pF..150pF".'),
     PlanOption("--load", "load.resistance", "R", "Resistance across the tank."),
     PlanOption("--loaded-q", "load.loaded_q", "Q", "Q wanted with the load."),
+    PlanOption("--oscillator", "oscillator.circuit", "CIRCUIT", "colpitts, clapp or hartley: it must start."),
+    PlanOption("--transconductance", "oscillator.transconductance", "GM", "Of its device, such as 5mS."),
+    PlanOption("--start-margin", "oscillator.margin", "TIMES", "Over the least that lets it start (3)."),
+    PlanOption("--input-capacitance", "oscillator.input_capacitance", "C", "Of the device, control to common."),
+    PlanOption("--output-capacitance", "oscillator.output_capacitance", "C", "Of the device, output to common."),
 )
 
 

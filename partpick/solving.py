@@ -12,6 +12,7 @@ from partpick.catalogue import select_capacitors
 from partpick.errors import RequestError
 from partpick.layouts import check_layout, design_of, search_layout
 from partpick.objective import build_problem, tolerance_floor
+from partpick.oscillating import check_oscillator, with_oscillator
 from partpick.parts import Capacitor, Catalogue
 from partpick.progress import Monitor, Quiet, Unsettled
 from partpick.ratings import drive_of
@@ -27,7 +28,7 @@ from partpick.trimming import problem_with_trimmers, trimmers_on_offer, with_cho
 
 LOW_FREQUENCY = 1e3  # Hz
 TOO_SMALL = "its leads decide: no coil for a tank"
-PLANNED_TABLES = ("temperature", "spread", "drive", "receiver")  # of the further tables of a plan
+PLANNED_TABLES = ("temperature", "spread", "drive", "receiver", "oscillator")  # of the further tables of a plan
 
 
 def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Monitor | None = None) -> Result:
@@ -103,7 +104,7 @@ def _prepared(request: Request, catalogue: Catalogue) -> tuple[Coils, tuple[Capa
     coils = realisable_coils(request, catalogue)
     capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
     floor = tolerance_floor(coils, capacitors, request.limits.error)
-    problem = build_problem(request, coils, capacitors, floor)
+    problem = with_oscillator(request, coils, build_problem(request, coils, capacitors, floor))
     source = column_source(request, coils, problem)
     return coils, capacitors, *problem_with_trimmers(request, problem, source, trimmers_on_offer(request, catalogue))
 
@@ -145,6 +146,7 @@ def windings(
 def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
     check_layout(request)
+    check_oscillator(request)
     for name, _ in request.extra:
         if name not in PLANNED_TABLES:
             raise RequestError(f"the table [{name}]: read and understood, but this version does not plan it yet")

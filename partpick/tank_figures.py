@@ -78,7 +78,8 @@ def steepness(tank: Tank) -> float:
         return 1.0
     leads, frequency = tank.request.stray.inductance, tank.frequency()
     below, above = (
-        network_capacitance(tank.capacitors, tank.network, frequency * (1 + step), leads) for step in (-STEP, STEP)
+        network_capacitance(tank.capacitors, tank.network, frequency * (1 + step), leads, tank.device)
+        for step in (-STEP, STEP)
     )
     return 1.0 + (above - below) / (4 * STEP * tank.total())
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from partpick.candidates import Coils, Ints, inside_as_wound, inside_in_circuit
+from partpick.oscillating import oscillator_source
 from partpick.request import Request
 from partpick.search.columns import ColumnSource
 from partpick.search.problem import Problem
@@ -15,6 +16,8 @@ LEAST_TURNS = 3  # in a section; fewer cannot be tapped neatly
 
 def column_source(request: Request, coils: Coils, problem: Problem) -> ColumnSource:
     """Return the columns of every coil, and of its tapped sections where the plan allows taps."""
+    if problem.oscillator is not None:
+        return oscillator_source(coils, problem)
     if not request.coil.taps:
         return ColumnSource(problem)
     wound = inside_as_wound(request, coils)

@@ -11,7 +11,7 @@ import scipy.linalg
 from hypothesis import given
 from hypothesis import strategies as st
 
-from partpick.physics.oscillator import clapp, colpitts, growth_rate, hartley, threshold
+from partpick.physics.oscillator import clapp, colpitts, divider_threshold, growth_rate, hartley, threshold
 
 PUBLISHED = Path(__file__).parent / "published"
 coils = st.floats(1e-7, 1e-4)
@@ -174,3 +174,42 @@ def test_impedance_scales_the_threshold(coil: float, q: float, c1: float, c2: fl
         return
     assert other.transconductance * k == pytest.approx(one.transconductance, rel=1e-6)
     assert other.frequency == pytest.approx(one.frequency, rel=1e-9)
+
+
+@given(coils, qs, dividers, dividers, small, st.sampled_from([np.inf, 2e-11, 1e-10, 1e-9]))
+def test_the_closed_form_of_a_divider_is_the_threshold(
+    coil: float, q: float, c1: float, c2: float, beside: float, c0: float
+) -> None:
+    """Both circuits, the coil with a capacitance across it, against the roots of the characteristic polynomial."""
+    behind = 1 / (1 / c1 + 1 / c2 + 1 / c0)
+    resistance = np.sqrt(coil / (behind + beside)) / q
+    closed = divider_threshold(coil, resistance, c1, c2, beside, c0)
+    if np.isinf(c0):
+        circuit = colpitts(coil, resistance, c1, c2, beside)
+    else:
+        circuit = clapp(coil, resistance, c0, c1, c2, coil_capacitance=beside)
+    found = threshold(circuit)
+    if np.isnan(closed.transconductance):
+        gains = (1e-5, 1e-3, 0.1, 10.0)
+        assert np.isnan(found.transconductance) or max(growth_rate(circuit, gains)) < 1e-6 * float(circuit.scale)
+        return
+    assert found.transconductance == pytest.approx(closed.transconductance, rel=1e-7)
+    assert found.frequency == pytest.approx(closed.frequency, rel=1e-8)
+
+
+@given(coils, qs, st.floats(2e-11, 2e-10), dividers, dividers, small)
+def test_clapp_with_a_capacitance_across_the_coil_agrees_with_its_state_equations(
+    coil: float, q: float, c0: float, c1: float, c2: float, beside: float
+) -> None:
+    """Unknowns: output, control, the node between coil and series capacitor, coil current."""
+    resistance = coil / q / np.sqrt(coil * (c0 + beside))
+    found = divider_threshold(coil, resistance, c1, c2, beside, c0)
+    if np.isnan(found.transconductance):
+        return
+    storage = np.array(
+        [[c1 + c0, 0, -c0, 0], [0, c2 + beside, -beside, 0], [-c0, -beside, c0 + beside, 0], [0, 0, 0, coil]]
+    )
+    for share in (0.99, 1.01):
+        gm = share * float(found.transconductance)
+        flow = np.array([[0, gm, 0, 0], [0, 0, 0, -1], [0, 0, 0, 1], [0, 1, -1, resistance]])
+        assert (state_space(storage, flow) > 0) == (share > 1)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator, Mapping
+from typing import Any
 
 from partpick.connection import Connection, Parallel, Part, parse_connection, references_of, without
 from partpick.errors import InternalError
@@ -48,7 +49,8 @@ def band_faults(candidate: Candidate, band: BandFigures, request: Request) -> It
 def _fixed(candidate: Candidate, band: BandFigures, tree: Connection | None, request: Request) -> Iterator[str]:
     assert band.target is not None
     values = {line.reference: line for line in candidate.parts}
-    network = _behind(_acting(tree, values, band.target), request.stray.inductance, band.target)
+    bare = _acting(tree, values, band.target, None, _device(band, request))
+    network = _behind(bare, request.stray.inductance, band.target)
     total = network + band.stray + band.self_capacitance + (band.trimmer or 0.0)
     resonance = _frequency(band.inductance, total)
     error = (resonance - band.target) / band.target
@@ -97,26 +99,44 @@ def _total_with_element(
     across, tuned = tree, 0.0
     if tree is not None and ELEMENT in references_of(tree):
         own, across = without(tree, ELEMENT)
-        tuned = _acting(own, values, frequency, element)
-    others = _behind(_acting(across, values, frequency), request.stray.inductance, frequency)
+        tuned = _acting(own, values, frequency, element, _device(band, request))
+    bare = _acting(across, values, frequency, None, _device(band, request))
+    others = _behind(bare, request.stray.inductance, frequency)
     return others + tuned + band.stray + (band.trimmer or 0.0)
 
 
 def _acting(
-    tree: Connection | None, values: Mapping[str, PartLine], frequency: float, element: float | None = None
+    tree: Connection | None,
+    values: Mapping[str, PartLine],
+    frequency: float,
+    element: float | None,
+    device: Mapping[str, float],
 ) -> float:
-    """Return the capacitance that a connection shows at a frequency, series inductances included. [F]"""
+    """Return the capacitance that a connection shows at a frequency, series inductances and device included. [F]"""
     if tree is None:
         return 0.0
     if isinstance(tree, Part):
         if tree.reference == ELEMENT:
             return element or 0.0
         line = values[tree.reference]
-        return _behind(line.value or 0.0, line.series_inductance or 0.0, frequency)
-    branches = [_acting(branch, values, frequency, element) for branch in tree.branches]
+        own = _behind(line.value or 0.0, line.series_inductance or 0.0, frequency)
+        return own + device.get(tree.reference, 0.0)
+    branches = [_acting(branch, values, frequency, element, device) for branch in tree.branches]
     if isinstance(tree, Parallel):
         return math.fsum(branches)
     return 1.0 / math.fsum(1.0 / branch for branch in branches)
+
+
+def _device(band: BandFigures, request: Request) -> dict[str, float]:
+    """Return what of an oscillator's device is across which capacitor. [F]"""
+    told: object = band.extra.get("oscillator")
+    stated: dict[str, Any] = dict(dict(request.extra).get("oscillator", ()))
+    if not isinstance(told, Mapping) or told["output_capacitor"] is None:
+        return {}
+    return {
+        told["output_capacitor"]: stated["output_capacitance"],
+        told["control_capacitor"]: stated["input_capacitance"],
+    }
 
 
 def _behind(capacitance: float, inductance: float, frequency: float) -> float:

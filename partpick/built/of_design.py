@@ -105,12 +105,13 @@ def _varying(
         shape=tank.network.shape,
         leads=request.stray.inductance,
         wiring=sources.place(_stray_source(request, WIRING, band.name)),
-        wiring_capacitance=band.stray,
+        wiring_capacitance=tank.wiring,
         winding=sources.place(_stray_source(request, SELF_CAPACITANCE, figures.coil)),
         winding_capacitance=tank.own_capacitance(low_end=low_end),
         moved=_moved(tank, figures.coil, sources, low_end=low_end),
         trimmer=band.trimmer,
         swept=_swept(tank, pieces, sources, low_end=low_end),
+        device=tank.device,
     )
 
 

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from partpick.physics.resonance import effective_capacitance, resonance_frequency
 from partpick.request import Trimmer
+from partpick.search.divided import FIRST_OF_DIVIDER, NO_DEVICE, OWN_PARTS, SPLIT, Device
 from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
 
 Floats = NDArray[np.float64]
@@ -66,23 +67,41 @@ class VaryingTank:
     swept: Swept | None = None
     moved: Moved | None = None
     low_end: VaryingTank | None = None  # of a swept band
+    device: Device = NO_DEVICE  # F, across the halves of an oscillator's divider; without deviations
 
     def network(self, x: Floats) -> Floats:
         """Return how the capacitors act in builds with deviations `x` (S, n). [F]"""
         if not self.parts:
             return np.zeros(x.shape[1])
+        whole = connected(self._acting(x), self.shape)
+        return effective_capacitance(whole, self.leads, self.frequency) if self.leads else whole
+
+    def _acting(self, x: Floats) -> list[Floats]:
+        """Return what each capacitor acts as, the device across those of a divider. [F]"""
         acting = [
             effective_capacitance(value * (1.0 + x[part]), inductance, self.frequency)
             for part, value, inductance in zip(self.parts, self.values, self.series_inductances, strict=True)
         ]
-        whole = connected(acting, self.shape)
-        return effective_capacitance(whole, self.leads, self.frequency) if self.leads else whole
+        return [each + beside for each, beside in zip(acting, self._beside(), strict=True)]
+
+    def _beside(self) -> list[float]:
+        """Return what of the device is across each capacitor. [F]"""
+        beside = [0.0] * len(self.parts)
+        if self.shape in FIRST_OF_DIVIDER:
+            first = FIRST_OF_DIVIDER[self.shape]
+            beside[first : first + 2] = self.device
+        return beside
+
+    def _tuned(self, x: Floats, swept: Swept) -> Floats:
+        """Return the tuning element with all that is in series with it. [F]"""
+        whole = swept.acting(x, self.frequency)
+        return connected([whole, *self._acting(x)[:2]], SERIES) if self.shape == SPLIT else whole
 
     def fixed_capacitance(self, x: Floats) -> Floats:
         """Return all capacitance but the trimmer. [F]"""
         wiring = self.wiring_capacitance * (1.0 + x[self.wiring])
         fixed = self.network(x) + wiring + self.winding_capacitance * (1.0 + x[self.winding])
-        return fixed if self.swept is None else fixed + self.swept.acting(x, self.frequency)
+        return fixed if self.swept is None else fixed + self._tuned(x, self.swept)
 
     def built_inductance(self, x: Floats) -> Floats:
         """Return the inductance. [H]"""
@@ -121,18 +140,31 @@ class VaryingTank:
         for part, slope in zip(self.parts, self._slopes(across), strict=True):
             found[part] = found.get(part, 0.0) + slope / total
         if self.swept is not None:
-            found |= self._swept_weights(self.swept, total)
+            for source, weight in self._swept_weights(self.swept, total).items():
+                found[source] = found.get(source, 0.0) + weight
         if self.moved is not None:  # of the inductance, but it counts alike
             found[self.moved.source] = self.moved.element_share
         return found
 
     def _swept_weights(self, swept: Swept, total: float) -> dict[int, float]:
-        whole = float(swept.acting(self._nothing_off(), self.frequency)[0])
+        whole = float(self._tuned(self._nothing_off(), swept)[0])
+        if self.shape == SPLIT:
+            return self._split_weights(swept, whole, total)
         if swept.padder is None:
             return {swept.source: whole / total}
         padder = float(effective_capacitance(swept.padder_capacitance, swept.padder_inductance, self.frequency))
         by_padder = whole**2 / padder * padder / swept.padder_capacitance
         return {swept.source: whole**2 / swept.capacitance / total, swept.padder: by_padder / total}
+
+    def _split_weights(self, swept: Swept, whole: float, total: float) -> dict[int, float]:
+        """Return the weights of element and divider in series; a part that is both halves counts twice."""
+        grown = [float(each[0]) for each in self._acting(self._nothing_off())]
+        found = {swept.source: whole**2 / swept.capacitance / total}
+        for place in range(2):
+            own = grown[place] - self._beside()[place]
+            slope = whole**2 * own / grown[place] ** 2 * own / self.values[place] / total
+            found[self.parts[place]] = found.get(self.parts[place], 0.0) + slope
+        return found
 
     def _slopes(self, across: float) -> list[float]:
         """Return c dC/dc of each capacitor, C being the network with its leads. [F]"""
@@ -140,18 +172,23 @@ class VaryingTank:
             return []
         pairs = zip(self.values, self.series_inductances, strict=True)
         acting = [float(effective_capacitance(value, inductance, self.frequency)) for value, inductance in pairs]
-        bare = float(connected([np.array(each) for each in acting], self.shape))
+        grown = [each + beside for each, beside in zip(acting, self._beside(), strict=True)]
+        bare = float(connected([np.array(each) for each in grown], self.shape)) or 1.0
         # c/(1 - w^2 L c) has the logarithmic derivative 1/(1 - w^2 L c), the ratio of acting to own capacitance
         by_leads = across / bare
-        slopes = network_slopes(acting, self.shape)
+        slopes = network_slopes(grown, self.shape)
         return [
-            across * by_leads * slope / bare * each / value
-            for slope, each, value in zip(slopes, acting, self.values, strict=True)
+            across * by_leads * slope / bare * each / with_device * each / value
+            for slope, each, with_device, value in zip(slopes, acting, grown, self.values, strict=True)
         ]
 
 
 def connected(c: Sequence[Floats], shape: int) -> Floats:
-    """Return a network of up to six capacitances in parallel, or of one of the shapes of three. [F]"""
+    """Return a network of up to six capacitances in parallel, of one of the shapes of three, or with a divider. [F]"""
+    if shape in OWN_PARTS:
+        own = OWN_PARTS[shape]
+        beside = reduce(np.add, c[own:], np.zeros_like(c[0]))
+        return beside if shape == SPLIT else connected(c[:own], SERIES) + beside
     if shape == PARALLEL or len(c) == 1:
         return reduce(np.add, c)
     if shape == SERIES:
@@ -165,6 +202,10 @@ def connected(c: Sequence[Floats], shape: int) -> Floats:
 
 def network_slopes(c: Sequence[float], shape: int) -> list[float]:
     """Return c dC/dc of each part of a network of plain capacitances. [F]"""
+    if shape in OWN_PARTS:
+        own = OWN_PARTS[shape]
+        divider = [0.0] * own if shape == SPLIT else network_slopes(c[:own], SERIES)
+        return [*divider, *c[own:]]
     if shape == PARALLEL or len(c) == 1:
         return list(c)
     if shape == SERIES:

@@ -111,6 +111,7 @@ def clapp(
     shunt_capacitance: ArrayLike = 0.0,
     output_conductance: ArrayLike = 0.0,
     control_conductance: ArrayLike = 0.0,
+    coil_capacitance: ArrayLike = 0.0,
 ) -> Characteristic:
     """Return the characteristic polynomial of a Clapp oscillator.
 
@@ -132,6 +133,8 @@ def clapp(
         Output to common: device and load. [S]
     control_conductance : float or (n,) array
         Control to common: device and bias resistors. [S]
+    coil_capacitance : float or (n,) array
+        Across the coil alone: self-capacitance, strays, further capacitors. [F]
 
     Returns
     -------
@@ -140,20 +143,22 @@ def clapp(
 
     Notes
     -----
-    As `colpitts` with Z = r + s L + 1/(s C0). Without conductances and C3 the threshold is exactly
-    r w^2 C1 C2, and grows fast as C0 gets smaller.
+    As `colpitts` with Z = (r + s L)/(1 + s Cp (r + s L)) + 1/(s C0). Without conductances, C3 and Cp the
+    threshold is exactly r w^2 C1 C2, and grows fast as C0 gets smaller.
 
     References
     ----------
     J. K. Clapp, An inductance-capacitance oscillator of unusual frequency stability, Proc. IRE 36 (1948)
     356-358.
     """
-    c0 = np.asarray(series_capacitance, float)
+    c0, cp = np.asarray(series_capacitance, float), np.asarray(coil_capacitance, float)
     c1, c2, c3 = (np.asarray(c, float) for c in (output_capacitance, control_capacitance, shunt_capacitance))
     around = c1 * c2 / (c1 + c2) + c3
-    scale = _angular(inductance, c0 * around / (c0 + around))
-    coil = _polynomial(1.0, np.multiply(scale * c0, series_resistance), np.multiply(scale**2 * c0, inductance))
-    over = _polynomial(0.0, scale * c0)
+    scale = _angular(inductance, c0 * around / (c0 + around) + cp)
+    winding = _polynomial(series_resistance, np.multiply(scale, inductance))
+    across = _sum(_polynomial(1.0), _product(_polynomial(0.0, scale * cp), winding))
+    in_series = _polynomial(0.0, scale * c0)
+    coil, over = _sum(across, _product(in_series, winding)), _product(in_series, across)
     return _three_point(coil, over, scale, c1, c2, c3, output_conductance, control_conductance)
 
 
@@ -268,6 +273,66 @@ def threshold(characteristic: Characteristic) -> Threshold:
     omega = characteristic.scale * np.sqrt(np.take_along_axis(w2, first, axis=-1)[..., 0])
     found = np.isfinite(least)
     return Threshold(np.where(found, least, np.nan)[()], np.where(found, omega / (2 * np.pi), np.nan)[()])
+
+
+def divider_threshold(
+    inductance: ArrayLike,
+    series_resistance: ArrayLike,
+    output_capacitance: ArrayLike,
+    control_capacitance: ArrayLike,
+    coil_capacitance: ArrayLike = 0.0,
+    series_capacitance: ArrayLike = np.inf,
+) -> Threshold:
+    """Return the threshold of a Colpitts or Clapp oscillator without conductances, in closed form.
+
+    Parameters
+    ----------
+    inductance : float or (n,) array
+        Of the coil. [H]
+    series_resistance : float or (n,) array
+        Of the coil at the frequency of oscillation. [ohm]
+    output_capacitance : float or (n,) array
+        Output to common, device included. [F]
+    control_capacitance : float or (n,) array
+        Control to common, device included. [F]
+    coil_capacitance : float or (n,) array
+        Across the coil. [F]
+    series_capacitance : float or (n,) array
+        Between coil and divider; infinity: a wire, as in the Colpitts circuit. [F]
+
+    Returns
+    -------
+    threshold : Threshold
+        As from `threshold`, many times as fast; nan if nothing oscillates.
+
+    Notes
+    -----
+    Between output and control the coil with what is across and behind it shows R + jX. The divider wants
+    X = 1/(wD) with D its halves in series, a quadratic in w^2 of which the lower root counts, and then
+    g = w^2 C1 C2 R. Exact to rounding at any Q of this circuit.
+
+    References
+    ----------
+    As `colpitts` and `clapp`; held against `threshold` in tests/test_physics_oscillator.py.
+    """
+    coil, loss, c1, c2, cp, c0 = (
+        np.asarray(given, float)
+        for given in (
+            inductance,
+            series_resistance,
+            output_capacitance,
+            control_capacitance,
+            coil_capacitance,
+            series_capacitance,
+        )
+    )
+    behind = 1.0 / (1.0 / c1 + 1.0 / c2 + 1.0 / c0)
+    linear = coil * (behind + 2.0 * cp) - cp * (behind + cp) * loss**2
+    root = linear**2 - 4.0 * coil**2 * cp * (cp + behind)
+    found = (root >= 0.0) & (linear > 0.0)
+    square = 2.0 / np.where(found, linear + np.sqrt(np.where(found, root, 0.0)), np.nan)
+    shown = loss / ((1.0 - square * coil * cp) ** 2 + square * (cp * loss) ** 2)
+    return Threshold((square * c1 * c2 * shown)[()], (np.sqrt(square) / (2 * np.pi))[()])
 
 
 def growth_rate(characteristic: Characteristic, transconductance: ArrayLike) -> FloatArray:

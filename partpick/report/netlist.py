@@ -12,6 +12,7 @@ from dataclasses import dataclass, field
 
 from partpick.connection import Connection, Part, Series, parse_connection, without
 from partpick.quantities import format_quantity
+from partpick.report.oscillator import oscillator_of
 from partpick.report.text import clean
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate, PartLine, Result
@@ -49,6 +50,8 @@ class _Tank:
     lines: list[str] = field(default_factory=list)
     inner: int = 0
 
+    device: dict[str, float] = field(default_factory=dict)  # F, across the halves of an oscillator's divider
+
     def new_node(self) -> str:
         self.inner += 1
         return f"{self.node}_{self.inner}"
@@ -59,7 +62,7 @@ def _tanks(request: Request, candidate: Candidate) -> Iterator[_Tank]:
     for band in candidate.bands:
         for frequency, element, words in _points(band):
             count += 1
-            tank = _Tank(node=f"t{count}", expected=frequency)
+            tank = _Tank(node=f"t{count}", expected=frequency, device=_device(band))
             inductance, own = _at_end(band, frequency)
             tank.lines += ["*", f"* {tank.node}: {_comment(band.name)}{words}, {format_quantity(frequency, 'Hz', 7)}"]
             tank.lines.append(f"I{tank.node} 0 {tank.node} DC 0 AC 1")
@@ -136,6 +139,9 @@ def _branch(
         value = element if tree.reference == "T" and element is not None else part.value if part else None
         assert value is not None, f"{tree.reference} has no value"
         _capacitor(tank, tree.reference, value, part, high, low)
+        if beside := tank.device.get(tree.reference):
+            tank.lines.append(f"* the device across {tree.reference}")
+            tank.lines.append(f"Cdevice{tree.reference}{tank.node} {high} {low} {beside!r}")
     elif isinstance(tree, Series):
         nodes = [high, *(tank.new_node() for _ in tree.branches[1:]), low]
         for branch, above, below in zip(tree.branches, nodes, nodes[1:], strict=False):
@@ -163,6 +169,17 @@ def _capacitor(tank: _Tank, name: str, value: float, part: PartLine | None, high
     if q is not None:
         reactance = 1 / (2 * math.pi * tank.expected * value)
         tank.lines.append(f"R{label} {behind} {low} {reactance / q!r}")
+
+
+def _device(band: BandFigures) -> dict[str, float]:
+    """Return what of an oscillator's device is across which capacitor. [F]"""
+    keys = oscillator_of(band)
+    if keys is None or keys["output_capacitor"] is None:
+        return {}
+    return {
+        keys["output_capacitor"]: float(keys["output_capacitance_f"]),
+        keys["control_capacitor"]: float(keys["input_capacitance_f"]),
+    }
 
 
 def _plain(tank: _Tank, name: str, value: float) -> None:

@@ -11,6 +11,7 @@ from partpick.quantities import format_percent
 from partpick.report import charts, html, sheet_parts
 from partpick.report.cautions import ALWAYS
 from partpick.report.drawing import circuit
+from partpick.report.oscillator import start_table
 from partpick.report.pictures import HOW_TO_GET, Picture, pictures
 from partpick.report.sheet_style import STYLE
 from partpick.report.spread_table import alignment_steps
@@ -56,6 +57,7 @@ def _candidate(result: Result, candidate: Candidate) -> list[str]:
         html.section("What to wind", sheet_parts.windings(candidate)),
         html.section("Circuit", _circuits(candidate)),
         html.section("Switch", _switch(candidate)),
+        html.section("Start of the oscillator", start_table(candidate)),
         html.section("Readings to expect", *_readings(candidate)),
         html.section("Errors and tolerance", _errors(result, candidate)),
         html.section("At the stated drive", _stress(candidate)),

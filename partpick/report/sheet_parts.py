@@ -10,6 +10,7 @@ from partpick.quantities import format_percent, format_quantity
 from partpick.report import html
 from partpick.report.bands_table import with_labels
 from partpick.report.bom import price_without_wire
+from partpick.report.oscillator import common_terminal
 from partpick.report.text import figure, length, quantity, signed_percent, signed_shift, slope
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 
@@ -154,6 +155,7 @@ def switch_table(candidate: Candidate) -> str:
         network = with_labels(band.connection, candidate.parts, keep=True) or "no capacitor"
         trimmers = [p.reference for p in candidate.parts if p.kind == "trimmer" and band.name in p.bands]
         across = " | ".join([network, *trimmers])
+        tap += common_terminal(band)
         rows.append([band.name, " ".join(band.contacts) or "none", f"{band.coil}{tap}", across])
     return html.table(head, rows) + html.paragraph("| in parallel, + in series.", class_="soft")
 

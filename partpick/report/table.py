@@ -6,6 +6,7 @@ from collections.abc import Sequence
 
 from partpick.quantities import format_percent, format_quantity
 from partpick.report.bands_table import bands_in_full, share_of_strays, swept_range, with_labels, worst_q
+from partpick.report.oscillator import common_terminal
 from partpick.report.spread_table import built_units
 from partpick.report.stress_table import stress_lines
 from partpick.report.switch_text import switch_lines
@@ -153,7 +154,7 @@ def _what(candidate: Candidate, one_band: bool) -> str:
     labels = with_labels(band.connection, candidate.parts)
     coil = "; ".join(coil.label for coil in candidate.coils)
     tap = f", tap at turn {band.tap_turns}" if band.tap_turns is not None else ""
-    return f"{labels or 'no capacitor'} with {coil}{tap}"
+    return f"{labels or 'no capacitor'} with {coil}{tap}{common_terminal(band)}"
 
 
 def _rank(candidate: Candidate) -> str:

@@ -28,6 +28,7 @@ from partpick.search.grades import Grades
 from partpick.search.networks import Rows, Stream, Table, network_tables
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 from partpick.search.ratings import can_bear, inside_ratings
+from partpick.search.startup import starts
 from partpick.search.swept import SweptColumns
 
 
@@ -55,9 +56,7 @@ class ColumnSource:
             if twin is not None:
                 self.tables.append(self.tables[twin])
                 continue
-            values = problem.species[band][valid]
-            most = problem.most_parts if len(values) else 0
-            self.tables.append(network_tables(values, most, problem.connect_any))
+            self.tables.append(self._networks_of(problem.species[band][valid], bool(problem.swept[band])))
         self.grades = Grades(problem)
         self.gain = problem.part_gain(), problem.part_gain(low_end=True)
         self._bearing_cache: Cache = {}
@@ -72,8 +71,19 @@ class ColumnSource:
         ]  # windows differ only by the share limit, which a band without capacitors is spared
         driven = problem.drive is not None and not problem.connect_any
         self._bearing = BearingTables(problem, self.valid, self._bearing_cache) if driven else None
-        self._swept = SweptColumns(problem, self.tables, self.valid, self.grades, self.gain)
-        self._least_excess = LeastExcess(problem, self.tables, self.valid)
+        self._swept, self._least_excess = self._for_swept_bands()
+
+    def _networks_of(self, values: Floats, swept: bool) -> list[Table | Stream]:
+        """Return the tables of every number of parts over some capacitances as they act at a band."""
+        most = self.problem.most_parts if len(values) else 0
+        return network_tables(values, most, self.problem.connect_any)
+
+    def _for_swept_bands(self) -> tuple[SweptColumns, LeastExcess]:
+        """Return what makes the columns of swept bands, and what bounds their excess."""
+        return (
+            SweptColumns(self.problem, self.tables, self.valid, self.grades, self.gain),
+            LeastExcess(self.problem, self.tables, self.valid),
+        )
 
     def sharing_tables(self, problem: Problem) -> ColumnSource:
         """Return a source for other coils with the same capacitors and bands."""
@@ -99,7 +109,8 @@ class ColumnSource:
 
     def _same_as_before(self, band: int) -> int | None:
         for earlier in range(band):
-            if np.array_equal(self.problem.species[band], self.problem.species[earlier]):
+            alike = self.problem.swept[band] == self.problem.swept[earlier] or self.problem.oscillator is None
+            if alike and np.array_equal(self.problem.species[band], self.problem.species[earlier]):
                 return earlier
         return None
 
@@ -122,7 +133,7 @@ class ColumnSource:
             for some, own in groups:
                 if parts < len(own):
                     best[some, band] = self._least_error(band, some, own[parts], low[some, band], high[some, band])
-        if np.isfinite(p.drift_limit):
+        if np.isfinite(p.drift_limit) and p.oscillator is None:
             best[~steady_enough(p, parts)] = np.inf
         if p.drive is not None:
             best[~can_bear(p, parts)] = np.inf
@@ -213,7 +224,7 @@ class ColumnSource:
         error = np.sqrt(wanted / total) - 1.0
         values = p.species[band][rows.species]
         alone = np.maximum(rows.value, 1e-30)
-        share_of_parts = network_weights(values, rows.shape, alone) * self.gain[0][band][chosen]
+        share_of_parts = network_weights(values, rows.shape, alone, p.device) * self.gain[0][band][chosen]
         share_of_parts *= (network / alone)[:, None]  # behind leads a network grows faster than its parts
         loss = self._loss(coil, band, chosen, share_of_parts * (network / total)[:, None], trimmer / total)
         keep = np.abs(error) <= p.error_limit[band] * (1 + 1e-12) + 1e-15
@@ -229,6 +240,8 @@ class ColumnSource:
         if p.drive is not None:
             rise = network / np.maximum(rows.value, 1e-30)
             keep &= inside_ratings(p, coil, band, values, chosen, rows.shape, rise, loss)
+        if p.oscillator is not None:
+            keep = starts(p, coil, band, values, rows.shape, total, loss, keep)
         whole = np.zeros(len(chosen), dtype=np.int64)
         columns = Columns(
             coil=whole + coil,

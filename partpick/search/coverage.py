@@ -78,7 +78,10 @@ class LeastExcess:
     def _improve(self, band: int, rows: Overshoot, parts: int, best: Floats) -> None:
         """Lower `best` to the least excess with exactly `parts` parts where that is less."""
         p, tables = self.problem, self.tables[band]
+        bare = len(tables[0].inside(-np.inf, np.inf).value) > 0  # no capacitor across the coil will do
         alone = SeriesPadders(p.tuning_high[band : band + 1], p.tuning_low[band : band + 1])
+        if parts == 0 and not bare:
+            return
         if parts == 0:
             nothing = np.zeros_like(rows.strays)
             _without_network(replace(rows, strays=nothing, slack=nothing), alone, best)
@@ -87,10 +90,10 @@ class LeastExcess:
         if p.moved[band]:
             return
         behind = series_padders(p, band, self.valid[band])
-        if parts == 1:
-            _without_network(replace(rows, slack=np.zeros_like(rows.slack)), behind, best)
-        else:
+        if parts > 1:
             _with_network(rows, behind, tables[parts - 1], self._twin(band, parts - 1), best)
+        elif bare:
+            _without_network(replace(rows, slack=np.zeros_like(rows.slack)), behind, best)
 
     def _twin(self, band: int, parts: int) -> TwinTable | Stream:
         """Return the networks of a band with what they are at both of its ends, where they are in a table."""

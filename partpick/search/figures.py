@@ -10,6 +10,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from partpick.search.divided import NO_DEVICE, OWN_PARTS, Device, divided_weights
 from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
 from partpick.search.problem import Floats, Ints
 
@@ -121,9 +122,15 @@ def padded(chosen: Ints, most_parts: int) -> Ints:
     return filled
 
 
-def network_weights(part: Floats, shape: NDArray[np.int8], network: Floats) -> Floats:
+def network_weights(
+    part: Floats, shape: NDArray[np.int8], network: Floats, device: Device = NO_DEVICE
+) -> Floats:
     """Return d ln(network) / d ln(part), (m, k): how much each part weighs in its network. [-]"""
     weights = np.zeros_like(part)
+    for kind in OWN_PARTS:
+        rows = shape == kind
+        if rows.any():
+            weights[rows] = divided_weights(part[rows], kind, network[rows], device)
     for kind in (PARALLEL, SERIES, SHUNTED, CHAINED):
         rows = shape == kind
         if not rows.any():

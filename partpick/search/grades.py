@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from partpick.search.divided import OWN_PARTS
 from partpick.search.networks import PARALLEL, SERIES, Rows
 from partpick.search.problem import PLENTY, Bools, Ints, Problem
 
@@ -87,6 +88,9 @@ class Grades:
         twins = rows.species[:, place] == rows.species[:, place - 1]
         if place == 1:
             twins &= (rows.shape == PARALLEL) | (rows.shape == SERIES)
+        for shape, own in OWN_PARTS.items():  # each place of a divider is its own
+            if place <= own:
+                twins &= rows.shape != shape
         rank = self.problem.part_rank
         return np.asarray(~twins | (rank[chosen[:, place]] >= rank[chosen[:, place - 1]]))
 

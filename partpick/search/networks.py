@@ -23,6 +23,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from partpick.search.divided import NO_DEVICE, OWN_PARTS, Device, divided_values
+
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
@@ -57,15 +59,16 @@ class Rows:
 class Table:
     """All networks of k parts, sorted by capacitance."""
 
-    def __init__(self, rows: Rows) -> None:
+    def __init__(self, rows: Rows, device: Device = NO_DEVICE) -> None:
         self._rows = rows
+        self._device = device  # across the halves of a divider
         self._order = np.argsort(rows.value)  # equal capacitances in any order: content tells them apart later
         self.value = rows.value[self._order]
         self.parts = rows.species.shape[1]
 
     def acting_as(self, values: Floats) -> Floats:
         """Return every network's capacitance with other capacitances of the species, in the order of `value`. [F]"""
-        return network_values(values[self._rows.species], self._rows.shape)[self._order]
+        return network_values(values[self._rows.species], self._rows.shape, self._device)[self._order]
 
     def any_inside(self, low: Floats, high: Floats) -> NDArray[np.bool_]:
         """Whether some network lies in each closed interval [low, high]."""
@@ -148,14 +151,14 @@ class Stream:
     def _joins(self, a: float, wanted: Floats) -> Iterator[tuple[Callable[[Floats], Floats], Floats]]:
         yield (lambda inner: a + inner), wanted - a
         if self.connect_any:
-            yield (lambda inner: a * inner / (a + inner)), _series_rest(a, wanted)
+            yield (lambda inner: a * inner / (a + inner)), series_rest(a, wanted)
 
     def _inner_intervals(self, low: Floats, high: Floats) -> Iterator[tuple[Floats, Floats]]:
         for a in self.single:
             slack = 1e-12 * np.maximum(np.where(np.isfinite(high), np.abs(high), 0.0), a)
             yield low - a - slack, high - a + slack
             if self.connect_any:
-                yield _series_rest(a, low), _series_rest(a, high)
+                yield series_rest(a, low), series_rest(a, high)
 
     @staticmethod
     def _inner_interval(a: float, low: float, high: float, in_series: bool) -> tuple[float, float]:
@@ -163,7 +166,7 @@ class Stream:
         slack = 1e-12 * max([a, *ends])  # rounding; exact test follows
         if not in_series:
             return low - a - slack, high - a + slack
-        lower, upper = _series_rest(a, np.array([low - slack, high + slack]))
+        lower, upper = series_rest(a, np.array([low - slack, high + slack]))
         return float(lower), float(upper)
 
     def _joined(self, index: int, a: float, rows: Rows, in_series: bool) -> Rows:
@@ -183,7 +186,7 @@ class Stream:
         return Rows(value, species, shape.astype(np.int8))
 
 
-def _series_rest(a: float, wanted: Floats) -> Floats:
+def series_rest(a: float, wanted: Floats) -> Floats:
     """Return what in series with `a` gives each wanted capacitance; inf where `a` is too small."""
     usual = (wanted < a) & np.isfinite(wanted)
     rest = a * np.where(usual, wanted, 0.0) / np.where(usual, a - wanted, 1.0)
@@ -229,7 +232,7 @@ def _value_of(part: Floats, shape: int) -> Floats:
     return np.asarray(part[:, 0] * pair / (part[:, 0] + pair))
 
 
-def network_values(part: Floats, shape: NDArray[np.int8]) -> Floats:
+def network_values(part: Floats, shape: NDArray[np.int8], device: Device = NO_DEVICE) -> Floats:
     """Return the capacitance of networks of known shapes, (m,), from that of their parts, (m, k). [F]"""
     value = np.zeros(len(part))
     if part.shape[1] == 0:
@@ -238,6 +241,10 @@ def network_values(part: Floats, shape: NDArray[np.int8]) -> Floats:
         rows = np.flatnonzero(shape == kind)
         if len(rows):
             value[rows] = _value_of(part[rows], kind)
+    for kind in OWN_PARTS:
+        rows = np.flatnonzero(shape == kind)
+        if len(rows):
+            value[rows] = divided_values(part[rows], kind, device)
     return value
 
 

@@ -29,6 +29,29 @@ def _unset() -> Floats:
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
+class Oscillator:
+    """What every band must start with: the device, and the losses at their worst."""
+
+    circuit: str  # "colpitts", "clapp" or "hartley"
+    allowed: float  # S, transconductance over margin
+    device: tuple[float, float]  # F, output to common and control to common
+    coil_loss: Floats  # (J, B) 1/Q at worst, nan: unknown
+    coil_loss_low: Floats  # (J, B) at the lower end
+    load: Floats  # (B,) S, across the tank
+    least_loss: Floats  # (B,) 1/Q, what a load makes of the tank at least; 0: nothing is said
+    # of a coil with a tap at its common terminal, (J,) each; of whole coils nothing is read
+    output_turns: Floats = field(default_factory=_unset)  # share of the turns between output and tap
+    output_share: Floats = field(default_factory=_unset)  # of the inductance
+    control_share: Floats = field(default_factory=_unset)
+    mutual_share: Floats = field(default_factory=_unset)  # of the inductance, between both
+
+    @property
+    def divided(self) -> bool:
+        """Whether capacitors make the divider."""
+        return self.circuit != "hartley"
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
 class Problem:
     """Coils, capacitors, bands and limits of one search; see the module's text for the shapes."""
 
@@ -111,6 +134,7 @@ class Problem:
     trimmer_stock: Ints = field(default_factory=lambda: np.empty(0, np.int64))  # (T,) pieces per unit built
     coil_alone: bool = True  # a coil serves the one band alone, so that its adjustment is free for it
     drive: Drive | None = None  # what parts must bear; None: nothing is driven, or ratings are no limit
+    oscillator: Oscillator | None = None
 
     def __post_init__(self) -> None:
         """Fill what a problem of fixed bands leaves out."""
@@ -153,6 +177,12 @@ class Problem:
     def trimmer_span(self) -> Floats:
         """Range of each band's trimmer, (B,), 0 without one. [F]"""
         return self.trimmer_high - self.trimmer_low
+
+    @property
+    def device(self) -> tuple[float, float]:
+        """Capacitance of the device across the two halves of a divider; none where there is no divider. [F]"""
+        divided = self.oscillator is not None and self.oscillator.divided
+        return self.oscillator.device if divided and self.oscillator is not None else (0.0, 0.0)
 
     @property
     def inductance_high(self) -> Floats:

@@ -24,6 +24,7 @@ from partpick.search.grades import Grades
 from partpick.search.networks import Rows, Stream, Table, network_values
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 from partpick.search.ratings import inside_ratings_at_end, voltage_shares
+from partpick.search.startup import starts_when_swept
 
 Species = NDArray[np.int16]
 _GRAIN = 1e-12  # a design exactly on a limit is inside it
@@ -37,6 +38,13 @@ class _End:
         self.network = network
         self.total = tuned + network + fixed
         self.frequency = 1.0 / (2 * np.pi * np.sqrt(inductance * self.total))
+
+    def take(self, chosen: Ints) -> _End:
+        """Return some of the rows."""
+        other = _End.__new__(_End)
+        for name, values in vars(self).items():
+            setattr(other, name, values[chosen])
+        return other
 
 
 class SweptColumns:
@@ -97,6 +105,23 @@ class SweptColumns:
         """Return the interval of the network for each padder, wide enough for rounding and inductance. [F]"""
         p, padders, fixed = self.problem, self.padders[band], self.fixed[coil, band]
         fixed_low = self.fixed_low[coil, band]
+        high = p.frequency[band]
+        need, most = self.need[coil, band], self.most[coil, band]
+        least_high, most_low = self._totals(coil, band, parts, excess)
+        alike = p.lead_inductance == 0 and p.species_low is p.species
+        lower = np.maximum(need - padders.at_low_end - fixed_low, least_high - padders.at_high_end - fixed)
+        upper = most - padders.at_high_end - fixed
+        if alike:  # else the network acts less at the low end; `_figures` tells
+            upper = np.minimum(upper, most_low - padders.at_low_end - fixed_low)
+        grain = 3 * _GRAIN * (need + most)
+        lower, upper = lower - grain, upper + grain
+        leads = (2 * np.pi * high) ** 2 * p.lead_inductance
+        lower, upper = (side / (1 + leads * np.maximum(side, 0.0)) for side in (lower, upper))
+        return lower, upper
+
+    def _totals(self, coil: int, band: int, parts: int, excess: float | None) -> tuple[float, float]:
+        """Return the least in circuit at the high end, and the most at the low end, for share and excess. [F]"""
+        p = self.problem
         low, high, margin = p.low_end[band], p.frequency[band], p.margin
         need, most = self.need[coil, band], self.most[coil, band]
         least_high, most_low = 0.0, np.inf
@@ -108,16 +133,7 @@ class SweptColumns:
             least_high = max(least_high, most * (high * (1 + margin) / (high + span)) ** 2)
             if low > span:
                 most_low = need * (low * (1 - margin) / (low - span)) ** 2
-        alike = p.lead_inductance == 0 and p.species_low is p.species
-        lower = np.maximum(need - padders.at_low_end - fixed_low, least_high - padders.at_high_end - fixed)
-        upper = most - padders.at_high_end - fixed
-        if alike:  # else the network acts less at the low end; `_figures` tells
-            upper = np.minimum(upper, most_low - padders.at_low_end - fixed_low)
-        grain = 3 * _GRAIN * (need + most)
-        lower, upper = lower - grain, upper + grain
-        leads = (2 * np.pi * high) ** 2 * p.lead_inductance
-        lower, upper = (side / (1 + leads * np.maximum(side, 0.0)) for side in (lower, upper))
-        return lower, upper
+        return least_high, most_low
 
     def _block(self, coil: int, band: int, parts: int, padder: Ints, lower: Floats, upper: Floats) -> Columns:
         """Return the columns of given padders, each with every network of `parts` parts in its interval."""
@@ -166,6 +182,8 @@ class SweptColumns:
         keep &= p.trimmer_span[band] <= p.trim_share[band] * high_end.total * (1 + _GRAIN)
         if p.alignable > 0 and p.aligned[band]:
             keep &= self._alignable(coil, band, rows, chosen, behind)
+        if p.oscillator is not None:
+            keep = self._starting(coil, band, rows, chosen, padder, (low_end, high_end), (at_low, at_high), keep)
         whole, none = np.zeros(len(chosen), dtype=np.int64), np.zeros(len(chosen))
         columns = Columns(
             coil=whole + coil,
@@ -218,19 +236,63 @@ class SweptColumns:
             p, coil, band, acting, share, chosen, on_element, loss, low_end=at_low_end
         )
 
+    def _starting(
+        self,
+        coil: int,
+        band: int,
+        rows: Rows,
+        chosen: Ints,
+        padder: Ints,
+        ends: tuple[_End, _End],
+        weights: tuple[tuple[Floats, Floats], tuple[Floats, Floats]],
+        keep: Bools,
+    ) -> Bools:
+        """Return which of the rows to keep start as an oscillator all over the band."""
+        p = self.problem
+        left = np.flatnonzero(keep)
+        some = [(shares[left], element[left]) for shares, element in weights]
+        low_end, high_end = (end.take(left) for end in ends)
+        further = (
+            self._loss(band, 0.0, p.part_loss_low, chosen[left], some[0], low_end),
+            self._loss(band, 0.0, p.part_loss, chosen[left], some[1], high_end),
+        )
+        started = starts_when_swept(
+            p,
+            coil,
+            band,
+            rows.take(left),
+            padders=self._padders_of(band, rows.take(left), padder[left]),
+            networks=(low_end.network, high_end.network),
+            further=further,
+        )
+        result = np.zeros(len(keep), dtype=np.bool_)
+        result[left[started]] = True
+        return result
+
+    def _padders_of(self, band: int, rows: Rows, padder: Ints) -> tuple[Floats, Floats]:
+        """Return what is in series with the element at the low and at the high end, inf: nothing. [F]"""
+        p, valid = self.problem, self.valid[band]
+        return tuple(np.append(species[band][valid], np.inf)[padder] for species in (p.species_low, p.species))  # type: ignore[return-value]
+
     def _ends(self, coil: int, band: int, rows: Rows, across: Species, padder: Ints) -> tuple[_End, _End]:
         """Return what is in circuit at the low end and at the high end."""
-        p, padders = self.problem, self.padders[band]
+        p = self.problem
         fixed_low, fixed = float(self.fixed_low[coil, band]), float(self.fixed[coil, band])
+        tuned_low, tuned_high = self._tuned(band, rows, padder)
         high = p.behind_leads(rows.value, band)
         own = rows.value
         if p.species_low is not p.species:
-            own = network_values(p.species_low[band][across], rows.shape)
+            own = network_values(p.species_low[band][across], rows.shape, p.device)
         low = p.behind_leads(own, band, low_end=True)
         return (
-            _End(padders.at_low_end[padder], low, fixed_low, float(p.inductance_low[coil, band])),
-            _End(padders.at_high_end[padder], high, fixed, float(self.inductance_high[coil, band])),
+            _End(tuned_low, low, fixed_low, float(p.inductance_low[coil, band])),
+            _End(tuned_high, high, fixed, float(self.inductance_high[coil, band])),
         )
+
+    def _tuned(self, band: int, rows: Rows, padder: Ints) -> tuple[Floats, Floats]:
+        """Return the element behind what is in series with it, at the low and at the high end. [F]"""
+        padders = self.padders[band]
+        return padders.at_low_end[padder], padders.at_high_end[padder]
 
     def _weights(
         self,
@@ -247,10 +309,11 @@ class SweptColumns:
         p = self.problem
         values = (p.species_low if at_low_end else p.species)[band]
         element = (p.tuning_high if at_low_end else p.tuning_low)[band]
-        own = np.maximum(network_values(values[across], rows.shape), 1e-30)
+        own = np.maximum(network_values(values[across], rows.shape, p.device), 1e-30)
         gain = (self.gain_low if at_low_end else self.gain)[band][chosen]
+        shares = network_weights(values[across], rows.shape, own, p.device)
         leads = end.network / own  # behind leads a network grows faster than its parts
-        weights = network_weights(values[across], rows.shape, own) * (leads * end.network / end.total)[:, None]
+        weights = shares * (leads * end.network / end.total)[:, None]
         tuned = end.tuned / end.total
         if not behind:
             return weights * gain, tuned

@@ -86,7 +86,7 @@ class TappedSource(ColumnSource):
 
     def _one_coil(self, coil: int) -> tuple[Sections, ColumnSource, list[Floats]]:
         sections = self.sections(np.array([coil]))
-        source = self.sharing_tables(section_problem(self.problem, sections))
+        source = self.sharing_tables(self._sections_alone(sections))
         return sections, source, [source.least_errors(parts) for parts in range(self.problem.most_parts + 1)]
 
     def _blocks(self) -> Iterator[tuple[Sections, ColumnSource]]:
@@ -97,7 +97,11 @@ class TappedSource(ColumnSource):
         block = np.cumsum(self.counts[coils]) // _BLOCK
         for piece in np.split(coils, np.flatnonzero(np.diff(block)) + 1):
             sections = self.sections(piece)
-            yield sections, self.sharing_tables(section_problem(self.problem, sections))
+            yield sections, self.sharing_tables(self._sections_alone(sections))
+
+    def _sections_alone(self, sections: Sections) -> Problem:
+        """Return the problem whose coils are the sections."""
+        return section_problem(self.problem, sections)
 
 
 def section_problem(problem: Problem, sections: Sections) -> Problem:
