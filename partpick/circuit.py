@@ -200,7 +200,7 @@ class Tank:
 
     def total(self, *, low_end: bool = False) -> float:
         """Return all capacitance in circuit. [F]"""
-        strays = self.band.stray + self.own_capacitance(low_end=low_end)
+        strays = self.wiring + self.own_capacitance(low_end=low_end)
         return self.across(low_end=low_end) + self.tuned(low_end=low_end) + strays + self.trimmer
 
     def weights(self, total: float, *, low_end: bool = False) -> list[tuple[Capacitor, float]]:

@@ -15,6 +15,8 @@ from partpick.search.problem import Problem
 from tiny.brute_force import ROUNDING, q_class_of
 
 SHAPE = {("colpitts", False): 4, ("colpitts", True): 4, ("clapp", False): 5, ("clapp", True): 6}
+# of the transconductance allowed: far above what is needed the modes no longer swing, but on the way they grew
+SHARES = (1.0, 0.5, 0.2, 0.1, 0.05, 0.02, 0.01)
 STEPS = 5  # settings of the tuning element, from end to end in equal ratios
 
 
@@ -242,7 +244,8 @@ def all_start(p, coil, band, tap, ends, further, fixed, swept):
         if o.circuit == "hartley":
             across = (tap["output"] + tap["mutual"]) ** 2 * o.device[0]
             across += (tap["control"] + tap["mutual"]) ** 2 * o.device[1]
-            if not hartley_grows(inductance, resistance, tap, total - across, o.device, o.allowed):
+            tank = inductance, resistance, tap, total - across, o.device
+            if not any(hartley_grows(*tank, o.allowed * share) for share in SHARES):
                 return False
             continue
         c0 = None
@@ -250,6 +253,7 @@ def all_start(p, coil, band, tap, ends, further, fixed, swept):
         if o.circuit == "clapp":
             c0 = element if swept else low["series"]
             inner = series(c0, *halves)
-        if not three_point_grows(inductance, resistance, c0, *halves, max(total - inner, 0.0), o.allowed):
+        tank = inductance, resistance, c0, *halves, max(total - inner, 0.0)
+        if not any(three_point_grows(*tank, o.allowed * share) for share in SHARES):
             return False
     return True
