@@ -165,13 +165,18 @@ _WORKERS = click.option(
     metavar="N",
     help="Solve so many plans at a time (one a core); the answers are the same.",
 )
+_FRONT = click.option(
+    "--front",
+    type=click.Choice(("values,error", "values,pieces", "values,price", "pieces,price")),
+    help="Also say what fewer values or pieces cost.",
+)
 _ALL = click.option("--all-windings", is_flag=True, help="Rank every winding, not only the best on each former.")
 
 
 def _common(command: Any) -> Any:
     """Add the options of every command that ranks candidates."""
     outputs = (_JSON, _BOM, _SHEET, _NETLIST, _DIAL)
-    for add in reversed((_TOP, *outputs, _WHY, _AGAINST, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
+    for add in reversed((_TOP, *outputs, _WHY, _FRONT, _AGAINST, _DRAWER, _LIMIT, _FORCE, _BY, _ALL)):
         command = add(command)
     return command
 
@@ -245,6 +250,8 @@ def bands(plans: tuple[str, ...], top: int, drawer: str | None, by: str, all_win
     jobs = list(zip(every, outputs_of_plans(every, drawer, given), strict=True))
     for _, outputs in jobs:
         outputs.check()
+    if len(jobs) > 1 and given["front"] is not None:
+        raise RequestError("--front goes with one plan at a time")
     if len(jobs) > 1:
         return _solve_several(jobs, top, drawer, given, lambda plan: load_plan(plan, by=by, all_windings=all_windings))
     ((plan, outputs),) = jobs
@@ -330,7 +337,7 @@ def _solve_and_write(
     request: Request, catalogue: Catalogue, outputs: Outputs, top: int, given: Mapping[str, Any]
 ) -> int:
     """Solve one request and write its outputs; nothing is left half written by a signal."""
-    from partpick.solving import solve
+    from partpick.solving import solve, with_front
 
     why = given["why"]
     if why is not None and not outputs.shows_table:
@@ -339,6 +346,8 @@ def _solve_and_write(
     before = _earlier(given["against"], outputs)
     with Terminal(given["time_limit"]) as monitor:
         result = solve(request, catalogue, top=max(top, why or 0), monitor=monitor)
+        if given["front"] is not None:
+            result = with_front(result, catalogue, given["front"], monitor)
         monitor.writing()
         outputs.write(**renderers(result, why, before, dial, tracking))
     if monitor.elapsed >= TOO_SHORT_TO_TELL:

@@ -138,6 +138,15 @@ class RuledOut:
 
 
 @dataclass(frozen=True, kw_only=True)
+class Front:
+    """What one criterion costs in another: no plan is better in one and as good in the other."""
+
+    criteria: tuple[str, str]  # "values", "pieces"; "error" (or excess), "pieces", "price"
+    candidates: tuple[Candidate, ...]
+    complete: bool  # False: the search was stopped; the last point may not be on the front
+
+
+@dataclass(frozen=True, kw_only=True)
 class Result:
     """The whole answer."""
 
@@ -146,6 +155,7 @@ class Result:
     proof: Proof
     candidates: tuple[Candidate, ...]
     front: tuple[Candidate, ...]
+    fronts: tuple[Front, ...] = ()  # those that were asked for
     nearest_miss: Candidate | None = None
     ruled_out_by: RuledOut | None = None
     warnings: tuple[str, ...] = ()  # of the request as a whole

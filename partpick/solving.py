@@ -74,6 +74,23 @@ def _solved(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) 
     return replace(result, nearest_miss=nearest, ruled_out_by=ruled_out)
 
 
+def with_front(result: Result, catalogue: Catalogue, pair: str, monitor: Monitor) -> Result:
+    """Return a result with the front of two more criteria, one of `fronts.PAIRS`.
+
+    Raises
+    ------
+    RequestError
+        The request is one whose limits are not lowered one by one: a receiver, or a span to cover.
+    """
+    from partpick.fronts import front_of  # few ask for it: imported where used
+
+    if is_receiver(result.request) or dict(result.request.extra).get("cover"):
+        raise RequestError("--front: not planned with [receiver] or [cover]")
+    if not result.candidates:
+        return result
+    return replace(result, fronts=(*result.fronts, front_of(result.request, catalogue, pair, _again, monitor)))
+
+
 def _planned(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) -> Result:
     """Return the result of one search, without a word on why nothing fits."""
     monitor.report("every coil that the stock can wind")

@@ -24,7 +24,7 @@ STAGES = [
     {"objective", "oscillating", "tapping", "trimming"},
     {"stressed", "rating_words", "tuning_range"},
     {"circuit", "band_switch", "layouts", "receiver", "moved_figures", "assessment", "tank_figures",
-     "oscillator_figures", "tracking_figures", "nothing_fits", "cover"},
+     "oscillator_figures", "tracking_figures", "fronts", "nothing_fits", "cover"},
     {"built", "cautions", "conduction", "stress"},
     {"audit"},
     {"solving"},

@@ -13,7 +13,7 @@ from numbers import Integral, Real
 import partpick
 from partpick.errors import InternalError
 from partpick.report.request_json import request_as_json
-from partpick.result import BandFigures, Candidate, CoilFigures, PartLine, Proof, Result, RuledOut
+from partpick.result import BandFigures, Candidate, CoilFigures, Front, PartLine, Proof, Result, RuledOut
 
 RESULT_FORMAT = 1
 WINDINGS_FORMAT = 1
@@ -45,6 +45,7 @@ def result_entry(result: Result) -> Entry:
         "ruled_out_by": _ruled_out(result.ruled_out_by),
         "warnings": list(result.warnings),
         "front": [_for_all(candidate, result.request.units) for candidate in result.front],
+        **({"fronts": [_front(result, front) for front in result.fronts]} if result.fronts else {}),
         "candidates": [_for_all(candidate, result.request.units) for candidate in result.candidates],
     }
 
@@ -73,6 +74,11 @@ def _ruled_out(ruled_out: RuledOut | None) -> Entry | None:
         "limit": ruled_out.limit, "needed": ruled_out.needed, "text": ruled_out.text, "others": others,
         "unsettled": list(ruled_out.unsettled),
     }
+
+
+def _front(result: Result, front: Front) -> Entry:
+    candidates = [_for_all(candidate, result.request.units) for candidate in front.candidates]
+    return {"criteria": list(front.criteria), "complete": front.complete, "candidates": candidates}
 
 
 def _for_all(candidate: Candidate, units: int) -> Entry:

@@ -24,7 +24,7 @@ from partpick.report.text import (
 )
 from partpick.report.tracking import tracking_lines, worst_tracking
 from partpick.request import Request
-from partpick.result import Candidate, CoilFigures, PartLine, Proof, Result
+from partpick.result import Candidate, CoilFigures, Front, PartLine, Proof, Result
 
 MOST_WARNINGS = 10
 _ORDERS = {"build": "easiest to build first", "error": "least error first", "price": "cheapest first"}
@@ -38,6 +38,7 @@ def result_table(result: Result) -> str:
         blocks += [_ranking(result), _in_full(f"Rank {_rank(first)} in full", first)]
         blocks += [tracking_lines(first)]
         blocks += [built_units(result.request, first), stress_lines(first), _front(result.front)]
+        blocks += [_further_front(front) for front in result.fronts]
     else:
         blocks += [_nothing(result)]
         if result.nearest_miss is not None:
@@ -234,6 +235,24 @@ def _front(front: Sequence[Candidate]) -> list[str]:
     what = "excess" if front[0].worst_error is None else "error"
     what = "tracking error" if worst_tracking(front[0]) else what
     return wrapped(f"Least {what} for the number of pieces: {'; '.join(steps)}.", 0, 2)
+
+
+def _further_front(front: Front) -> list[str]:
+    """Return what one criterion costs in another."""
+    limited, least = front.criteria
+    steps = [f"{_criterion(candidate, limited)} {_criterion(candidate, least)}" for candidate in front.candidates]
+    told = f"Least {least} for the number of {limited}: {'; '.join(steps) or 'none has one'}."
+    end = "" if front.complete else " The search was stopped: fewer may do."
+    return wrapped(told + end, 0, 2)
+
+
+def _criterion(candidate: Candidate, name: str) -> str:
+    if name == "price":
+        return "?" if candidate.price is None else f"{candidate.price:.2f}"
+    if name == "error":
+        error = candidate.worst_error if candidate.worst_error is not None else candidate.worst_excess
+        return "?" if error is None else _size(error)
+    return plural(candidate.value_count, "value") if name == "values" else plural(candidate.piece_count, "piece")
 
 
 # ---------------------------------------------------------------- what it is worth
