@@ -137,6 +137,11 @@ def test_no_coil_that_can_bear_the_drive_is_left_out() -> None:
     assert refused > 50
 
 
+def test_an_unknown_loss_of_the_tuning_element_says_nothing_of_a_fixed_band() -> None:
+    """It is not in circuit there; a bound that counted it would leave out plans that bear the drive."""
+    agree(made(1695, SEVERAL["a mixed plan under shared limits"]), 1695)
+
+
 def test_the_voltage_on_each_part_of_a_network() -> None:
     """By hand: 20 pF in series with 60 pF takes three quarters; 20 pF with 30 pF || 30 pF too."""
     acting = np.array([[20.0, 60.0, 60.0], [20.0, 40.0, 40.0], [10.0, 20.0, 60.0], [20.0, 30.0, 30.0]])

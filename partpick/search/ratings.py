@@ -162,7 +162,7 @@ def least_carrier(problem: Problem) -> Floats:
     p, drive = problem, _drive(problem)
     reactance = 2 * np.pi * p.frequency[None, :] * p.inductance_high
     parts = np.nan_to_num(p.part_loss, nan=0.0).max(axis=1, initial=0.0) * weight_gains(p)[-1]
-    others = np.maximum(parts, np.maximum(p.trimmer_loss, p.tuning_loss)[None, :])
+    others = np.maximum(parts, np.maximum(p.trimmer_loss, np.where(p.swept, p.tuning_loss, 0.0))[None, :])
     return np.nan_to_num(drive.carrier(reactance, p.coil_loss + others), nan=np.inf, posinf=np.inf)
 
 
