@@ -205,6 +205,8 @@ def search_layout(
             engine.front(rows, found.front.append)
         except Stopped as stop:
             found.stopped_by = stop.reason
+    if front and engine.rows.omitted != LAST:  # what is in no row may lie on the front
+        found.stopped_by = found.stopped_by or "work limit"
     return found
 
 
@@ -214,8 +216,10 @@ def _rank(engine: Engine, rows: Ints, ranking: Ranking, found: Found, monitor: M
     bound = np.full(len(engine.rows), LAST, dtype=np.int64)
     bound[rows] = steps.bounds(rows)
     omitted = engine.rows.omitted
+    open_ = np.zeros(len(engine.rows), dtype=np.bool_)
+    open_[rows] = True
     while True:
-        order = rows[np.lexsort((engine.rows.pattern[rows], bound[rows]))]
+        order = _first_by_bound(bound, engine.rows.pattern, np.flatnonzero(open_), LOOK_AHEAD * size)
         following = int(bound[order[0]]) if len(order) else LAST
         found.next_bound = min(following, omitted)
         if found.next_bound == LAST or ranking.settled(found.next_bound):
@@ -226,7 +230,7 @@ def _rank(engine: Engine, rows: Ints, ranking: Ranking, found: Found, monitor: M
         if reason is not None:
             raise Stopped(reason)
         monitor.report("the best plans", *so_far(ranking, found.next_bound))
-        block = _together(steps, order[: LOOK_AHEAD * size])[:size]
+        block = _together(steps, order)[:size]
         coils = engine.rows.coils_of
         worth = np.array([ranking.worth_it(coils(int(row)), int(bound[row])) for row in block], dtype=np.bool_)
         tried = block[worth]
@@ -238,7 +242,16 @@ def _rank(engine: Engine, rows: Ints, ranking: Ranking, found: Found, monitor: M
         size = first if len(solved) else min(2 * size, LARGEST_BLOCK[ranking.by], engine.most_rows)
         again = steps.advance(np.setdiff1d(tried, solved))
         bound[again] = steps.bounds(again)
-        rows = np.concatenate([np.setdiff1d(rows, block), again])
+        open_[block] = False
+        open_[again] = True
+
+
+def _first_by_bound(bound: Ints, pattern: Ints, rows: Ints, count: int) -> Ints:
+    """Return the first rows by bound, then by pattern: `count` of them, and those that tie with the last."""
+    if len(rows) > 4 * count:
+        own = bound[rows]
+        rows = rows[own <= np.partition(own, count - 1)[count - 1]]
+    return rows[np.lexsort((pattern[rows], bound[rows]))]
 
 
 def _together(steps: _Steps, head: Ints) -> Ints:
