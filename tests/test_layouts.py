@@ -86,3 +86,14 @@ def test_what_a_layout_is_not_planned_with_is_refused_by_name(switching: str, ta
     """Better a clear refusal than a plan of something else."""
     with pytest.raises(RequestError, match=named):
         solve(asked(switching, **tables), few_formers())
+
+
+def test_a_set_that_is_too_small_is_told_how_large_it_would_have_to_be() -> None:
+    """A shared set always has a size: what is eased is the size, not the limit as such."""
+    coil = {"measured": "1.5 µH", "self_capacitance": "1.2 pF"}
+    result = solve(asked("shared", limits={"parts": 2}, coil=coil), few_formers(), top=1)
+    assert result.proof.status == "infeasible" and result.ruled_out_by is not None
+    told = {ruled.limit: ruled.needed for ruled in (result.ruled_out_by, *result.ruled_out_by.others)}
+    needed = told["parts"]
+    assert isinstance(needed, int) and needed > 2
+    assert solve(asked("shared", limits={"parts": needed}, coil=coil), few_formers(), top=1).candidates

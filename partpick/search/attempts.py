@@ -27,7 +27,7 @@ LEAST_EXCESS = 1e-3  # first excess tried where pieces lead and every band is sw
 LARGEST_ERROR = 0.5  # beyond it the limits alone
 BLOCK = 256  # rows tried at one time; twice as many after each failure
 LOOK_AHEAD = 16  # blocks in which rows of one kind are looked for
-LARGEST_BLOCK = {"build": 512, "error": 8192, "price": 512}
+LARGEST_BLOCK = {"build": 2048, "error": 8192, "price": 512}
 
 
 class Attempt(NamedTuple):
