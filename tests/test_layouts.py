@@ -11,6 +11,8 @@ from partpick.catalogue import load_catalogue
 from partpick.errors import RequestError
 from partpick.parts import Catalogue
 from partpick.planfile import request_from_tables
+from partpick.report.drawing import circuit
+from partpick.report.netlist import netlist
 from partpick.request import Request
 from partpick.result import Candidate
 from partpick.solving import solve
@@ -97,3 +99,44 @@ def test_a_set_that_is_too_small_is_told_how_large_it_would_have_to_be() -> None
     needed = told["parts"]
     assert isinstance(needed, int) and needed > 2
     assert solve(asked("shared", limits={"parts": needed}, coil=coil), few_formers(), top=1).candidates
+
+
+TUNING = {"kind": "variable capacitor", "low": "12 pF", "high": "150 pF"}
+SWEPT = [
+    {"name": "low", "from": "3.5 MHz", "to": "3.8 MHz"},
+    {"name": "middle", "from": "7.0 MHz", "to": "7.2 MHz"},
+    {"name": "high", "at": "14.1 MHz"},
+]
+WIDER = [
+    ("stacked", {}),
+    ("stacked", {"limits": {"inductors": 2}}),
+    ("stacked", {"band": SWEPT, "tuning": TUNING}),
+    ("shared", {}),
+]
+
+
+@pytest.mark.parametrize(("switching", "tables"), WIDER)
+def test_every_output_holds_each_capacitor_once(switching: str, tables: dict[str, Any]) -> None:
+    """A capacitor that several bands use is one piece in the drawing and the bill, and in each band's deck."""
+    plan = {**tables, "limits": {"error": "2 %", "parts": 8, **tables.get("limits", {})}}
+    request = asked(switching, **{key: value for key, value in plan.items() if key != "band"})
+    if "band" in plan:
+        coil = {"measured": "6 µH", "self_capacitance": "1.2 pF"}
+        plan = {"switching": switching, "band": plan["band"], "tuning": TUNING, "coil": coil}
+        plan |= {"stray": {"share": "60 %"}, "limits": {"error": "2 %"}}
+        request = request_from_tables(plan, "bands")
+    result = solve(request, few_formers(), top=1)
+    assert result.candidates
+    first = result.candidates[0]
+    drawn = "".join(circuit(first, coil.reference) for coil in first.coils)
+    deck = netlist(result)
+    for line in first.parts:
+        if line.kind != "capacitor":
+            continue
+        assert drawn.count(f">{line.reference} ") == 1, line.reference
+        serves = [band for band in first.bands if line.reference in band.capacitors]
+        assert [band.name for band in serves] == list(line.bands)
+        tanks = sum(1 if band.target is not None else 2 for band in serves)  # both ends of a swept band
+        assert deck.count(f"\nC{line.reference}t") == tanks
+    used = {reference for band in first.bands for reference in band.capacitors}
+    assert used == {line.reference for line in first.parts if line.kind == "capacitor"}

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 from partpick.connection import Connection, Parallel, Part, Series, parse_connection
@@ -33,20 +33,81 @@ class _Box:
 
 
 def circuit(candidate: Candidate, reference: str) -> str:
-    """Return the drawing of one coil with what each band puts across it, as SVG that scales with the page."""
+    """Return the drawing of one coil with what lies across it, as SVG that scales with the page.
+
+    A row is a band with its own capacitors; where bands share capacitors, it is what one contact brings in.
+    """
     bands = [band for band in candidate.bands if band.coil == reference]
     labels = _labels(candidate.parts)
-    boxes = [_layout(tree, labels) if (tree := _tree(band, candidate)) else None for band in bands]
-    switched = any(band.contacts for band in bands)
-    start = BUS + (CONTACT if switched else 18.0)
-    longest = max([LEAST_CELL * 2, *(box.width for box in boxes if box), *map(_width_of_name, bands)])
+    if any(len(part.bands) > 1 for part in candidate.parts if part.kind == "capacitor"):
+        rows = _joint_rows(candidate, bands)
+    else:
+        rows = [_Row(_name(band), " ".join(band.contacts), _tree(band, candidate)) for band in bands]
+    boxes = [_layout(row.tree, labels) if row.tree else None for row in rows]
+    start = BUS + (CONTACT if any(row.contact for row in rows) else 18.0)
+    longest = max([LEAST_CELL * 2, *(box.width for box in boxes if box), *(BOLD * len(r.name) - CONTACT for r in rows)])
     rail = start + longest + 18.0
     lines, y, last = _coil(candidate, reference, rail), 54.0, 40.0
-    for band, box in zip(bands, boxes, strict=True):
-        drawn, last, y = _branch(band, box, labels, start, rail, y)
+    for row, box in zip(rows, boxes, strict=True):
+        drawn, last, y = _branch(row, box, labels, start, rail, y)
         lines += drawn
     lines += [line(BUS, 40.0, BUS, last), line(rail, 40.0, rail, y + 14), *_ground(rail, y + 14)]
     return svg(rail + 16.0, y + 34.0, lines, f"Circuit of {reference} and what each position puts across it")
+
+
+@dataclass(frozen=True)
+class _Row:
+    """One branch across a coil: its name, the contact in it, and what stands in it."""
+
+    name: str
+    contact: str
+    tree: Connection | None
+
+
+def _joint_rows(candidate: Candidate, bands: Sequence[BandFigures]) -> list[_Row]:
+    """Return each capacitor of a coil once: those always in circuit first, then by the bands that they serve."""
+    serves: dict[tuple[str, Connection], list[str]] = {}
+    for band in bands:
+        for branch in _branches(band, candidate):
+            serves.setdefault((_pole(branch), branch), []).append(band.name)
+    by_contact: dict[tuple[str, tuple[str, ...], str], list[Connection]] = {}
+    for (pole, branch), names in serves.items():
+        contact = _contact_of(candidate, pole, branch, names)
+        by_contact.setdefault((contact, tuple(names), pole), []).append(branch)
+    rows = []
+    tapped = {band.name: band.tap_turns for band in bands if band.tap_turns is not None}
+    for (contact, served, _), branches in sorted(by_contact.items(), key=lambda item: (-len(item[0][1]), item[0][0])):
+        tree = branches[0] if len(branches) == 1 else Parallel(tuple(branches))
+        told = ", ".join(f"{name} from tap {tapped[name]}" if name in tapped else name for name in served)
+        every = len(served) == len(bands) and not tapped
+        rows.append(_Row("every band" if every else cut(told, 2 * LONGEST_NAME), contact, tree))
+    return [*rows, *(_Row(_name(band), "", None) for band in bands if not _branches(band, candidate))]
+
+
+def _branches(band: BandFigures, candidate: Candidate) -> tuple[Connection, ...]:
+    """Return what lies side by side across the coil at a band."""
+    tree = _tree(band, candidate)
+    return tree.branches if isinstance(tree, Parallel) else (tree,) if tree else ()
+
+
+def _pole(branch: Connection) -> str:
+    """Return the pole of the switch that a branch belongs to."""
+    if isinstance(branch, Series) or (isinstance(branch, Part) and branch.reference == "T"):
+        return "tuning element"
+    return "trimmers" if isinstance(branch, Part) and branch.reference.startswith("CT") else "capacitors"
+
+
+def _contact_of(candidate: Candidate, pole: str, branch: Connection, names: Sequence[str]) -> str:
+    """Return the contacts that bring a branch in, "" where it is wired."""
+    switch = candidate.extra.get("switch")
+    closes = switch.get("closes", ()) if isinstance(switch, dict) else ()
+    own = [c for c in closes if isinstance(c, dict) and c.get("pole") == pole]
+    if pole == "tuning element":  # one contact a band, all to the same branch
+        return " ".join(str(c["contact"]) for c in own if set(c["bands"]) <= set(names))
+    fitting = [str(c["contact"]) for c in own if list(c["bands"]) == list(names)]
+    if len(fitting) > 1 and isinstance(branch, Part):  # each capacitor of a set has the contact of its number
+        fitting = [c for c in fitting if c[1:] == branch.reference[1:]] or fitting
+    return fitting[0] if fitting else ""
 
 
 def _tree(band: BandFigures, candidate: Candidate) -> Connection | None:
@@ -63,10 +124,6 @@ def _tree(band: BandFigures, candidate: Candidate) -> Connection | None:
 def _labels(parts: tuple[PartLine, ...]) -> dict[str, str]:
     """Return reference and value of each part; a range is written short."""
     return {part.reference: f"{part.reference} " + part.label.replace(" to ", "\u2013") for part in parts}
-
-
-def _width_of_name(band: BandFigures) -> float:
-    return BOLD * len(_name(band)) - CONTACT
 
 
 def _name(band: BandFigures) -> str:
@@ -113,13 +170,13 @@ def _draw(box: _Box, labels: Mapping[str, str], x: float, y: float, width: float
 
 
 def _branch(
-    band: BandFigures, box: _Box | None, labels: Mapping[str, str], start: float, rail: float, y: float
+    row: _Row, box: _Box | None, labels: Mapping[str, str], start: float, rail: float, y: float
 ) -> tuple[list[str], float, float]:
-    """Return one band's row below y, the y of its line, and that of its lower end."""
+    """Return one row below y, the y of its line, and that of its lower end."""
     height = box.height if box else CELL_HEIGHT
     middle = y + HEADING + height / 2
-    lines = [words(BUS + 8, y + 14, _name(band), "strong")]
-    lines += _contact(band, start, middle) if band.contacts else [line(BUS, middle, start, middle)]
+    lines = [words(BUS + 8, y + 14, row.name, "strong")]
+    lines += _contact(row.contact, start, middle) if row.contact else [line(BUS, middle, start, middle)]
     if box is None:
         lines += [words(start + 6, middle + 4, "no capacitor: strays alone", "")]
     else:
@@ -127,7 +184,7 @@ def _branch(
     return lines, middle, y + HEADING + height
 
 
-def _contact(band: BandFigures, start: float, y: float) -> list[str]:
+def _contact(name: str, start: float, y: float) -> list[str]:
     """Return a contact that is open, with its name over it."""
     left, right = BUS + 16, start - 14
     return [
@@ -136,7 +193,7 @@ def _contact(band: BandFigures, start: float, y: float) -> list[str]:
         line(left + 2, y - 2, right - 2, y - 9),
         circle(right, y),
         line(right + 3, y, start, y),
-        words((left + right) / 2, y + 16, " ".join(band.contacts), "", "middle"),
+        words((left + right) / 2, y + 16, name, "", "middle"),
     ]
 
 

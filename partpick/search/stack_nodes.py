@@ -22,6 +22,7 @@ from partpick.search.sum_tables import SumTables, TooManyError
 GRAIN = 1e-21  # F; finer differences of values are none
 MOST_KINDS = 4
 MOST_EDGES = 60_000  # of one layer of one graph
+MOST_OF_ONE_NODE = 1_000_000  # a node that cannot be split
 WORK_LIMIT = 300_000_000  # places for capacitors in the graphs of one request
 
 
@@ -181,7 +182,7 @@ class StackNodes:
         if reason is not None:
             raise Stopped(reason)
         try:
-            made = self._layer(len(layers), at, rules)
+            made = self._layer(len(layers), at, rules, MOST_EDGES if len(at) > 1 else MOST_OF_ONE_NODE)
         except TooManyError:
             if len(at) == 1:
                 raise Stopped("work limit") from None
@@ -194,9 +195,9 @@ class StackNodes:
             layer, nodes = made
             yield from self._below([*layers, layer], nodes, rules)
 
-    def _layer(self, number: int, before: _Nodes, rules: _Rules) -> tuple[Layer, _Nodes] | None:
+    def _layer(self, number: int, before: _Nodes, rules: _Rules, most: int) -> tuple[Layer, _Nodes] | None:
         step, mounts = rules.mounts.steps[number], rules.mounts.at(number)
-        tail, mount, added = self._edges(number, before, rules)
+        tail, mount, added = self._edges(number, before, rules, most)
         if not len(tail):
             return None
         row, padder = before.row[tail], mounts.padder[mount]
@@ -274,14 +275,14 @@ class StackNodes:
             keep.append(inside)
         return np.concatenate(keep)
 
-    def _edges(self, number: int, before: _Nodes, rules: _Rules) -> tuple[Ints, Ints, Shorts]:
+    def _edges(self, number: int, before: _Nodes, rules: _Rules, most: int) -> tuple[Ints, Ints, Shorts]:
         """Return the node before, the mount and the parts added of every edge of a layer, (e,), (e,), (e, most)."""
         problem, mounts, step = self.problem, rules.mounts.at(number), rules.mounts.steps[number]
         spare = rules.budget[before.row] - before.pieces
         if number + 1 < len(rules.mounts.steps):
             spare = spare - rules.rest[before.row, number + 1]
         mount, node = spread(mounts.start[before.row], mounts.start[before.row + 1])
-        if len(mount) > 40 * MOST_EDGES:
+        if len(mount) > 40 * most:
             raise TooManyError
         sums = np.zeros(len(before)) if step.fresh else self.circuits.sums(step.band, before.parts)
         behind = (mounts.padder[mount] >= 0).astype(np.int64)
@@ -298,13 +299,13 @@ class StackNodes:
             some = np.flatnonzero((spare >= added) & (room >= added) & (high >= least) & (low <= high))
             if not len(some):
                 continue
-            species, which = self.sums.inside(step.band, added, low[some], high[some])
+            species, which = self.sums.inside(step.band, added, low[some], high[some], 2 * most)
             shape = np.full(len(which), PARALLEL, np.int8)
             origin, chosen = self.grades.expand(Rows(np.zeros(len(which)), species.astype(np.int16), shape))
             nodes.append(node[some[which[origin]]])
             mounted.append(mount[some[which[origin]]])
             parts.append(chosen)
-            if sum(len(n) for n in nodes) > MOST_EDGES:
+            if sum(len(n) for n in nodes) > most:
                 raise TooManyError
         filled = []
         for chosen in parts:

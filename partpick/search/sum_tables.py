@@ -50,7 +50,9 @@ class SumTables:
                 self._tables[key].append((sums[order], letters[order]))
         return self._tables[key]
 
-    def inside(self, band: int, added: int, low: Floats, high: Floats) -> tuple[Ints, Ints]:
+    def inside(
+        self, band: int, added: int, low: Floats, high: Floats, answer: int | None = None
+    ) -> tuple[Ints, Ints]:
         """Return the multisets of `added` values inside each closed interval, and the interval of each.
 
         Parameters
@@ -59,6 +61,8 @@ class SumTables:
             Band, and how many values. [-]
         low, high : (m,) arrays
             Ends of the intervals. [F]
+        answer : int, optional
+            The most rows, where it is not that of the table. [-]
 
         Returns
         -------
@@ -73,19 +77,20 @@ class SumTables:
             There are more than `answer`.
         """
         stored, valid = self._stored(band), self.valid[band]
+        answer = self.answer if answer is None else answer
         if not len(valid):
             return np.empty((0, added), dtype=np.int64), np.empty(0, dtype=np.int64)
         if added < len(stored):
             sums, letters = stored[added]
             first = np.searchsorted(sums, low, side="left")
             times = np.maximum(np.searchsorted(sums, high, side="right") - first, 0)
-            if int(times.sum()) > self.answer:
+            if int(times.sum()) > answer:
                 raise TooManyError
             which = np.repeat(np.arange(len(first)), times)
             start = first - (np.cumsum(times) - times)
             return letters[np.arange(len(which)) + start[which]], which
         values = self.acting[band][valid]
-        if len(low) * len(values) > self.answer:
+        if len(low) * len(values) > answer:
             raise TooManyError
         # the largest value first: the others are no larger, and each is at least the smallest
         slack = 1e-12 * values[None, :]
@@ -93,7 +98,9 @@ class SumTables:
         smallest = (added - 1) * float(values.min())
         open_ = (rest_high >= smallest) & (rest_low <= (added - 1) * values[None, :] * (1 + 1e-12))
         query, largest = np.nonzero(open_)
-        letters, which = self.inside(band, added - 1, rest_low[query, largest], rest_high[query, largest])
+        letters, which = self.inside(
+            band, added - 1, rest_low[query, largest], rest_high[query, largest], answer
+        )
         head = valid[largest[which]]
         keep = self._no_larger(band, letters, head)
         letters, head, query = letters[keep], head[keep], query[which[keep]]
