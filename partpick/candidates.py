@@ -175,7 +175,7 @@ def realisable_coils(request: Request, catalogue: Catalogue) -> Coils:
     """Return every coil of the catalogue that some band might use, evaluated at each band's frequency.
 
     Those which the limits on inductance, proportions or self-resonance keep from every band are left out
-    where a plan has no taps and no element that moves inductance: part of such a coil may do, or more of it.
+    where a plan taps no coil and has no element that moves inductance: part of such a coil may do, or more of it.
 
     Parameters
     ----------
@@ -227,10 +227,17 @@ def _moved(request: Request) -> bool:
     return tuning is not None and tuning.moves_inductance and any(band.swept for band in request.bands)
 
 
+def _tapped_otherwise(request: Request) -> bool:
+    """Whether an oscillator's common terminal or a load goes to a turn: then shorter coils say what a section is."""
+    circuit = dict(dict(request.extra).get("oscillator", ())).get("circuit")
+    loads = [band.load for band in request.bands if band.load is not None]
+    return circuit == "hartley" or any(load.connection == "tap" for load in loads)
+
+
 def _screen(request: Request) -> Screen:
     """Return the limits that decide on a coil before its loss is known."""
     rules, targets = request.coil, [band.highest for band in request.bands]
-    if rules.taps or not targets or _moved(request):
+    if rules.taps or not targets or _moved(request) or _tapped_otherwise(request):
         return Screen()
     times, lowest = rules.self_resonance, min(targets)
     eased = times if times is None or rules.self_resonance_stated else EASED_RESONANCE

@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 
 from partpick.candidates import Coils, Floats, Ints
-from partpick.errors import RequestError
+from partpick.errors import InternalError, RequestError
 from partpick.request import Load, Request
 from partpick.search.columns import ColumnSource
 from partpick.search.oscillating import CommonTaps, DividedSource, HartleySource
@@ -166,6 +166,9 @@ def tap_shares(coils: Coils, coil: Ints | int, turns: Ints | int) -> tuple[Float
         Between the output end and the tap. [-]
     """
     dc, every = coils.inductance_dc, coils.turns[coil]
+    rows = ((coil - (every - turns), turns), (coil - turns, every - turns))
+    if any(np.any(coils.turns[row] != wanted) for row, wanted in rows):
+        raise InternalError("internal error: the coils of a former are not all there; please report this plan")
     output, control = dc[coil - (every - turns)] / dc[coil], dc[coil - turns] / dc[coil]
     return output, control, (1.0 - output - control) / 2.0
 

@@ -164,6 +164,12 @@ def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
     check_layout(request)
     check_oscillator(request)
+    switching = dict(dict(request.extra).get("drive", ())).get("class") == "E"
+    if switching and any(band.load is not None for band in request.bands):
+        raise RequestError(
+            'drive.class = "E" with [load]: the network of a switching stage does not resonate at the carrier, so that '
+            'no tank is planned for it; state "A", "B" or "C", or leave [load] out'
+        )
     for name, _ in request.extra:
         if name not in PLANNED_TABLES:
             raise RequestError(f"the table [{name}]: read and understood, but this version does not plan it yet")

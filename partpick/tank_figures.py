@@ -6,7 +6,8 @@ import math
 from dataclasses import dataclass
 
 from partpick.circuit import Tank, network_capacitance
-from partpick.physics.loading import damping_resistance, loaded_q, rejection
+from partpick.loads import attenuation, harmonics, tap_for_load
+from partpick.physics.loading import damping_resistance, loaded_q
 from partpick.physics.resonance import (
     lossy_resonances,
     reactance,
@@ -14,9 +15,12 @@ from partpick.physics.resonance import (
     ringing_time_constant,
 )
 from partpick.preferred import nearest
+from partpick.quantities import format_quantity
 from partpick.request import Load
 
 STEP = 1e-4  # of the frequency, to either side, for a slope
+LEAST_DETUNING = 0.001  # of the frequency: from here it is told
+NEAR_ENOUGH = 0.1  # of a wanted loaded Q, in ratio: a tap further off is told
 DAMPING_SERIES = "E24"  # of resistors, 5 %; common practice, no source
 
 
@@ -28,6 +32,8 @@ class LoadedTank:
     damping: float | None = None  # ohm, of the series
     across: float | None = None  # ohm, what the load must look like across the tank
     note: str | None = None
+    detuning: float | None = None  # fraction of the frequency, by a load at a tap
+    tap_turns: int | None = None  # whole turn, from the earthed end, that the load goes to
 
 
 def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
@@ -115,12 +121,40 @@ def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:
         return LoadedTank(q=before if direct else None)
     needed = float(damping_resistance(before, x, wanted))
     if not math.isfinite(needed):
-        note = f"a Q of {_words(wanted)} is wanted, but the tank has {_words(before)} already"
-        return LoadedTank(q=before, note=note)
+        missed = f"a Q of {_words(wanted)} is wanted, but the tank has {_words(before)} already"
+        return LoadedTank(q=before, note=missed + _instead(load, q, wanted))
+    if load.connection == "tap" and load.resistance is not None:
+        found = tap_for_load(tank, resonance, load.resistance, wanted)
+        if found is not None:
+            told = []
+            if abs(math.log(found.loaded_q / wanted)) > NEAR_ENOUGH:
+                told.append(
+                    f"the nearest tap gives a loaded Q of {_words(found.loaded_q)}, {_words(wanted)} is wanted"
+                )
+            if abs(found.detuning) > LEAST_DETUNING:
+                moved = f"{100 * found.detuning:+.2g} %"
+                told.append(f"the load at its tap moves the tank by {moved}: tune it with the load on")
+            return LoadedTank(
+                q=found.loaded_q,
+                across=needed,
+                tap_turns=found.turn,
+                detuning=found.detuning,
+                note="; ".join(told) or None,
+            )
     if not direct:
         return LoadedTank(q=wanted, across=needed)
     damping = float(nearest(DAMPING_SERIES, needed))
     return LoadedTank(q=float(loaded_q(before, x, damping)), damping=damping, across=needed)
+
+
+def _instead(load: Load, q: float, wanted: float) -> str:
+    """Return what would do where a load across the tank leaves less Q than is wanted."""
+    if load.connection != "across" or load.resistance is None:
+        return f"; a coil of more than {_words(wanted)} would do" if q <= wanted else ""
+    if q <= wanted:
+        return f"; the tank alone has {_words(q)}, and more than {_words(wanted)} is needed"
+    most = load.resistance * (1 / wanted - 1 / q)
+    return f"; a reactance of at most {format_quantity(most, 'Ω', 3)} would do, or the load at a tap"
 
 
 def _words(q: float) -> str:
@@ -130,8 +164,13 @@ def _words(q: float) -> str:
 def load_note(figures: dict[str, object]) -> str | None:
     """Return what must be said of the load of a band, from its further keys."""
     load = figures.get("load")
-    note = load.get("note") if isinstance(load, dict) else None
-    return note if isinstance(note, str) else None
+    if not isinstance(load, dict):
+        return None
+    harmonic = load.get("harmonics_db") or {}
+    told = [load["note"]] if isinstance(load.get("note"), str) else []
+    if isinstance(second := harmonic.get("2"), float):
+        told.append(f"the tank alone puts the second harmonic down by {second:.0f} dB: a low-pass is still needed")
+    return "; ".join(told) or None
 
 
 def _load_keys(tank: Tank, load: Load, resonance: float) -> dict[str, object]:
@@ -146,18 +185,18 @@ def _load_keys(tank: Tank, load: Load, resonance: float) -> dict[str, object]:
         "across_ohm": loaded.across,
         "ringing_time_s": None if width is None else 1 / (math.pi * width),
         "note": loaded.note,
+        "tap_turns": loaded.tap_turns,
+        "detuning": loaded.detuning,
     }
+    if "drive" in dict(tank.request.extra):
+        keys["harmonics_db"] = harmonics(tank, resonance, q)
     if load.offset is not None:
         keys["offset_hz"] = load.offset
         keys["rejection_db"] = {
-            "below": _rejection(resonance - load.offset, resonance, q),
-            "above": _rejection(resonance + load.offset, resonance, q),
+            "below": attenuation(tank, resonance - load.offset, resonance, q),
+            "above": attenuation(tank, resonance + load.offset, resonance, q),
         }
     return keys
-
-
-def _rejection(frequency: float, resonance: float, q: float | None) -> float | None:
-    return None if q is None or frequency <= 0 else float(rejection(frequency, resonance, q))
 
 
 def _ringing(inductance: float, capacitance: float, series: float | None, steep: float) -> dict[str, object]:

@@ -23,7 +23,7 @@ STAGES = [
     {"search"},
     {"objective", "oscillating", "tapping", "trimming"},
     {"stressed", "rating_words", "tuning_range"},
-    {"circuit", "band_switch", "layouts", "receiver", "moved_figures", "assessment", "tank_figures",
+    {"circuit", "band_switch", "layouts", "receiver", "moved_figures", "assessment", "loads", "tank_figures",
      "oscillator_figures", "tracking_figures", "fronts", "nothing_fits", "cover"},
     {"built", "cautions", "conduction", "stress"},
     {"audit"},

@@ -9,6 +9,11 @@ from pathlib import Path
 import pytest
 from workbench import FORMERS, plan, run, write_drawer
 
+import partpick
+from partpick.physics.oscillator import hartley, threshold
+from partpick.physics.solenoid import solenoid_family
+from partpick.planfile import request_from_tables
+
 VALUES = (33, 47, 68, 100, 150, 220, 330, 470, 680, 1000)
 CAPACITORS = [{"value": f"{v} pF", "grade": "C0G", "tolerance": "5 %", "q": 1000} for v in VALUES]
 GIVEN = ("--transconductance", "5mS", "--input-capacitance", "5pF", "--output-capacitance", "2pF", "--error", "2%")
@@ -100,3 +105,26 @@ def test_what_is_not_planned_is_refused_in_one_line(head: str, named: str, inste
     done = run("bands", plan(tmp_path / "plan.toml", [("one", "7.1 MHz")], head))
     assert done.code == 2
     assert named in done.err and instead in done.err and done.err.count("\n") == 1
+
+
+def test_the_tap_of_a_hartley_coil_divides_it_as_its_turns_do() -> None:
+    """Sections by the sum over coaxial rings; limits on inductance must not hide the shorter windings."""
+    tables = {
+        "band": [{"at": "7.1 MHz"}],
+        "coil": {"forms": ["solenoid"], "inductance": ["1 \u00b5H", "4 \u00b5H"]},
+        "oscillator": {"circuit": "hartley", "transconductance": "5 mS"},
+    }
+    catalogue = partpick.load_catalogue()
+    candidate = partpick.solve(request_from_tables(tables, "pair"), catalogue, top=1).candidates[0]
+    coil, keys = candidate.coils[0], candidate.bands[0].extra["oscillator"]
+    assert isinstance(keys, dict) and coil.turns and coil.mean_diameter and coil.pitch
+    wire = next(w for w in catalogue.wires if w.name == coil.wire)
+    family = solenoid_family(coil.turns, coil.mean_diameter, wire.bare_diameter, coil.pitch)
+    (setting,) = keys["settings"]
+    turns, scale = keys["common_turns"], setting["inductance_h"] / family[-1]
+    one, two = family[turns - 1] * scale, family[coil.turns - turns - 1] * scale
+    mutual = (setting["inductance_h"] - one - two) / 2
+    shares = turns / coil.turns, 1 - turns / coil.turns
+    losses = [share * setting["resistance_ohm"] for share in shares]
+    found = threshold(hartley(one, two, mutual, *losses, setting["capacitance_f"]))
+    assert keys["needed_s"] == pytest.approx(float(found.transconductance), rel=1e-6)

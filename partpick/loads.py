@@ -1,0 +1,72 @@
+"""A load at a tap of the coil, and what the tank with its load keeps out."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from partpick.circuit import Tank
+from partpick.oscillating import tap_shares
+from partpick.physics.coupled_tanks import Tank as LoadedCircuit
+from partpick.physics.coupled_tanks import tank_attenuation
+from partpick.physics.coupling import tap_load
+from partpick.physics.loading import loaded_q
+
+HARMONICS = (2, 3)
+
+
+@dataclass(frozen=True)
+class LoadTap:
+    """Where a load goes on a coil, and what it does there."""
+
+    turn: int  # whole turn, counted from the earthed end
+    loaded_q: float
+    detuning: float  # fraction of the frequency: what the load's leakage does to the coil
+
+
+def tap_for_load(tank: Tank, resonance: float, resistance: float, wanted: float) -> LoadTap | None:
+    """Return the turn at which a load comes nearest to a loaded Q.
+
+    Every turn of the coil is tried, the last too; nearest is meant in ratio, of equal ones the fewest turns.
+    None where the coil cannot be tapped, or its Q is unknown.
+    """
+    q, turns = tank.q(), int(tank.coils.turns[tank.coil])
+    block, _ = tank.coils.locate(tank.coil)
+    if q is None or tank.tap_turns is not None or not block.tappable or turns < 2:
+        return None
+    inductance = tank.inductance()
+    reactance = math.sqrt(inductance / tank.total())
+    best: tuple[float, int, float, float] | None = None
+    for turn in range(1, turns + 1):
+        across, with_load = resistance, inductance
+        if turn < turns:
+            section, _, mutual = (float(share) * inductance for share in tap_shares(tank.coils, tank.coil, turn))
+            seen = tap_load(resonance, inductance, section, mutual, resistance)
+            across, with_load = float(seen.resistance), float(seen.inductance)
+        reached = float(loaded_q(q, reactance, across))
+        detuning = math.sqrt(inductance / with_load) - 1.0
+        place = (round(abs(math.log(reached / wanted)) * 1e12), turn, reached, detuning)
+        best = place if best is None else min(best, place)
+    assert best is not None
+    return LoadTap(*best[1:])
+
+
+def attenuation(tank: Tank, frequency: float, resonance: float, loaded: float | None) -> float | None:
+    """Return by how much the tank with its load puts down a frequency against its resonance. [dB]
+
+    The loss of the tank alone is in series with its coil, what the load adds lies across it; None where a Q is
+    unknown or the frequency is not above 0.
+    """
+    q = tank.q()
+    if q is None or loaded is None or frequency <= 0:
+        return None
+    inductance, capacitance = tank.inductance(), tank.total()
+    characteristic = math.sqrt(inductance / capacitance)
+    added = max(1.0 / loaded - 1.0 / q, 0.0)
+    circuit = LoadedCircuit(inductance, capacitance, characteristic / q, added / characteristic)
+    return float(tank_attenuation(frequency, resonance, circuit))
+
+
+def harmonics(tank: Tank, resonance: float, loaded: float | None) -> dict[str, float | None]:
+    """Return what the tank alone does to the second and third harmonic, by their number. [dB]"""
+    return {str(order): attenuation(tank, order * resonance, resonance, loaded) for order in HARMONICS}
