@@ -85,7 +85,10 @@ def _inductance_that_covers(
         span = upper.trimmer.high - upper.trimmer.low
         low, high = (upper.trimmer.low + share * span for share in travel)
     # one setting t has to be at least down/y - most and at most up/y - least, y being the inductance
-    return np.maximum(down / (most + high), (down - up) / (most - least)), up / (least + low)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        # where the element moves inductance both ends have one capacitance: any y will do, or none
+        apart = np.nan_to_num((down - up) / (most - least), nan=-np.inf, posinf=np.inf, neginf=-np.inf)
+        return np.maximum(down / (most + high), apart), up / (least + low)
 
 
 def coil_range(x: Floats, coil: int, adjust: float, travel: tuple[float, float]) -> Interval:
