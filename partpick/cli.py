@@ -337,7 +337,7 @@ def _solve_and_write(
     request: Request, catalogue: Catalogue, outputs: Outputs, top: int, given: Mapping[str, Any]
 ) -> int:
     """Solve one request and write its outputs; nothing is left half written by a signal."""
-    from partpick.solving import solve, with_front
+    from partpick.solving import solve
 
     why = given["why"]
     if why is not None and not outputs.shows_table:
@@ -347,6 +347,8 @@ def _solve_and_write(
     with Terminal(given["time_limit"]) as monitor:
         result = solve(request, catalogue, top=max(top, why or 0), monitor=monitor)
         if given["front"] is not None:
+            from partpick.solving import with_front
+
             result = with_front(result, catalogue, given["front"], monitor)
         monitor.writing()
         outputs.write(**renderers(result, why, before, dial, tracking))

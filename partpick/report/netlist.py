@@ -95,7 +95,8 @@ def _at_end(band: BandFigures, frequency: float) -> tuple[float, float]:
     """Return inductance and self-capacitance of a band's coil where it is tuned to its low end, or else. [H, F]"""
     if frequency != band.extra.get("tuned_low_hz"):
         return band.inductance, band.self_capacitance
-    inductance, own = band.extra["inductance_low_h"], band.extra.get("self_capacitance_low_f", band.self_capacitance)
+    inductance = band.extra.get("inductance_low_h", band.inductance)
+    own = band.extra.get("self_capacitance_low_f", band.self_capacitance)
     assert isinstance(inductance, float) and isinstance(own, float)
     return inductance, own
 
