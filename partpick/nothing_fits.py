@@ -18,6 +18,7 @@ from partpick.ratings import drive_of
 from partpick.receiver import is_receiver, oscillators_alone, with_widest_tracking
 from partpick.request import LEAST_WOUND, Band, CoilRules, Request
 from partpick.result import Candidate, RuledOut
+from partpick.tuning import most_share
 from partpick.tuning_range import beyond_reach
 
 LADDER = (1.1, 1.25, 1.5, 2.0, 3.0, 5.0, 1e6)  # how far Q and drift are eased, step by step, until a plan exists
@@ -138,12 +139,25 @@ def _swept_trials(request: Request) -> Iterator[_Trial]:
     limits = request.limits
     if not any(band.swept for band in request.bands):
         return
+    if request.tuning is not None and request.tuning.kind == "varactor" and "drive" in dict(request.extra):
+        extra = tuple((name, keys) for name, keys in request.extra if name != "drive")
+        bias = request.tuning.get("from")
+        peak = float(str(bias)) / most_share(request.tuning, dict(dict(request.extra)["drive"]))  # 0: not known
+        text = _CONDUCTS.format(*(format_quantity(volts, "V", digits=3) for volts in (peak, float(str(bias)))))
+        if peak > 0:
+            yield _Trial("drive", replace(request, extra=extra), lambda _: peak, lambda _: text)
     if limits.excess is not None:
         free = replace(request, by="error", limits=replace(limits, excess=None))
         yield _Trial("excess", free, lambda c: c.worst_excess, _excess_words)
     if limits.margin > 0:
         free = replace(request, limits=replace(limits, margin=0.0))
         yield _Trial("margin", free, _margin_of, lambda c: f"{100 * _margin_of(c):.3g} % would do")
+
+
+_CONDUCTS = (
+    "the varactor would be driven into conduction: {} peak on a junction across the tank at a least bias of {}; more "
+    "bias (tuning.from), two back to back, or less drive"
+)
 
 
 def _margin_of(candidate: Candidate) -> float:

@@ -21,7 +21,7 @@ from partpick.ratings import drive_of, element_rating, trimmer_rating, uses
 from partpick.request import CHOSEN_ALIGNS, Band, Request, Trimmer
 from partpick.search.drive import Drive
 from partpick.search.problem import NEVER, PLENTY, Bools, Floats, Ints, Problem
-from partpick.tuning import element_ends, element_tolerance
+from partpick.tuning import element_ends, element_tolerance, most_share
 
 LEAST_FLOOR = 0.001
 TRIMMER_Q = 400.0  # film and ceramic trimmers, common practice, no source
@@ -380,6 +380,7 @@ def _swept_figures(
         "tuning_high": np.where(swept, element.high, 0.0),
         "tuning_loss": np.where(swept, 1.0 / element.q, 0.0),
         "tuning_tempco": np.where(swept, tempco, 0.0),
+        "tuning_share": most_share(request.tuning, dict(dict(request.extra).get("drive", ()))),
         "tuning_tolerance": element_tolerance(request.tuning),
         **({} if moved is None else {"moved_own_low": moved.own_low, "moved_own_high": moved.own_high}),
         "inductance_low": coils.inductance_low,

@@ -5,9 +5,16 @@ An element that moves inductance has no capacitance: what it does is in the figu
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
-from partpick.physics.varactor import junction_capacitance, junction_tempco, network_capacitance, network_tempco
+from partpick.physics.varactor import (
+    junction_capacitance,
+    junction_rf_peak,
+    junction_tempco,
+    network_capacitance,
+    network_tempco,
+)
 from partpick.physics.variable_capacitor import sections_in_parallel
 from partpick.request import Tuning
 
@@ -74,6 +81,24 @@ def element_notes(tuning: Tuning) -> tuple[str, ...]:
     own_q = tuning.kind == "sliding core" and tuning.get("q") is None
     taken = (f"sliding core: tuning.q is not stated, {CORE_Q:.0f} taken (common practice)",) if own_q else ()
     return (*notes.get(tuning.kind, ()), *taken)
+
+
+def most_share(tuning: Tuning, drive: Mapping[str, object]) -> float:
+    """Return the most of the tank's voltage that a varactor may bear at its least bias; infinite where any will do.
+
+    More drives it into conduction. Only a drive that states the voltage across the tank says so before there is a
+    tank; any other is looked at afterwards (`conduction.py`). [-]
+    """
+    held, depth = drive.get("voltage"), drive.get("modulation")
+    if tuning.kind != "varactor" or not isinstance(held, float):
+        return float("inf")
+    peak = held * (1.0 + (depth if isinstance(depth, float) else 0.0))
+    zero_bias, potential, grading = (_number(tuning, key) for key in ("zero_bias", "potential", "grading"))
+    opposed = tuning.get("connection") == "back to back"
+    junction = junction_capacitance(_number(tuning, "from"), zero_bias, potential, grading)
+    whole = network_capacitance(junction, _stated(tuning, "count") or 1.0, opposed)
+    series = _stated(tuning, "series") or float("inf")
+    return _number(tuning, "from") / float(junction_rf_peak(peak, whole, series, opposed))
 
 
 def _rest_open(tuning: Tuning) -> bool:

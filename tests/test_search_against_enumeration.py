@@ -175,6 +175,7 @@ def test_without_series_inductance_the_bound_of_the_excess_is_reached() -> None:
             q_limit=problem.q_limit * 0,
             drift_limit=float("inf"),
             part_stock=problem.part_stock * 0 + PLENTY,
+            tuning_share=float("inf"),
         )
         source = ColumnSource(problem)
         levels = range(problem.least_parts, problem.most_parts + 1)

@@ -110,6 +110,7 @@ class Problem:
     tuning_high: Floats = field(default_factory=_unset)
     tuning_loss: Floats = field(default_factory=_unset)  # 1/Q, nan: unknown
     tuning_tempco: Floats = field(default_factory=_unset)  # 1/K, nan: unknown
+    tuning_share: float = float("inf")  # of the tank's voltage, that the element may bear at its most capacitance
     inductance_low: Floats = field(default_factory=_unset)  # (J, B) H, at the lower end
     coil_loss_low: Floats = field(default_factory=_unset)  # (J, B) 1/Q
     species_low: Floats = field(default_factory=_unset)  # (B, n) F

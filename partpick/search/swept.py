@@ -162,6 +162,8 @@ class SweptColumns:
         keep = low_end.total >= self.need[coil, band] * (1 - _GRAIN)
         keep &= high_end.total <= self.most[coil, band] * (1 + _GRAIN)
         keep &= excess <= p.excess_limit * (1 + _GRAIN)
+        share = low_end.tuned / p.tuning_high[band] if behind else 1.0
+        keep &= share <= p.tuning_share * (1 + _GRAIN)
         if chosen.shape[1]:
             keep &= strays <= high_end.total * p.share * (1 + _GRAIN)
         at_low = self._weights(band, rows, across, chosen, behind, low_end, at_low_end=True)

@@ -254,6 +254,8 @@ def swept_column(problem: Problem, coil: int, band: int, of_part, padder, across
         if padder is not None:
             s = species[band][of_part[padder]]
             tuned = 1 / (1 / t + 1 / s)
+        if not tuned_to and (tuned / t if t else 1.0) > problem.tuning_share * (1 + ROUNDING):
+            return None  # the first end is the low one
         total = tuned + net + strays + middle
         tuned_to.append(1 / (2 * math.pi * math.sqrt(inductance * total)))
         slopes = weights(problem, across, shape, c, frequency)

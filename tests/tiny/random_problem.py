@@ -123,6 +123,7 @@ def random_moved_problem(seed: int, *, bands: int, moved: int, **shape: object) 
         tuning_high=np.zeros(bands),
         tuning_loss=np.zeros(bands),
         tuning_tempco=np.zeros(bands),
+        tuning_share=np.inf,
         moved_own_low=own_low,
         moved_own_high=own_high,
     )
@@ -213,4 +214,5 @@ def random_swept_problem(seed: int, *, bands: int, swept: int, **shape: object) 
         excess_limit=pick(np.inf, np.inf, np.inf, 0.8),
         lead_inductance=lead_inductance,
         in_play=plain.in_play | which,
+        tuning_share=0.7 if seed % 8 == 3 else np.inf,
     )
