@@ -62,6 +62,11 @@ def test_every_rank_and_the_front_equal_plain_enumeration(layout: str, bands: in
     assert answered > 1, "the sample must hold plans, not only refusals"
 
 
+def test_what_a_sum_comes_to_at_another_band_is_reckoned_with() -> None:
+    """Series inductance: a pair that is too small at one band by its figures at another is large enough."""
+    assert agree("shared", 1260, bands=3, coupled=True) > 0
+
+
 @pytest.mark.slow
 @pytest.mark.parametrize(("layout", "bands", "coupled"), CASES)
 def test_every_rank_and_the_front_equal_plain_enumeration_at_length(

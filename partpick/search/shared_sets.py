@@ -89,7 +89,11 @@ class SetSearch:
         self.sums = SumTables(letters.acting, highest[None, :], ANSWER)
         self._exact = problem.by_grade
         self.single_parts = all(len(group) == 1 for group in letters.parts)
-        self._largest = np.where(np.isfinite(letters.acting), letters.acting, 0.0).max(axis=0, initial=0.0)
+        acting = np.where(np.isfinite(letters.acting), letters.acting, 0.0)
+        self._largest = acting.max(axis=0, initial=0.0)
+        # what a sum at one band can come to at another, where each capacitor acts by its series inductance
+        grows = np.divide(self._largest, acting, out=np.ones_like(acting), where=acting > 0)
+        self._gain = grows.max(axis=1, initial=1.0)
         self.first_part = np.array([group[0] for group in letters.parts], dtype=np.int64)
 
     def sets(self, mounts: SetMounts, most: int, price: Ints) -> Iterator[Sets]:
@@ -197,18 +201,17 @@ class SetSearch:
         band = int(self.order[depth])
         total = self._largest[sets.letters].sum(axis=1)
         least, most = mounts.least[sets.row], mounts.most[sets.row]
-        reach = np.maximum(most[:, band], 0.0)
+        reach = np.maximum(most[:, band], 0.0) * self._gain[band]
         return self._forced(total + reach, reach, self.order[depth + 1 :], least, most)
 
-    @staticmethod
-    def _forced(total: Floats, reach: Floats, later: Ints, least: Floats, most: Floats) -> Ints:
+    def _forced(self, total: Floats, reach: Floats, later: Ints, least: Floats, most: Floats) -> Ints:
         """Count the bands that need more than `total`, which rises by at most the interval's end each time.
 
         To add as late as possible adds most, so no other sequence needs fewer.
         """
         forced = np.zeros(len(total), dtype=np.int64)
         for band in later:
-            reach = np.maximum(reach, most[:, band])
+            reach = np.maximum(reach, most[:, band] * self._gain[band])
             short = least[:, band] > total * (1 + 1e-12)
             forced += short
             total = np.where(short, total + reach, total)
