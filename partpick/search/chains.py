@@ -20,7 +20,8 @@ from partpick.search.stack_reach import StackReach
 MOST_CHAINS = 300_000
 MOST_FIGURES = 60_000_000  # coils times stacks whose bounds are added up
 WHOLE_PATTERNS = 1100  # beyond it only patterns of neighbouring bands
-_CELLS = 1 << 21  # pairs of groups at one time
+MOST_CELLS = 6_000_000  # groups of equal bounds joined in all
+_CELLS = 1 << 18  # of them at one time
 
 
 def patterns_of(problem: Problem, size: int, whole: bool) -> Iterator[Pattern]:
@@ -95,11 +96,16 @@ class Chains:
         usable = [place for place, groups in enumerate(made) if all(len(g.first) for g in groups)]
         first = len(self.patterns)
         self.patterns += [patterns[place] for place in usable]
-        packed, cells = [], []
+        self._cut([made[place] for place in usable], size)
+        packed, cells, waiting = [], [], 0
         for number, place in enumerate(usable):
             for bound, cell, ways in _joined(p, made[place], self.most_pieces):
                 packed.append(bound)
                 cells.append(np.column_stack([np.full(len(bound), first + number), ways, cell]))
+                waiting += len(bound)
+                if waiting > 2 * MOST_CHAINS:
+                    packed, cells = self._best_so_far(packed, cells)
+                    waiting = len(packed[0])
         if not packed:
             return []
         bound, table = np.concatenate(packed), np.concatenate(cells)
@@ -117,6 +123,25 @@ class Chains:
                 different &= coils[:, one] != coils[:, two]
             found.append((coils[different], np.full(int(different.sum()), number)))
         return found
+
+    def _cut(self, made: list[list[_Groups]], size: int) -> None:
+        """Keep the first groups of each stack where all joined would be too many, and note what is left out."""
+        most = max(1, int((MOST_CELLS / max(1, len(made))) ** (1 / size)))
+        for groups in made:
+            least = [int(group.figures["pieces"].min()) for group in groups]
+            for slot, group in enumerate(groups):
+                if len(group.first) > most:
+                    left_out = int(group.figures["pieces"][most:].min())
+                    self._leave_out(size + left_out + sum(least) - least[slot])
+                    group.cut(most)
+
+    def _best_so_far(self, packed: list[Ints], cells: list[Ints]) -> tuple[list[Ints], list[Ints]]:
+        """Keep the groups of the best bounds, and note the bound of the others."""
+        bound, table = np.concatenate(packed), np.concatenate(cells)
+        order = np.argsort(bound, kind="stable")
+        self.omitted = min(self.omitted, int(bound[order[MOST_CHAINS]]))
+        kept = order[:MOST_CHAINS]
+        return [bound[kept]], [table[kept]]
 
     def _leave_out(self, pieces: int) -> None:
         """Note that chains of at least so many pieces are in no row."""
@@ -184,6 +209,11 @@ class _Groups:
         self.sizes = np.bincount(group, minlength=len(first))
         self._coils = coils[np.argsort(group, kind="stable")]
         self._start = np.concatenate([[0], np.cumsum(self.sizes)])
+
+    def cut(self, most: int) -> None:
+        """Keep the first groups by bound alone."""
+        self.first, self.sizes = self.first[:most], self.sizes[:most]
+        self.figures = {name: figure[:most] for name, figure in self.figures.items()}
 
     def members(self, group: int) -> Ints:
         return self._coils[self._start[group] : self._start[group + 1]]
