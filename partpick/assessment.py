@@ -351,8 +351,9 @@ def _warnings(
             found[f"{figures.name}: Q is unknown, a loss is not stated at this frequency"] = None
         if said := load_note(figures.extra):
             found[f"{figures.name}: {said}"] = None
-        if not figures.capacitors:
-            found[f"{figures.name}: no capacitor, strays alone tune it; measure before you build"] = None
+        if not figures.capacitors and not request.bands[index].swept:
+            alone = "strays alone tune it" if figures.trimmer is None else "strays and trimmer alone tune it"
+            found[f"{figures.name}: no capacitor, {alone}; measure before you build"] = None
         for note in coils.band_notes(design.coils[index], index):
             found[f"{figures.name}: {note}"] = None
     return tuple(found)

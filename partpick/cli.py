@@ -323,10 +323,10 @@ def parts(drawer: str | None) -> int:
 )
 def starter(directory: str, force: bool) -> int:
     """Write a plan and a drawer to begin from into DIRECTORY."""
-    from partpick.starter import write_starter
+    from partpick.starter import next_steps, write_starter
 
     write_starter(directory, force)
-    _print(f"A plan and a drawer to begin from are in {directory}\n")
+    _print(next_steps(directory))
     return FOUND
 
 

@@ -6,6 +6,7 @@ The five files of the drawer show each way a row may be written; the plan's comm
 from __future__ import annotations
 
 import os
+import shlex
 
 from partpick.errors import OutputError
 from partpick.report.files import Output, check_outputs, write_outputs
@@ -14,8 +15,11 @@ _PLAN = """\
 # A plan to begin from. Workshop, stock and prices are invented; change everything.
 #
 #     partpick bands plan.toml --drawer drawer
-#     partpick bands plan.toml --drawer drawer --bom parts.csv
+#     partpick bands plan.toml --drawer drawer --bom parts.csv --sheet sheet.html
 #     partpick parts --drawer drawer
+#
+# `parts.csv` is what to buy, `sheet.html` the page to wind and solder from. Where nothing fits, the
+# answer names the limit that rules everything out and what it would have to be.
 #
 # The folder `drawer` holds what is in stock, one CSV file a kind. A row is one part (`value`) or a
 # whole family of preferred values (`series`, `from`, `to`; then `quantity` counts each value). An empty
@@ -40,6 +44,20 @@ at = "3.65 MHz"
 [[band]]
 name = "islands"
 at = "7.1 MHz"
+
+# To go on, take the # away from one of these:
+#
+# trimmer = "3 pF..20 pF"    # below a band: set on the bench, the error limit is off for it
+#
+# [[band]]                   # a range, tuned by one element ...
+# name = "weather"
+# from = "5.2 MHz"
+# to = "5.5 MHz"
+#
+# [tuning]                   # ... which is
+# kind = "variable capacitor"
+# low = "12 pF"
+# high = "150 pF"
 """
 
 _CAPACITORS = """\
@@ -116,3 +134,16 @@ def write_starter(directory: str | os.PathLike[str], force: bool) -> None:
         raise OutputError(f"cannot make the folder {folder}: {reason}") from None
     check_outputs(files, force)
     write_outputs([Output(path, text.encode()) for path, text in files.items()], force)
+
+
+def next_steps(directory: str | os.PathLike[str]) -> str:
+    """Return what to do with a starter, each command as it is typed."""
+    folder = os.fspath(directory)
+    plan, drawer, sheet = (shlex.quote(os.path.join(folder, name)) for name in ("plan.toml", "drawer", "sheet.html"))
+    return (
+        f"A plan and a drawer to begin from are in {folder}\n"
+        "Next, what to build, then the page to wind and solder from:\n"
+        f"  partpick bands {plan} --drawer {drawer}\n"
+        f"  partpick bands {plan} --drawer {drawer} --sheet {sheet}\n"
+        "Then open the plan and change it: its comments say how to go on.\n"
+    )

@@ -51,7 +51,7 @@ def told(result: Result, rank: int) -> str:
             "error_class",
             4000000,
             {"worst_error": 0.004},
-            "by the worst error: 0.052 % against 0.400 %, all below 0.21 %",
+            "by the worst error: 0.052 % against 0.400 %; below 0.21 % all count as equal",
         ),
         ("stray_class", 2, {}, "by strays, in classes up to 10 %, up to 20 % and more"),
         ("reactance_class", 1, {}, "by reactance: 0 against 1 octaves"),

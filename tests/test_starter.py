@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import shlex
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
@@ -9,7 +12,7 @@ import pytest
 import partpick
 from partpick import load_catalogue, load_plan
 from partpick.errors import OutputError
-from partpick.starter import starter_files, write_starter
+from partpick.starter import next_steps, starter_files, write_starter
 
 
 def test_the_starter_is_marked_invented() -> None:
@@ -34,6 +37,32 @@ def test_the_plan_and_the_drawer_load(tmp_path: Path) -> None:
     for part in (*parts.capacitors, *parts.inductors, *parts.formers, *parts.cores):
         assert part.unit_price is not None
     assert len(load_plan(str(tmp_path / "new" / "tanks" / "plan.toml")).bands) == 2
+
+
+def test_what_the_comments_of_the_plan_offer_is_read(tmp_path: Path) -> None:
+    """Who takes the marks away, as told, has a plan that is understood."""
+    head, tail = starter_files()["plan.toml"].split("# To go on", 1)
+    (tmp_path / "plan.toml").write_text(
+        head + "\n".join(line.removeprefix("#").removeprefix(" ") for line in tail.splitlines()[1:]), encoding="utf-8"
+    )
+    request = load_plan(str(tmp_path / "plan.toml"))
+    assert request.tuning is not None and [band.swept for band in request.bands] == [False, False, True]
+    assert request.bands[1].trimmer is not None
+
+
+def test_the_next_steps_are_commands_that_can_be_typed(tmp_path: Path) -> None:
+    """Also where the name of the folder has a blank; nothing has to be looked up elsewhere."""
+    folder = tmp_path / "my tanks"
+    write_starter(folder, force=False)
+    typed = [shlex.split(line) for line in next_steps(folder).splitlines() if line.startswith("  partpick")]
+    assert len(typed) == 2
+    for command in typed:
+        run = subprocess.run(
+            [sys.executable, "-m", *command], capture_output=True, text=True, check=False, encoding="utf-8"
+        )
+        assert run.returncode == 0, run.stderr
+        assert "Rank 1 in full" in run.stdout
+    assert "Build sheet" in (folder / "sheet.html").read_text(encoding="utf-8")
 
 
 def test_the_plan_is_solved_with_the_drawer(tmp_path: Path) -> None:

@@ -188,6 +188,6 @@ def _in_circuit(band: BandFigures, candidate: Candidate) -> str:
     if parted := _parted_resonances(band):
         told.append(parted)
     if band.drift is not None:
-        spread = "" if band.drift_spread is None else f" \u00b1{figure(band.drift_spread * 1e6, 2)}"
+        spread = "" if not band.drift_spread else f" \u00b1{figure(band.drift_spread * 1e6, 2)}"
         told.append(f"drift {figure(band.drift * 1e6, 2, '+')}{spread} ppm/K")
     return "; ".join(told)

@@ -111,8 +111,11 @@ def _by_pieces(step: _Step) -> str:
 def _by_error(step: _Step) -> str:
     ahead, after = (_size(c.worst_error) for c in (step.first, step.second))
     if step.name == "error_class":
-        floor = format_percent(step.result.floor, 2)
-        return f"the worst error: {ahead} against {after}, all below {floor} taken as equal."
+        reason = f"the worst error: {ahead} against {after}."
+        best, floor = step.first.worst_error, step.result.floor
+        if best is None or best > floor:
+            return reason
+        return f"{reason[:-1]}; below {format_percent(floor, 2)} all count as equal."
     return f"the worst error, all coarser steps being equal: {ahead} against {after}."
 
 
@@ -227,7 +230,12 @@ def _limits_of_plan(request: Request, candidate: Candidate) -> list[str]:
     if request.switching == "separate":
         counted.append(("parts_per_band", most, limits.parts_per_band))
     near = [f"{name} {used} of {limit}" for name, used, limit in counted if limit is not None and used >= limit]
-    measured = [("error", candidate.worst_error, limits.error), ("excess", candidate.worst_excess, limits.excess)]
+    held = [
+        abs(b.error)
+        for b, asked in zip(candidate.bands, request.bands, strict=True)
+        if b.error is not None and (limits.error_stated or asked.trimmer is None)
+    ]  # a trimmer takes the place of a limit by default
+    measured = [("error", max(held, default=None), limits.error), ("excess", candidate.worst_excess, limits.excess)]
     for name, used, limit in measured:
         if used is not None and limit is not None and used >= NEAR * limit:
             near.append(f"{name} {_size(used)} of {format_percent(limit)}")

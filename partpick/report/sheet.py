@@ -10,7 +10,9 @@ import partpick
 from partpick.quantities import format_percent
 from partpick.report import charts, html, sheet_parts
 from partpick.report.cautions import ALWAYS
+from partpick.report.circuit_rows import shares_capacitors
 from partpick.report.drawing import circuit
+from partpick.report.load_table import load_table
 from partpick.report.oscillator import start_table
 from partpick.report.pictures import HOW_TO_GET, Picture, pictures
 from partpick.report.sheet_style import STYLE
@@ -55,6 +57,7 @@ def _candidate(result: Result, candidate: Candidate) -> list[str]:
         html.section("Bands at a glance", sheet_parts.at_a_glance(candidate)),
         html.section("What to buy or pull", sheet_parts.shopping(candidate, result.request.units)),
         html.section("What to wind", sheet_parts.windings(candidate)),
+        html.section("Load", load_table(result.request, candidate)),
         html.section("Circuit", _circuits(candidate)),
         html.section("Switch", _switch(candidate)),
         html.section("Start of the oscillator", start_table(candidate)),
@@ -67,7 +70,9 @@ def _candidate(result: Result, candidate: Candidate) -> list[str]:
 
 def _circuits(candidate: Candidate) -> str:
     drawings = [html.element("figure", circuit(candidate, coil.reference)) for coil in candidate.coils]
-    note = "Each row shows what one position puts across the coil; equal references are one part."
+    note = "Each row shows what one position puts across the coil."
+    if shares_capacitors(candidate):
+        note = "Wire each row once. Its contact is closed at the bands named over it."
     cards = html.element("div", "\n".join(drawings), class_="cards")
     return cards + (html.paragraph(note, class_="soft") if len(candidate.bands) > 1 else "")
 
@@ -85,10 +90,11 @@ def _readings(candidate: Candidate) -> tuple[str, ...]:
         "turns spread; too high: turns pressed together, or one more."
     )
     steps = alignment_steps(candidate)
+    middle = ", trimmers in the middle of their range" if _trimmed(candidate) else ""
     return (
         html.paragraph(coil),
         sheet_parts.dips(candidate),
-        html.paragraph("Then in circuit, band by band, the strays of the wiring included."),
+        html.paragraph(f"Then in circuit, band by band, the strays of the wiring included{middle}."),
         sheet_parts.readings(candidate),
         html.element("h3", "Setting") + html.steps(steps) if steps else "",
     )
@@ -99,7 +105,8 @@ def _errors(result: Result, candidate: Candidate) -> str:
     bars = charts.error_bars(result, candidate)
     if bars:
         limit = result.request.limits.error
-        inside = f" Shaded: the limit of {format_percent(limit, 2)} for nominal values." if limit is not None else ""
+        what = "the limit of" if result.request.limits.error_stated or not _trimmed(candidate) else "within"
+        inside = f" Shaded: {what} {format_percent(limit, 2)} for nominal values." if limit is not None else ""
         told = "Dot: nominal parts."
         if any(charts.spread_of(band) for band in candidate.bands):
             told += " Thick: where 9 of 10 units fall. Thin: every unit within tolerance. Nothing is adjusted yet."
@@ -110,6 +117,10 @@ def _errors(result: Result, candidate: Candidate) -> str:
         noise = f"Errors below {format_percent(result.floor, 2)} are noise: parts vary more."
         figures.append(_figure(steps, f"What more pieces would buy, least error each. {noise}"))
     return html.element("div", "\n".join(figures), class_="cards") if figures else ""
+
+
+def _trimmed(candidate: Candidate) -> bool:
+    return any(band.trimmer is not None for band in candidate.bands)
 
 
 def _figure(drawing: str, told: str) -> str:

@@ -11,6 +11,7 @@ from partpick.report import html
 from partpick.report.bands_table import with_labels
 from partpick.report.bom import price_without_wire
 from partpick.report.oscillator import common_terminal
+from partpick.report.switch_text import switch_to_buy
 from partpick.report.text import figure, length, quantity, signed_percent, signed_shift, slope
 from partpick.result import BandFigures, Candidate, CoilFigures, PartLine
 
@@ -40,6 +41,7 @@ def shopping(candidate: Candidate, units: int) -> str:
     for part in candidate.parts:
         if part.wire is not None and part.wire_length is not None:
             rows.append([f"wire {part.wire}", length(part.wire_length), part.reference, "", _wire_price(part)])
+    rows += [[words, "1", "", "", ""] for words in switch_to_buy(candidate)]
     told = [html.table(head, rows, figures=(1, 3, 4))]
     if units > 1:
         told.append(html.paragraph(f"Quantities are for one of {units} units.", class_="soft"))

@@ -20,6 +20,7 @@ table { border-collapse: collapse; width: 100%; font-size: .93rem; }
 th, td { text-align: left; vertical-align: top; padding: .28rem .8rem .28rem 0; border-bottom: 1px solid var(--line); }
 thead th { font-weight: 600; }
 td { overflow-wrap: anywhere; }
+td:first-child { min-width: 5.5rem; }
 .figure { text-align: right; font-variant-numeric: tabular-nums; overflow-wrap: normal; }
 .figure + td:not(.figure), .figure + th:not(.figure) { padding-left: 1rem; }
 dl { display: grid; grid-template-columns: max-content minmax(0, 1fr); gap: .15rem 1rem; margin: 0; }

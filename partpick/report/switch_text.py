@@ -33,3 +33,16 @@ def switch_lines(candidate: Candidate) -> list[str]:
     """Return the switch as lines of the table."""
     said = switch_in_words(candidate)
     return wrapped(f"Switch: {'. '.join(text[0].upper() + text[1:] for text in said)}.", 2, 2) if said else []
+
+
+def switch_to_buy(candidate: Candidate) -> list[str]:
+    """Return the switch as a line to buy from: positions, poles, contacts; nothing where there is none."""
+    switch = candidate.extra.get("switch")
+    if not isinstance(switch, Mapping):
+        return []
+    if switch["kind"] == "relays or toggles":
+        return [f"{plural(int(switch['contacts']), 'contact')}, relays or toggles"]
+    kind = "band switch" if switch["kind"] == "single pole" else "progressive shorting switch"
+    poles = f"{plural(len(switch['poles']), 'pole')}, " if switch["kind"] == "single pole" else ""
+    positions = plural(len(candidate.bands), "position")
+    return [f"{kind}, {poles}{positions}, {plural(int(switch['contacts']), 'contact')}"]
