@@ -89,6 +89,7 @@ def _by_contact(candidate: Candidate, bands: Sequence[BandFigures]) -> list[Row]
     rows = []
     for (pole, *names), branches in alike.items():
         contacts = _contacts(candidate, pole, names)
+        each: list[tuple[tuple[str, ...], Connection]]
         if len(contacts) == len(branches) and pole == "capacitors":  # each capacitor of a set has its own
             each = [((contact,), branch) for contact, branch in zip(contacts, branches, strict=True)]
         else:
