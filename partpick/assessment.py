@@ -27,6 +27,7 @@ from partpick.search.divided import CLAPPED, DIVIDED, OWN_PARTS, SPLIT
 from partpick.search.networks import PARALLEL, SHUNTED
 from partpick.tank_figures import load_note, tank_bandwidth, tank_figures
 from partpick.tuning import element_ends
+from partpick.unstated import losses_taken
 
 DIVIDER_ROLES = ("output to common", "control to common")
 AGREEMENT = 1e-9  # of the frequency, or of the excess, between search and recheck
@@ -345,7 +346,7 @@ def _warnings(
         support = coils.supports[int(coils.support[coil])]
         for note in support.notes:
             found[f"{support.name}: {note}"] = None
-    found.update(dict.fromkeys(element_warnings(request, coils, design)))
+    found.update(dict.fromkeys((*losses_taken(request), *element_warnings(request, coils, design))))
     for index, figures in enumerate(bands):
         if figures.q is None:
             found[f"{figures.name}: Q is unknown, a loss is not stated at this frequency"] = None

@@ -20,6 +20,7 @@ from partpick.request import LEAST_WOUND, Band, CoilRules, Request
 from partpick.result import Candidate, RuledOut
 from partpick.tuning import most_share
 from partpick.tuning_range import beyond_reach
+from partpick.unstated import unknown_drifts
 
 LADDER = (1.1, 1.25, 1.5, 2.0, 3.0, 5.0, 1e6)  # how far Q and drift are eased, step by step, until a plan exists
 LEADS_DECIDE = f"of a wound coil below {format_quantity(LEAST_WOUND, 'H')} the leads decide"
@@ -54,6 +55,9 @@ def explain(
     swept = any(band.swept for band in request.bands)
     if swept and (alone := beyond_reach(request, realisable_coils(request, catalogue))) is not None:
         return None, alone
+    if request.limits.drift is not None and (unknown := unknown_drifts(request)):
+        text = f"the limit drift rules out every choice, since an unknown drift does not pass: {'; '.join(unknown)}"
+        return None, RuledOut(limit="drift", needed=None, text=text)
     if is_receiver(request):
         others = oscillators_alone(request)
         if (alone := beyond_reach(others, realisable_coils(others, catalogue))) is not None:

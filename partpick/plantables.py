@@ -238,7 +238,8 @@ def _tuning_table(reader: TableReader, text: str) -> dict[str, object]:
             stated = value.strip()
             table[name.strip()] = {"true": True, "false": False}.get(stated.casefold(), stated)
         elif item.count("..") == 1:
-            ends = ("low", "high") if kind.strip().casefold() == "variable capacitor" else ("from", "to")
+            keys = plankeys.TUNING.get(kind.strip().casefold(), {})
+            ends = ("low", "high") if "low" in keys else ("from", "to")
             table.update(zip(ends, (end.strip() for end in item.split("..")), strict=True))
         else:
             raise reader.fail("tuning", f"read {shown(text)}: the form is KIND:LOW..HIGH")

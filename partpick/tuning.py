@@ -62,6 +62,7 @@ def element_ends(tuning: Tuning) -> ElementEnds:
         return _variable_capacitor(tuning)
     if tuning.kind == "varactor":
         return _varactor(tuning)
+    assert tuning.moves_inductance, tuning.kind
     return ElementEnds(low=0.0, high=0.0, q=float("inf"), tempco=None, words=tuning.kind)
 
 

@@ -22,7 +22,7 @@ STAGES = [
     {"forms", "moved", "candidates"},
     {"search"},
     {"objective", "oscillating", "tapping", "trimming"},
-    {"stressed", "rating_words", "tuning_range"},
+    {"stressed", "rating_words", "tuning_range", "unstated"},
     {"circuit", "band_switch", "layouts", "receiver", "moved_figures", "assessment", "loads", "tank_figures",
      "oscillator_figures", "tracking_figures", "fronts", "nothing_fits", "cover"},
     {"built", "cautions", "conduction", "stress"},

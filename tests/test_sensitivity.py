@@ -68,6 +68,23 @@ def test_drifts_of_the_parts_add_up_to_that_of_the_band() -> None:
     assert sum(each for each in drifts if each is not None) == pytest.approx(-(30e-6 + 50e-6) / 2)
 
 
+def test_a_trimmer_drifts_as_far_as_it_is_set(tmp_path: Path) -> None:
+    """With it the parts of a band add up to the band's drift, from the plan to the result."""
+    drawer = write_drawer(tmp_path / "drawer")
+    head = (
+        '[coil]\nforms = ["bought"]\n[stray]\nshare = "none"\n[temperature]\nfrom = "10 \u00b0C"\nto = "30 \u00b0C"\n'
+        '[trimmer]\nlow = "3 pF"\nhigh = "20 pF"\ntempco = "-200 ppm"\n'
+    )
+    best = ranked("bands", plan(tmp_path / "plan.toml", [("b", "6.6 MHz")], head), "--drawer", drawer)[0]
+    rows = {row["reference"]: row for row in best["sensitivity"]}
+    band, own = best["bands"][0], rows["trimmer of b"]
+    assert sum(row["drift_per_k"] for row in rows.values()) == pytest.approx(band["temperature"]["drift_per_k"])
+    set_to = band["alignment"]["trimmer"]["set_to_f"]
+    fixed = band["capacitance_f"] - band["trimmer_f"]
+    assert own["drift_per_k"] == pytest.approx(100e-6 * set_to / (fixed + set_to), rel=0.05)
+    assert own["tolerance"] is None and own["share_of_variance"] == 0.0
+
+
 def test_an_unknown_tempco_is_told_as_unknown() -> None:
     """Of that part alone; the others keep theirs."""
     variation = on_one_coil([[100e-12]])

@@ -24,6 +24,7 @@ from partpick.circuit import Design
 from partpick.parts import Capacitor
 from partpick.request import Request
 from partpick.result import BandFigures, Candidate
+from partpick.unstated import unknown_drifts
 
 Entry = dict[str, object]
 
@@ -102,7 +103,7 @@ def outlook(
             aligned.share if aligned is not None else spreads.inside,
             _stock(request, capacitors, coils, design, candidate),
         ),
-        notes=varying.notes,
+        notes=varying.notes if low is None else (*varying.notes, *unknown_drifts(request)),
     )
 
 

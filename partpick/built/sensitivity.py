@@ -8,7 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from partpick.built.spread import slopes
+from partpick.built.tank import VaryingTank
 from partpick.built.variation import CAPACITOR, COIL, Variation
+from partpick.built.warming import on_frequency
 
 USEFUL = 0.05  # of a band's standard deviation must go for a part to be worth it
 BETTER = 0.01  # tolerance of a capacitor that is bought better or measured, of a coil measured after winding
@@ -16,12 +18,12 @@ BETTER = 0.01  # tolerance of a capacitor that is bought better or measured, of 
 
 @dataclass(frozen=True, kw_only=True)
 class Contribution:
-    """One source on one band."""
+    """One source on one band, or the band's trimmer, which is set and so adds to drift alone."""
 
     reference: str
     kind: str
     band: str
-    tolerance: float  # of the source, a fraction
+    tolerance: float | None  # of the source, a fraction; None: it is set
     hertz_per_percent: float  # shift for one per cent more of it
     largest_shift: float  # Hz, size, at the end of its tolerance
     share_of_variance: float  # of the band's spread
@@ -58,10 +60,13 @@ def sensitivity(variation: Variation, deviation_per_size: float) -> tuple[Contri
         slope = slopes(variation, tank)
         variance = (slope * variation.sizes * deviation_per_size) ** 2
         whole = float(variance.sum()) or 1.0
+        set_to = on_frequency(tank)
+        when_set = tank.weights(set_to)  # drift is that of a band on frequency
         for place in np.flatnonzero(slope):
             source = variation.sources[int(place)]
             tempco = tank.coil_tempco if source.kind == COIL else source.tempco
             known = tempco is not None and math.isfinite(tempco)
+            share = -0.5 * when_set[int(place)]
             found.append(
                 Contribution(
                     reference=source.reference,
@@ -71,11 +76,29 @@ def sensitivity(variation: Variation, deviation_per_size: float) -> tuple[Contri
                     hertz_per_percent=float(slope[place]) * tank.frequency * 0.01,
                     largest_shift=abs(float(slope[place])) * tank.frequency * source.size,
                     share_of_variance=float(variance[place]) / whole,
-                    drift=float(slope[place]) * tempco if known and tempco is not None else None,
-                    drift_spread=abs(float(slope[place])) * source.tempco_size,
+                    drift=share * tempco if known and tempco is not None else None,
+                    drift_spread=abs(share) * source.tempco_size,
                 )
             )
+        if tank.trimmer is not None:
+            found.append(_of_trimmer(tank, set_to))
     return tuple(found)
+
+
+def _of_trimmer(tank: VaryingTank, set_to: float) -> Contribution:
+    assert tank.trimmer is not None
+    share = -0.5 * set_to / (tank.nominal_fixed() + set_to)
+    return Contribution(
+        reference=f"trimmer of {tank.name}",
+        kind="trimmer",
+        band=tank.name,
+        tolerance=None,
+        hertz_per_percent=share * tank.frequency * 0.01,
+        largest_shift=0.0,
+        share_of_variance=0.0,
+        drift=None if tank.trimmer.tempco is None else share * tank.trimmer.tempco,
+        drift_spread=abs(share) * (tank.trimmer.tempco_tolerance or 0.0),
+    )
 
 
 def worth_improving(variation: Variation, deviation_per_size: float) -> WorthImproving | None:
