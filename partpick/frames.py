@@ -13,10 +13,10 @@ Examples
 >>> partpick.frames.parts(result)["kind"].tolist()
 ['capacitor', 'capacitor', 'coil']
 
-A request is frozen; a changed copy asks another question:
+Another question is asked by other tables, of a plan file by ``load_plan(path, change={"limits.error": "0.01 %"})``.
+(``dataclasses.replace`` on a request does not reach limits on Q, strays, trimmers and loads: each band has its own.)
 
->>> from dataclasses import replace
->>> closer = replace(request, limits=replace(request.limits, error=1e-4, parts_per_band=3))
+>>> closer = partpick.request_from_tables({**plan, "limits": {"error": "0.01 %", "parts_per_band": 3}}, "pair")
 >>> len(partpick.frames.candidates(partpick.solve(closer, partpick.load_catalogue(), top=1)))
 1
 """

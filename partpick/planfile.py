@@ -43,7 +43,12 @@ def plan_key(path: str) -> str:
 
 
 def load_plan(
-    path: str, *, by: str = "build", all_windings: bool = False, stdin: BinaryIO | None = None
+    path: str,
+    *,
+    by: str = "build",
+    all_windings: bool = False,
+    stdin: BinaryIO | None = None,
+    change: Mapping[str, object] | None = None,
 ) -> Request:
     """Return the request of a plan file.
 
@@ -57,6 +62,9 @@ def load_plan(
         Whether every winding is listed.
     stdin : binary file
         Read for "-" in place of the standard input.
+    change : mapping
+        Keys to set beside what the file states, such as ``{"limits.q": 180, "stray.capacitance": "12 pF"}``; a
+        key of all bands holds where a band does not state its own.
 
     Returns
     -------
@@ -69,8 +77,21 @@ def load_plan(
         The file cannot be read, is no TOML, or holds something that is not understood.
     """
     source = "stdin" if path == "-" else "".join(c if c.isprintable() else "\ufffd" for c in path)
-    tables = _parse(_read_bytes(path, source, stdin), source)
+    tables = _changed(_parse(_read_bytes(path, source, stdin), source), change or {})
     return request_from_tables(tables, "bands", source=source, by=by, all_windings=all_windings)
+
+
+def _changed(tables: dict[str, Any], change: Mapping[str, object]) -> dict[str, Any]:
+    """Return the tables of a plan with some keys set anew, each named with its table: "limits.q"."""
+    for path, value in change.items():
+        *above, key = path.split(".")
+        table = tables
+        for name in above:
+            table = table.setdefault(name, {})
+            if not isinstance(table, dict):
+                raise RequestError(f'"{path}" cannot be changed: "{name}" is no table of the plan')
+        table[key] = value
+    return tables
 
 
 def _read_bytes(path: str, source: str, stdin: BinaryIO | None) -> bytes:

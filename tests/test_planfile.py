@@ -335,6 +335,19 @@ def test_options_and_plan_give_the_same_request() -> None:
     assert request_from_tables(tables, "bands") == plan(text + TUNING + SWEPT)
 
 
+def test_a_plan_is_changed_as_if_its_file_said_so(tmp_path: Path) -> None:
+    """Also where every band takes the figure over, as it does a limit on Q; what is wrong is named as ever."""
+    path = tmp_path / "plan.toml"
+    path.write_text('[limits]\nerror = "1 %"\n[[band]]\nname = "a"\nat = "7 MHz"\n', encoding="utf-8")
+    change = {"limits.q": 180, "limits.error": "0.2 %", "stray.capacitance": "12 pF"}
+    request = load_plan(str(path), change=change)
+    assert (request.bands[0].q, request.limits.error, request.bands[0].stray) == (180.0, 0.002, 12e-12)
+    with pytest.raises(RequestError, match=r'limits\.eror.*limits\.error'):
+        load_plan(str(path), change={"limits.eror": "1 %"})
+    with pytest.raises(RequestError, match="no table"):
+        load_plan(str(path), change={"band.a.q": 180})
+
+
 def test_an_option_is_refused_by_its_own_name() -> None:
     """Who typed --error has no key limits.error; the frequency of a pair is an argument."""
 

@@ -6,6 +6,7 @@ import re
 import subprocess
 import sys
 from pathlib import Path
+from typing import Any
 
 import pytest
 
@@ -35,6 +36,17 @@ def test_the_readme_shows_the_printed_output(arguments: list[str], block: int, c
     printed = run.stdout
     shown = BLOCKS[block].rstrip("\n")
     assert shown == printed.rstrip("\n") or (shown.endswith("...") and printed.startswith(shown[:-3]))
+
+
+def test_the_example_for_a_notebook_runs(monkeypatch: pytest.MonkeyPatch) -> None:
+    """It is typed as it stands there; the changed plan gives what was asked for."""
+    (example,) = re.findall(r"```python\n(.*?)```", README, flags=re.DOTALL)
+    monkeypatch.chdir(ROOT)
+    *statements, last = example.strip().splitlines()
+    names: dict[str, Any] = {}
+    exec("\n".join(statements), names)
+    frame = eval(last, names)
+    assert list(frame.columns) == ["rank", "q", "capacitance_f"] and (frame["q"] >= 180).all() and len(frame) == 3
 
 
 def test_the_check_script_runs_the_test_command_of_the_readme() -> None:

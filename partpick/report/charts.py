@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 from partpick.quantities import format_percent
 from partpick.report.text import cut, plural, signed_percent
+from partpick.report.tracking import worst_tracking
 from partpick.report.vector import box, circle, line, svg, words
 from partpick.result import BandFigures, Candidate, Result
 
@@ -94,21 +95,37 @@ def _scale(reach: float, scale: float, foot: float) -> list[str]:
     return lines
 
 
+def least(candidates: Sequence[Candidate]) -> str:
+    """Return what is least at each step of a front: the error, else the tracking error or the excess."""
+    first = candidates[0]
+    if worst_tracking(first):
+        return "tracking error"
+    return "excess" if first.worst_error is None else "error"
+
+
+def _led_by(candidate: Candidate) -> tuple[float | None, str]:
+    """Return the figure that leads a step of a front, and how it is written."""
+    if told := worst_tracking(candidate):
+        return float(str(candidate.extra["worst_tracking_hz"])), told
+    value = candidate.worst_excess if candidate.worst_error is None else candidate.worst_error
+    return value, "" if value is None else signed_percent(value).lstrip("+")
+
+
 def front(candidates: Sequence[Candidate]) -> str:
-    """Return least error (excess of swept bands) against pieces as a bar a step; nothing without a choice."""
-    steps = [(c.piece_count, c.worst_excess if c.worst_error is None else c.worst_error) for c in candidates]
-    known = [(pieces, value) for pieces, value in steps if value is not None]
+    """Return what `least` names against pieces as a bar a step; nothing without a choice."""
+    steps = [(c.piece_count, *_led_by(c)) for c in candidates]
+    known = [(pieces, value, told) for pieces, value, told in steps if value is not None]
     if len(known) < 2:
         return ""
     # bars of length by decades: the second piece may buy a factor of a hundred
-    logs = [math.log10(max(value, 1e-9)) for _, value in known]
+    logs = [math.log10(max(value, 1e-9)) for _, value, _ in known]
     low, high = min(logs) - 0.5, max(logs)
     lines = []
-    for place, ((pieces, value), size) in enumerate(zip(known, logs, strict=True)):
+    for place, ((pieces, _, told), size) in enumerate(zip(known, logs, strict=True)):
         y = 8.0 + 26 * place
         length = (WIDTH - 190) * (size - low) / (high - low)
         lines.append(words(EDGE, y + 13, plural(pieces, "piece")))
         lines.append(box(EDGE + 76, y + 2, length, 14, "bar"))
-        lines.append(words(EDGE + 84 + length, y + 13, signed_percent(value).lstrip("+")))
-    what = "excess" if candidates[0].worst_error is None else "error"
-    return svg(WIDTH, 12 + 26 * len(known), lines, f"Least {what} for the number of pieces, a decade a step")
+        lines.append(words(EDGE + 84 + length, y + 13, told))
+    title = f"Least {least(candidates)} for the number of pieces, a decade a step"
+    return svg(WIDTH, 12 + 26 * len(known), lines, title)

@@ -22,9 +22,10 @@ _BEGIN = (
 
 def load_table(request: Request, candidate: Candidate) -> str:
     """Return one row a band with a load, nothing where there is none."""
+    loads = {asked.name: asked.load or request.load for asked in request.bands}
     rows = []
-    for band, asked in zip(candidate.bands, request.bands, strict=True):
-        keys, load = band.extra.get("load"), asked.load or request.load
+    for band in candidate.bands:
+        keys, load = band.extra.get("load"), loads.get(band.name)
         if not isinstance(keys, Mapping) or load is None:
             continue
         across = keys.get("across_ohm")
@@ -38,7 +39,7 @@ def load_table(request: Request, candidate: Candidate) -> str:
         ])  # fmt: skip
     if not rows:
         return ""
-    turns = any(load.connection in ("tap", "link") for asked in request.bands if (load := asked.load or request.load))
+    turns = any(load is not None and load.connection in ("tap", "link") for load in loads.values())
     return html.table(HEAD, rows, figures=(1, 2, 4, 5)) + (html.paragraph(_BEGIN, class_="soft") if turns else "")
 
 

@@ -21,6 +21,7 @@ from partpick.report.stress_table import FIGURES, GUESS, HEAD, cautions, stress_
 from partpick.report.switch_text import switch_in_words
 from partpick.report.table import how_sure
 from partpick.report.text import plural
+from partpick.report.tracking import tracking_table
 from partpick.result import Candidate, Result
 
 
@@ -62,6 +63,7 @@ def _candidate(result: Result, candidate: Candidate) -> list[str]:
         html.section("Switch", _switch(candidate)),
         html.section("Start of the oscillator", start_table(candidate)),
         html.section("Readings to expect", *_readings(candidate)),
+        html.section("Tracking", tracking_table(candidate)),
         html.section("Errors and tolerance", _errors(result, candidate)),
         html.section("At the stated drive", _stress(candidate)),
         html.section("Response and tuning", _pictures(pictures(result, candidate))),
@@ -114,8 +116,10 @@ def _errors(result: Result, candidate: Candidate) -> str:
         figures.append(_figure(bars, told))
     steps = charts.front(result.front)
     if steps:
-        noise = f"Errors below {format_percent(result.floor, 2)} are noise: parts vary more."
-        figures.append(_figure(steps, f"What more pieces would buy, least error each. {noise}"))
+        what = charts.least(result.front)
+        floor = format_percent(result.floor, 2)
+        noise = f" Errors below {floor} are noise: parts vary more." if what == "error" else ""
+        figures.append(_figure(steps, f"What more pieces would buy, least {what} each.{noise}"))
     return html.element("div", "\n".join(figures), class_="cards") if figures else ""
 
 

@@ -6,12 +6,13 @@ import csv
 import io
 import json
 import os
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import partpick
 from partpick.errors import RequestError
 from partpick.quantities import format_quantity, shown
 from partpick.receiver import is_receiver
+from partpick.report import html
 from partpick.report.text import clean, columns, cut, signed_shift, wrapped
 from partpick.request import Request
 from partpick.result import Candidate, Result
@@ -21,6 +22,8 @@ if TYPE_CHECKING:
 
 TRACKING_FORMAT = 1
 LONGEST_NAME = 14
+HEAD = ("band", "off by at most", "at", "limit", "not rounded", "rounding costs")
+NOT_ROUNDED = "not rounded: oscillator coil, padder and parallel capacitor of any value"
 COLUMNS = ("band", "signal_hz", "section_f", "wanted_hz", "tuned_hz", "error_hz")
 
 
@@ -83,14 +86,37 @@ def tracking_lines(candidate: Candidate) -> list[str]:
     entries = candidate.extra.get("tracking")
     if not isinstance(entries, list):
         return []
-    distance, side = format_quantity(entries[0]["intermediate_hz"], "Hz", 6), entries[0]["side"]
-    rows = [["band", "off by at most", "at", "limit", "not rounded", "rounding costs"]]
+    rows = [[cut(clean(row[0]), LONGEST_NAME), *row[1:]] for row in _rows(entries)]
+    lines = wrapped(f"Tracking, {_side(entries)}:")
+    lines += ["  " + line for line in columns([list(HEAD), *rows], left=(0,))]
+    return lines + wrapped(f"({NOT_ROUNDED})", 0, 1)
+
+
+def tracking_table(candidate: Candidate) -> str:
+    """Return the same as a table of a build sheet; nothing where it is no receiver."""
+    entries = candidate.extra.get("tracking")
+    if not isinstance(entries, list):
+        return ""
+    head = [name[0].upper() + name[1:] for name in HEAD]
+    side = _side(entries)
+    return (
+        html.paragraph(f"{side[0].upper()}{side[1:]}.")
+        + html.table(head, _rows(entries), figures=range(1, len(head)))
+        + html.paragraph(f"{NOT_ROUNDED[0].upper()}{NOT_ROUNDED[1:]}.", class_="soft")
+    )
+
+
+def _side(entries: list[dict[str, Any]]) -> str:
+    distance = format_quantity(entries[0]["intermediate_hz"], "Hz", 6)
+    return f"the oscillator {distance} {entries[0]['side']} the signal"
+
+
+def _rows(entries: list[dict[str, Any]]) -> list[list[str]]:
+    rows = []
     for entry in entries:
         shown_hz = [_hertz(entry[key]) for key in ("worst_error_hz", "worst_at_hz", "limit_hz", "unrounded_error_hz")]
-        rows.append([cut(clean(entry["band"]), LONGEST_NAME), *shown_hz, signed_shift(entry["rounding_cost_hz"])])
-    lines = wrapped(f"Tracking, the oscillator {distance} {side} the signal:")
-    lines += ["  " + line for line in columns(rows, left=(0,))]
-    return lines + wrapped("(not rounded: oscillator coil, padder and parallel capacitor of any value)", 0, 1)
+        rows.append([entry["band"], *shown_hz, signed_shift(entry["rounding_cost_hz"])])
+    return rows
 
 
 def worst_tracking(candidate: Candidate) -> str:
