@@ -392,6 +392,11 @@ def inside_in_circuit(
         The coil of as many turns as are in circuit: the coil itself, or that of a section. [-]
     self_capacitance : (v,) array
         Across what is in circuit. [F]
+
+    Notes
+    -----
+    Of a section, the whole coil's own resonance counts too: its idle turns hang on, and near it they act as
+    more capacitance than at low frequency.
     """
     rules, inductance = request.coil, coils.inductance[row]
     inside = np.isfinite(inductance) & (inductance > 0)
@@ -402,6 +407,9 @@ def inside_in_circuit(
     if rules.self_resonance is not None:
         with np.errstate(divide="ignore"):
             own = self_resonance_frequency(inductance, self_capacitance[:, None])
+            if whole is not row:
+                entire = self_resonance_frequency(coils.inductance[whole], coils.self_capacitance[whole, None])
+                own = np.minimum(own, entire)
         highest = np.array([band.highest for band in request.bands])
         inside &= own >= _resonance_times(rules, coils)[whole, None] * highest[None, :] * (1 - LIMIT_ROUNDING)
     for band_index, band in enumerate(request.bands):

@@ -330,6 +330,9 @@ def _self_resonance(candidate: Candidate) -> float | None:
         if band.self_capacitance > 0:
             own = 1.0 / (2.0 * math.pi * math.sqrt(band.inductance * band.self_capacitance))
             times.append(own / frequency)
+        coil = next(each for each in candidate.coils if each.reference == band.coil)
+        if band.tap_turns is not None and coil.self_capacitance:
+            times.append(0.5 / (math.pi * math.sqrt(coil.inductance * coil.self_capacitance)) / frequency)
     return min(times, default=None)
 
 

@@ -130,6 +130,24 @@ def test_a_tapped_plan_names_the_tap_and_agrees_with_itself() -> None:
         assert band.resonance == pytest.approx(1 / (2 * np.pi * np.sqrt(band.inductance * band.capacitance)), rel=1e-14)
 
 
+def test_idle_turns_never_resonate_near_a_band() -> None:
+    """`self_resonance` is of the coil as it is wound: 1/(2 pi sqrt(L C)) of all its turns, also behind a tap."""
+    everything = load_catalogue(None)
+    long_tube = tuple(f for f in everything.formers if f.name == "ceramic tube 20x50 twin")
+    wires = tuple(w for w in everything.wires if w.name in ("AWG 28", "AWG 36"))
+    catalogue = replace(everything, formers=long_tube, wires=wires, cores=(), inductors=())
+    tables = {"coil": {"taps": True}, "band": [{"name": "a", "at": "2.11 MHz"}, {"name": "b", "at": "5.2 MHz"}]}
+    request = replace(request_from_tables(tables, "bands"), by="error", all_windings=True)
+    tapped = 0
+    for candidate in solve(request, catalogue, top=30).candidates:
+        (coil,) = candidate.coils
+        own = 1 / (2 * np.pi * np.sqrt(coil.inductance * coil.self_capacitance))
+        used = [band.target for band in candidate.bands]
+        tapped += any(band.tap_turns is not None for band in candidate.bands)
+        assert own >= 3 * max(used) * (1 - 1e-3)  # inductance falls a little from band to band
+    assert tapped
+
+
 def test_taps_never_make_the_first_plan_worse() -> None:
     """Every plan without taps is a plan with taps allowed."""
     catalogue = small_catalogue()
