@@ -60,6 +60,15 @@ def test_a_loss_that_is_taken_is_told(drawer: Path) -> None:
     assert "variable capacitor: Q of 1000 taken (common practice)" in swept
 
 
+def test_a_measured_drift_that_no_swap_mends_is_told(drawer: Path) -> None:
+    """A band without a capacitor has none to give; one with a choice of grades is told its swaps instead."""
+    measured = WARM + 'measured_drift = "-18 ppm"\n'
+    bare = planned(drawer, measured + SWEPT + 'from = "6.5 MHz"\nto = "7.5 MHz"\n').json["candidates"][0]
+    assert any("b: no capacitor in circuit and in stock can be swapped" in text for text in bare["warnings"])
+    asked_nothing = planned(drawer, SWEPT + 'from = "6.5 MHz"\nto = "7.5 MHz"\n').json["candidates"][0]
+    assert not any("swapped" in text for text in asked_nothing["warnings"])
+
+
 def test_what_tunes_a_band_without_capacitors_is_named(drawer: Path) -> None:
     """Strays alone only where there is neither a trimmer nor a capacitor that tunes."""
     told = {}

@@ -82,6 +82,15 @@ def outlook(
     temperature = dict(dict(request.extra).get("temperature", ()))
     low, high = (_number(temperature, key) for key in ("from", "to"))
     measured = _number(temperature, "measured_drift")
+    refit, notes = () if measured is None else _refit(varying, measured, pool), list(varying.notes)
+    if low is not None:
+        notes += unknown_drifts(request)
+    if measured is not None:
+        notes += [
+            f"{tank.name}: no capacitor in circuit and in stock can be swapped against the measured drift"
+            for tank in varying.tanks
+            if all(swap.band != tank.name for swap in refit)
+        ]
     return Outlook(
         settings=settings,
         spread=spreads,
@@ -92,9 +101,7 @@ def outlook(
         drift=()
         if low is None or high is None
         else tuple(band_drift(varying, tank, high - low) for tank in varying.tanks),
-        refit=()
-        if measured is None
-        else tuple(swap for tank in varying.tanks for swap in swaps(varying, tank, measured, pool)),
+        refit=refit,
         series=None
         if request.units == 1
         else series(
@@ -103,8 +110,12 @@ def outlook(
             aligned.share if aligned is not None else spreads.inside,
             _stock(request, capacitors, coils, design, candidate),
         ),
-        notes=varying.notes if low is None else (*varying.notes, *unknown_drifts(request)),
+        notes=tuple(notes),
     )
+
+
+def _refit(varying: Variation, measured: float, pool: Sequence[Capacitor]) -> tuple[Swap, ...]:
+    return tuple(swap for tank in varying.tanks for swap in swaps(varying, tank, measured, pool))
 
 
 def _number(table: Mapping[str, object], key: str) -> float | None:
