@@ -280,7 +280,7 @@ def _band_figures(tank: Tank, reference: str, names: tuple[str, ...]) -> BandFig
         coil_q=tank.coil_q(),
         extra={
             **(_coverage(tank, resonance) if swept else {}),
-            **tank_figures(tank, resonance),
+            **tank_figures(tank, resonance, names),
             **oscillator_figures(tank, names),
         },
     )

@@ -14,7 +14,17 @@ from partpick.oscillating import oscillator_keys, tap_shares
 from partpick.parts import Capacitor
 from partpick.physics.resonance import effective_capacitance
 from partpick.request import Band, Request
-from partpick.search.divided import CLAPPED, DIVIDED, FIRST_OF_DIVIDER, NO_DEVICE, OWN_PARTS, SPLIT, Device
+from partpick.search.divided import (
+    CLAPPED,
+    DIVIDED,
+    FIRST_OF_DIVIDER,
+    LOADED,
+    NO_DEVICE,
+    OWN_PARTS,
+    SPLIT,
+    Device,
+    loaded_value,
+)
 from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
 from partpick.tuning import ElementEnds, element_ends
 
@@ -126,7 +136,11 @@ class Tank:
 
     @property
     def device(self) -> Device:
-        """Capacitance of the device across the halves of a divider, output first. [F]"""
+        """Capacitance of the device across the halves of a divider, output first; of a load see `divided.py`. [F]"""
+        if self.network.shape == LOADED:
+            load = self.band.load
+            assert load is not None and load.resistance is not None
+            return 0.0, 1.0 / (2 * math.pi * self.frequency() * load.resistance)
         keys = oscillator_keys(self.request)
         if keys is None or self.network.divider is None:
             return NO_DEVICE
@@ -219,7 +233,7 @@ class Tank:
         else:
             shape = self.network.shape
             shares = network_shares(acting, shape, self.device)
-            whole = _combine(_beside_device(acting, shape, self.device), shape) if acting else 1.0
+            whole = _combine(_beside_device(acting, shape, self.device), shape, self.device) if acting else 1.0
             slopes = [share * across / whole * across / total for share in shares]
         weighted = [(part, slope * gain) for part, slope, gain in zip(chosen, slopes, gains, strict=True)]
         if self.network.series is not None:
@@ -325,10 +339,10 @@ def network_capacitance(
         return 0.0
     if any(part.series_inductance for part in chosen):
         acting = [acting_capacitance(part, frequency) for part in chosen]
-        whole = _combine(_beside_device(acting, network.shape, device), network.shape)
+        whole = _combine(_beside_device(acting, network.shape, device), network.shape, device)
     else:
         exact = _beside_device([part.exact for part in chosen], network.shape, device)
-        whole = float(_combine(exact, network.shape))
+        whole = float(_combine(exact, network.shape, device))
     return float(effective_capacitance(whole, leads, frequency)) if leads else whole
 
 
@@ -343,10 +357,12 @@ def _beside_device(c: list[T], shape: int, device: Device) -> list[T]:
     return grown
 
 
-def _combine(c: list[T], shape: int) -> T:
+def _combine(c: list[T], shape: int, device: Device = NO_DEVICE) -> T:
     if shape in OWN_PARTS:
         own, zero = OWN_PARTS[shape], type(c[0])(0)
         beside = sum(c[own:], zero)
+        if shape == LOADED:
+            return loaded_value(c[0], c[1], type(c[0])(device[1])) + beside
         return beside if shape == SPLIT else _combine(c[:own], SERIES) + beside
     if shape == PARALLEL or len(c) == 1:
         total = c[0]
@@ -368,7 +384,7 @@ def _combine(c: list[T], shape: int) -> T:
 def network_shares(c: list[float], shape: int, device: Device = NO_DEVICE) -> list[float]:
     """Return d ln(network) / d ln(part) of each part of a network of plain capacitances. [-]"""
     grown = _beside_device(c, shape, device)
-    net = _combine(grown, shape) if c else 0.0
+    net = _combine(grown, shape, device) if c else 0.0
     if shape in OWN_PARTS:
         own = OWN_PARTS[shape]
         beside = [value / net for value in c[own:]]
@@ -400,7 +416,7 @@ def connection_text(names: Sequence[str], shape: int) -> str:
         return f"{names[0]} | ({names[1]} + {names[2]})"
     if shape == CHAINED:
         return f"{names[0]} + ({names[1]} | {names[2]})"
-    if shape in (DIVIDED, CLAPPED):
+    if shape in (DIVIDED, CLAPPED, LOADED):
         own = OWN_PARTS[shape]
         return " | ".join([_in_brackets(names[:own], len(names) > own), *names[own:]])
     return (" | " if shape == PARALLEL else " + ").join(names)

@@ -9,6 +9,8 @@ from dataclasses import dataclass, replace
 from partpick.candidates import realisable_coils
 from partpick.errors import RequestError
 from partpick.layouts import check_layout
+from partpick.load_words import q_missed, q_words
+from partpick.matching import has_divider, load_to_meet
 from partpick.oscillating import MOST_PARTS, oscillator_keys
 from partpick.parts import Catalogue
 from partpick.progress import Monitor, Unsettled
@@ -16,7 +18,7 @@ from partpick.quantities import format_quantity
 from partpick.rating_words import rating_words
 from partpick.ratings import drive_of
 from partpick.receiver import is_receiver, oscillators_alone, with_widest_tracking
-from partpick.request import LEAST_WOUND, Band, CoilRules, Request
+from partpick.request import LEAST_WOUND, Band, CoilRules, Load, Request
 from partpick.result import Candidate, RuledOut
 from partpick.tuning import most_share
 from partpick.tuning_range import beyond_reach
@@ -123,6 +125,7 @@ def _trials(request: Request) -> Iterator[_Trial]:
     yield from _quality_trials(request)
     yield from _coil_trials(request)
     yield from _oscillator_trials(request)
+    yield from _load_trials(request)
     yield _Trial(
         "quantity", replace(request, units=1), lambda _: "as many as wanted", _stock_words, _in_plenty
     )
@@ -180,7 +183,7 @@ def _count_trials(request: Request) -> Iterator[_Trial]:
     limits = request.limits
     most = 3 if request.capacitors.connect == "any" else 6
     beyond = 2
-    if oscillator_keys(request):  # dividers are many
+    if oscillator_keys(request) or any(has_divider(request, band) for band in request.bands):  # dividers are many
         most, beyond = MOST_PARTS, 1
     most = min(most, limits.parts_per_band + beyond) if request.switching != "shared" else 0  # no such limit on a set
     for count in range(limits.parts_per_band + 1, most + 1):
@@ -252,6 +255,20 @@ def _oscillator_trials(request: Request) -> Iterator[_Trial]:
         _transconductance,
         lambda c: words.format(format_quantity(_transconductance(c), "S", digits=3)),
     )
+
+
+def _load_trials(request: Request) -> Iterator[_Trial]:
+    met = [band for band in request.bands if band.load and band.load.q_tolerance and load_to_meet(request, band)]
+    for times in (1.5, 2.0, 4.0, None) if met else ():
+        eased = tuple(replace(band, load=_eased(band.load, times)) if band in met else band for band in request.bands)
+        free = replace(request, bands=eased)
+        yield _Trial("q_tolerance", free, lambda c: q_missed(request, c), lambda c: q_words(request, c))
+
+
+def _eased(load: Load | None, times: float | None) -> Load | None:
+    if load is None or load.q_tolerance is None:
+        return load
+    return replace(load, q_tolerance=None if times is None else load.q_tolerance * times)
 
 
 def _transconductance(candidate: Candidate) -> float:

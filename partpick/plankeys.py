@@ -206,6 +206,7 @@ LOAD = {
     "bandwidth": Key(read=parse_bandwidth),
     "offset": Key(read=parse_bandwidth),
     "connection": Key(read=_choice("across", "tap", "link", "divider"), default="across"),
+    "q_tolerance": Key(read=_fraction(zero=False), none=True),  # of the loaded Q; its default goes by connection
 }
 BAND = {
     "name": Key(read=_text(60)),

@@ -16,6 +16,7 @@ from partpick.plankeys import Key, nearest
 from partpick.quantities import format_quantity, parse_capacitance, parse_inductance, parse_range, shown
 from partpick.request import (
     CHOOSE,
+    LOADED_Q_TOLERANCE,
     Band,
     CapacitorRules,
     CoilRules,
@@ -194,6 +195,13 @@ def read_load(reader: TableReader, raw: object, path: str) -> Load | None:
         raise reader.fail(f"{path}.bandwidth", f"goes without {reader.name(path + '.loaded_q')}; state one")
     if all(stated[key] is None for key in ("resistance", "loaded_q", "bandwidth", "offset")):
         raise reader.fail(path, "states nothing; resistance, loaded_q, bandwidth or offset is wanted")
+    if "q_tolerance" not in raw:  # type: ignore[operator]  # a table: it has been read as one
+        stated["q_tolerance"] = LOADED_Q_TOLERANCE.get(stated["connection"])
+    elif stated["connection"] not in LOADED_Q_TOLERANCE and stated["q_tolerance"] is not None:
+        raise reader.fail(
+            f"{path}.q_tolerance",
+            f'goes with connection "across" or "divider"; by {stated["connection"]} the nearest whole turn is taken',
+        )
     return Load(**stated)
 
 

@@ -114,6 +114,10 @@ class Stray:
     inductance: float = 0.0  # H
 
 
+# How far the loaded Q may be from the one wanted, where the plan does not say; common practice, no source.
+LOADED_Q_TOLERANCE = {"across": 0.25, "divider": 0.10}
+
+
 @dataclass(frozen=True, kw_only=True)
 class Load:
     """What the tank feeds or is fed by."""
@@ -123,6 +127,7 @@ class Load:
     bandwidth: float | None = None  # Hz
     offset: float | None = None  # Hz, of a neighbour whose rejection is told
     connection: str = "across"  # "tap", "link", "divider"
+    q_tolerance: float | None = None  # fraction of the wanted loaded Q, across or by divider; None: no limit
 
 
 @dataclass(frozen=True, kw_only=True)

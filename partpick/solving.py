@@ -11,6 +11,7 @@ from partpick.candidates import LIMIT_ROUNDING, Coils, coil_figures, realisable_
 from partpick.catalogue import select_capacitors
 from partpick.errors import RequestError
 from partpick.layouts import check_layout, design_of, search_layout
+from partpick.matching import check_loads, with_loads
 from partpick.objective import build_problem, tolerance_floor
 from partpick.oscillating import check_oscillator, with_oscillator
 from partpick.parts import Capacitor, Catalogue
@@ -121,7 +122,8 @@ def _prepared(request: Request, catalogue: Catalogue) -> tuple[Coils, tuple[Capa
     coils = realisable_coils(request, catalogue)
     capacitors = select_capacitors(catalogue, request.capacitors, request.limits.drift is not None)
     floor = tolerance_floor(coils, capacitors, request.limits.error)
-    problem = with_oscillator(request, coils, build_problem(request, coils, capacitors, floor))
+    problem = with_loads(request, coils, build_problem(request, coils, capacitors, floor))
+    problem = with_oscillator(request, coils, problem)
     source = column_source(request, coils, problem)
     return coils, capacitors, *problem_with_trimmers(request, problem, source, trimmers_on_offer(request, catalogue))
 
@@ -164,6 +166,7 @@ def _refuse_unplanned(request: Request) -> None:
     """Say plainly what is read but not planned yet."""
     check_layout(request)
     check_oscillator(request)
+    check_loads(request)
     switching = dict(dict(request.extra).get("drive", ())).get("class") == "E"
     if switching and any(band.load is not None for band in request.bands):
         raise RequestError(

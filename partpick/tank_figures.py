@@ -6,7 +6,10 @@ import math
 from dataclasses import dataclass
 
 from partpick.circuit import Tank, network_capacitance
+from partpick.errors import InternalError
 from partpick.loads import attenuation, harmonics, tap_for_load
+from partpick.matching import load_to_meet, q_limits
+from partpick.physics.coupling import divider_load
 from partpick.physics.loading import damping_resistance, loaded_q
 from partpick.physics.resonance import (
     lossy_resonances,
@@ -17,9 +20,11 @@ from partpick.physics.resonance import (
 from partpick.preferred import nearest
 from partpick.quantities import format_quantity
 from partpick.request import Load
+from partpick.search.divided import LOADED, NO_DEVICE
 
 STEP = 1e-4  # of the frequency, to either side, for a slope
 LEAST_DETUNING = 0.001  # of the frequency: from here it is told
+AGREEMENT = 1e-6  # of the loaded Q, between search and recheck
 NEAR_ENOUGH = 0.1  # of a wanted loaded Q, in ratio: a tap further off is told
 DAMPING_SERIES = "E24"  # of resistors, 5 %; common practice, no source
 
@@ -36,7 +41,7 @@ class LoadedTank:
     tap_turns: int | None = None  # whole turn, from the earthed end, that the load goes to
 
 
-def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
+def tank_figures(tank: Tank, resonance: float, names: tuple[str, ...] = ()) -> dict[str, object]:
     """Return further keys of a band.
 
     Parameters
@@ -45,6 +50,8 @@ def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
         The band as picked.
     resonance : float
         Of its inductance and capacitance; of a swept band at its upper end. [Hz]
+    names : tuple of str
+        References of its capacitors, in the order of its pieces.
 
     Returns
     -------
@@ -61,7 +68,7 @@ def tank_figures(tank: Tank, resonance: float) -> dict[str, object]:
     if not tank.band.swept:
         figures["lossy_resonances"] = _resonances(inductance, capacitance, series)
     if tank.band.load is not None:
-        figures["load"] = _load_keys(tank, tank.band.load, resonance)
+        figures["load"] = _load_keys(tank, tank.band.load, resonance, names)
     return figures
 
 
@@ -82,9 +89,16 @@ def steepness(tank: Tank) -> float:
     """
     if tank.band.swept or not tank.network.parts:
         return 1.0
-    leads, frequency = tank.request.stray.inductance, tank.frequency()
+    leads, frequency, device = tank.request.stray.inductance, tank.frequency(), tank.device
+    falling = tank.network.shape == LOADED  # a conductance over the angular frequency
     below, above = (
-        network_capacitance(tank.capacitors, tank.network, frequency * (1 + step), leads, tank.device)
+        network_capacitance(
+            tank.capacitors,
+            tank.network,
+            frequency * (1 + step),
+            leads,
+            (device[0], device[1] / (1 + step) if falling else device[1]),
+        )
         for step in (-STEP, STEP)
     )
     return 1.0 + (above - below) / (4 * STEP * tank.total())
@@ -110,9 +124,11 @@ def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:
     load, q = tank.band.load, tank.q()
     if load is None:
         return None
+    x = float(reactance(tank.inductance(), tank.total()))
+    if tank.network.shape == LOADED:
+        return _by_divider(tank, q, x)
     if q is None:
         return LoadedTank(q=None)
-    x = float(reactance(tank.inductance(), tank.total()))
     wanted = load.loaded_q if load.bandwidth is None else resonance / load.bandwidth
     direct = load.connection == "across"
     before = float(loaded_q(q, x, load.resistance)) if direct and load.resistance is not None else q
@@ -120,6 +136,8 @@ def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:
         # by tap, link or divider the ratio decides, and nothing says what it is to be
         return LoadedTank(q=before if direct else None)
     needed = float(damping_resistance(before, x, wanted))
+    if direct and load.resistance is not None and abs(math.log(before / wanted)) <= NEAR_ENOUGH and not before > wanted:
+        return LoadedTank(q=before)
     if not math.isfinite(needed):
         missed = f"a Q of {_words(wanted)} is wanted, but the tank has {_words(before)} already"
         return LoadedTank(q=before, note=missed + _instead(load, q, wanted))
@@ -145,6 +163,30 @@ def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:
         return LoadedTank(q=wanted, across=needed)
     damping = float(nearest(DAMPING_SERIES, needed))
     return LoadedTank(q=float(loaded_q(before, x, damping)), damping=damping, across=needed)
+
+
+def _by_divider(tank: Tank, q: float | None, x: float) -> LoadedTank:
+    """Return the tank with its load on a divider, and what the load moves it by.
+
+    Raises
+    ------
+    InternalError
+        Its loaded Q is outside what is wanted, which no choice on offer may be.
+    """
+    assert tank.band.load is not None and tank.band.load.resistance is not None
+    upper, lower = (tank.acting(place) for place in range(2))
+    across = float(divider_load(tank.frequency(), upper, lower, tank.band.load.resistance).resistance)
+    total = tank.total()
+    off = network_capacitance(tank.capacitors, tank.network, tank.frequency(), 0.0, NO_DEVICE)
+    moved = math.sqrt((total - tank.across() + off) / total) - 1.0
+    met = load_to_meet(tank.request, tank.band)
+    loaded = float(loaded_q(q or math.inf, x, across))
+    least, most = q_limits(tank.band, met[1] if met else loaded)
+    if not least * (1 - AGREEMENT) <= loaded <= most * (1 + AGREEMENT):
+        raise InternalError(
+            f"internal error: band {tank.band.name} has a loaded Q of {loaded:.9g}; please report this plan"
+        )
+    return LoadedTank(q=None if q is None else loaded, across=across, detuning=moved)
 
 
 def _instead(load: Load, q: float, wanted: float) -> str:
@@ -173,7 +215,7 @@ def load_note(figures: dict[str, object]) -> str | None:
     return "; ".join(told) or None
 
 
-def _load_keys(tank: Tank, load: Load, resonance: float) -> dict[str, object]:
+def _load_keys(tank: Tank, load: Load, resonance: float, names: tuple[str, ...]) -> dict[str, object]:
     loaded = loaded_tank(tank, resonance)
     assert loaded is not None
     q = loaded.q
@@ -186,6 +228,7 @@ def _load_keys(tank: Tank, load: Load, resonance: float) -> dict[str, object]:
         "ringing_time_s": None if width is None else 1 / (math.pi * width),
         "note": loaded.note,
         "tap_turns": loaded.tap_turns,
+        "divider": list(names[:2]) if tank.network.shape == LOADED else None,  # hot end, then across the load
         "detuning": loaded.detuning,
     }
     if "drive" in dict(tank.request.extra):

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from partpick.candidates import Coils, Ints, inside_as_wound, inside_in_circuit
+from partpick.matching import suits_load
 from partpick.oscillating import oscillator_source
 from partpick.request import Request
 from partpick.search.columns import ColumnSource
@@ -29,7 +30,7 @@ def column_source(request: Request, coils: Coils, problem: Problem) -> ColumnSou
         turns = LEAST_TURNS + np.arange(len(coil)) - first
         row = coil - (coils.turns[coil] - turns)
         own = coils.section_self_capacitance(coil, turns)
-        in_play = wound[coil] & inside_in_circuit(request, coils, coil, row, own)
+        in_play = wound[coil] & inside_in_circuit(request, coils, coil, row, own) & suits_load(request, coils, row)
         loss, loss_low = (coils.section_loss(row, own, low_end=low_end) for low_end in (False, True))
         return Sections(coil, turns, row, own, loss, loss_low, in_play)
 

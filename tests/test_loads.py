@@ -98,7 +98,8 @@ def test_an_output_tank_says_that_a_low_pass_is_needed() -> None:
 
 def test_a_load_that_leaves_too_little_q_says_what_would_do() -> None:
     """The reactance told gives the wanted Q where it is taken."""
-    candidate = first(load={"resistance": "500 ohm", "loaded_q": 30})
+    load = {"resistance": "500 ohm", "loaded_q": 30, "q_tolerance": "none"}
+    candidate = first(load=load)
     (told,) = [warning for warning in candidate.warnings if "would do" in warning]
     band = candidate.bands[0]
     most = float(told.split("at most ")[1].split(" ")[0])
@@ -109,3 +110,80 @@ def test_a_switching_stage_is_refused_by_name() -> None:
     """Its network does not resonate at the carrier."""
     with pytest.raises(RequestError, match=r'class = "E".*does not resonate at the carrier'):
         first(load={"resistance": "50 ohm"}, drive={"power": "1 W", "class": "E"})
+
+
+@pytest.mark.parametrize("drive", [{}, {"drive": {"power": "1 W"}}])
+@pytest.mark.parametrize(("resistance", "wanted"), [("3 kohm", 12.0), ("1 kohm", 8.0)])
+def test_a_load_across_picks_the_reactance(resistance: str, wanted: float, drive: dict[str, Any]) -> None:
+    """Every coil on offer leaves the loaded Q that is asked for, as its own reactance and loss give it."""
+    load = {"resistance": resistance, "loaded_q": wanted}
+    request = request_from_tables({"band": [{"at": "7.1 MHz"}], "load": load, **drive}, "pair")
+    candidates = partpick.solve(request, catalogue(), top=8).candidates
+    ohms = {"3 kohm": 3e3, "1 kohm": 1e3}[resistance]
+    assert len(candidates) == 8
+    for candidate in candidates:
+        (band,) = candidate.bands
+        assert band.coil_q
+        reached = 1 / (1 / band.coil_q + 2 * math.pi * 7.1e6 * band.inductance / ohms)
+        assert 0.75 * wanted <= reached <= 1.25 * wanted
+
+
+def test_a_load_that_no_coil_suits_says_what_would_do() -> None:
+    """With the tolerance and with the reactance that are told something fits."""
+    tables = {**PLAN, "load": {"resistance": "500 ohm", "loaded_q": 30}}
+    result = partpick.solve(request_from_tables(tables, "pair"), catalogue(), top=1)
+    assert not result.candidates and result.ruled_out_by is not None
+    told = next(each for each in (result.ruled_out_by, *result.ruled_out_by.others) if each.limit == "q_tolerance")
+    assert isinstance(told.needed, float) and "of reactance gives 30" in told.text
+    wide = {"resistance": "500 ohm", "loaded_q": 30, "q_tolerance": f"{100.1 * told.needed:.6g} %"}
+    assert first(load=wide).bands[0].target == 7.1e6
+    ohms = float(told.text.split("7.1 MHz: ")[1].split(" ")[0])
+    own = 1e6 * ohms / (2 * math.pi * 7.1e6)
+    tables["coil"] = {"forms": ["solenoid"], "inductance": [f"{0.9 * own:.4g} µH", f"{1.1 * own:.4g} µH"]}
+    tables["limits"] = {"parts_per_band": 4}
+    assert partpick.solve(request_from_tables(tables, "pair"), catalogue(), top=1).candidates
+
+
+def divided(**tables: Any) -> partpick.Result:
+    load = {"resistance": "50 ohm", "loaded_q": 20, "connection": "divider"}
+    plan = {"band": [{"at": "7.1 MHz"}], "load": load, **tables}
+    return partpick.solve(request_from_tables(plan, "pair"), catalogue())
+
+
+def test_a_divider_gives_the_loaded_q_on_frequency_by_scikit_rf() -> None:
+    """The circuit with its load across the lower capacitor: where it peaks, and how wide it is there."""
+    for candidate in divided().candidates[:4]:
+        (band,), parts = candidate.bands, {p.reference: p for p in candidate.parts}
+        told = load_of(band)
+        upper, lower = (parts[name] for name in told["divider"])
+        resonance = band.resonance or 0.0
+        assert abs(resonance / 7.1e6 - 1) < 0.005 and band.q
+        x = 2 * math.pi * resonance * band.inductance
+        grid = np.linspace(0.94, 1.06, 20_001) * resonance
+        frequency = skrf.Frequency.from_f(grid, unit="hz")
+        line = skrf.media.DefinedGammaZ0(frequency, z0=50.0, gamma=1j)
+        below = line.capacitor(lower.value) ** line.inductor(lower.series_inductance or 0.0) ** line.short()
+        above = line.capacitor(upper.value) ** line.inductor(upper.series_inductance or 0.0)
+        load = above ** line.shunt(below) ** line.shunt(line.resistor(50.0) ** line.short())
+        coil = line.shunt(line.resistor(x / band.q) ** line.inductor(band.inductance) ** line.short())
+        size = np.abs((coil ** line.shunt_capacitor(band.stray + band.self_capacitance) ** load).z[:, 0, 0])
+        peak = grid[int(np.argmax(size))]
+        inside = grid[size >= size.max() / math.sqrt(2)]
+        assert peak == pytest.approx(resonance, rel=5e-4)
+        assert peak / (inside[-1] - inside[0]) == pytest.approx(told["loaded_q"], rel=0.02)
+        assert 18 <= told["loaded_q"] <= 22
+
+
+@pytest.mark.parametrize(
+    ("tables", "said"),
+    [
+        ({"coil": {"taps": True}}, "coil.taps"),
+        ({"drive": {"power": "1 W"}}, "drive"),
+        ({"limits": {"parts_per_band": 1}}, "a divider has 2"),
+        ({"load": {"resistance": "50 ohm", "connection": "tap", "q_tolerance": "5 %"}}, "nearest whole turn"),
+    ],
+)
+def test_what_goes_with_no_divider_is_refused(tables: dict[str, Any], said: str) -> None:
+    """One line that says what would do."""
+    with pytest.raises(RequestError, match=said):
+        divided(**tables)

@@ -49,7 +49,7 @@ def band_faults(candidate: Candidate, band: BandFigures, request: Request) -> It
 def _fixed(candidate: Candidate, band: BandFigures, tree: Connection | None, request: Request) -> Iterator[str]:
     assert band.target is not None
     values = {line.reference: line for line in candidate.parts}
-    bare = _acting(tree, values, band.target, None, _device(band, request))
+    bare = _acting(tree, values, band.target, None, _device(band, request)) + _by_load(band, values, request)
     network = _behind(bare, request.stray.inductance, band.target)
     total = network + band.stray + band.self_capacitance + (band.trimmer or 0.0)
     resonance = _frequency(band.inductance, total)
@@ -137,6 +137,19 @@ def _device(band: BandFigures, request: Request) -> dict[str, float]:
         told["output_capacitor"]: stated["output_capacitance"],
         told["control_capacitor"]: stated["input_capacitance"],
     }
+
+
+def _by_load(band: BandFigures, values: Mapping[str, PartLine], request: Request) -> float:
+    """Return what a load on a capacitive divider adds to its capacitance: the divider with it less that without. [F]"""
+    told = band.extra.get("load")
+    names = told.get("divider") if isinstance(told, Mapping) else None
+    asked = next(each for each in request.bands if each.name == band.name)
+    if not names or band.target is None or asked.load is None or asked.load.resistance is None:
+        return 0.0
+    s = 2j * math.pi * band.target
+    upper, lower = (s * _acting(Part(name), values, band.target, None, {}) for name in names)
+    loaded = 1.0 / (1.0 / upper + 1.0 / (lower + 1.0 / asked.load.resistance))
+    return (loaded - 1.0 / (1.0 / upper + 1.0 / lower)).imag / s.imag
 
 
 def _behind(capacitance: float, inductance: float, frequency: float) -> float:

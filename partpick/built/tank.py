@@ -11,7 +11,16 @@ from numpy.typing import NDArray
 
 from partpick.physics.resonance import effective_capacitance, resonance_frequency
 from partpick.request import Trimmer
-from partpick.search.divided import FIRST_OF_DIVIDER, NO_DEVICE, OWN_PARTS, SPLIT, Device
+from partpick.search.divided import (
+    FIRST_OF_DIVIDER,
+    LOADED,
+    NO_DEVICE,
+    OWN_PARTS,
+    SPLIT,
+    Device,
+    loaded_slopes,
+    loaded_value,
+)
 from partpick.search.networks import CHAINED, PARALLEL, SERIES, SHUNTED
 
 Floats = NDArray[np.float64]
@@ -73,7 +82,7 @@ class VaryingTank:
         """Return how the capacitors act in builds with deviations `x` (S, n). [F]"""
         if not self.parts:
             return np.zeros(x.shape[1])
-        whole = connected(self._acting(x), self.shape)
+        whole = connected(self._acting(x), self.shape, self.device)
         return effective_capacitance(whole, self.leads, self.frequency) if self.leads else whole
 
     def _acting(self, x: Floats) -> list[Floats]:
@@ -173,21 +182,23 @@ class VaryingTank:
         pairs = zip(self.values, self.series_inductances, strict=True)
         acting = [float(effective_capacitance(value, inductance, self.frequency)) for value, inductance in pairs]
         grown = [each + beside for each, beside in zip(acting, self._beside(), strict=True)]
-        bare = float(connected([np.array(each) for each in grown], self.shape)) or 1.0
+        bare = float(connected([np.array(each) for each in grown], self.shape, self.device)) or 1.0
         # c/(1 - w^2 L c) has the logarithmic derivative 1/(1 - w^2 L c), the ratio of acting to own capacitance
         by_leads = across / bare
-        slopes = network_slopes(grown, self.shape)
+        slopes = network_slopes(grown, self.shape, self.device)
         return [
             across * by_leads * slope / bare * each / with_device * each / value
             for slope, each, with_device, value in zip(slopes, acting, grown, self.values, strict=True)
         ]
 
 
-def connected(c: Sequence[Floats], shape: int) -> Floats:
+def connected(c: Sequence[Floats], shape: int, device: Device = NO_DEVICE) -> Floats:
     """Return a network of up to six capacitances in parallel, of one of the shapes of three, or with a divider. [F]"""
     if shape in OWN_PARTS:
         own = OWN_PARTS[shape]
         beside = reduce(np.add, c[own:], np.zeros_like(c[0]))
+        if shape == LOADED:
+            return np.asarray(loaded_value(c[0], c[1], device[1]) + beside)
         return beside if shape == SPLIT else connected(c[:own], SERIES) + beside
     if shape == PARALLEL or len(c) == 1:
         return reduce(np.add, c)
@@ -200,10 +211,12 @@ def connected(c: Sequence[Floats], shape: int) -> Floats:
     return c[0] * pair / (c[0] + pair)
 
 
-def network_slopes(c: Sequence[float], shape: int) -> list[float]:
+def network_slopes(c: Sequence[float], shape: int, device: Device = NO_DEVICE) -> list[float]:
     """Return c dC/dc of each part of a network of plain capacitances. [F]"""
     if shape in OWN_PARTS:
         own = OWN_PARTS[shape]
+        if shape == LOADED:
+            return [*loaded_slopes(c[0], c[1], device[1]), *c[own:]]
         divider = [0.0] * own if shape == SPLIT else network_slopes(c[:own], SERIES)
         return [*divider, *c[own:]]
     if shape == PARALLEL or len(c) == 1:

@@ -133,6 +133,9 @@ def _load_in_words(band: BandFigures) -> list[str]:
         told.append(f"{format_quantity(load['damping_resistor_ohm'], OHM)} across it to damp")
     elif load.get("tap_turns") is not None:
         told.append(f"load at turn {load['tap_turns']} from the earthed end")
+    elif load.get("divider"):
+        upper, lower = load["divider"]
+        told.append(f"load across {lower}, {upper} from there to the hot end")
     elif load.get("across_ohm") is not None:
         told.append(f"load to look like {format_quantity(load['across_ohm'], OHM, 3)} across it")
     rejection = load.get("rejection_db")

@@ -30,7 +30,7 @@ def netlist(result: Result) -> str:
     tanks = list(_tanks(result.request, result.candidates[0]))
     lines += ["* Strays are taken without loss; a trimmer stands at the middle of its range."]
     if any(band.load is not None for band in result.request.bands) or result.request.load is not None:
-        lines += ["* The load is left out: these are the tanks unloaded."]
+        lines += ["* Loads are left out but those on a capacitive divider, which belong to its resonance."]
     lines += [".options rshunt=1e12"]  # a way to ground for a node between two capacitors
     for tank in tanks:
         lines += tank.lines
@@ -51,6 +51,7 @@ class _Tank:
     inner: int = 0
 
     device: dict[str, float] = field(default_factory=dict)  # F, across the halves of an oscillator's divider
+    load: tuple[str, float] | None = None  # ohm, across which capacitor of a divider
 
     def new_node(self) -> str:
         self.inner += 1
@@ -62,7 +63,7 @@ def _tanks(request: Request, candidate: Candidate) -> Iterator[_Tank]:
     for band in candidate.bands:
         for frequency, element, words in _points(band):
             count += 1
-            tank = _Tank(node=f"t{count}", expected=frequency, device=_device(band))
+            tank = _Tank(node=f"t{count}", expected=frequency, device=_device(band), load=_load(request, band))
             inductance, own = _at_end(band, frequency)
             tank.lines += ["*", f"* {tank.node}: {_comment(band.name)}{words}, {format_quantity(frequency, 'Hz', 7)}"]
             tank.lines.append(f"I{tank.node} 0 {tank.node} DC 0 AC 1")
@@ -140,6 +141,9 @@ def _branch(
         value = element if tree.reference == "T" and element is not None else part.value if part else None
         assert value is not None, f"{tree.reference} has no value"
         _capacitor(tank, tree.reference, value, part, high, low)
+        if tank.load is not None and tank.load[0] == tree.reference:
+            tank.lines.append(f"* the load across {tree.reference}")
+            tank.lines.append(f"Rload{tank.node} {high} {low} {tank.load[1]!r}")
         if beside := tank.device.get(tree.reference):
             tank.lines.append(f"* the device across {tree.reference}")
             tank.lines.append(f"Cdevice{tree.reference}{tank.node} {high} {low} {beside!r}")
@@ -181,6 +185,15 @@ def _device(band: BandFigures) -> dict[str, float]:
         keys["output_capacitor"]: float(keys["output_capacitance_f"]),
         keys["control_capacitor"]: float(keys["input_capacitance_f"]),
     }
+
+
+def _load(request: Request, band: BandFigures) -> tuple[str, float] | None:
+    """Return the capacitor of a divider that a load is across, and the load. [ohm]"""
+    told = band.extra.get("load")
+    asked = next((each.load for each in request.bands if each.name == band.name), None)
+    if not isinstance(told, dict) or not told["divider"] or asked is None or asked.resistance is None:
+        return None
+    return told["divider"][1], asked.resistance
 
 
 def _plain(tank: _Tank, name: str, value: float) -> None:

@@ -14,6 +14,8 @@ import numpy as np
 from partpick.search.alignment import alignable
 from partpick.search.bearing import BearingTables, Cache
 from partpick.search.coverage import LeastExcess
+from partpick.search.divided import LOADED
+from partpick.search.dividers import divided_tables
 from partpick.search.drift_bound import steady_enough
 from partpick.search.figures import (
     Columns,
@@ -25,6 +27,7 @@ from partpick.search.figures import (
     stray_class,
 )
 from partpick.search.grades import Grades
+from partpick.search.matching import matched
 from partpick.search.networks import Rows, Stream, Table, network_tables
 from partpick.search.problem import NEVER, Bools, Floats, Ints, Problem
 from partpick.search.ratings import can_bear, inside_ratings
@@ -56,7 +59,7 @@ class ColumnSource:
             if twin is not None:
                 self.tables.append(self.tables[twin])
                 continue
-            self.tables.append(self._networks_of(problem.species[band][valid], bool(problem.swept[band])))
+            self.tables.append(self._networks_of(problem.species[band][valid], band))
         self.grades = Grades(problem)
         self.gain = problem.part_gain(), problem.part_gain(low_end=True)
         self._bearing_cache: Cache = {}
@@ -73,9 +76,11 @@ class ColumnSource:
         self._bearing = BearingTables(problem, self.valid, self._bearing_cache) if driven else None
         self._swept, self._least_excess = self._for_swept_bands()
 
-    def _networks_of(self, values: Floats, swept: bool) -> list[Table | Stream]:
+    def _networks_of(self, values: Floats, band: int) -> list[Table | Stream]:
         """Return the tables of every number of parts over some capacitances as they act at a band."""
-        most = self.problem.most_parts if len(values) else 0
+        most, matching = self.problem.most_parts if len(values) else 0, self.problem.matching
+        if matching is not None and matching.divided[band]:
+            return divided_tables(values, most, LOADED, self.problem.device_at(band))
         return network_tables(values, most, self.problem.connect_any)
 
     def _for_swept_bands(self) -> tuple[SweptColumns, LeastExcess]:
@@ -110,6 +115,7 @@ class ColumnSource:
     def _same_as_before(self, band: int) -> int | None:
         for earlier in range(band):
             alike = self.problem.swept[band] == self.problem.swept[earlier] or self.problem.oscillator is None
+            alike &= self.problem.device_at(band) == self.problem.device_at(earlier)
             if alike and np.array_equal(self.problem.species[band], self.problem.species[earlier]):
                 return earlier
         return None
@@ -133,7 +139,7 @@ class ColumnSource:
             for some, own in groups:
                 if parts < len(own):
                     best[some, band] = self._least_error(band, some, own[parts], low[some, band], high[some, band])
-        if np.isfinite(p.drift_limit) and p.oscillator is None:
+        if np.isfinite(p.drift_limit) and p.oscillator is None and p.matching is None:
             best[~steady_enough(p, parts)] = np.inf
         if p.drive is not None:
             best[~can_bear(p, parts)] = np.inf
@@ -224,7 +230,7 @@ class ColumnSource:
         error = np.sqrt(wanted / total) - 1.0
         values = p.species[band][rows.species]
         alone = np.maximum(rows.value, 1e-30)
-        share_of_parts = network_weights(values, rows.shape, alone, p.device) * self.gain[0][band][chosen]
+        share_of_parts = network_weights(values, rows.shape, alone, p.device_at(band)) * self.gain[0][band][chosen]
         share_of_parts *= (network / alone)[:, None]  # behind leads a network grows faster than its parts
         loss = self._loss(coil, band, chosen, share_of_parts * (network / total)[:, None], trimmer / total)
         keep = np.abs(error) <= p.error_limit[band] * (1 + 1e-12) + 1e-15
@@ -240,6 +246,9 @@ class ColumnSource:
         if p.drive is not None:
             rise = network / np.maximum(rows.value, 1e-30)
             keep &= inside_ratings(p, coil, band, values, chosen, rows.shape, rise, loss)
+        if p.matching is not None:
+            load = p.device_at(band)[1]
+            keep &= matched(p.matching, band, values, load, float(p.inductance_high[coil, band]), total, loss)
         if p.oscillator is not None:
             keep = starts(p, coil, band, values, rows.shape, total, loss, keep)
         whole = np.zeros(len(chosen), dtype=np.int64)

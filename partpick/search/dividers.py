@@ -59,7 +59,7 @@ class _Behind(Stream):
 
 
 def divider_rows(values: Floats, device: Device) -> Rows:
-    """Return every divider of two parts, (n^2,): output first, control second."""
+    """Return every divider of an oscillator of two parts, (n^2,): output first, control second."""
     count = np.arange(len(values), dtype=np.int16)
     species = np.stack([np.repeat(count, len(count)), np.tile(count, len(count))], axis=1)
     value = divided_values(values[species], DIVIDED, device)
@@ -76,9 +76,9 @@ def divided_tables(values: Floats, most: int, shape: int, device: Device) -> lis
     most : int
         Most parts in one network. [-]
     shape : int
-        DIVIDED or CLAPPED. [-]
+        DIVIDED, CLAPPED or LOADED. [-]
     device : tuple
-        Capacitance of the device at output and control. [F]
+        Capacitance of the device at output and control; of LOADED see `divided.py`. [F]
     """
     own, count = OWN_PARTS[shape], len(values)
     tables: list[Table | Stream] = [_empty(parts) for parts in range(min(own, most + 1))]

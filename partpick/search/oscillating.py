@@ -22,10 +22,10 @@ from partpick.search.taps import Sections, TappedSource, section_problem
 class DividedSource(ColumnSource):
     """Columns with a divider of two capacitors, three in a Clapp circuit whose frequency is fixed."""
 
-    def _networks_of(self, values: Floats, swept: bool) -> list[Table | Stream]:
+    def _networks_of(self, values: Floats, band: int) -> list[Table | Stream]:
         oscillator, most = self.problem.oscillator, self.problem.most_parts if len(values) else 0
         assert oscillator is not None
-        if oscillator.circuit == "clapp" and swept:  # the divider stands with the tuning element
+        if oscillator.circuit == "clapp" and self.problem.swept[band]:  # the divider stands with the tuning element
             return network_tables(values, max(0, most - 2), connect_any=False)
         shape = CLAPPED if oscillator.circuit == "clapp" else DIVIDED
         return divided_tables(values, most, shape, oscillator.device)

@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from partpick.search.drive import Drive
+from partpick.search.matching import Matching
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -136,6 +137,7 @@ class Problem:
     coil_alone: bool = True  # a coil serves the one band alone, so that its adjustment is free for it
     drive: Drive | None = None  # what parts must bear; None: nothing is driven, or ratings are no limit
     oscillator: Oscillator | None = None
+    matching: Matching | None = None  # loads by a capacitive divider
 
     def __post_init__(self) -> None:
         """Fill what a problem of fixed bands leaves out."""
@@ -184,6 +186,13 @@ class Problem:
         """Capacitance of the device across the two halves of a divider; none where there is no divider. [F]"""
         divided = self.oscillator is not None and self.oscillator.divided
         return self.oscillator.device if divided and self.oscillator is not None else (0.0, 0.0)
+
+    def device_at(self, band: int) -> tuple[float, float]:
+        """Return what is across the two halves of a divider at a band, the load's conductance over w for a load. [F]"""
+        matching = self.matching
+        if matching is None or not matching.divided[band]:
+            return self.device
+        return 0.0, float(matching.conductance[band] / (2 * np.pi * self.frequency[band]))
 
     @property
     def inductance_high(self) -> Floats:
