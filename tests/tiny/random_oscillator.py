@@ -65,6 +65,7 @@ def random_oscillator(seed: int, circuit: str, *, bands: int, swept: int = 0, in
         most_parts=most,
         least_parts=max(least, 1) if bands == 1 else least,
         in_play=plain.in_play | (rng.random(wanted.shape) < 0.8),
+        tuning_share=float("inf"),  # what an oscillator puts on its element is not known: no limit goes with it
         error_limit=np.where(plain.trimmer_high > 0, np.inf, 0.02),
         share=pick(float("inf"), float("inf"), 0.4),
         excess_limit=pick(float("inf"), float("inf"), 2.0),
