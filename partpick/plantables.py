@@ -308,7 +308,7 @@ def _band(reader: TableReader, raw: object, path: str, nameless: bool, defaults:
     if name is None:
         if not nameless:
             raise reader.fail(f"{path}.name", "is missing")
-        name = "..".join(format_quantity(f, "Hz", 9) for f in (at, low, high) if f is not None)
+        name = "..".join(format_quantity(f, "Hz", 6) for f in (at, low, high) if f is not None)
     own = dict(stated)
     if "trimmer" in own:
         own["trimmer"] = read_trimmer(reader, own["trimmer"], f"{path}.trimmer")

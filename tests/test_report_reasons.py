@@ -12,7 +12,7 @@ import solved
 from partpick.errors import RequestError
 from partpick.report.reasons import reasons
 from partpick.report.text import columns_of
-from partpick.request import CoilRules, Limits
+from partpick.request import CoilRules, Limits, Trimmer
 from partpick.result import Candidate, Result
 
 ORDER = (
@@ -130,3 +130,24 @@ def test_reasons_of_the_demo_plan_name_every_step_in_words() -> None:
         assert "_class" not in text and "_rank" not in text
         assert max(columns_of(line) for line in text.splitlines()) <= 80
         assert "inductors 2 of 2" in " ".join(text.split())
+
+
+def test_contacts_and_tracking_are_limits_that_are_told() -> None:
+    """A switch with no contact to spare, an oscillator that is as far off as is allowed."""
+    entry = {"band": "medium wave", "worst_error_hz": 7600.0, "limit_hz": 8000.0}
+    extra = {"switch": {"contacts": 6}, "tracking": [entry], "worst_tracking_hz": 7600.0}
+    own, other = replace(handmade.candidate(1), extra=extra), handmade.candidate(2, coils=(handmade.coil(label="x"),))
+    limits = Limits(contacts=6, error_stated=True)
+    request = replace(handmade.request("beacon"), limits=limits)
+    words = told(handmade.result(own, other, request=request), 1)
+    assert "contacts 6 of 6" in words and "tracking 7.6 kHz of 8 kHz at medium wave" in words
+
+
+def test_an_error_limit_that_a_trimmer_has_taken_away_is_no_limit() -> None:
+    """By default a band with a trimmer has none: 1.34 % of 0.5 % would make no sense."""
+    off = replace(handmade.candidate(1), worst_error=0.0134)
+    off = replace(off, bands=(replace(off.bands[0], error=0.0134),))
+    request = handmade.request("beacon")
+    trimmed = replace(request, bands=(replace(request.bands[0], trimmer=Trimmer(low=3e-12, high=20e-12)),))
+    assert "error 1.34 %" not in told(handmade.result(off, request=trimmed), 1)
+    assert "error 1.34 % of 0.5 %" in told(handmade.result(off, request=request), 1)

@@ -6,7 +6,7 @@ what tolerance makes of it, and what the neighbours' coils would cost.
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 from partpick.errors import RequestError
@@ -126,6 +126,13 @@ def _by_excess(step: _Step) -> str:
     return f"the overshoot of the tuned ranges: {ahead} against {after}."
 
 
+def _overshoot(candidate: Candidate) -> str:
+    """Return the worst excess in words, "" where no band is swept or where the tracking error leads."""
+    if candidate.worst_excess is None or worst_tracking(candidate):
+        return ""
+    return format_percent(candidate.worst_excess, 3)
+
+
 def _by_q(step: _Step) -> str:
     ahead, after = (figure(worst_q(c)) for c in (step.first, step.second))
     return f"least Q, in steps of 25 % below enough: {ahead} against {after}."
@@ -211,7 +218,7 @@ def _strays(candidate: Candidate) -> str:
 
 def _limits(request: Request, candidate: Candidate) -> str:
     """Return the limits that are used up or nearly so, each with what is used."""
-    near = [*_limits_of_plan(request, candidate)]
+    near = [*_limits_of_plan(request, candidate), *_tracking_limits(candidate)]
     for band, asked in zip(candidate.bands, request.bands, strict=True):
         near += _limits_of_band(request, band, asked.q)
     if not near:
@@ -225,6 +232,7 @@ def _limits_of_plan(request: Request, candidate: Candidate) -> list[str]:
         ("inductors", candidate.inductor_count, limits.inductors if len(request.bands) > 1 else None),
         ("parts", candidate.part_count, limits.parts),
         ("values", candidate.value_count, limits.values),
+        ("contacts", _contacts(candidate), limits.contacts),
     ]
     most = max((len(band.capacitors) for band in candidate.bands), default=0)
     if request.switching == "separate":
@@ -242,6 +250,21 @@ def _limits_of_plan(request: Request, candidate: Candidate) -> list[str]:
     if candidate.price is not None and limits.price is not None and candidate.price >= NEAR * limits.price:
         near.append(f"price {candidate.price:.2f} of {limits.price:.2f}")
     return near
+
+
+def _contacts(candidate: Candidate) -> int:
+    switch = candidate.extra.get("switch")
+    return int(switch["contacts"]) if isinstance(switch, Mapping) else 0
+
+
+def _tracking_limits(candidate: Candidate) -> list[str]:
+    """Return the limits on tracking that are used up or nearly so, of each band of a receiver."""
+    entries = candidate.extra.get("tracking")
+    return [
+        f"tracking {quantity(entry['worst_error_hz'], 'Hz')} of {quantity(entry['limit_hz'], 'Hz')} at {entry['band']}"
+        for entry in (entries if isinstance(entries, list) else ())
+        if entry["worst_error_hz"] >= NEAR * entry["limit_hz"]
+    ]
 
 
 def _limits_of_band(request: Request, band: BandFigures, least_q: float | None) -> list[str]:
@@ -343,6 +366,8 @@ def _difference(candidate: Candidate, other: Candidate) -> str:
         told.append(f"{plural(other.piece_count, 'piece')} for {candidate.piece_count}")
     for name, own, new in (
         ("worst error", _size(candidate.worst_error), _size(other.worst_error)),
+        ("overshoot", _overshoot(candidate), _overshoot(other)),
+        ("tracking error", worst_tracking(candidate), worst_tracking(other)),
         ("least Q", figure(worst_q(candidate)), figure(worst_q(other))),
         ("strays", _strays(candidate), _strays(other)),
     ):
