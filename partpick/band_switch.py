@@ -65,8 +65,11 @@ def _stacked(request: Request, design: Design) -> list[Contact]:
 
 def _shared(request: Request, design: Design) -> list[Contact]:
     found = []
+    wired = "steps" in dict(request.extra)  # there, what is in circuit at every position needs no relay
     for member in range(len(design.members)):
         bands = tuple(place for place, closed in enumerate(design.closed) if member in closed)
+        if wired and len(bands) == len(request.bands):
+            continue
         found.append(Contact(f"S{member + 1}", "capacitors", bands))
     return [*found, *_trimmers(request)]
 

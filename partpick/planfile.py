@@ -211,6 +211,10 @@ def _check_bands(reader: TableReader, request: Request) -> None:
     cover = "cover" in dict(request.extra)
     if cover and request.bands:
         raise reader.fail("cover", "finds the bands itself; leave out every [[band]]")
+    if "steps" in dict(request.extra):
+        if request.bands or cover:
+            raise reader.fail("steps", "makes its positions itself; leave out [cover] and every [[band]]")
+        return
     if not request.bands and not cover:
         raise reader.fail("", "no band in the plan; add [[band]] with name and at")
     if request.tuning is None and cover:
@@ -256,7 +260,7 @@ def _check_layout(reader: TableReader, request: Request) -> None:
         raise reader.fail("limits.parts_per_band", "read 0: a pair has at least one capacitor")
     if request.command == "pair" and request.limits.excess is not None and not any(b.swept for b in request.bands):
         raise reader.fail("limits.excess", "has no effect at one frequency; it limits a range such as 7.0MHz..7.3MHz")
-    if request.switching == "shared" and not request.limits.parts:
+    if request.switching == "shared" and not request.limits.parts and "steps" not in dict(request.extra):
         raise reader.fail("limits.parts", 'is missing; switching "shared" needs the size of the shared set')
     first_at: dict[float, int] = {}
     for number, band in enumerate(request.bands, 1):

@@ -365,6 +365,11 @@ FURTHER: dict[str, dict[str, Key]] = {
         "from": Key(read=parse_frequency, required=True),
         "to": Key(read=parse_frequency, required=True),
     },
+    "steps": {  # one coil, a set of capacitors with relays
+        "from": Key(read=parse_frequency, required=True),
+        "to": Key(read=parse_frequency, required=True),
+        "step": Key(read=parse_frequency, required=True),  # coarsest
+    },
 }
 # pairs of keys of which the first must stay below the second
 RISING = (("low", "high"), ("from", "to"))

@@ -63,6 +63,10 @@ def _solved(request: Request, catalogue: Catalogue, top: int, monitor: Monitor) 
 
         _refuse_unplanned(with_bands(request, 1))
         return cover(request, catalogue, lambda made: _planned(made, catalogue, top, monitor), _again, monitor)
+    if dict(request.extra).get("steps"):
+        from partpick.ladder import plan_ladder  # likewise
+
+        return plan_ladder(request, catalogue, top, monitor)
     _refuse_unplanned(request)
     if is_receiver(request):
         request = of_one_section(request)
@@ -85,8 +89,8 @@ def with_front(result: Result, catalogue: Catalogue, pair: str, monitor: Monitor
     """
     from partpick.fronts import front_of  # few ask for it: imported where used
 
-    if is_receiver(result.request) or dict(result.request.extra).get("cover"):
-        raise RequestError("--front: not planned with [receiver] or [cover]")
+    if is_receiver(result.request) or {"cover", "steps"} & set(dict(result.request.extra)):
+        raise RequestError("--front: not planned with [receiver], [cover] or [steps]")
     if not result.candidates:
         return result
     return replace(result, fronts=(*result.fronts, front_of(result.request, catalogue, pair, _again, monitor)))
