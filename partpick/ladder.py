@@ -5,7 +5,6 @@ from __future__ import annotations
 import heapq
 import math
 from dataclasses import dataclass, replace
-from fractions import Fraction
 
 import numpy as np
 
@@ -14,45 +13,19 @@ from partpick.candidates import Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
 from partpick.circuit import Design, Network
 from partpick.errors import InternalError, RequestError
+from partpick.ladder_field import Key, LadderField, Steps
 from partpick.ladder_figures import ladder_keys
-from partpick.objective import effort, enough_q, reactance_class, tolerance_floor
-from partpick.parts import Capacitor, Catalogue
-from partpick.preferred import commonness
+from partpick.parts import Catalogue
 from partpick.progress import Monitor
 from partpick.quantities import format_quantity
 from partpick.request import Band, Request
 from partpick.result import Candidate, Proof, Result, RuledOut, Stage
-from partpick.search.figures import quality_class, stray_class
-from partpick.search.ladder import Coil, Ladders, Set, Span, least_pieces
+from partpick.search.ladder import Ladders, Set
 from partpick.search.networks import PARALLEL
-from partpick.search.problem import PLENTY, Floats, Ints
 
 MOST_STEPS = 256
-MOST_CAPACITORS = 12  # where the plan states no limit
 MOST_NODES = 200_000  # part sets looked at; then the rest is left, and the result says so
-NEVER = 10**12
 ORDER = ("pieces", "q_class", "stray_class", "reactance_class", "effort", "commonness", "error_rank", "price")
-
-Key = tuple[object, ...]
-
-
-@dataclass(frozen=True)
-class Steps:
-    """The span in equal steps, as many as it takes for none to be coarser than asked."""
-
-    low: float  # Hz
-    high: float  # Hz
-    count: int
-
-    @property
-    def step(self) -> float:
-        """One step. [Hz]"""
-        return (self.high - self.low) / self.count
-
-    @property
-    def positions(self) -> tuple[float, ...]:
-        """Every wanted frequency, rising. [Hz]"""
-        return (*(self.low + place * self.step for place in range(self.count)), self.high)
 
 
 def steps_of(request: Request) -> Steps | None:
@@ -70,7 +43,8 @@ def steps_of(request: Request) -> Steps | None:
     count = max(1, math.ceil((high - low) / step - 1e-9))
     if count > MOST_STEPS:
         raise RequestError(
-            f"steps.step: {format_quantity(step, 'Hz')} makes {count} steps of the span; at most {MOST_STEPS} are planned"
+            f"steps.step: {format_quantity(step, 'Hz')} makes {count} steps of the span; at most {MOST_STEPS} are "
+            "planned"
         )
     return Steps(low, high, count)
 
@@ -153,7 +127,7 @@ def plan_ladder(request: Request, catalogue: Catalogue, top: int, monitor: Monit
     capacitors = select_capacitors(catalogue, request.capacitors, False)
     if any((part.series_inductance or 0.0) < 0 for part in capacitors):
         raise InternalError("internal error: a capacitor has less than no inductance in series")
-    field = _Field(ends, steps, realisable_coils(ends, catalogue), capacitors)
+    field = LadderField(ends, steps, realisable_coils(ends, catalogue), capacitors)
     rows, proof = _first_rows(field, top, monitor)
     told = with_positions(request, steps.positions)
     candidates = tuple(_candidate(field, told, catalogue, row, rank) for rank, row in enumerate(rows, 1))
@@ -174,153 +148,7 @@ class _Row:
     ladder: Set
 
 
-class _Field:
-    """Coils and values of one request with what is known of each before any set is."""
-
-    def __init__(self, request: Request, steps: Steps, coils: Coils, capacitors: tuple[Capacitor, ...]) -> None:
-        self.request, self.steps, self.coils, self.capacitors = request, steps, coils, capacitors
-        limits = request.limits
-        self.most = MOST_CAPACITORS if limits.parts is None else min(limits.parts, MOST_CAPACITORS)
-        self.most_relays = self.most if limits.contacts is None else min(limits.contacts, self.most)
-        self.choices = _choices(capacitors, steps.high, request.units)
-        values = sorted(self.choices)
-        self.span = Span(
-            low=steps.low,
-            high=steps.high,
-            step=steps.step,
-            values=np.array([float(exact) for exact, _ in values]),
-            series_inductance=np.array([leads for _, leads in values]),
-            stock=np.array([len(self.choices[value]) for value in values], dtype=np.int64),
-        )
-        self.options = [self.choices[value] for value in values]
-        self.common = commonness(self.span.values).astype(np.int64) if values else np.zeros(0, np.int64)
-        self.floor = max(tolerance_floor(coils, capacitors, None), steps.step / 2 / steps.low)
-        self.strays = coils.self_capacitance + request.stray.capacitance
-        self.rows = np.flatnonzero(coils.in_play.all(axis=1))
-        self.share = math.inf if request.stray.share is None else request.stray.share
-        self.classes = self._classes()
-        inductance, strays = coils.inductance[self.rows], self.strays[self.rows]
-        open_room = 1.0 / ((2 * np.pi * (steps.high - self.span.half)) ** 2 * inductance[:, 2])
-        self.least_base = np.where(strays > self.share * open_room * (1 + 1e-9), 1, 0).astype(np.int64)
-        self.least = least_pieces(self.span, inductance, strays, self.most, self.least_base)
-
-    def _classes(self) -> Ints:
-        """Return of each coil in play classes of Q, strays, reactance, then effort as three, none above the truth."""
-        coils, rows, bands = self.coils, self.rows, self.request.bands
-        total = 1.0 / ((2 * np.pi * coils.frequency) ** 2 * coils.inductance[rows])
-        own = [[_loss(part, float(f)) for part in self.capacitors] for f in coils.frequency]
-        least = np.array([np.nanmin(each, initial=math.inf) for each in own])
-        least = np.where(np.isfinite(least), least, 0.0)  # unknown of each of them: the class is worse anyway
-        network = np.maximum(1.0 - self.strays[rows][:, None] / total - 3 * self.steps.step / self.steps.low, 0.0)
-        loss = 1.0 / coils.q[rows] + network * least * (1 - 1e-6)
-        enough = np.array([enough_q(band.highest, band.q) for band in bands])
-        q = np.max([quality_class(loss[:, i], enough[i]) for i in range(len(bands))], axis=0)
-        largest = 1.0 / ((2 * np.pi * (self.steps.high - self.span.half)) ** 2 * coils.inductance[rows, 2])
-        strays = stray_class(self.strays[rows] / largest * (1 - 1e-4))
-        omega = 2 * np.pi * coils.frequency
-        reactance = np.max(
-            [reactance_class(omega[i] * coils.inductance[rows, i], float(coils.frequency[i])) for i in (0, 2)], axis=0
-        )
-        return np.concatenate([np.stack([q, strays, reactance], axis=1), effort(coils)[rows]], axis=1)
-
-    def coil(self, place: int) -> Coil:
-        """Return one coil in play for the search."""
-        row = self.rows[place]
-        low, middle, high = (float(x) for x in self.coils.inductance[row])
-        return Coil(self.span, (low, middle, high), float(self.strays[row]))
-
-    def bound(self, place: int, pieces: int) -> Key:
-        """Return figures that no ladder of a coil with so many capacitors ranks before."""
-        q, strays, reactance, *work = (int(x) for x in self.classes[place])
-        return (pieces + 1, q, strays, reactance, tuple(work))
-
-    def parts_of(self, ladder: Set) -> tuple[int, ...]:
-        """Return the parts of a ladder: of equal values the parts of least loss first."""
-        used: dict[int, int] = {}
-        parts = []
-        for value in ladder.members:
-            parts.append(self.options[value][used.get(value, 0)])
-            used[value] = used.get(value, 0) + 1
-        return tuple(parts)
-
-    def key(self, place: int, ladder: Set) -> Key | None:
-        """Return the figures of a ladder in order, None where a limit rules it out."""
-        coil, row = self.coil(place), int(self.rows[place])
-        rungs, wanted = coil.rungs(ladder.base, ladder.switched), np.array(self.steps.positions)
-        nearest = np.abs(rungs[None, :] - wanted[:, None]).argmin(axis=1)
-        error = float((np.abs(rungs[nearest] - wanted) / wanted).max())
-        closed = np.concatenate(
-            [
-                np.ones((len(wanted), len(ladder.base))),
-                (nearest[:, None] >> np.arange(len(ladder.switched))) & 1,
-            ],
-            axis=1,
-        )
-        if not (closed.any(axis=0)).all():
-            return None  # a relay that no position closes
-        parts = [self.capacitors[i] for i in self.parts_of(ladder)]
-        total = self.strays[row] + np.array([coil.room(f) for f in rungs[nearest]])
-        share = (self.strays[row] / total)[closed.any(axis=1)].max(initial=0.0)
-        if share > self.share * (1 + 1e-9):
-            return None
-        q = self._quality(row, parts, closed, total, wanted)
-        if q is None:
-            return None
-        strays = int(stray_class(np.array([(self.strays[row] / total).max()]))[0])
-        _, _, reactance, *work = (int(x) for x in self.classes[place])
-        prices = [part.unit_price for part in parts]
-        own = float(self.coils.price[row])
-        known = all(price is not None for price in prices) and math.isfinite(own)
-        price = round(sum(p for p in prices if p is not None) * 100 + own * 100) if known else NEVER
-        exact = tuple(part.exact for part in parts)
-        return (
-            len(parts) + 1, q, strays, reactance, tuple(work), int(self.common[list(ladder.members)].sum()),
-            round(error * 1e9), price, int(self.coils.rank[row]), exact, tuple(part.label for part in parts),
-        )  # fmt: skip
-
-    def _quality(
-        self, row: int, parts: list[Capacitor], closed: Floats, total: Floats, wanted: Floats
-    ) -> int | None:
-        """Return the class of the worst position's Q, None where the limit on Q rules it out."""
-        values = np.array([part.value for part in parts])
-        own = 1.0 / self.coils.q[row]
-        coil_loss = np.interp(wanted, self.coils.frequency, own)
-        loss = np.array([[_loss(part, float(f)) for part in parts] for f in wanted]).reshape(len(wanted), len(parts))
-        loss = coil_loss + np.where(closed > 0, closed * values * loss, 0.0).sum(axis=1) / total
-        limit = self.request.limits.q
-        if limit is not None and not bool((1.0 / loss >= limit).all()):
-            return None
-        enough = np.array([enough_q(float(f), limit) for f in wanted])
-        return int(quality_class(loss, enough).max())
-
-
-def _loss(part: Capacitor, frequency: float) -> float:
-    known = part.q is not None and (part.q_below is None or frequency <= part.q_below)
-    return 1.0 / part.q if known and part.q else math.nan
-
-
-def _choices(
-    capacitors: tuple[Capacitor, ...], frequency: float, units: int
-) -> dict[tuple[Fraction, float], list[int]]:
-    """Return for each value, and inductance in series, its pieces: least loss first, then price and content."""
-
-    def preferred(index: int) -> tuple[object, ...]:
-        part = capacitors[index]
-        loss = _loss(part, frequency)
-        price = math.inf if part.unit_price is None else part.unit_price
-        return (math.inf if math.isnan(loss) else loss, price, part.grade, part.tolerance, part.label)
-
-    found: dict[tuple[Fraction, float], list[int]] = {}
-    for index in sorted(range(len(capacitors)), key=preferred):
-        part = capacitors[index]
-        pieces = PLENTY if part.quantity is None else part.quantity // units
-        if pieces > 0:
-            own = found.setdefault((part.exact, part.series_inductance or 0.0), [])
-            own += [index] * min(pieces, MOST_CAPACITORS - len(own))
-    return found
-
-
-def _first_rows(field: _Field, top: int, monitor: Monitor) -> tuple[list[_Row], Proof]:
+def _first_rows(field: LadderField, top: int, monitor: Monitor) -> tuple[list[_Row], Proof]:
     """Return the first rows, and how far they are proven: coils by what no ladder of theirs ranks before."""
     queue = [
         (field.bound(place, int(least)), int(field.coils.rank[row]), place, int(least))
@@ -332,7 +160,7 @@ def _first_rows(field: _Field, top: int, monitor: Monitor) -> tuple[list[_Row], 
     nodes, stopped = 0, None
     while queue and stopped is None:
         bound, rank, place, pieces = heapq.heappop(queue)
-        ranked = sorted(row.key for row in rows.values())  # type: ignore[type-var]
+        ranked = sorted(row.key for row in rows.values())
         if len(ranked) >= top and ranked[top - 1] < bound:
             break
         group = int(field.coils.support[field.rows[place]]) if not field.request.all_windings else place
@@ -352,13 +180,13 @@ def _first_rows(field: _Field, top: int, monitor: Monitor) -> tuple[list[_Row], 
             heapq.heappush(queue, (bound, rank, place, pieces))
     best = sorted(rows.values(), key=lambda row: row.key)[:top]
     status = ("optimal" if best else "infeasible") if stopped is None else ("feasible" if best else "unknown")
-    bound_pieces = None if stopped is None or not queue else Stage(objective="pieces", value=None, bound=int(str(queue[0][0][0])))
-    stages = () if bound_pieces is None else (bound_pieces,)
+    open_bound = stopped is not None and queue
+    stages = (Stage(objective="pieces", value=None, bound=int(str(queue[0][0][0]))),) if open_bound else ()
     return best, Proof(status=status, searched=_searched(field), stopped_by=stopped, stages=stages)
 
 
 def _best_of_coil(
-    field: _Field, place: int, pieces: int, monitor: Monitor, most: int, to_beat: _Row | None = None
+    field: LadderField, place: int, pieces: int, monitor: Monitor, most: int, to_beat: _Row | None = None
 ) -> tuple[_Row | None, int]:
     """Return the first ladder of one coil with so many capacitors, and how many part sets were looked at.
 
@@ -383,7 +211,7 @@ def _best_of_coil(
 # ---------------------------------------------------------------- what is told
 
 
-def _searched(field: _Field) -> str:
+def _searched(field: LadderField) -> str:
     return (
         f"every one of {field.coils.considered} coils with every set of up to {field.most} capacitors, at most 2 of "
         f"them always in circuit and the others each with a relay, that has no gap above "
@@ -402,17 +230,25 @@ def _stages(first: Candidate, proof: Proof) -> tuple[Stage, ...]:
     )
 
 
-def _nothing(field: _Field) -> RuledOut:
+def _nothing(field: LadderField) -> RuledOut:
     if not len(field.rows):
         text = "no coil of the stock is inside the limits on coils over the whole span"
         return RuledOut(limit="coil", needed=None, text=text)
+    finest, by = _finest(field)
+    if finest > field.steps.step:
+        text = (
+            f"the smallest capacitor, {format_quantity(by, 'F')}, moves the upper end by "
+            f"{format_quantity(finest, 'Hz', 3)} at least with every coil in play: a smaller capacitor, a coil of less "
+            "inductance or coarser steps"
+        )
+        return RuledOut(limit="step", needed=finest, text=text)
     least = int(field.least.min())
     if least > field.most:
         needs = math.ceil(math.log2(field.steps.count))
         text = (
-            f"no coil has a ladder of {field.steps.count} steps with up to {field.most} capacitors; that many steps need "
-            f"{needs} relays at least, more where the span is wide, and a value that makes one step: other values, "
-            "coarser steps or more parts"
+            f"no coil has a ladder of {field.steps.count} steps with up to {field.most} capacitors; that many steps "
+            f"need {needs} relays at least, more where the span is wide, and a value that makes one step: other "
+            "values, coarser steps or more parts"
         )
         return RuledOut(limit="parts", needed=None, text=text)
     text = (
@@ -422,7 +258,15 @@ def _nothing(field: _Field) -> RuledOut:
     return RuledOut(limit="steps", needed=None, text=text)
 
 
-def _candidate(field: _Field, told: Request, catalogue: Catalogue, row: _Row, rank: int) -> Candidate:
+def _finest(field: LadderField) -> tuple[float, float]:
+    """Return by how little the smallest capacitor moves the upper end with any coil in play, and its value. [Hz, F]"""
+    smallest = float(field.span.values.min(initial=math.inf))
+    inductance = float(field.coils.inductance[field.rows, 2].min())
+    total = 1.0 / ((2 * math.pi * field.steps.high) ** 2 * inductance)
+    return field.steps.high * (1.0 - 1.0 / math.sqrt(1.0 + smallest / total)), smallest
+
+
+def _candidate(field: LadderField, told: Request, catalogue: Catalogue, row: _Row, rank: int) -> Candidate:
     """Return every figure of one row, the coil evaluated at each position by itself."""
     coils, coil = _coil_at_positions(field, told, catalogue, int(field.rows[row.coil]))
     parts, base = field.parts_of(row.ladder), len(row.ladder.base)
@@ -440,7 +284,7 @@ def _candidate(field: _Field, told: Request, catalogue: Catalogue, row: _Row, ra
     return replace(candidate, rank=rank, order=order, extra={**candidate.extra, **keys})
 
 
-def _coil_at_positions(field: _Field, told: Request, catalogue: Catalogue, coil: int) -> tuple[Coils, int]:
+def _coil_at_positions(field: LadderField, told: Request, catalogue: Catalogue, coil: int) -> tuple[Coils, int]:
     """Return the coil at every position, among the few that its former, core or wire has part in."""
     figure = coil_figures(field.coils, coil, 0)
     name = field.coils.supports[int(field.coils.support[coil])].name

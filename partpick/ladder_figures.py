@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from partpick.result import Candidate
-from partpick.search.ladder import Floats
+from partpick.search.problem import Floats
 
 
 def ladder_keys(
@@ -59,19 +59,22 @@ def ladder_keys(
 
 
 def drowned(candidate: Candidate, base: int, step: float) -> list[dict[str, object]]:
-    """Return the relays whose tolerance alone moves the frequency by more than a step, smallest value first.
+    """Return the relays at which tolerances add up to more than a step, smallest value first.
 
-    Below such a relay the ladder may fall back where it should rise: smaller capacitors do not make it finer. A
-    tolerance moves f by half its share of the capacitance in circuit; taken at the highest position that closes it.
+    Where a relay takes over from all smaller ones, the tolerances of all of them add up (worst case), and a
+    tolerance moves f by half its share of the capacitance in circuit; taken at the highest position that closes
+    the relay. From there on the ladder may fall back where it should rise, and smaller values make it no finer.
     """
     found: list[dict[str, object]] = []
     lines = [line for line in candidate.parts if line.kind == "capacitor"][base:]
-    for line in lines:
+    farads = 0.0
+    for line in sorted(lines, key=lambda line: line.value or 0.0):
+        farads += (line.tolerance or 0.0) * (line.value or 0.0)
         closed = [band for band in candidate.bands if line.reference in band.capacitors]
         band = max(closed, key=lambda band: band.resonance or 0.0, default=None)
-        if band is None or line.value is None or not band.capacitance or not band.resonance:
+        if band is None or not band.capacitance or not band.resonance:
             continue
-        off = 0.5 * (line.tolerance or 0.0) * line.value / band.capacitance * band.resonance
+        off = 0.5 * farads / band.capacitance * band.resonance
         if off > step:
             found.append({"capacitor": line.reference, "tolerance": line.tolerance, "moves_hz": off})
     return found

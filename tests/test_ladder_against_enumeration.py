@@ -24,8 +24,8 @@ def instance(seed: int) -> tuple[Span, float, float]:
     total = draw.uniform(20e-12, 120e-12)
     inductance = 1.0 / ((2 * math.pi * high) ** 2 * total)
     strays = total * draw.choice((0.05, 0.3, 0.6, 0.9, 1.0))
-    values = sorted({e * scale * 1e-12 for e in E6 for scale in (1, 10)} | {round(total * 1e12 - strays * 1e12, 1) * 1e-12})
-    kept = sorted(draw.sample([v for v in values if v > 0], k=min(len(values), 7)))
+    pool = {e * scale * 1e-12 for e in E6 for scale in (1, 10)} | {round((total - strays) * 1e12, 1) * 1e-12}
+    kept = sorted(draw.sample(sorted(value for value in pool if value > 0), k=6))
     leads = [draw.choice((0.0, 1.2e-9, 8e-9)) for _ in kept]
     stock = [draw.choice((1, 2, 9, 9, 9)) for _ in kept]
     span = Span(
@@ -53,7 +53,7 @@ def check(seed: int) -> int | None:
 
 def test_small_ladders_equal_enumeration() -> None:
     """Stock of one, parts of unlike inductance in series, strays that tune the upper end alone."""
-    found = [check(seed) for seed in range(40)]
+    found = [check(seed) for seed in range(24)]
     assert {None, 2, 3} <= set(found)
 
 

@@ -5,6 +5,7 @@ Shares no formula and no code with the search or the assessment; only the types 
 
 from __future__ import annotations
 
+from partpick.audit.ladder import ladder_faults
 from partpick.audit.limits import limit_faults
 from partpick.audit.places import proof_faults, rank_faults
 from partpick.audit.stock import stock_faults
@@ -53,6 +54,7 @@ def _candidate_faults(result: Result, candidate: Candidate, catalogue: Catalogue
         *tally_faults(candidate, request),
         *(fault for band in candidate.bands for fault in band_faults(candidate, band, request)),
         *limit_faults(candidate, request),
+        *ladder_faults(candidate, request),
         *stock_faults(candidate, request.units, catalogue),
     ]
 

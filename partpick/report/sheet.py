@@ -12,6 +12,7 @@ from partpick.report import charts, html, sheet_parts
 from partpick.report.cautions import ALWAYS
 from partpick.report.circuit_rows import shares_capacitors
 from partpick.report.drawing import circuit
+from partpick.report.ladder_table import ladder_section
 from partpick.report.load_table import load_table
 from partpick.report.oscillator import start_table
 from partpick.report.pictures import HOW_TO_GET, Picture, pictures
@@ -61,6 +62,7 @@ def _candidate(result: Result, candidate: Candidate) -> list[str]:
         html.section("Load", load_table(result.request, candidate)),
         html.section("Circuit", _circuits(candidate)),
         html.section("Switch", _switch(candidate)),
+        html.section("Relay positions", ladder_section(candidate)),
         html.section("Start of the oscillator", start_table(candidate)),
         html.section("Readings to expect", *_readings(candidate)),
         html.section("Tracking", tracking_table(candidate)),

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 
 from partpick.quantities import format_percent, format_quantity
 from partpick.report.bands_table import bands_in_full, share_of_strays, swept_range, with_labels, worst_q
+from partpick.report.ladder_table import ladder_lines
 from partpick.report.oscillator import common_terminal
 from partpick.report.spread_table import built_units
 from partpick.report.stress_table import stress_lines
@@ -174,7 +175,7 @@ def _in_full(heading: str, candidate: Candidate) -> list[str]:
     for coil in candidate.coils:
         lines += wrapped(f"{coil.reference}  {coil_in_words(coil)}{_for_bands(coil, candidate)}", 2, 4)
     lines += _parts(candidate.parts)
-    lines += bands_in_full(candidate)
+    lines += ladder_lines(candidate) or bands_in_full(candidate)
     return lines + switch_lines(candidate)
 
 

@@ -4,12 +4,15 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from functools import lru_cache
 from itertools import combinations_with_replacement, product
 
+Part = tuple[float, float]  # F, H in series
 HIGHEST = 1.25  # times the upper end, of the frequency with every relay open
 
 
-def resonance(inductance: float, strays: float, parts: Sequence[tuple[float, float]]) -> float:
+@lru_cache(maxsize=100_000)
+def resonance(inductance: float, strays: float, parts: tuple[Part, ...]) -> float:
     """Return the resonance of a coil with parts (capacitance, series inductance) across it, by bisection. [Hz]"""
 
     def beyond(frequency: float) -> bool:
@@ -17,18 +20,19 @@ def resonance(inductance: float, strays: float, parts: Sequence[tuple[float, flo
         total = strays + sum(c / (1 - omega**2 * ls * c) for c, ls in parts)
         return omega**2 * inductance * total > 1
 
-    low, high = 1.0, 1.0 / (2 * math.pi * math.sqrt(inductance * (strays + sum(c for c, _ in parts))))
-    for _ in range(200):
+    low, high = 1e5, 1.0 / (2 * math.pi * math.sqrt(inductance * (strays + sum(c for c, _ in parts))))
+    for _ in range(56):
         middle = (low + high) / 2
         low, high = (low, middle) if beyond(middle) else (middle, high)
     return (low + high) / 2
 
 
-def rungs(inductance: float, strays: float, base: Sequence[tuple[float, float]], switched: Sequence[tuple[float, float]]) -> list[float]:
+def rungs(inductance: float, strays: float, base: Sequence[Part], switched: Sequence[Part]) -> list[float]:
     """Return the frequencies of all subsets, falling."""
     found = []
     for closed in product((False, True), repeat=len(switched)):
-        found.append(resonance(inductance, strays, [*base, *(p for p, on in zip(switched, closed, strict=True) if on)]))
+        on = [*base, *(part for part, shut in zip(switched, closed, strict=True) if shut)]
+        found.append(resonance(inductance, strays, tuple(sorted(on))))
     return sorted(found, reverse=True)
 
 
