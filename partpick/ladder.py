@@ -190,22 +190,30 @@ def _best_of_coil(
 ) -> tuple[_Row | None, int]:
     """Return the first ladder of one coil with so many capacitors, and how many part sets were looked at.
 
-    `to_beat` is returned where none ranks before it.
+    `to_beat` is returned where none ranks before it. Sets of common values are looked at first: commonness is the
+    first figure in which the ladders of one coil differ as a rule.
     """
-    least = field.bound(place, pieces)
-    best = [] if to_beat is None else [to_beat]
+    least, best = field.bound(place, pieces), to_beat
+    done, most_common, cut = -1, 0, True
 
     def worth(part: Set) -> bool:
-        if not best or best[0].key[:5] != least:
-            return True
-        return int(field.common[list(part.members)].sum()) <= int(str(best[0].key[5]))
+        nonlocal cut
+        common = int(field.common[list(part.members)].sum()) <= most_common
+        cut |= not common
+        return common
 
     search = Ladders(field.coil(place), lambda: search.nodes >= most or monitor.stopped() is not None)
-    for ladder in search.of(pieces, int(field.least_base[place]), field.most_relays, worth):
-        key = field.key(place, ladder)
-        if key is not None and (not best or key < best[0].key):
-            best[:] = [_Row(key, place, ladder)]
-    return (best[0] if best else None), search.nodes
+    while cut and not search.stop():
+        if best is not None and best.key[:5] == least and int(str(best.key[5])) <= done:
+            break  # what is left has less common values
+        cut = False
+        for ladder in search.of(pieces, int(field.least_base[place]), field.most_relays, worth):
+            key = field.key(place, ladder)
+            if key is not None and (best is None or key < best.key):
+                best = _Row(key, place, ladder)
+        done = most_common
+        most_common += 1 + most_common // 3
+    return best, search.nodes
 
 
 # ---------------------------------------------------------------- what is told

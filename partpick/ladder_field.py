@@ -19,6 +19,8 @@ from partpick.search.problem import NEVER, PLENTY, Floats, Ints
 
 MOST_CAPACITORS = 12  # where the plan states no limit, and at most
 
+SPARE_Q = 1.002  # over the limit on Q: the loss of the coil is taken on straight lines between three frequencies
+
 Key = tuple[object, ...]
 
 
@@ -123,8 +125,6 @@ class LadderField:
             ],
             axis=1,
         )
-        if not (closed.any(axis=0)).all():
-            return None  # a relay that no position closes
         parts = [self.capacitors[i] for i in self.parts_of(ladder)]
         total = self.strays[row] + np.array([coil.room(f) for f in rungs[nearest]])
         share = (self.strays[row] / total)[closed.any(axis=1)].max(initial=0.0)
@@ -155,7 +155,7 @@ class LadderField:
         loss = np.array([[_loss(part, float(f)) for part in parts] for f in wanted]).reshape(len(wanted), len(parts))
         loss = coil_loss + np.where(closed > 0, closed * values * loss, 0.0).sum(axis=1) / total
         limit = self.request.limits.q
-        if limit is not None and not bool((1.0 / loss >= limit).all()):
+        if limit is not None and not bool((1.0 / loss >= limit * SPARE_Q).all()):
             return None
         enough = np.array([enough_q(float(f), limit) for f in wanted])
         return int(quality_class(loss, enough).max())

@@ -50,8 +50,12 @@ def ladder_keys(
             "all_closed_hz": float(rungs[-1]),
             "always_in_circuit": [line.reference for line in lines[:base]],
             "relays": [
-                {"contact": f"S{base + place + 1}", "capacitor": line.reference, "value_f": line.value}
-                for place, line in enumerate(relays)
+                {
+                    "contact": next((name for band in candidate.bands for name in band.contacts if name == own), None),
+                    "capacitor": line.reference,
+                    "value_f": line.value,
+                }
+                for line, own in ((line, f"S{base + place + 1}") for place, line in enumerate(relays))
             ],
             "drowned": drowned(candidate, base, step),
         },

@@ -29,8 +29,14 @@ def ladder_faults(candidate: Candidate, request: Request) -> Iterator[str]:
         yield f"its positions are {min(apart)} to {max(apart)} Hz apart, asked for are equal steps up to {coarsest} Hz"
     step = (high - low) / (len(targets) - 1)
     lines = {line.reference: line for line in candidate.parts if line.kind == "capacitor"}
-    base = [name for name in lines if all(name in band.capacitors for band in candidate.bands)]
-    relays = [name for name in lines if name not in base]
+    told = candidate.extra.get("ladder")
+    if not isinstance(told, Mapping):
+        yield "its relays are not told"
+        return
+    relays = [each["capacitor"] for each in told["relays"]]
+    base = [name for name in lines if name not in relays]
+    if not all(name in band.capacitors for name in base for band in candidate.bands):
+        yield "a capacitor without a relay is not in circuit at every position"
     if len(relays) > MOST_RELAYS:
         yield f"{len(relays)} relays are more than can be held against each other"
         return

@@ -51,7 +51,7 @@ def ladder_in_words(candidate: Candidate) -> list[str]:
     assert ladder is not None
     labels = {part.reference: part.label for part in candidate.parts}
     fixed = ", ".join(f"{reference} {labels[reference]}" for reference in ladder["always_in_circuit"]) or "nothing"
-    relays = ", ".join(f"{each['contact']} {labels[each['capacitor']]}" for each in ladder["relays"])
+    relays = ", ".join(f"{each['contact'] or 'wired'} {labels[each['capacitor']]}" for each in ladder["relays"])
     count = len(candidate.bands) - 1
     said = [
         f"{plural(count, 'step')} of {format_quantity(ladder['step_hz'], 'Hz', 4)} with "

@@ -30,7 +30,8 @@ from partpick.search.problem import Floats, Ints
 
 MOST_BASE = 2  # capacitors always in circuit
 LOOSER = 1.02  # times a step, where bases are compared by what they act as at one frequency alone
-TURNS = 6  # of the fixed point for a frequency; each gains two decimals and more
+TURNS = 12  # of the fixed point for a frequency; each gains a decimal at worst, three and more as a rule
+FEW_TURNS = 5  # where the inductance alone depends on the frequency
 GRAIN = 1e-11  # of a frequency: rounding
 ABOVE = 1.25  # times the upper end: the highest rung looked at
 NEAR_OWN_RESONANCE = 0.25  # of 1 in w^2 Ls C, as elsewhere
@@ -91,7 +92,7 @@ class Coil:
     def resonance_of(self, network: float) -> float:
         """Return where capacitors that act as so much resonate. [Hz]"""
         frequency = self.span.high
-        for _ in range(TURNS):
+        for _ in range(FEW_TURNS):
             frequency = self.resonance_at(network, frequency)
         return frequency
 
@@ -231,6 +232,7 @@ class Ladders:
     def __init__(self, coil: Coil, stop: Callable[[], bool]) -> None:
         self.coil, self.span, self.stop = coil, coil.span, stop
         self.nodes = 0
+        self.bases: dict[int, list[tuple[int, ...]]] = {}
         top, foot = self.span.acting(ABOVE * self.span.high), self.span.acting(self.span.low - self.span.half)
         usable = np.isfinite(top) & (foot <= coil.room(self.span.low - self.span.half) * (1 + 1e-9))
         self.usable = int(np.count_nonzero(usable))  # the values rise, and large ones resonate first
@@ -248,8 +250,10 @@ class Ladders:
                         break  # nor do smaller ones
                     yield from self._grow(base, (), relays, worth)
 
-    def _bases(self, size: int) -> Iterator[tuple[int, ...]]:
-        """Yield what may be always in circuit, by falling capacitance: open, the tank is at the upper end or above."""
+    def _bases(self, size: int) -> list[tuple[int, ...]]:
+        """Return what may be always in circuit, by falling capacitance: open, the tank is at the upper end or above."""
+        if size in self.bases:
+            return self.bases[size]
         room = self.coil.room(self.span.high - self.span.half)
         acting = self.span.acting(self.span.high - self.span.half)[: self.usable]
         found = []
@@ -258,7 +262,8 @@ class Ladders:
                 total = float(acting[list(base)].sum()) if base else 0.0
                 if total <= room * (1 + 1e-9):
                     found.append((-total, base))
-        yield from (base for _, base in sorted(found))
+        self.bases[size] = [base for _, base in sorted(found)]
+        return self.bases[size]
 
     def _grow(
         self, base: tuple[int, ...], switched: tuple[int, ...], left: int, worth: Callable[[Set], bool]

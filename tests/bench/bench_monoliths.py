@@ -1,8 +1,8 @@
 """The plan search against one whole model of the same instance, in CP-SAT and in HiGHS.
 
-Run: python tests/bench/bench_monoliths.py [seconds [layout ...]]. The model has one binary a coil and whole-number counts of
-each value at each band, or of the set; it minimises the number of capacitors and nothing else, while the search
-proves its first plan in the whole order. One worker each. Models stop at a time limit (60 s by the clock, 30 s
+Run: python tests/bench/bench_monoliths.py [seconds [layout ...]]. The model has one binary a coil and whole-number
+counts of each value at each band, or of the set; it minimises the number of capacitors and nothing else, while the
+search proves its first plan in the whole order. One worker each. Models stop at a time limit (60 s by the clock, 30 s
 for shared sets): a ratio with ">" is what they had used by then without a proof. Seconds are of the processor,
 since the machine may be busy; of the search the least of three runs. Instances are random tanks of 3 to 30 MHz
 (`layout_instances.py`), seed 1, E24.
