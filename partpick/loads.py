@@ -1,4 +1,4 @@
-"""A load at a tap of the coil, and what the tank with its load keeps out."""
+"""A load at a tap of the coil or on a link over it, and what the tank with its load keeps out."""
 
 from __future__ import annotations
 
@@ -9,7 +9,8 @@ from partpick.circuit import Tank
 from partpick.oscillating import tap_shares
 from partpick.physics.coupled_tanks import Tank as LoadedCircuit
 from partpick.physics.coupled_tanks import tank_attenuation
-from partpick.physics.coupling import tap_load
+from partpick.physics.coupling import link_load, tap_load
+from partpick.physics.link import links_over_solenoid
 from partpick.physics.loading import loaded_q
 
 HARMONICS = (2, 3)
@@ -49,6 +50,54 @@ def tap_for_load(tank: Tank, resonance: float, resistance: float, wanted: float)
         best = place if best is None else min(best, place)
     assert best is not None
     return LoadTap(*best[1:])
+
+
+@dataclass(frozen=True)
+class LoadLink:
+    """A link winding for a load, and what the load does there."""
+
+    turns: int
+    loaded_q: float
+    detuning: float  # fraction of the frequency
+    coupling: float  # M over the geometric mean of both inductances
+
+
+def link_for_load(tank: Tank, resonance: float, resistance: float, wanted: float) -> LoadLink | None:
+    """Return the whole turns of a link over the earthed end with which a load comes nearest to a loaded Q.
+
+    From one turn to as many as the coil has; nearest is meant in ratio, of equal ones the fewest turns. None where
+    no link is known for the coil, or its Q is unknown.
+    """
+    q, links = tank.q(), _links(tank)
+    if q is None or links is None:
+        return None
+    inductance = tank.inductance()
+    reactance = math.sqrt(inductance / tank.total())
+    best: tuple[float, int, float, float, float] | None = None
+    for turns, (own, mutual) in enumerate(links, 1):
+        seen = link_load(resonance, inductance, own, mutual, resistance)
+        reached = float(loaded_q(q, reactance, float(seen.resistance)))
+        detuning = math.sqrt(inductance / float(seen.inductance)) - 1.0
+        coupling = mutual / math.sqrt(inductance * own)
+        place = (round(abs(math.log(reached / wanted)) * 1e12), turns, reached, detuning, coupling)
+        best = place if best is None else min(best, place)
+    return None if best is None else LoadLink(*best[1:])
+
+
+def _links(tank: Tank) -> list[tuple[float, float]] | None:
+    """Return inductance and mutual inductance of links of 1, 2, ... turns, None where they are not known. [H]"""
+    block, row = tank.coils.locate(tank.coil)
+    turns = int(block.turns[row])
+    if tank.tap_turns is not None or not block.tappable or turns < 1:
+        return None
+    inductance = tank.inductance()
+    if block.form != "solenoid":  # a ring: all flux in common
+        shares = [turn / turns for turn in range(1, turns + 1)]
+        return [(inductance * share**2, inductance * share) for share in shares]
+    diameter, pitch, wire = float(block.mean_diameter[row]), float(block.pitch[row]), block.wires[int(block.wire[row])]
+    over = diameter + 2 * wire.overall_diameter
+    links = links_over_solenoid(turns, diameter, over, wire.bare_diameter, pitch)
+    return list(zip(links.inductance.tolist(), links.mutual.tolist(), strict=True))
 
 
 def attenuation(tank: Tank, frequency: float, resonance: float, loaded: float | None) -> float | None:

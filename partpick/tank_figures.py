@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from partpick.circuit import Tank, network_capacitance
 from partpick.errors import InternalError
-from partpick.loads import attenuation, harmonics, tap_for_load
+from partpick.loads import attenuation, harmonics, link_for_load, tap_for_load
 from partpick.matching import load_to_meet, q_limits
 from partpick.physics.coupling import divider_load
 from partpick.physics.loading import damping_resistance, loaded_q
@@ -37,8 +37,10 @@ class LoadedTank:
     damping: float | None = None  # ohm, of the series
     across: float | None = None  # ohm, what the load must look like across the tank
     note: str | None = None
-    detuning: float | None = None  # fraction of the frequency, by a load at a tap
+    detuning: float | None = None  # fraction of the frequency, by a load at a tap, on a link or a divider
     tap_turns: int | None = None  # whole turn, from the earthed end, that the load goes to
+    link_turns: int | None = None  # of a link over the earthed end
+    coupling: float | None = None  # of the link with the coil
 
 
 def tank_figures(tank: Tank, resonance: float, names: tuple[str, ...] = ()) -> dict[str, object]:
@@ -142,27 +144,38 @@ def loaded_tank(tank: Tank, resonance: float) -> LoadedTank | None:
         missed = f"a Q of {_words(wanted)} is wanted, but the tank has {_words(before)} already"
         return LoadedTank(q=before, note=missed + _instead(load, q, wanted))
     if load.connection == "tap" and load.resistance is not None:
-        found = tap_for_load(tank, resonance, load.resistance, wanted)
-        if found is not None:
-            told = []
-            if abs(math.log(found.loaded_q / wanted)) > NEAR_ENOUGH:
-                told.append(
-                    f"the nearest tap gives a loaded Q of {_words(found.loaded_q)}, {_words(wanted)} is wanted"
-                )
-            if abs(found.detuning) > LEAST_DETUNING:
-                moved = f"{100 * found.detuning:+.2g} %"
-                told.append(f"the load at its tap moves the tank by {moved}: tune it with the load on")
+        tapped = tap_for_load(tank, resonance, load.resistance, wanted)
+        if tapped is not None:
+            note = _fitted("tap", "at its tap", tapped.loaded_q, wanted, tapped.detuning)
             return LoadedTank(
-                q=found.loaded_q,
+                q=tapped.loaded_q, across=needed, tap_turns=tapped.turn, detuning=tapped.detuning, note=note
+            )
+    if load.connection == "link" and load.resistance is not None:
+        link = link_for_load(tank, resonance, load.resistance, wanted)
+        if link is not None:
+            note = _fitted("link", "on its link", link.loaded_q, wanted, link.detuning)
+            return LoadedTank(
+                q=link.loaded_q,
                 across=needed,
-                tap_turns=found.turn,
-                detuning=found.detuning,
-                note="; ".join(told) or None,
+                link_turns=link.turns,
+                coupling=link.coupling,
+                detuning=link.detuning,
+                note=note,
             )
     if not direct:
         return LoadedTank(q=wanted, across=needed)
     damping = float(nearest(DAMPING_SERIES, needed))
     return LoadedTank(q=float(loaded_q(before, x, damping)), damping=damping, across=needed)
+
+
+def _fitted(what: str, where: str, reached: float, wanted: float, detuning: float) -> str | None:
+    """Return what must be said of a load fitted by whole turns."""
+    told = []
+    if abs(math.log(reached / wanted)) > NEAR_ENOUGH:
+        told.append(f"the nearest {what} gives a loaded Q of {_words(reached)}, {_words(wanted)} is wanted")
+    if abs(detuning) > LEAST_DETUNING:
+        told.append(f"the load {where} moves the tank by {100 * detuning:+.2g} %: tune it with the load on")
+    return "; ".join(told) or None
 
 
 def _by_divider(tank: Tank, q: float | None, x: float) -> LoadedTank:
@@ -228,6 +241,8 @@ def _load_keys(tank: Tank, load: Load, resonance: float, names: tuple[str, ...])
         "ringing_time_s": None if width is None else 1 / (math.pi * width),
         "note": loaded.note,
         "tap_turns": loaded.tap_turns,
+        "link_turns": loaded.link_turns,
+        "link_coupling": loaded.coupling,
         "divider": list(names[:2]) if tank.network.shape == LOADED else None,  # hot end, then across the load
         "detuning": loaded.detuning,
     }

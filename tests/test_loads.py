@@ -187,3 +187,32 @@ def test_what_goes_with_no_divider_is_refused(tables: dict[str, Any], said: str)
     """One line that says what would do."""
     with pytest.raises(RequestError, match=said):
         divided(**tables)
+
+
+@pytest.mark.parametrize(("resistance", "wanted"), [("50 ohm", 20), ("50 ohm", 60), ("300 ohm", 40)])
+def test_the_link_of_a_load_is_the_nearest_of_all_turns(resistance: str, wanted: float) -> None:
+    """Every number of turns enumerated: Neumann's integral of each pair of turns, the circuit solved for two loops."""
+    candidate = first(load={"resistance": resistance, "loaded_q": wanted, "connection": "link"})
+    (band,), (coil,) = candidate.bands, candidate.coils
+    told = load_of(band)
+    wire = next(w for w in catalogue().wires if w.name == coil.wire)
+    assert coil.turns and coil.mean_diameter and coil.pitch and band.q
+    angle = (np.arange(2000) + 0.5) * 2 * math.pi / 2000
+    a, b = coil.mean_diameter / 2, coil.mean_diameter / 2 + wire.overall_diameter
+    apart = np.arange(coil.turns)[:, None] * coil.pitch
+    ring = (4e-7 * math.pi * a * b * 2 * math.pi / 2) * np.mean(
+        np.cos(angle) / np.sqrt(a * a + b * b - 2 * a * b * np.cos(angle) + apart**2), axis=1
+    )
+    ohms = {"50 ohm": 50.0, "300 ohm": 300.0}[resistance]
+    omega, own = 2 * math.pi * (band.resonance or 0), solenoid_family(coil.turns, 2 * b, wire.bare_diameter, coil.pitch)
+    reached, coupled = {}, {}
+    for turns in range(1, coil.turns + 1):
+        mutual = sum(ring[abs(i - j)] for i in range(coil.turns) for j in range(turns))
+        loops = 1j * omega * np.array([[band.inductance, mutual], [mutual, own[turns - 1]]]) + np.diag([0, ohms])
+        seen = np.linalg.inv(loops)[0, 0].real
+        reached[turns] = 1 / (1 / band.q + math.sqrt(band.inductance / (band.capacitance or 0)) * seen)
+        coupled[turns] = mutual / math.sqrt(band.inductance * own[turns - 1])
+    nearest = min(reached, key=lambda turns: abs(math.log(reached[turns] / wanted)))
+    assert told["link_turns"] == nearest
+    assert told["loaded_q"] == pytest.approx(reached[nearest], rel=1e-3)
+    assert told["link_coupling"] == pytest.approx(coupled[nearest], rel=1e-3)

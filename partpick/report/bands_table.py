@@ -133,6 +133,10 @@ def _load_in_words(band: BandFigures) -> list[str]:
         told.append(f"{format_quantity(load['damping_resistor_ohm'], OHM)} across it to damp")
     elif load.get("tap_turns") is not None:
         told.append(f"load at turn {load['tap_turns']} from the earthed end")
+    elif load.get("link_turns") is not None:
+        turns = "1 turn" if load["link_turns"] == 1 else f"{load['link_turns']} turns"
+        coupled = figure(load["link_coupling"], 2)
+        told.append(f"load on a link of {turns} over the earthed end, coupled by {coupled}")
     elif load.get("divider"):
         upper, lower = load["divider"]
         told.append(f"load across {lower}, {upper} from there to the hot end")
