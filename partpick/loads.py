@@ -6,12 +6,13 @@ import math
 from dataclasses import dataclass
 
 from partpick.circuit import Tank
-from partpick.oscillating import tap_shares
+from partpick.oscillating import load_conductance, tap_shares
 from partpick.physics.coupled_tanks import Tank as LoadedCircuit
 from partpick.physics.coupled_tanks import tank_attenuation
 from partpick.physics.coupling import link_load, tap_load
 from partpick.physics.link import links_over_solenoid
 from partpick.physics.loading import loaded_q
+from partpick.receiver import is_receiver, offset_of
 
 HARMONICS = (2, 3)
 
@@ -114,6 +115,30 @@ def attenuation(tank: Tank, frequency: float, resonance: float, loaded: float | 
     added = max(1.0 / loaded - 1.0 / q, 0.0)
     circuit = LoadedCircuit(inductance, capacitance, characteristic / q, added / characteristic)
     return float(tank_attenuation(frequency, resonance, circuit))
+
+
+def image_rejection(tank: Tank) -> list[dict[str, float | None]] | None:
+    """Return what the signal circuit of a receiver does to its image at both ends; None for any other tank.
+
+    The image lies twice the intermediate frequency from the signal, on the oscillator's side.
+    """
+    if not is_receiver(tank.request) or not tank.band.swept or tank.index % 2:
+        return None
+    found: list[dict[str, float | None]] = []
+    for low_end in (True, False):
+        inductance, capacitance = tank.inductance(low_end=low_end), tank.total(low_end=low_end)
+        q = tank.q_at(low_end=low_end)
+        at = 1.0 / (2 * math.pi * math.sqrt(inductance * capacitance))
+        image = abs(at + 2 * offset_of(tank.request))
+        circuit = LoadedCircuit(
+            inductance,
+            capacitance,
+            math.sqrt(inductance / capacitance) / (q or math.inf),
+            load_conductance(tank.band.load),
+        )
+        size = None if q is None or image == 0 else float(tank_attenuation(image, at, circuit))
+        found.append({"at_hz": at, "image_hz": image, "rejection_db": size})
+    return found
 
 
 def harmonics(tank: Tank, resonance: float, loaded: float | None) -> dict[str, float | None]:

@@ -345,6 +345,9 @@ FURTHER: dict[str, dict[str, Key]] = {
         "input_capacitance": Key(read=_capacitance_or_zero, default=0.0),
         "output_capacitance": Key(read=_capacitance_or_zero, default=0.0),
     },
+    "coupling": {  # two equal tanks on one another
+        "bandwidth": Key(read=parse_bandwidth),  # wanted; unstated: critical coupling
+    },
     "receiver": {
         "intermediate": Key(read=parse_frequency, required=True),
         "side": Key(read=_choice("above", "below"), default="above"),

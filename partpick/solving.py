@@ -9,6 +9,7 @@ from partpick.audit import audit
 from partpick.built.outlook import outlook, with_outlook
 from partpick.candidates import LIMIT_ROUNDING, Coils, coil_figures, realisable_coils
 from partpick.catalogue import select_capacitors
+from partpick.coupling_figures import check_coupling, with_coupling
 from partpick.errors import RequestError
 from partpick.layouts import check_layout, design_of, search_layout
 from partpick.matching import check_loads, with_loads
@@ -29,7 +30,8 @@ from partpick.trimming import problem_with_trimmers, trimmers_on_offer, with_cho
 
 LOW_FREQUENCY = 1e3  # Hz
 TOO_SMALL = "its leads decide: no coil for a tank"
-PLANNED_TABLES = ("temperature", "spread", "drive", "receiver", "oscillator")  # of the further tables of a plan
+# of the further tables of a plan
+PLANNED_TABLES = ("temperature", "spread", "drive", "receiver", "oscillator", "coupling")
 
 
 def solve(request: Request, catalogue: Catalogue, *, top: int = 10, monitor: Monitor | None = None) -> Result:
@@ -171,6 +173,7 @@ def _refuse_unplanned(request: Request) -> None:
     check_layout(request)
     check_oscillator(request)
     check_loads(request)
+    check_coupling(request)
     switching = dict(dict(request.extra).get("drive", ())).get("class") == "E"
     if switching and any(band.load is not None for band in request.bands):
         raise RequestError(
@@ -276,6 +279,7 @@ def _candidate(
 
         shares = dict(zip(_orders(request)[request.by], choice.key, strict=False))["fine_tracking"]
         candidate = with_tracking(request, candidate, FINE * float(str(shares)))
+    candidate = with_coupling(request, capacitors, candidate)
     looked_at = with_outlook(candidate, outlook(request, coils, capacitors, design, candidate, first=first, pool=pool))
     if not dict(request.extra).get("drive"):
         return looked_at

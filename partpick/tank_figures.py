@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from partpick.circuit import Tank, network_capacitance
 from partpick.errors import InternalError
-from partpick.loads import attenuation, harmonics, link_for_load, tap_for_load
+from partpick.loads import attenuation, harmonics, image_rejection, link_for_load, tap_for_load
 from partpick.matching import load_to_meet, q_limits
 from partpick.physics.coupling import divider_load
 from partpick.physics.loading import damping_resistance, loaded_q
@@ -69,6 +69,7 @@ def tank_figures(tank: Tank, resonance: float, names: tuple[str, ...] = ()) -> d
     figures: dict[str, object] = {"loss": loss_by_cause(tank), **ringing}
     if not tank.band.swept:
         figures["lossy_resonances"] = _resonances(inductance, capacitance, series)
+    figures["selectivity"] = _selectivity(tank, resonance)
     if tank.band.load is not None:
         figures["load"] = _load_keys(tank, tank.band.load, resonance, names)
     return figures
@@ -255,6 +256,16 @@ def _load_keys(tank: Tank, load: Load, resonance: float, names: tuple[str, ...])
             "above": attenuation(tank, resonance + load.offset, resonance, q),
         }
     return keys
+
+
+def _selectivity(tank: Tank, resonance: float) -> dict[str, object]:
+    """Return what a tank with its load keeps out: harmonics at a fixed band, the image of a receiver."""
+    loaded = loaded_tank(tank, resonance)
+    q = tank.q() if loaded is None else loaded.q
+    return {
+        "harmonics_db": None if tank.band.swept else harmonics(tank, resonance, q),
+        "image": image_rejection(tank),
+    }
 
 
 def _ringing(inductance: float, capacitance: float, series: float | None, steep: float) -> dict[str, object]:

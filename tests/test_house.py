@@ -24,7 +24,7 @@ STAGES = [
     {"objective", "oscillating", "matching", "tapping", "trimming"},
     {"stressed", "rating_words", "tuning_range", "unstated"},
     {"circuit", "band_switch", "layouts", "receiver", "moved_figures", "assessment", "loads", "tank_figures",
-     "oscillator_figures", "tracking_figures", "load_words", "fronts", "nothing_fits", "cover",
+     "oscillator_figures", "tracking_figures", "load_words", "coupling_figures", "fronts", "nothing_fits", "cover",
      "ladder", "ladder_field", "ladder_figures"},
     {"built", "cautions", "conduction", "stress"},
     {"audit"},

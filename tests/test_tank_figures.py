@@ -127,7 +127,8 @@ def test_a_q_that_the_tank_does_not_have_cannot_be_damped_to() -> None:
 def test_a_load_by_tap_link_or_divider_is_matched_not_damped() -> None:
     """What must appear across the tank is told; nothing stands across it that was not asked for."""
     load = load_of(band_of(resistance="50 ohm", loaded_q=20, connection="link"))
-    assert load["loaded_q"] == 20 and load["damping_resistor_ohm"] is None
+    assert load["link_turns"] >= 1 and load["damping_resistor_ohm"] is None  # whole turns: near 20, not 20
+    assert load["loaded_q"] == pytest.approx(20, rel=0.25)
     assert load["across_ohm"] > 50
     unknown = band_of(resistance="50 ohm", connection="link")
     assert load_of(unknown)["loaded_q"] is None and unknown.bandwidth is None

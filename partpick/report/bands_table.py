@@ -7,6 +7,7 @@ from collections.abc import Sequence
 
 from partpick.quantities import format_percent, format_quantity
 from partpick.report.oscillator import oscillator_in_words
+from partpick.report.selectivity import selectivity_in_words
 from partpick.report.text import (
     clean,
     columns,
@@ -189,6 +190,7 @@ def _in_circuit(band: BandFigures, candidate: Candidate) -> str:
     if band.bandwidth is not None:
         told.append(f"{_loaded_q(band)}bandwidth {format_quantity(band.bandwidth, 'Hz')}")
     told += _load_in_words(band)
+    told += selectivity_in_words(band)
     told += oscillator_in_words(band)
     if loss := _loss_in_words(band):
         told.append(loss)
