@@ -17,6 +17,7 @@ from partpick.errors import CatalogueError, QuantityError
 from partpick.quantities import shown
 
 MOST_ROWS = 200_000  # keeps a drawer within some hundred megabytes of memory
+MOST_LINES = 2 * MOST_ROWS  # a quoted cell may hold a line end; beyond this nothing need be parsed
 MOST_BYTES = 32_000_000
 LONGEST_LINE = 20_000  # characters
 LONGEST_TEXT = 200  # characters in a name or label
@@ -107,6 +108,8 @@ def _decoded(path: Path, file: str) -> str:
         raise CatalogueError(f"{file}: cannot be read: {(error.strerror or str(error)).lower()}") from None
     if len(content) > MOST_BYTES:
         raise CatalogueError(f"{file}: larger than {MOST_BYTES // 1_000_000} MB, the most that is read")
+    if content.count(b"\n") > MOST_LINES:
+        raise CatalogueError(f"{file}: more than {MOST_ROWS} rows, the most that is read")
     if not content.strip():
         raise CatalogueError(f"{file}: the file is empty")
     try:

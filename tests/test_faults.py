@@ -90,7 +90,7 @@ def disturbed(folder: Path, expected: dict[str, bytes], random: Random, length: 
 
 
 @pytest.mark.skipif(os.name != "posix", reason="signals as a shell sends them")
-@pytest.mark.parametrize("count", [4, pytest.param(150, marks=pytest.mark.slow)])
+@pytest.mark.parametrize("count", [2, pytest.param(150, marks=pytest.mark.slow)])
 def test_a_signal_at_any_moment_leaves_the_old_files_or_the_new_ones(bench: Path, count: int) -> None:
     """All of them or none, and nothing lies about."""
     expected = whole(bench)
@@ -126,8 +126,7 @@ sys.exit(main(sys.argv[2:]))
 """
 
 
-@pytest.mark.parametrize("room", [0, 1_000, 20_000])
-@pytest.mark.parametrize("old", [False, True])
+@pytest.mark.parametrize(("room", "old"), [(0, False), (1_000, True), (20_000, True)])
 def test_a_disk_that_fills_up_leaves_everything_as_it_was(bench: Path, room: int, old: bool) -> None:
     """Whichever of the outputs it is that does not fit (simulated: the system says so after so many bytes)."""
     laid_out(bench, old)

@@ -111,7 +111,7 @@ WIDER = [
     ("stacked", {}),
     ("stacked", {"limits": {"inductors": 2}}),
     ("stacked", {"band": SWEPT, "tuning": TUNING}),
-    ("shared", {}),
+    ("shared", {"limits": {"parts": 4}}),
 ]
 
 
