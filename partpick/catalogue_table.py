@@ -35,8 +35,7 @@ class Row:
 
     def wrong(self, column: str, what: str) -> CatalogueError:
         """Return the error that names file, row and column."""
-        shown = "".join(letter if letter.isprintable() else "\ufffd" for letter in what)
-        return CatalogueError(f"{self.file}, row {self.number}, {column}: {shown}")
+        return CatalogueError(f"{self.file}, row {self.number}, {column}: {what}")
 
     def has(self, column: str) -> bool:
         """Whether the cell is there and not empty."""

@@ -21,7 +21,10 @@ class RequestError(PartpickError):
 
 
 class CatalogueError(PartpickError):
-    """A row of the catalogue or of a drawer that is not understood."""
+    """A row of the catalogue or of a drawer that is not understood; what it holds breaks no line."""
+
+    def __init__(self, text: str) -> None:
+        super().__init__("".join(letter if letter.isprintable() else "\ufffd" for letter in text))
 
 
 class OutputError(PartpickError):

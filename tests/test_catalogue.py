@@ -538,5 +538,5 @@ def test_a_nonsense_series_is_refused() -> None:
 
 def test_a_cell_with_control_characters_is_refused_in_one_line(drawer: Drawer) -> None:
     """They count as blanks to a reader of numbers, and would break the line."""
-    folder = drawer("trimmers.csv", "name,low,high\na,4 pF,3\x1dpF\n")
-    assert refused(folder).isprintable()
+    for text in ("name,low,high\na,4 pF,3\x1dpF\n", "name,low,high,la\x0cce,la\x0cce\na,4 pF,5 pF,,\n"):
+        assert refused(drawer("trimmers.csv", text)).isprintable()
