@@ -10,7 +10,9 @@ import pytest
 import solved
 
 from partpick.errors import RequestError
+from partpick.quantities import format_percent
 from partpick.report.reasons import reasons
+from partpick.report.sensitivity_table import sensitivity_rows
 from partpick.report.text import columns_of
 from partpick.request import CoilRules, Limits, Trimmer
 from partpick.result import Candidate, Result
@@ -151,3 +153,26 @@ def test_an_error_limit_that_a_trimmer_has_taken_away_is_no_limit() -> None:
     trimmed = replace(request, bands=(replace(request.bands[0], trimmer=Trimmer(low=3e-12, high=20e-12)),))
     assert "error 1.34 %" not in told(handmade.result(off, request=trimmed), 1)
     assert "error 1.34 % of 0.5 %" in told(handmade.result(off, request=request), 1)
+
+
+def test_what_each_part_contributes_is_told() -> None:
+    """Figures of the JSON, in the units of the bench; shares of a band come to all of its spread."""
+    candidate = solved.demo().candidates[0]
+    assert "What each part contributes" in reasons(solved.demo(), 1)
+    entries = candidate.extra["sensitivity"]
+    assert isinstance(entries, list)
+    shown = {(row[0], row[1]): row for row in sensitivity_rows(candidate)}
+    compared = 0
+    for entry in entries:
+        row = shown.get((entry["band"], entry["reference"]))
+        if row is not None:
+            number, unit = row[3].split()
+            hertz = float(number) * {"Hz": 1.0, "kHz": 1e3, "MHz": 1e6}[unit]
+            assert hertz == pytest.approx(entry["hertz_per_percent"], rel=0.006)
+            assert row[5] == format_percent(entry["share_of_variance"], 2)
+            compared += 1
+    assert compared >= 9, "every coil and capacitor that counts"
+    by_band: dict[str, float] = {}
+    for entry in entries:
+        by_band[entry["band"]] = by_band.get(entry["band"], 0.0) + (entry["share_of_variance"] or 0.0)
+    assert all(share == pytest.approx(1.0, abs=0.01) for share in by_band.values())

@@ -13,6 +13,7 @@ from partpick.errors import RequestError
 from partpick.quantities import format_percent
 from partpick.report.bands_table import share_of_strays, worst_q
 from partpick.report.charts import spread_of
+from partpick.report.sensitivity_table import sensitivity_table
 from partpick.report.text import figure, plural, quantity, signed_percent, wrapped
 from partpick.report.tracking import worst_tracking
 from partpick.request import Request
@@ -56,6 +57,8 @@ def reasons(result: Result, rank: int) -> str:
     told += _other_coils(result, candidate)
     for text in told:
         lines += wrapped(text, 2, 2) if text else []
+    contributions = sensitivity_table(candidate)
+    lines += ["", *contributions] if contributions else []
     return "\n".join(lines) + "\n"
 
 

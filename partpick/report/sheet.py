@@ -16,6 +16,8 @@ from partpick.report.ladder_table import ladder_section
 from partpick.report.load_table import load_table
 from partpick.report.oscillator import start_table
 from partpick.report.pictures import HOW_TO_GET, Picture, pictures
+from partpick.report.sensitivity_table import HEAD as SENSITIVITY_HEAD
+from partpick.report.sensitivity_table import sensitivity_rows
 from partpick.report.sheet_style import STYLE
 from partpick.report.spread_table import alignment_steps
 from partpick.report.stress_table import FIGURES, GUESS, HEAD, cautions, stress_rows
@@ -122,7 +124,12 @@ def _errors(result: Result, candidate: Candidate) -> str:
         floor = format_percent(result.floor, 2)
         noise = f" Errors below {floor} are noise: parts vary more." if what == "error" else ""
         figures.append(_figure(steps, f"What more pieces would buy, least {what} each.{noise}"))
-    return html.element("div", "\n".join(figures), class_="cards") if figures else ""
+    cards = html.element("div", "\n".join(figures), class_="cards") if figures else ""
+    rows = sensitivity_rows(candidate)
+    if not rows:
+        return cards
+    told = html.element("h3", "What each part contributes, nothing adjusted")
+    return cards + told + html.table([each.capitalize() for each in SENSITIVITY_HEAD], rows, figures=range(2, 7))
 
 
 def _trimmed(candidate: Candidate) -> bool:
