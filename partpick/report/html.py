@@ -8,7 +8,7 @@ from html import escape
 
 from partpick.report.text import clean
 
-UNIT = re.compile(r"(?<=\d) (?=[^\s\d]*(?:Hz|F|H|\u03a9|%|V|A|W|ppm)\b|%)")  # a figure stays with its unit
+UNIT = re.compile(r"(?<=\d) (?=[^\s\d]*(?:Hz|F|H|\u03a9|%|V|A|W|S|ppm)\b|%)")  # a figure stays with its unit
 
 
 def text(words: str) -> str:
