@@ -129,7 +129,8 @@ def _errors(result: Result, candidate: Candidate) -> str:
     if not rows:
         return cards
     told = html.element("h3", "What each part contributes, nothing adjusted")
-    return cards + told + html.table([each[:1].upper() + each[1:] if each != "ppm/K" else "Drift, ppm/K" for each in SENSITIVITY_HEAD], rows, figures=range(2, 7))
+    head = ["Drift, ppm/K" if each == "ppm/K" else each.capitalize() for each in SENSITIVITY_HEAD]
+    return cards + told + html.table(head, rows, figures=range(2, 7))
 
 
 def _trimmed(candidate: Candidate) -> bool:
