@@ -23,6 +23,7 @@ from partpick.search.figures import fine_error, whole_excess
 from partpick.search.pairs import PairBounds
 from partpick.search.problem import Problem
 from partpick.search.sets import SetBounds
+from partpick.search.taps import TappedSource
 
 _LAST = np.iinfo(np.int64).max
 
@@ -117,7 +118,12 @@ def search_bands(
         Whether the front is wanted too. [-]
     """
     found = Found()
-    bounds = Bounds(problem, source)
+    if isinstance(source, TappedSource):
+        source.monitor = monitor
+    try:
+        bounds = Bounds(problem, source)
+    except Stopped as stop:  # not even the bounds are known
+        return Found(stopped_by=stop.reason, next_bound=0)
     evaluator = Evaluator(problem, source, monitor, bounds.leading, bounds.fewest)
     ranking = Ranking(problem, wanted, all_windings)
     together = _coils_together(problem, bounds, monitor)

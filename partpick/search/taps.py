@@ -12,6 +12,8 @@ from functools import lru_cache
 
 import numpy as np
 
+from partpick.progress import Monitor, Quiet
+from partpick.search.choose import Stopped
 from partpick.search.columns import ColumnSource
 from partpick.search.figures import Columns
 from partpick.search.problem import Bools, Floats, Ints, Problem
@@ -42,11 +44,14 @@ class TappedSource(ColumnSource):
         super().__init__(problem)
         self.sections = sections
         self.counts = counts  # (J,) sections of each coil
+        self.monitor: Monitor = Quiet()  # whoever searches puts its own here: millions of sections take a while
         self._of_coil = lru_cache(maxsize=256)(self._one_coil)
 
     def with_problem(self, problem: Problem) -> TappedSource:
         """Return the columns of the same coils and sections under other rules."""
-        return TappedSource(problem, self.sections, self.counts)
+        made = TappedSource(problem, self.sections, self.counts)
+        made.monitor = self.monitor
+        return made
 
     def least_errors(self, parts: int) -> Floats:
         """Return the least size of error over the whole coil and its sections, (J, B). [-]"""
@@ -96,6 +101,9 @@ class TappedSource(ColumnSource):
             return
         block = np.cumsum(self.counts[coils]) // _BLOCK
         for piece in np.split(coils, np.flatnonzero(np.diff(block)) + 1):
+            reason = self.monitor.stopped()
+            if reason is not None:
+                raise Stopped(reason)
             sections = self.sections(piece)
             yield sections, self.sharing_tables(self._sections_alone(sections))
 
