@@ -8,11 +8,12 @@ import numpy as np
 import pytest
 from tiny.brute_force import ranking
 from tiny.brute_force_loads import loaded_columns
+from tiny.compare import equals_enumeration
 from tiny.random_loads import random_loads
 
 from partpick.physics.coupling import divider_load
 from partpick.progress import Quiet
-from partpick.search.bands import leading_figure, search_bands
+from partpick.search.bands import search_bands
 from partpick.search.columns import ColumnSource
 from partpick.search.divided import load_across, loaded_slopes, loaded_value
 
@@ -27,18 +28,7 @@ SHAPES = {
 def agree(seed: int, shape: dict[str, int]) -> int:
     problem = random_loads(seed, **shape)
     wanted, front = ranking(problem, loaded_columns)
-    found = search_bands(problem, ColumnSource(problem), wanted=100, all_windings=False, monitor=Quiet())
-    assert found.stopped_by is None
-    assert [choice.key for choice in found.choices] == wanted, f"seed {seed}, by {problem.by}"
-    got = [
-        (
-            len(choice.coils) + sum(int((columns.parts[0] >= 0).sum()) for columns in choice.columns),
-            leading_figure(problem, choice),
-        )
-        for choice in found.front
-    ]
-    assert [pieces for pieces, _ in got] == [pieces for pieces, _ in front], f"front of seed {seed}"
-    assert [lead for _, lead in got] == pytest.approx([lead for _, lead in front], abs=1e-12)
+    equals_enumeration(problem, ColumnSource(problem), wanted, front, seed)
     return len(wanted)
 
 

@@ -8,10 +8,11 @@ import numpy as np
 import pytest
 from tiny.brute_force import ranking
 from tiny.brute_force_oscillator import oscillator_columns
+from tiny.compare import equals_enumeration
 from tiny.random_oscillator import random_oscillator, source_of, taps_of
 
 from partpick.progress import Quiet
-from partpick.search.bands import leading_figure, search_bands
+from partpick.search.bands import search_bands
 from partpick.search.problem import Problem
 
 CIRCUITS = ("colpitts", "clapp", "hartley")
@@ -48,18 +49,7 @@ def agree(seed: int, circuit: str, shape: dict[str, int]) -> int:
     problem = random_oscillator(seed, circuit, **shape)
     wanted, front = enumerated(problem, seed)
     source = source_of(problem, seed)
-    found = search_bands(problem, source, wanted=100, all_windings=False, monitor=Quiet())
-    assert found.stopped_by is None
-    assert [choice.key for choice in found.choices] == wanted, f"seed {seed}, by {problem.by}"
-    got = [
-        (
-            len(choice.coils) + sum(int((columns.parts[0] >= 0).sum()) for columns in choice.columns),
-            leading_figure(problem, choice),
-        )
-        for choice in found.front
-    ]
-    assert [pieces for pieces, _ in got] == [pieces for pieces, _ in front], f"front of seed {seed}"
-    assert [lead for _, lead in got] == pytest.approx([lead for _, lead in front], abs=1e-12)
+    equals_enumeration(problem, source, wanted, front, seed)
     return len(wanted)
 
 

@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 from tiny.brute_force import band_columns, ranking
 from tiny.random_problem import random_problem
+from tiny.random_sections import places_of
 
 from partpick.candidates import realisable_coils
 from partpick.catalogue import load_catalogue
@@ -40,23 +41,10 @@ def random_sections(problem: Problem, seed: int) -> Sections:
 
 def plain_columns(problem: Problem, sections: Sections, coil: int, band: int) -> list[dict[str, object]]:
     """Return the columns of the whole coil and of its sections, each worked out as a coil by itself."""
-    found = list(band_columns(problem, coil, band))
-    for v in np.flatnonzero(sections.coil == coil):
-        row = sections.row[v]
-        alone = replace(
-            problem,
-            wanted=problem.wanted[[row]],
-            self_capacitance=sections.self_capacitance[[v]],
-            in_play=sections.in_play[[v]],
-            coil_loss=problem.coil_loss[[row]] + sections.further_loss[[v]],
-            coil_loss_low=problem.coil_loss_low[[row]] + sections.further_loss_low[[v]],
-            inductance_low=problem.inductance_low[[row]],
-            reactance_class=problem.reactance_class[[row]],
-            coil_tempco=problem.coil_tempco[[row]],
-            coil_tempco_spread=problem.coil_tempco_spread[[coil]],
-        )
-        for column in band_columns(alone, 0, band):
-            found.append({**column, "coil": coil, "tap": int(sections.turns[v])})
+    found = []
+    for alone, row, tap in places_of(problem, sections, coil):
+        section = {"coil": coil, "tap": tap} if tap else {}
+        found += [{**column, **section} for column in band_columns(alone, row, band)]
     return found
 
 

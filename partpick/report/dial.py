@@ -12,7 +12,6 @@ import csv
 import io
 import json
 import math
-import os
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
@@ -24,7 +23,7 @@ from partpick.errors import RequestError
 from partpick.physics.resonance import effective_capacitance
 from partpick.physics.varactor import bias_for, junction_for_network
 from partpick.physics.variable_capacitor import rotation_for
-from partpick.quantities import shown
+from partpick.report.chart_file import cell, check_chart_name, ending
 from partpick.report.dial_moved import inductance_at, positions, setting_for, single_valued
 from partpick.request import Request, Tuning
 from partpick.result import BandFigures, Candidate, Result
@@ -86,15 +85,14 @@ def check_dial(path: str | None, request: Request) -> None:
     """
     if path is None:
         return
-    if path != "-" and _ending(path) not in (".csv", ".json"):
-        raise RequestError(f"--dial: read {shown(path)}: a name that ends in .csv or .json is wanted, or -")
+    check_chart_name("--dial", path)
     if not any(band.swept for band in request.bands) and "cover" not in dict(request.extra):
         raise RequestError("--dial: no band has a range, so no dial is turned; a band with from and to is wanted")
 
 
 def dial_text(result: Result, path: str = "-") -> str:
     """Return the chart as the name of its file asks for: JSON for .json, else CSV."""
-    return dial_json(result) if _ending(path) == ".json" else dial_csv(result)
+    return dial_json(result) if ending(path) == ".json" else dial_csv(result)
 
 
 def dial_csv(result: Result) -> str:
@@ -104,7 +102,7 @@ def dial_csv(result: Result) -> str:
     writer.writerow(COLUMNS)
     for dial in dials(result):
         for p in dial.points:
-            name = f"'{dial.band}" if dial.band[:1] in "=+-@" else dial.band  # else a spreadsheet runs it
+            name = cell(dial.band)
             row = (p.frequency, p.setting, p.rate, p.element, dial.straightness)
             frequency, setting, rate, element, straightness = (format(value, ".9g") for value in row)
             farad, henry = ("", element) if dial.moved else (element, "")
@@ -279,7 +277,3 @@ def _number(figures: BandFigures, key: str) -> float:
     value = figures.extra[key]
     assert isinstance(value, float)
     return value
-
-
-def _ending(path: str) -> str:
-    return os.path.splitext(path)[1].casefold()

@@ -5,14 +5,14 @@ from __future__ import annotations
 import csv
 import io
 import json
-import os
 from typing import TYPE_CHECKING, Any
 
 import partpick
 from partpick.errors import RequestError
-from partpick.quantities import format_quantity, shown
+from partpick.quantities import format_quantity
 from partpick.receiver import is_receiver
 from partpick.report import html
+from partpick.report.chart_file import cell, check_chart_name, ending
 from partpick.report.text import clean, columns, cut, signed_shift, wrapped
 from partpick.request import Request
 from partpick.result import Candidate, Result
@@ -37,15 +37,14 @@ def check_tracking(path: str | None, request: Request) -> None:
     """
     if path is None:
         return
-    if path != "-" and _ending(path) not in (".csv", ".json"):
-        raise RequestError(f"--tracking: read {shown(path)}: a name that ends in .csv or .json is wanted, or -")
+    check_chart_name("--tracking", path)
     if not is_receiver(request):
         raise RequestError("--tracking: nothing has to track; a plan with [receiver] is wanted")
 
 
 def tracking_text(result: Result, path: str = "-") -> str:
     """Return the curve as the name of its file asks for: JSON for .json, else CSV."""
-    return tracking_json(result) if _ending(path) == ".json" else tracking_csv(result)
+    return tracking_json(result) if ending(path) == ".json" else tracking_csv(result)
 
 
 def tracking_csv(result: Result) -> str:
@@ -54,7 +53,7 @@ def tracking_csv(result: Result) -> str:
     writer = csv.writer(text, lineterminator="\r\n")
     writer.writerow(COLUMNS)
     for curve in _curves(result):
-        name = f"'{curve.band}" if curve.band[:1] in "=+-@" else curve.band  # else a spreadsheet runs it
+        name = cell(curve.band)
         for row in zip(curve.signal, curve.section, curve.wanted, curve.tuned, curve.error, strict=True):
             writer.writerow((name, *(format(value, ".9g") for value in row)))
     return text.getvalue()
@@ -133,7 +132,3 @@ def _curves(result: Result) -> tuple[TrackingCurve, ...]:
     from partpick.tracking_figures import tracking_curves  # imported where a receiver is planned
 
     return tracking_curves(result.request, result.candidates[0]) if result.candidates else ()
-
-
-def _ending(path: str) -> str:
-    return os.path.splitext(path)[1].casefold()
